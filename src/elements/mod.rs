@@ -1,0 +1,109 @@
+//! The elements a network is made of: one file each, holding its theory, its knobs, its balance,
+//! its lowering to wave primitives and its tests.
+
+pub mod area_change;
+pub mod duct;
+pub mod ends;
+pub mod flame;
+pub mod knob;
+pub mod plenum;
+pub mod restriction;
+
+use knob::{KnobId, KnobSpec, Values};
+
+use crate::numerics::dual::Real;
+
+/// One element of a network.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Element {
+    /// Its name, unique in the network; `feed` and `exit` for the ends.
+    pub name: String,
+    /// What it is.
+    pub kind: Kind,
+}
+
+/// The closed set of elements. Adding one makes the compiler name every place to extend.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Kind {
+    /// Where the stream enters.
+    Feed(ends::Feed),
+    /// Where the stream leaves.
+    Exit(ends::Exit),
+    /// A passage of constant area along which waves travel.
+    Duct(duct::Duct),
+    /// An area change to a smaller area without loss.
+    Contraction(area_change::Contraction),
+    /// A sudden change to a larger area.
+    Expansion(area_change::Expansion),
+    /// A burner, plate, orifice or screen: a pressure loss.
+    Restriction(restriction::Restriction),
+    /// A large vessel whose gas is at rest.
+    Plenum(plenum::Plenum),
+    /// A compact flame.
+    Flame(flame::Flame),
+}
+
+/// How an area is stated.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub enum Section {
+    /// By the diameter of a round passage [m].
+    Diameter(KnobId),
+    /// By its area [m^2].
+    Area(KnobId),
+}
+
+impl Section {
+    /// The area [m^2].
+    pub fn area<T: Real>(self, values: &Values<T>) -> T {
+        match self {
+            Section::Diameter(d) => values[d] * values[d] * (std::f64::consts::PI / 4.0),
+            Section::Area(a) => values[a],
+        }
+    }
+}
+
+/// A gas as a network names it; its numbers are knobs.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub enum GasChoice {
+    /// Dry air, thermally perfect.
+    Air,
+    /// A perfect gas by specific gas constant.
+    PerfectByConstant {
+        /// Ratio of specific heats.
+        gamma: KnobId,
+        /// Specific gas constant [J/(kg K)].
+        gas_constant: KnobId,
+    },
+    /// A perfect gas by molar mass.
+    PerfectByMolarMass {
+        /// Ratio of specific heats.
+        gamma: KnobId,
+        /// Molar mass [kg/mol].
+        molar_mass: KnobId,
+    },
+}
+
+/// Knob table of a gas written as a table: `gas = { gamma = 1.4, gas_constant = "287 J/(kg K)" }`.
+pub const GAS_KNOBS: &[KnobSpec] = &[
+    KnobSpec {
+        key: "gamma",
+        dimension: crate::units::Dimension::Number,
+        range: knob::Range::Above(1.0),
+        default: None,
+        doc: "ratio of specific heats",
+    },
+    KnobSpec {
+        key: "gas_constant",
+        dimension: crate::units::Dimension::SpecificGasConstant,
+        range: knob::Range::Positive,
+        default: None,
+        doc: "specific gas constant",
+    },
+    KnobSpec {
+        key: "molar_mass",
+        dimension: crate::units::Dimension::MolarMass,
+        range: knob::Range::Positive,
+        default: None,
+        doc: "molar mass, instead of the gas constant",
+    },
+];

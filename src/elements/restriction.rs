@@ -1,0 +1,49 @@
+//! A restriction: a pressure loss between equal areas, with the inertia of the gas in it.
+
+use super::Section;
+use super::knob::{KnobId, KnobSpec, Range};
+use crate::units::Dimension;
+
+/// A burner, plate, orifice or screen between equal areas.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Restriction {
+    /// Loss of isentropic stagnation pressure over `rho_1 u^2/2`.
+    pub loss_coefficient: KnobId,
+    /// Effective length of the slug of gas in it [m].
+    pub effective_length: KnobId,
+    /// Area whose velocity `u = mdot/(rho_1 A)` the two numbers above refer to; the upstream
+    /// station's where none is stated.
+    pub section: Option<Section>,
+}
+
+/// What a file may state of a restriction in numbers.
+pub const KNOBS: &[KnobSpec] = &[
+    KnobSpec {
+        key: "loss_coefficient",
+        dimension: Dimension::Number,
+        range: Range::NotNegative,
+        default: None,
+        doc: "loss of stagnation pressure over the dynamic pressure of the stated area",
+    },
+    KnobSpec {
+        key: "effective_length",
+        dimension: Dimension::Length,
+        range: Range::NotNegative,
+        default: Some(0.0),
+        doc: "length of a slug of the stated area that moves with the flow",
+    },
+    KnobSpec {
+        key: "diameter",
+        dimension: Dimension::Length,
+        range: Range::Positive,
+        default: None,
+        doc: "diameter of the open passage; the neighbours' area where absent",
+    },
+    KnobSpec {
+        key: "area",
+        dimension: Dimension::Area,
+        range: Range::Positive,
+        default: None,
+        doc: "area of the open passage, instead of the diameter",
+    },
+];

@@ -1,0 +1,3 @@
+//! Parse, call, exit code.
+
+fn main() {}

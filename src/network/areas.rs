@@ -1,0 +1,1 @@
+//! Areas at the stations: stated by ducts, passed on by elements without an area of their own.

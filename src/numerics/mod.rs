@@ -1,0 +1,3 @@
+//! Mathematics without acoustics: numbers with derivatives, counting and finding zeros.
+
+pub mod dual;

@@ -1,0 +1,130 @@
+//! What is wrong with a network, told all at once.
+//!
+//! A [`Problem`] names its subject by dotted name (`chamber.length`), says what is wrong and what
+//! would be right. Where it stands in the file ([`Place`]) is attached by the input layer, which
+//! alone knows files; every other layer names the subject and is found by it.
+
+use std::fmt;
+
+/// Whether a problem forbids an answer or qualifies it.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
+pub enum Severity {
+    /// The answer stands, with this said beside it.
+    Warning,
+    /// No answer can be given.
+    Error,
+}
+
+/// A place in a source: a file, or an override given on the command line.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Place {
+    /// File name, or `--set` for an override.
+    pub source: String,
+    /// Line, counted from one.
+    pub line: usize,
+    /// Column in characters, counted from one.
+    pub column: usize,
+    /// Length of the marked text in characters, at least one.
+    pub width: usize,
+    /// The whole line the place is in, without its line end.
+    pub text: String,
+}
+
+/// One thing wrong (or doubtful), where, and what would be right.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Problem {
+    /// Whether an answer is still possible.
+    pub severity: Severity,
+    /// Dotted name of what the problem is about: `chamber.length`, `main_flame`, `feed`.
+    pub subject: String,
+    /// What is wrong, one sentence without a full stop.
+    pub what: String,
+    /// What would be right, one sentence without a full stop.
+    pub hint: Option<String>,
+    /// Where it stands, once the input layer has looked it up.
+    pub place: Option<Place>,
+}
+
+impl Problem {
+    /// A problem that forbids an answer.
+    pub fn error(subject: impl Into<String>, what: impl Into<String>) -> Self {
+        Problem {
+            severity: Severity::Error,
+            subject: subject.into(),
+            what: what.into(),
+            hint: None,
+            place: None,
+        }
+    }
+
+    /// A remark that qualifies the answer.
+    pub fn warning(subject: impl Into<String>, what: impl Into<String>) -> Self {
+        Problem { severity: Severity::Warning, ..Self::error(subject, what) }
+    }
+
+    /// The same problem with advice on what would be right.
+    #[must_use]
+    pub fn hint(mut self, hint: impl Into<String>) -> Self {
+        self.hint = Some(hint.into());
+        self
+    }
+
+    /// The same problem at a known place.
+    #[must_use]
+    pub fn at(mut self, place: Place) -> Self {
+        self.place = Some(place);
+        self
+    }
+}
+
+impl fmt::Display for Problem {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        if let Some(p) = &self.place {
+            write!(f, "{}:{}:{}: ", p.source, p.line, p.column)?;
+        }
+        write!(f, "`{}`: {}", self.subject, self.what)?;
+        if let Some(h) = &self.hint {
+            write!(f, " ({h})")?;
+        }
+        Ok(())
+    }
+}
+
+/// Every problem found in one pass; as an error it holds at least one [`Severity::Error`].
+#[derive(Clone, Debug, Default, PartialEq, Eq, thiserror::Error)]
+pub struct Problems(pub Vec<Problem>);
+
+impl fmt::Display for Problems {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        for (i, p) in self.0.iter().enumerate() {
+            if i > 0 {
+                writeln!(f)?;
+            }
+            write!(f, "{p}")?;
+        }
+        Ok(())
+    }
+}
+
+impl Problems {
+    /// Nothing wrong so far.
+    pub fn new() -> Self {
+        Self::default()
+    }
+
+    /// Adds one.
+    pub fn push(&mut self, p: Problem) {
+        self.0.push(p);
+    }
+
+    /// Whether any of them forbids an answer.
+    pub fn any_error(&self) -> bool {
+        self.0.iter().any(|p| p.severity == Severity::Error)
+    }
+}
+
+impl From<Problem> for Problems {
+    fn from(p: Problem) -> Self {
+        Problems(vec![p])
+    }
+}
