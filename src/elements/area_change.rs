@@ -1,6 +1,8 @@
 //! Area changes: the smooth contraction and the sudden expansion.
 
 use super::knob::{KnobId, KnobSpec, Range};
+use super::port::Port;
+use crate::numerics::dual::Real;
 use crate::units::Dimension;
 
 /// A change to a smaller area in which stagnation pressure is kept.
@@ -15,6 +17,18 @@ pub struct Contraction {
 pub struct Expansion {
     /// Effective length of the slug of the smaller area [m].
     pub effective_length: KnobId,
+}
+
+/// Stagnation pressure is kept, `p_t1 - p_t2 = 0` [Pa]; with mass and enthalpy kept the change is
+/// isentropic.
+pub fn contraction<N: Real>(up: &Port<N>, down: &Port<N>) -> N {
+    up.stagnation_pressure - down.stagnation_pressure
+}
+
+/// Momentum with the upstream pressure on the step's face, over the larger area:
+/// `p1 + rho1 u1^2 A1/A2 - p2 - rho2 u2^2 = 0` [Pa] (Borda-Carnot, compressible).
+pub fn expansion<N: Real>(up: &Port<N>, down: &Port<N>) -> N {
+    up.pressure + up.momentum_flux * up.area / down.area - down.pressure - down.momentum_flux
 }
 
 /// What a file may state of either in numbers.

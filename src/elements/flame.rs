@@ -2,6 +2,8 @@
 
 use super::GasChoice;
 use super::knob::{KnobId, KnobSpec, Range};
+use super::port::Port;
+use crate::numerics::dual::Real;
 use crate::units::Dimension;
 
 /// A flame thin against every wavelength in the window.
@@ -15,6 +17,11 @@ pub struct Flame {
     pub basis: Basis,
     /// Contributions to its response, summed.
     pub responses: Vec<Response>,
+}
+
+/// Momentum through a passage of constant area: `p1 + rho1 u1^2 - p2 - rho2 u2^2 = 0` [Pa].
+pub fn balance<N: Real>(up: &Port<N>, down: &Port<N>) -> N {
+    up.pressure + up.momentum_flux - down.pressure - down.momentum_flux
 }
 
 /// What a response is a fraction of.

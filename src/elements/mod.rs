@@ -7,9 +7,11 @@ pub mod ends;
 pub mod flame;
 pub mod knob;
 pub mod plenum;
+pub mod port;
 pub mod restriction;
 
 use knob::{KnobId, KnobSpec, Values};
+use port::Port;
 
 use crate::numerics::dual::Real;
 
@@ -41,6 +43,30 @@ pub enum Kind {
     Plenum(plenum::Plenum),
     /// A compact flame.
     Flame(flame::Flame),
+}
+
+impl Kind {
+    /// The element's third steady balance, beside mass and enthalpy flow, as a residual [Pa] that is
+    /// zero: `None` for an end, which balances nothing. The mean flow solves it; the acoustics
+    /// differentiates it.
+    ///
+    /// `number` gives the value of a knob in the number type of the ports.
+    pub fn third_balance<N: Real>(
+        &self,
+        up: &Port<N>,
+        down: &Port<N>,
+        number: impl Fn(KnobId) -> N,
+    ) -> Option<N> {
+        match self {
+            Kind::Feed(_) | Kind::Exit(_) => None,
+            Kind::Duct(_) => Some(up.pressure - down.pressure),
+            Kind::Contraction(_) => Some(area_change::contraction(up, down)),
+            Kind::Expansion(_) => Some(area_change::expansion(up, down)),
+            Kind::Restriction(r) => Some(r.balance(up, down, number)),
+            Kind::Plenum(_) => Some(plenum::balance(up, down)),
+            Kind::Flame(_) => Some(flame::balance(up, down)),
+        }
+    }
 }
 
 /// How an area is stated.

@@ -2,6 +2,8 @@
 
 use super::Section;
 use super::knob::{KnobId, KnobSpec, Range};
+use super::port::Port;
+use crate::numerics::dual::Real;
 use crate::units::Dimension;
 
 /// A burner, plate, orifice or screen between equal areas.
@@ -14,6 +16,32 @@ pub struct Restriction {
     /// Area whose velocity `u = mdot/(rho_1 A)` the two numbers above refer to; the upstream
     /// station's where none is stated.
     pub section: Option<Section>,
+}
+
+impl Restriction {
+    /// `p_t1 - p_t2 - zeta rho1 u^2/2 = 0` [Pa] with `u = mdot/(rho1 A) = u1 A1/A`.
+    pub fn balance<N: Real>(
+        &self,
+        up: &Port<N>,
+        down: &Port<N>,
+        number: impl Fn(KnobId) -> N,
+    ) -> N {
+        let widening = self.widening(up.area, &number);
+        let dynamic = up.momentum_flux * widening * widening * 0.5;
+        up.stagnation_pressure - down.stagnation_pressure - number(self.loss_coefficient) * dynamic
+    }
+
+    /// `A1/A`: the upstream area over the area the numbers refer to.
+    pub fn widening<N: Real>(&self, upstream: N, number: impl Fn(KnobId) -> N) -> N {
+        match self.section {
+            None => N::from(1.0),
+            Some(Section::Area(a)) => upstream / number(a),
+            Some(Section::Diameter(d)) => {
+                let d = number(d);
+                upstream / (d * d * std::f64::consts::FRAC_PI_4)
+            }
+        }
+    }
 }
 
 /// What a file may state of a restriction in numbers.

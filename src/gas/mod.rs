@@ -42,4 +42,35 @@ impl<T: Real> State<T> {
     pub fn density(&self) -> T {
         todo!()
     }
+    /// Mass flow [kg/s].
+    pub fn mass_flow(&self) -> T {
+        todo!()
+    }
+    /// Sound speed [m/s].
+    pub fn sound_speed(&self) -> T {
+        todo!()
+    }
+    /// Stagnation enthalpy [J/kg].
+    pub fn stagnation_enthalpy(&self) -> T {
+        todo!()
+    }
+    /// Stagnation temperature [K].
+    pub fn stagnation_temperature(&self) -> T {
+        todo!()
+    }
+    /// Stagnation pressure [Pa].
+    pub fn stagnation_pressure(&self) -> T {
+        todo!()
+    }
+}
+
+impl<T: Real> Gas<T> {
+    /// Heat capacity [J/(kg K)].
+    pub fn cp(&self, _t: T) -> T {
+        todo!()
+    }
+    /// Specific gas constant [J/(kg K)].
+    pub fn gas_constant(&self) -> T {
+        todo!()
+    }
 }
