@@ -4,12 +4,13 @@
 //! for each knob, over any [`Real`]. Stations are the links of the graph: the plane where one
 //! element ends is the plane where the next begins.
 
-mod areas;
+pub mod areas;
+pub mod values;
 
 use std::sync::Arc;
 
 use crate::elements::knob::{Knob, KnobId, Values};
-use crate::elements::{Element, Kind};
+use crate::elements::{Element, Kind, Section};
 use crate::numerics::dual::Dual;
 
 /// Index of an element in [`Layout::elements`].
@@ -38,6 +39,8 @@ pub struct Layout {
     pub elements: Vec<Element>,
     /// The stations, in flow order.
     pub links: Vec<Link>,
+    /// What says the area of each station, one for each link (see [`areas`]).
+    pub station_sections: Vec<Section>,
     /// What each number of [`Values`] is.
     pub knobs: Vec<Knob>,
     /// The window the file asks for.
@@ -66,12 +69,23 @@ pub struct Network<T = f64> {
 impl Layout {
     /// The element of that name. `feed` and `exit` name the ends.
     pub fn element(&self, name: &str) -> Option<ElementId> {
-        self.elements.iter().position(|e| e.name == name).map(ElementId)
+        self.elements
+            .iter()
+            .position(|e| e.name == name)
+            .map(ElementId)
     }
 
-    /// The knob of that dotted name.
+    /// The knob of that dotted name. Of a flame's only response `main_flame.response.delay` and
+    /// `main_flame.response.1.delay` are other names of `main_flame.delay`.
     pub fn knob(&self, name: &str) -> Option<KnobId> {
-        self.knobs.iter().position(|k| k.name == name).map(KnobId)
+        let named = |name: &str| self.knobs.iter().position(|k| k.name == name).map(KnobId);
+        named(name).or_else(|| {
+            let (flame, key) = name.split_once(".response.")?;
+            named(&format!(
+                "{flame}.{}",
+                key.strip_prefix("1.").unwrap_or(key)
+            ))
+        })
     }
 
     /// The station where an element begins; `None` for the feed.
@@ -88,7 +102,11 @@ impl Layout {
 impl<T> Network<T> {
     /// The elements with their ids, in flow order.
     pub fn elements(&self) -> impl Iterator<Item = (ElementId, &Element)> {
-        self.layout.elements.iter().enumerate().map(|(i, e)| (ElementId(i), e))
+        self.layout
+            .elements
+            .iter()
+            .enumerate()
+            .map(|(i, e)| (ElementId(i), e))
     }
 
     /// What an element is.
@@ -100,7 +118,10 @@ impl<T> Network<T> {
 impl Network<f64> {
     /// The same network as duals, derivative one at `knob`.
     pub fn seeded(&self, knob: KnobId) -> Network<Dual> {
-        Network { layout: Arc::clone(&self.layout), values: self.values.seeded(knob) }
+        Network {
+            layout: Arc::clone(&self.layout),
+            values: self.values.seeded(knob),
+        }
     }
 
     /// The same network with one number replaced.

@@ -23,8 +23,13 @@ impl<'a> Written<'a> {
     /// Splits the longest decimal number off the front of `text`; `None` where there is none.
     pub fn split(text: &'a str) -> Option<(Written<'a>, &'a str)> {
         let bytes = text.as_bytes();
-        let digits_from =
-            |from: usize| bytes.iter().skip(from).take_while(|b| b.is_ascii_digit()).count();
+        let digits_from = |from: usize| {
+            bytes
+                .iter()
+                .skip(from)
+                .take_while(|b| b.is_ascii_digit())
+                .count()
+        };
         let sign = usize::from(matches!(bytes.first(), Some(b'+' | b'-')));
         let whole = digits_from(sign);
         let mut end = sign + whole;
@@ -59,19 +64,29 @@ impl<'a> Written<'a> {
     /// The double nearest to the number times `10^shift`.
     pub fn scaled(self, shift: i32) -> f64 {
         // The text is a valid literal, which the standard library rounds correctly.
-        format!("{}e{}", self.digits, self.exponent + shift).parse().unwrap_or(f64::NAN)
+        format!("{}e{}", self.digits, self.exponent + shift)
+            .parse()
+            .unwrap_or(f64::NAN)
     }
 
     /// Whether every digit is zero.
     pub fn is_zero(self) -> bool {
-        self.digits.bytes().all(|b| !b.is_ascii_digit() || b == b'0')
+        self.digits
+            .bytes()
+            .all(|b| !b.is_ascii_digit() || b == b'0')
     }
 
     /// The number exactly, where its digits fit.
     pub fn exact(self) -> Option<Decimal> {
-        let places = self.digits.split_once('.').map_or(0, |(_, fraction)| fraction.len());
+        let places = self
+            .digits
+            .split_once('.')
+            .map_or(0, |(_, fraction)| fraction.len());
         let mantissa = self.digits.replace('.', "").parse().ok()?;
-        Some(Decimal { mantissa, exponent: self.exponent - i32::try_from(places).ok()? })
+        Some(Decimal {
+            mantissa,
+            exponent: self.exponent - i32::try_from(places).ok()?,
+        })
     }
 }
 
@@ -84,16 +99,24 @@ impl Decimal {
             m.checked_mul(power)
         };
         let sum = raise(self.mantissa, self.exponent)?.checked_add(raise(mantissa, exponent)?)?;
-        Some(Decimal { mantissa: sum, exponent: common })
+        Some(Decimal {
+            mantissa: sum,
+            exponent: common,
+        })
     }
 
     /// The product with a whole number, where it fits.
     pub fn times(self, factor: i128) -> Option<Decimal> {
-        Some(Decimal { mantissa: self.mantissa.checked_mul(factor)?, ..self })
+        Some(Decimal {
+            mantissa: self.mantissa.checked_mul(factor)?,
+            ..self
+        })
     }
 
     /// The double nearest to the number times `10^shift`.
     pub fn scaled(self, shift: i32) -> f64 {
-        format!("{}e{}", self.mantissa, self.exponent + shift).parse().unwrap_or(f64::NAN)
+        format!("{}e{}", self.mantissa, self.exponent + shift)
+            .parse()
+            .unwrap_or(f64::NAN)
     }
 }

@@ -122,13 +122,27 @@ impl QuantityError {
             }
             QuantityError::UnwantedUnit { number, .. } => format!("write `{number}` alone"),
             QuantityError::WrongDimension { wanted, .. } => {
-                format!("{} may be in {}", wanted.noun(), listed(wanted.unit_names()))
+                format!(
+                    "{} may be in {}",
+                    wanted.noun(),
+                    listed(wanted.unit_names())
+                )
             }
-            QuantityError::UnknownUnit { meant: Some(meant), .. } => {
+            QuantityError::UnknownUnit {
+                meant: Some(meant), ..
+            } => {
                 format!("did you mean `{meant}`?")
             }
-            QuantityError::UnknownUnit { meant: None, wanted, .. } => {
-                format!("{} may be in {}", wanted.noun(), listed(wanted.unit_names()))
+            QuantityError::UnknownUnit {
+                meant: None,
+                wanted,
+                ..
+            } => {
+                format!(
+                    "{} may be in {}",
+                    wanted.noun(),
+                    listed(wanted.unit_names())
+                )
             }
             QuantityError::NotASpan { wanted, .. } => {
                 let unit = wanted.si_unit();
@@ -157,9 +171,16 @@ pub fn parse(text: &str, wanted: Dimension) -> Result<f64, QuantityError> {
             return Err(match known(unit) {
                 Some(_) => QuantityError::UnwantedUnit {
                     unit: unit.to_owned(),
-                    number: text.strip_suffix(unit).unwrap_or(&text).trim_end().to_owned(),
+                    number: text
+                        .strip_suffix(unit)
+                        .unwrap_or(&text)
+                        .trim_end()
+                        .to_owned(),
                 },
-                None => QuantityError::NotANumber { text: text.clone(), wanted },
+                None => QuantityError::NotANumber {
+                    text: text.clone(),
+                    wanted,
+                },
             });
         }
         (_, None) => return Err(QuantityError::MissingUnit { text, wanted }),
@@ -185,7 +206,11 @@ pub fn parse_number(text: &str) -> Result<f64, QuantityError> {
 pub fn parse_span(text: &str, wanted: Dimension) -> Result<(f64, f64), QuantityError> {
     let text = plain_number(text);
     let words: Vec<&str> = text.split(' ').collect();
-    let mut at = words.iter().enumerate().filter(|(_, w)| **w == "to").map(|(i, _)| i);
+    let mut at = words
+        .iter()
+        .enumerate()
+        .filter(|(_, w)| **w == "to")
+        .map(|(i, _)| i);
     let (Some(i), None) = (at.next(), at.next()) else {
         return Err(QuantityError::NotASpan { text, wanted });
     };
@@ -203,8 +228,10 @@ pub fn parse_span(text: &str, wanted: Dimension) -> Result<(f64, f64), QuantityE
 
 /// The text with one kind of minus sign and of blank, without blanks at its ends.
 fn plain_number(text: &str) -> String {
-    let plain: String =
-        text.chars().map(|c| if c == '\u{2212}' { '-' } else { c }).collect();
+    let plain: String = text
+        .chars()
+        .map(|c| if c == '\u{2212}' { '-' } else { c })
+        .collect();
     plain.split_whitespace().collect::<Vec<_>>().join(" ")
 }
 
@@ -225,7 +252,9 @@ pub(super) fn plain_unit(text: &str) -> String {
     }
     let mut plain = plain.split_whitespace().collect::<Vec<_>>().join(" ");
     for mark in ["/", "(", ")"] {
-        plain = plain.replace(&format!(" {mark}"), mark).replace(&format!("{mark} "), mark);
+        plain = plain
+            .replace(&format!(" {mark}"), mark)
+            .replace(&format!("{mark} "), mark);
     }
     plain
 }
@@ -246,7 +275,9 @@ fn split(text: &str, wanted: Dimension) -> Result<(Written<'_>, Option<&str>), Q
     if let Some(after) = rest.strip_prefix(',')
         && after.starts_with(|c: char| c.is_ascii_digit())
     {
-        return Err(QuantityError::Comma { text: text.to_owned() });
+        return Err(QuantityError::Comma {
+            text: text.to_owned(),
+        });
     }
     let rest = rest.trim_start();
     Ok((number, (!rest.is_empty()).then_some(rest)))
@@ -254,7 +285,9 @@ fn split(text: &str, wanted: Dimension) -> Result<(Written<'_>, Option<&str>), Q
 
 fn known(unit: &str) -> Option<Dimension> {
     let unit = plain_unit(unit);
-    Dimension::ALL.into_iter().find(|d| table::units(*d).iter().any(|u| u.is_spelt(&unit)))
+    Dimension::ALL
+        .into_iter()
+        .find(|d| table::units(*d).iter().any(|u| u.is_spelt(&unit)))
 }
 
 fn find(text: &str, wanted: Dimension, all: &str) -> Result<&'static Unit, QuantityError> {
@@ -264,17 +297,28 @@ fn find(text: &str, wanted: Dimension, all: &str) -> Result<&'static Unit, Quant
     }
     let unit = text.to_owned();
     if let Some(found) = known(text) {
-        return Err(QuantityError::WrongDimension { unit, found, wanted });
+        return Err(QuantityError::WrongDimension {
+            unit,
+            found,
+            wanted,
+        });
     }
     if text.starts_with(|c: char| c.is_ascii_digit() || ".+-".contains(c)) {
-        return Err(QuantityError::NotANumber { text: all.to_owned(), wanted });
+        return Err(QuantityError::NotANumber {
+            text: all.to_owned(),
+            wanted,
+        });
     }
     let meant = match (wanted, plain.as_str()) {
         (Dimension::Temperature, "C" | "c") => Some("degC"),
         (Dimension::Temperature, "F" | "f") => Some("degF"),
         _ => nearest(&plain, wanted.unit_names()),
     };
-    Err(QuantityError::UnknownUnit { unit, meant, wanted })
+    Err(QuantityError::UnknownUnit {
+        unit,
+        meant,
+        wanted,
+    })
 }
 
 fn in_si(number: Written<'_>, unit: &Unit) -> f64 {
@@ -282,8 +326,11 @@ fn in_si(number: Written<'_>, unit: &Unit) -> f64 {
         return number.scaled(unit.exponent) * unit.times / unit.over;
     }
     let exact = number.exact().and_then(|d| {
-        let shifted =
-            if unit.shift_hundredths == 0 { d } else { d.plus(unit.shift_hundredths, -2)? };
+        let shifted = if unit.shift_hundredths == 0 {
+            d
+        } else {
+            d.plus(unit.shift_hundredths, -2)?
+        };
         shifted.times(unit.multiplier)
     });
     let decimal = match exact {
@@ -300,10 +347,14 @@ fn in_si(number: Written<'_>, unit: &Unit) -> f64 {
 
 fn finite(number: Written<'_>, value: f64, text: &str) -> Result<f64, QuantityError> {
     if !value.is_finite() {
-        Err(QuantityError::TooLarge { text: text.to_owned() })
+        Err(QuantityError::TooLarge {
+            text: text.to_owned(),
+        })
     // A shift (-273.15 degC) makes an honest zero of a number that is not small.
     } else if value == 0.0 && !number.is_zero() && number.scaled(0).abs() < 1e-200 {
-        Err(QuantityError::TooSmall { text: text.to_owned() })
+        Err(QuantityError::TooSmall {
+            text: text.to_owned(),
+        })
     } else {
         Ok(value)
     }

@@ -35,15 +35,29 @@ impl Unit {
 }
 
 const fn ten(name: &'static str, aliases: &'static [&'static str], exponent: i32) -> Unit {
-    Unit { name, aliases, shift_hundredths: 0, multiplier: 1, exponent, times: 1.0, over: 1.0 }
+    Unit {
+        name,
+        aliases,
+        shift_hundredths: 0,
+        multiplier: 1,
+        exponent,
+        times: 1.0,
+        over: 1.0,
+    }
 }
 
 const fn whole(name: &'static str, multiplier: i128, exponent: i32) -> Unit {
-    Unit { multiplier, ..ten(name, &[], exponent) }
+    Unit {
+        multiplier,
+        ..ten(name, &[], exponent)
+    }
 }
 
 const fn ratio(name: &'static str, multiplier: i128, exponent: i32, over: f64) -> Unit {
-    Unit { over, ..whole(name, multiplier, exponent) }
+    Unit {
+        over,
+        ..whole(name, multiplier, exponent)
+    }
 }
 
 const LENGTH: &[Unit] = &[
@@ -52,7 +66,10 @@ const LENGTH: &[Unit] = &[
     ten("cm", &[], -2),
     ten("um", &[], -6),
     ten("km", &[], 3),
-    Unit { aliases: &["inch"], ..whole("in", 254, -4) },
+    Unit {
+        aliases: &["inch"],
+        ..whole("in", 254, -4)
+    },
     whole("ft", 3048, -4),
 ];
 
@@ -60,8 +77,14 @@ const AREA: &[Unit] = &[
     ten("m^2", &["m2"], 0),
     ten("cm^2", &["cm2"], -4),
     ten("mm^2", &["mm2"], -6),
-    Unit { aliases: &["in2", "sq in"], ..whole("in^2", 254 * 254, -8) },
-    Unit { aliases: &["ft2", "sq ft"], ..whole("ft^2", 3048 * 3048, -8) },
+    Unit {
+        aliases: &["in2", "sq in"],
+        ..whole("in^2", 254 * 254, -8)
+    },
+    Unit {
+        aliases: &["ft2", "sq ft"],
+        ..whole("ft^2", 3048 * 3048, -8)
+    },
 ];
 
 const VOLUME: &[Unit] = &[
@@ -70,13 +93,22 @@ const VOLUME: &[Unit] = &[
     ten("mL", &["ml"], -6),
     ten("cm^3", &["cm3"], -6),
     ten("mm^3", &["mm3"], -9),
-    Unit { aliases: &["in3"], ..whole("in^3", 254 * 254 * 254, -12) },
-    Unit { aliases: &["ft3"], ..whole("ft^3", 3048 * 3048 * 3048, -12) },
+    Unit {
+        aliases: &["in3"],
+        ..whole("in^3", 254 * 254 * 254, -12)
+    },
+    Unit {
+        aliases: &["ft3"],
+        ..whole("ft^3", 3048 * 3048 * 3048, -12)
+    },
 ];
 
 const TEMPERATURE: &[Unit] = &[
     ten("K", &["kelvin"], 0),
-    Unit { shift_hundredths: 27_315, ..ten("degC", &["\u{b0}C"], 0) },
+    Unit {
+        shift_hundredths: 27_315,
+        ..ten("degC", &["\u{b0}C"], 0)
+    },
     Unit {
         shift_hundredths: 45_967,
         aliases: &["\u{b0}F"],
@@ -129,16 +161,43 @@ const RATE: &[Unit] = &[ten("1/s", &["s^-1"], 0), ten("1/ms", &["ms^-1"], 3)];
 
 const ANGLE: &[Unit] = &[
     ten("rad", &[], 0),
-    Unit { aliases: &["\u{b0}"], times: PI, ..ratio("deg", 1, 0, 180.0) },
+    Unit {
+        aliases: &["\u{b0}"],
+        times: PI,
+        ..ratio("deg", 1, 0, 180.0)
+    },
 ];
 
 const SPECIFIC_GAS_CONSTANT: &[Unit] = &[
-    ten("J/(kg K)", &["J/kg/K", "J/kg-K", "J/(K kg)", "J kg^-1 K^-1", "m^2/(s^2 K)"], 0),
-    ten("kJ/(kg K)", &["kJ/kg/K", "kJ/kg-K", "kJ/(K kg)", "kJ kg^-1 K^-1", "J/(g K)"], 3),
+    ten(
+        "J/(kg K)",
+        &[
+            "J/kg/K",
+            "J/kg-K",
+            "J/(K kg)",
+            "J kg^-1 K^-1",
+            "m^2/(s^2 K)",
+        ],
+        0,
+    ),
+    ten(
+        "kJ/(kg K)",
+        &[
+            "kJ/kg/K",
+            "kJ/kg-K",
+            "kJ/(K kg)",
+            "kJ kg^-1 K^-1",
+            "J/(g K)",
+        ],
+        3,
+    ),
 ];
 
-const MOLAR_MASS: &[Unit] =
-    &[ten("kg/mol", &[], 0), ten("g/mol", &[], -3), ten("kg/kmol", &[], -3)];
+const MOLAR_MASS: &[Unit] = &[
+    ten("kg/mol", &[], 0),
+    ten("g/mol", &[], -3),
+    ten("kg/kmol", &[], -3),
+];
 
 /// The units of a dimension, the SI unit first.
 pub(super) const fn units(dimension: Dimension) -> &'static [Unit] {

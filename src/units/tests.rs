@@ -47,7 +47,10 @@ fn units_have_their_defined_size() {
     let psi = parse("1 psi", Dimension::Pressure).unwrap();
     assert!((psi - 6_894.757_293_168_361).abs() < 1e-9, "{psi}");
     let pound_hour = parse("1 lb/h", Dimension::MassFlow).unwrap();
-    assert!((pound_hour / 1.259_979e-4 - 1.0).abs() < 1e-6, "{pound_hour}");
+    assert!(
+        (pound_hour / 1.259_979e-4 - 1.0).abs() < 1e-6,
+        "{pound_hour}"
+    );
 }
 
 #[test]
@@ -62,14 +65,38 @@ fn each_mistake_has_its_own_error() {
     assert!(matches!(length("nan m"), E::NotFinite { .. }));
     assert!(matches!(length("-inf m"), E::NotFinite { .. }));
     assert!(matches!(length("1e400 m"), E::TooLarge { .. }));
-    assert!(matches!(length("1e99999999999999999999 m"), E::TooLarge { .. }));
+    assert!(matches!(
+        length("1e99999999999999999999 m"),
+        E::TooLarge { .. }
+    ));
     assert!(matches!(length("1e-400 m"), E::TooSmall { .. }));
     assert!(matches!(length("0.5"), E::MissingUnit { .. }));
-    assert!(matches!(length("0.5 ms"), E::WrongDimension { found: Dimension::Time, .. }));
-    assert!(matches!(length("0.5 MM"), E::UnknownUnit { meant: Some("mm"), .. }));
-    assert!(matches!(length("0.5 furlong"), E::UnknownUnit { meant: None, .. }));
+    assert!(matches!(
+        length("0.5 ms"),
+        E::WrongDimension {
+            found: Dimension::Time,
+            ..
+        }
+    ));
+    assert!(matches!(
+        length("0.5 MM"),
+        E::UnknownUnit {
+            meant: Some("mm"),
+            ..
+        }
+    ));
+    assert!(matches!(
+        length("0.5 furlong"),
+        E::UnknownUnit { meant: None, .. }
+    ));
     let temperature = parse("20 C", Dimension::Temperature).unwrap_err();
-    assert!(matches!(temperature, E::UnknownUnit { meant: Some("degC"), .. }));
+    assert!(matches!(
+        temperature,
+        E::UnknownUnit {
+            meant: Some("degC"),
+            ..
+        }
+    ));
     let number = parse("0.5 m", Dimension::Number).unwrap_err();
     assert!(matches!(number, E::UnwantedUnit { .. }));
     assert_eq!(number.hint(), "write `0.5` alone");
@@ -84,10 +111,19 @@ fn spans_share_or_carry_units() {
     let frequency = |t: &str| parse_span(t, Dimension::Frequency);
     assert_eq!(frequency("20 to 800 Hz"), Ok((20.0, 800.0)));
     assert_eq!(frequency("20 Hz to 0.8 kHz"), Ok((20.0, 800.0)));
-    assert_eq!(parse_span("-300 to 300 1/s", Dimension::Rate), Ok((-300.0, 300.0)));
+    assert_eq!(
+        parse_span("-300 to 300 1/s", Dimension::Rate),
+        Ok((-300.0, 300.0))
+    );
     assert_eq!(parse_span("0 to 2", Dimension::Number), Ok((0.0, 2.0)));
-    assert!(matches!(frequency("20 to 800"), Err(QuantityError::MissingUnit { .. })));
-    assert!(matches!(frequency("20 m to 800 Hz"), Err(QuantityError::WrongDimension { .. })));
+    assert!(matches!(
+        frequency("20 to 800"),
+        Err(QuantityError::MissingUnit { .. })
+    ));
+    assert!(matches!(
+        frequency("20 m to 800 Hz"),
+        Err(QuantityError::WrongDimension { .. })
+    ));
 }
 
 #[test]
@@ -107,7 +143,10 @@ fn written_quantities_read_well() {
     ] {
         assert_eq!(write(si, dimension), text);
     }
-    assert_eq!(write_rounded(0.005_026_548_245_743_669, Dimension::Area, 4), "50.27 cm^2");
+    assert_eq!(
+        write_rounded(0.005_026_548_245_743_669, Dimension::Area, 4),
+        "50.27 cm^2"
+    );
 }
 
 fn any_dimension() -> impl Strategy<Value = Dimension> {

@@ -31,8 +31,9 @@ pub fn write(value: f64, dimension: Dimension) -> String {
     if dimension == Dimension::Angle {
         let degrees = format!("{} deg", value.to_degrees());
         let rounded = write_rounded(value, dimension, 12);
-        if let Some(text) =
-            [rounded, degrees].into_iter().find(|t| parse(t, dimension) == Ok(value))
+        if let Some(text) = [rounded, degrees]
+            .into_iter()
+            .find(|t| parse(t, dimension) == Ok(value))
         {
             return text;
         }
@@ -57,7 +58,11 @@ fn in_unit(scientific: &str, value: f64, dimension: Dimension) -> String {
     let Some((name, exponent, _)) = units.iter().find(fits).or(units.last()) else {
         return value.to_string();
     };
-    let number = if value.is_finite() { plain(scientific, -exponent) } else { value.to_string() };
+    let number = if value.is_finite() {
+        plain(scientific, -exponent)
+    } else {
+        value.to_string()
+    };
     format!("{number} {name}").trim_end().to_owned()
 }
 
