@@ -131,3 +131,32 @@ impl From<Problem> for Problems {
         Problems(vec![p])
     }
 }
+
+/// The candidate a mistyped word most likely stands for, if any is near: the same but for case, or
+/// within a third of its length in edits (optimal string alignment).
+pub fn nearest<'a>(word: &str, candidates: impl IntoIterator<Item = &'a str>) -> Option<&'a str> {
+    let lower = word.to_lowercase();
+    let length = word.chars().count();
+    candidates
+        .into_iter()
+        .map(|c| (strsim::osa_distance(&lower, &c.to_lowercase()), c))
+        .filter(|(edits, c)| *edits <= length.max(c.chars().count()).div_ceil(3).min(3))
+        .filter(|(edits, c)| *edits < length.min(c.chars().count()) || *edits == 0)
+        .min_by_key(|(edits, _)| *edits)
+        .map(|(_, c)| c)
+}
+
+/// `a, b or c`, for a sentence.
+pub fn listed<S: AsRef<str>>(names: impl IntoIterator<Item = S>) -> String {
+    let names: Vec<S> = names.into_iter().collect();
+    let mut text = String::new();
+    for (i, name) in names.iter().enumerate() {
+        text.push_str(match i {
+            0 => "",
+            _ if i + 1 == names.len() => " or ",
+            _ => ", ",
+        });
+        text.push_str(name.as_ref());
+    }
+    text
+}

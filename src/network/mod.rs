@@ -4,12 +4,13 @@
 //! for each knob, over any [`Real`]. Stations are the links of the graph: the plane where one
 //! element ends is the plane where the next begins.
 
-mod areas;
+pub mod areas;
+pub mod values;
 
 use std::sync::Arc;
 
 use crate::elements::knob::{Knob, KnobId, Values};
-use crate::elements::{Element, Kind};
+use crate::elements::{Element, Kind, Section};
 use crate::numerics::dual::Dual;
 
 /// Index of an element in [`Layout::elements`].
@@ -38,6 +39,8 @@ pub struct Layout {
     pub elements: Vec<Element>,
     /// The stations, in flow order.
     pub links: Vec<Link>,
+    /// What says the area of each station, one for each link (see [`areas`]).
+    pub station_sections: Vec<Section>,
     /// What each number of [`Values`] is.
     pub knobs: Vec<Knob>,
     /// The window the file asks for.
@@ -72,9 +75,17 @@ impl Layout {
             .map(ElementId)
     }
 
-    /// The knob of that dotted name.
+    /// The knob of that dotted name. Of a flame's only response `main_flame.response.delay` and
+    /// `main_flame.response.1.delay` are other names of `main_flame.delay`.
     pub fn knob(&self, name: &str) -> Option<KnobId> {
-        self.knobs.iter().position(|k| k.name == name).map(KnobId)
+        let named = |name: &str| self.knobs.iter().position(|k| k.name == name).map(KnobId);
+        named(name).or_else(|| {
+            let (flame, key) = name.split_once(".response.")?;
+            named(&format!(
+                "{flame}.{}",
+                key.strip_prefix("1.").unwrap_or(key)
+            ))
+        })
     }
 
     /// The station where an element begins; `None` for the feed.
