@@ -59,7 +59,10 @@ impl Problem {
 
     /// A remark that qualifies the answer.
     pub fn warning(subject: impl Into<String>, what: impl Into<String>) -> Self {
-        Problem { severity: Severity::Warning, ..Self::error(subject, what) }
+        Problem {
+            severity: Severity::Warning,
+            ..Self::error(subject, what)
+        }
     }
 
     /// The same problem with advice on what would be right.

@@ -66,7 +66,10 @@ pub struct Network<T = f64> {
 impl Layout {
     /// The element of that name. `feed` and `exit` name the ends.
     pub fn element(&self, name: &str) -> Option<ElementId> {
-        self.elements.iter().position(|e| e.name == name).map(ElementId)
+        self.elements
+            .iter()
+            .position(|e| e.name == name)
+            .map(ElementId)
     }
 
     /// The knob of that dotted name.
@@ -88,7 +91,11 @@ impl Layout {
 impl<T> Network<T> {
     /// The elements with their ids, in flow order.
     pub fn elements(&self) -> impl Iterator<Item = (ElementId, &Element)> {
-        self.layout.elements.iter().enumerate().map(|(i, e)| (ElementId(i), e))
+        self.layout
+            .elements
+            .iter()
+            .enumerate()
+            .map(|(i, e)| (ElementId(i), e))
     }
 
     /// What an element is.
@@ -100,7 +107,10 @@ impl<T> Network<T> {
 impl Network<f64> {
     /// The same network as duals, derivative one at `knob`.
     pub fn seeded(&self, knob: KnobId) -> Network<Dual> {
-        Network { layout: Arc::clone(&self.layout), values: self.values.seeded(knob) }
+        Network {
+            layout: Arc::clone(&self.layout),
+            values: self.values.seeded(knob),
+        }
     }
 
     /// The same network with one number replaced.

@@ -116,7 +116,10 @@ pub type Dual = Grad<f64, 1>;
 impl<T: Real, const N: usize> Grad<T, N> {
     /// A constant: all derivatives zero.
     pub fn constant(v: T) -> Self {
-        Grad { v, d: [T::from(0.0); N] }
+        Grad {
+            v,
+            d: [T::from(0.0); N],
+        }
     }
 
     /// An independent variable: derivative one along `direction`. A direction outside `0..N`
@@ -130,7 +133,10 @@ impl<T: Real, const N: usize> Grad<T, N> {
     }
 
     fn map(self, v: T, slope: T) -> Self {
-        Grad { v, d: self.d.map(|d| d * slope) }
+        Grad {
+            v,
+            d: self.d.map(|d| d * slope),
+        }
     }
 }
 
@@ -143,21 +149,30 @@ impl<T: Real, const N: usize> From<f64> for Grad<T, N> {
 impl<T: Real, const N: usize> Add for Grad<T, N> {
     type Output = Self;
     fn add(self, o: Self) -> Self {
-        Grad { v: self.v + o.v, d: std::array::from_fn(|i| self.d[i] + o.d[i]) }
+        Grad {
+            v: self.v + o.v,
+            d: std::array::from_fn(|i| self.d[i] + o.d[i]),
+        }
     }
 }
 
 impl<T: Real, const N: usize> Sub for Grad<T, N> {
     type Output = Self;
     fn sub(self, o: Self) -> Self {
-        Grad { v: self.v - o.v, d: std::array::from_fn(|i| self.d[i] - o.d[i]) }
+        Grad {
+            v: self.v - o.v,
+            d: std::array::from_fn(|i| self.d[i] - o.d[i]),
+        }
     }
 }
 
 impl<T: Real, const N: usize> Mul for Grad<T, N> {
     type Output = Self;
     fn mul(self, o: Self) -> Self {
-        Grad { v: self.v * o.v, d: std::array::from_fn(|i| self.d[i] * o.v + self.v * o.d[i]) }
+        Grad {
+            v: self.v * o.v,
+            d: std::array::from_fn(|i| self.d[i] * o.v + self.v * o.d[i]),
+        }
     }
 }
 
@@ -165,42 +180,60 @@ impl<T: Real, const N: usize> Div for Grad<T, N> {
     type Output = Self;
     fn div(self, o: Self) -> Self {
         let v = self.v / o.v;
-        Grad { v, d: std::array::from_fn(|i| (self.d[i] - v * o.d[i]) / o.v) }
+        Grad {
+            v,
+            d: std::array::from_fn(|i| (self.d[i] - v * o.d[i]) / o.v),
+        }
     }
 }
 
 impl<T: Real, const N: usize> Neg for Grad<T, N> {
     type Output = Self;
     fn neg(self) -> Self {
-        Grad { v: -self.v, d: self.d.map(|d| -d) }
+        Grad {
+            v: -self.v,
+            d: self.d.map(|d| -d),
+        }
     }
 }
 
 impl<T: Real, const N: usize> Add<f64> for Grad<T, N> {
     type Output = Self;
     fn add(self, o: f64) -> Self {
-        Grad { v: self.v + o, d: self.d }
+        Grad {
+            v: self.v + o,
+            d: self.d,
+        }
     }
 }
 
 impl<T: Real, const N: usize> Sub<f64> for Grad<T, N> {
     type Output = Self;
     fn sub(self, o: f64) -> Self {
-        Grad { v: self.v - o, d: self.d }
+        Grad {
+            v: self.v - o,
+            d: self.d,
+        }
     }
 }
 
 impl<T: Real, const N: usize> Mul<f64> for Grad<T, N> {
     type Output = Self;
     fn mul(self, o: f64) -> Self {
-        Grad { v: self.v * o, d: self.d.map(|d| d * o) }
+        Grad {
+            v: self.v * o,
+            d: self.d.map(|d| d * o),
+        }
     }
 }
 
 impl<T: Real, const N: usize> Div<f64> for Grad<T, N> {
     type Output = Self;
     fn div(self, o: f64) -> Self {
-        Grad { v: self.v / o, d: self.d.map(|d| d / o) }
+        Grad {
+            v: self.v / o,
+            d: self.d.map(|d| d / o),
+        }
     }
 }
 
