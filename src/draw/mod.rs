@@ -1,1 +1,84 @@
+//! Arrays to SVG figures, one font, no physics.
 //!
+//! Lengths are user units of the SVG (1/96 inch, called px), kept to 0.1 px; x runs right and y
+//! runs down. Values arrive already scaled to the unit written on their axis. Every figure is a
+//! pure function of its input: equal input, equal bytes.
+//!
+//! ```text
+//! map, lines            the figures
+//!   frame               title, plot rectangle, axes, legend, footnote
+//!   raster, contour     a sampled field as an embedded image, its level lines
+//!   region, label       outlines of marked cells, places for labels
+//!   field               interpolation that adds no extrema
+//!   axis, colour        value to position, value to colour
+//!   svg, text           elements and escaping, glyph widths
+//! ```
+
+pub mod axis;
+pub mod colour;
+pub mod contour;
+pub mod field;
+mod frame;
+mod label;
+pub mod map;
+mod raster;
+mod region;
+mod svg;
+pub mod text;
+
+pub use axis::{Axis, Scale};
+pub use map::{DesignPoint, IsoLines, Quantity, StabilityMap, Words};
+
+/// Why a figure cannot be drawn: its arrays contradict each other.
+#[derive(Debug, Clone, PartialEq, thiserror::Error)]
+pub enum DrawError {
+    /// An axis without samples.
+    #[error("{axis} has no samples")]
+    NoSamples {
+        /// Which axis.
+        axis: &'static str,
+    },
+    /// Samples must be finite and strictly increasing.
+    #[error("sample {index} of {axis} is {value}: samples must be finite and strictly increasing")]
+    Samples {
+        /// Which axis.
+        axis: &'static str,
+        /// Position of the first offending sample.
+        index: usize,
+        /// Its value.
+        value: f64,
+    },
+    /// A logarithmic axis takes positive samples only.
+    #[error("{axis} is logarithmic but starts at {value}")]
+    NotPositive {
+        /// Which axis.
+        axis: &'static str,
+        /// Its first sample.
+        value: f64,
+    },
+    /// An array has the wrong number of rows or a row the wrong length.
+    #[error("{what} has {found} entries where {expected} are needed")]
+    Shape {
+        /// The array, or the row of it.
+        what: String,
+        /// How many there are.
+        found: usize,
+        /// How many the axis asks for.
+        expected: usize,
+    },
+    /// A value is infinite or not a number; an absent value is `None`.
+    #[error("{what} holds {value} at row {row}, column {column}: leave it out instead")]
+    NotFinite {
+        /// The array.
+        what: &'static str,
+        /// Row (sample of y).
+        row: usize,
+        /// Column (sample of x).
+        column: usize,
+        /// The value.
+        value: f64,
+    },
+    /// The embedded image could not be encoded.
+    #[error("the image of the field could not be encoded: {0}")]
+    Image(String),
+}

@@ -1,3 +1,6 @@
 //!
+<<<<<<< HEAD
 
 pub mod problems;
+=======
+>>>>>>> draw

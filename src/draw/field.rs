@@ -1,0 +1,138 @@
+//! A sampled field between its samples.
+//!
+//! In a cell whose neighbours are known the value is the tensor product of two Catmull-Rom cubics,
+//! `p(t) = p1 + t/2 (p2 - p0 + t (2 p0 - 5 p1 + 4 p2 - p3 + t (3 (p1 - p2) + p3 - p0)))`, clamped to
+//! the range of the cell's four corners: smooth, exact at the samples, and without a sign that no
+//! sample of the cell has. Positions are in samples: (0, 0) is row 0, column 0.
+
+/// Rows of samples, `None` where there is no value.
+pub type Rows = [Vec<Option<f64>>];
+
+/// A rectangular sampled field.
+#[derive(Debug, Clone, Copy)]
+pub struct Field<'a> {
+    rows: &'a Rows,
+    /// Number of columns.
+    pub columns: usize,
+}
+
+impl<'a> Field<'a> {
+    /// Wraps rows of equal length.
+    pub fn new(rows: &'a Rows) -> Self {
+        Field {
+            rows,
+            columns: rows.first().map_or(0, Vec::len),
+        }
+    }
+
+    /// Number of rows.
+    pub fn height(&self) -> usize {
+        self.rows.len()
+    }
+
+    /// The sample, if there is one.
+    pub fn sample(&self, column: usize, row: usize) -> Option<f64> {
+        self.rows.get(row)?.get(column).copied().flatten()
+    }
+
+    fn corners(&self, column: usize, row: usize) -> Option<[f64; 4]> {
+        Some([
+            self.sample(column, row)?,
+            self.sample(column + 1, row)?,
+            self.sample(column, row + 1)?,
+            self.sample(column + 1, row + 1)?,
+        ])
+    }
+
+    /// Least and largest corner of the cell above and right of a sample; `None` unless all four are
+    /// known.
+    pub fn cell_range(&self, column: usize, row: usize) -> Option<(f64, f64)> {
+        let corners = self.corners(column, row)?;
+        let low = corners.into_iter().fold(f64::INFINITY, f64::min);
+        let high = corners.into_iter().fold(f64::NEG_INFINITY, f64::max);
+        Some((low, high))
+    }
+
+    /// Value at column position `u` and row position `v`. Next to an absent sample the nearest
+    /// sample decides whether there is a value, and the known corners give it.
+    pub fn at(&self, u: f64, v: f64) -> Option<f64> {
+        let (column, s) = split(u, self.columns);
+        let (row, t) = split(v, self.height());
+        if self.columns < 2 || self.height() < 2 {
+            return self.along_line(column, s, row, t);
+        }
+        let Some((low, high)) = self.cell_range(column, row) else {
+            return self.beside_hole(column, s, row, t);
+        };
+        let line = |r: usize| -> [f64; 4] {
+            let p1 = self.sample(column, r);
+            let p2 = self.sample(column + 1, r);
+            let p0 = column.checked_sub(1).and_then(|c| self.sample(c, r));
+            complete([p0, p1, p2, self.sample(column + 2, r)])
+        };
+        let known =
+            |r: usize| self.sample(column, r).is_some() && self.sample(column + 1, r).is_some();
+        let value = |r: usize| known(r).then(|| cubic(line(r), s));
+        let below = row.checked_sub(1).and_then(value);
+        let down = complete([below, value(row), value(row + 1), value(row + 2)]);
+        Some(cubic(down, t).clamp(low, high))
+    }
+
+    fn along_line(&self, column: usize, s: f64, row: usize, t: f64) -> Option<f64> {
+        let (a, w) = if self.columns >= 2 {
+            ((column + 1, row), s)
+        } else {
+            ((column, row + 1), t)
+        };
+        match (self.sample(column, row), self.sample(a.0, a.1)) {
+            (Some(p), Some(q)) => Some(p + w * (q - p)),
+            (p, q) => {
+                if w < 0.5 {
+                    p
+                } else {
+                    q
+                }
+            }
+        }
+    }
+
+    fn beside_hole(&self, column: usize, s: f64, row: usize, t: f64) -> Option<f64> {
+        let nearest = (column + usize::from(s >= 0.5), row + usize::from(t >= 0.5));
+        self.sample(nearest.0, nearest.1)?;
+        let corners = [
+            (self.sample(column, row), (1.0 - s) * (1.0 - t)),
+            (self.sample(column + 1, row), s * (1.0 - t)),
+            (self.sample(column, row + 1), (1.0 - s) * t),
+            (self.sample(column + 1, row + 1), s * t),
+        ];
+        let (sum, weight) = corners
+            .into_iter()
+            .filter_map(|(value, w)| value.map(|v| (v * w, w)))
+            .fold((0.0, 0.0), |(a, b), (v, w)| (a + v, b + w));
+        Some(sum / weight)
+    }
+}
+
+/// Whole and fractional part of a position among `n` samples, the whole part naming a cell.
+fn split(position: f64, n: usize) -> (usize, f64) {
+    let position = position.clamp(0.0, n.saturating_sub(1) as f64);
+    let cell = (position.floor() as usize).min(n.saturating_sub(2));
+    (cell, position - cell as f64)
+}
+
+/// Fills in absent outer points by continuing the line through the inner ones.
+fn complete([p0, p1, p2, p3]: [Option<f64>; 4]) -> [f64; 4] {
+    let p1 = p1.or(p2).unwrap_or(0.0);
+    let p2 = p2.unwrap_or(p1);
+    [
+        p0.unwrap_or(2.0 * p1 - p2),
+        p1,
+        p2,
+        p3.unwrap_or(2.0 * p2 - p1),
+    ]
+}
+
+fn cubic([p0, p1, p2, p3]: [f64; 4], t: f64) -> f64 {
+    p1 + t / 2.0
+        * (p2 - p0 + t * (2.0 * p0 - 5.0 * p1 + 4.0 * p2 - p3 + t * (3.0 * (p1 - p2) + p3 - p0)))
+}
