@@ -13,23 +13,34 @@ use stillflame::draw::{
 type Rows = Vec<Vec<Option<f64>>>;
 
 fn samples(low: f64, high: f64, n: usize) -> Vec<f64> {
-    (0..n).map(|k| low + (high - low) * k as f64 / (n.max(2) - 1) as f64).collect()
+    (0..n)
+        .map(|k| low + (high - low) * k as f64 / (n.max(2) - 1) as f64)
+        .collect()
 }
 
 fn rows(x: &[f64], y: &[f64], f: impl Fn(f64, f64) -> Option<f64>) -> Rows {
-    y.iter().map(|&y| x.iter().map(|&x| f(x, y)).collect()).collect()
+    y.iter()
+        .map(|&y| x.iter().map(|&x| f(x, y)).collect())
+        .collect()
 }
 
 /// Three branches over delay (ms) and gain; the largest growth rate wins.
 fn branches(delay: f64, gain: f64) -> (f64, f64) {
     let branch = |hz: f64, loss: f64, weight: f64| {
         let phase = std::f64::consts::TAU * hz * delay / 1000.0;
-        (90.0 * weight * gain * phase.sin() - loss - 8.0 * delay, hz - 30.0 * gain * phase.cos())
+        (
+            90.0 * weight * gain * phase.sin() - loss - 8.0 * delay,
+            hz - 30.0 * gain * phase.cos(),
+        )
     };
-    [branch(110.0, 25.0, 1.0), branch(235.0, 45.0, 1.6), branch(390.0, 80.0, 1.9)]
-        .into_iter()
-        .max_by(|a, b| a.0.total_cmp(&b.0))
-        .unwrap()
+    [
+        branch(110.0, 25.0, 1.0),
+        branch(235.0, 45.0, 1.6),
+        branch(390.0, 80.0, 1.9),
+    ]
+    .into_iter()
+    .max_by(|a, b| a.0.total_cmp(&b.0))
+    .unwrap()
 }
 
 fn base(nx: usize, ny: usize) -> StabilityMap {
@@ -54,7 +65,11 @@ fn base(nx: usize, ny: usize) -> StabilityMap {
         values,
         x_values,
         y_values,
-        design_point: Some(DesignPoint { x: 3.0, y: 1.0, label: "design, −31 1/s".into() }),
+        design_point: Some(DesignPoint {
+            x: 3.0,
+            y: 1.0,
+            label: "design, −31 1/s".into(),
+        }),
         ..StabilityMap::default()
     }
 }
@@ -88,14 +103,22 @@ fn full() -> StabilityMap {
 
 /// Every figure of the gallery, by name.
 fn gallery() -> Vec<(&'static str, StabilityMap)> {
-    let mut all = vec![("full", full()), ("plain", base(200, 200)), ("coarse", base(13, 9))];
+    let mut all = vec![
+        ("full", full()),
+        ("plain", base(200, 200)),
+        ("coarse", base(13, 9)),
+    ];
 
     let mut saturated = base(120, 90);
     set_values(&mut saturated, |x, y| {
         let spot = (-((x - 7.0).powi(2) + (10.0 * (y - 1.4)).powi(2)) / 0.4).exp();
         Some(60.0 * (x - 4.0 + y).sin() - 10.0 + 2500.0 * spot - if x > 9.8 { 900.0 } else { 0.0 })
     });
-    saturated.design_point = Some(DesignPoint { x: 10.0, y: 2.0, label: "corner case".into() });
+    saturated.design_point = Some(DesignPoint {
+        x: 10.0,
+        y: 2.0,
+        label: "corner case".into(),
+    });
     all.push(("saturated", saturated));
 
     let mut two = base(2, 2);
@@ -107,7 +130,11 @@ fn gallery() -> Vec<(&'static str, StabilityMap)> {
     let mut column = base(1, 40);
     column.x_values = vec![3.0];
     set_values(&mut column, |_, y| Some(40.0 * y - 30.0));
-    column.design_point = Some(DesignPoint { x: 3.0, y: 0.0, label: "bottom edge".into() });
+    column.design_point = Some(DesignPoint {
+        x: 3.0,
+        y: 0.0,
+        label: "bottom edge".into(),
+    });
     all.push(("one_column", column));
 
     let mut row = base(40, 1);
@@ -142,18 +169,28 @@ fn gallery() -> Vec<(&'static str, StabilityMap)> {
         unit: "L".into(),
         scale: Scale::Logarithmic,
     };
-    logarithmic.x_values = (0..60).map(|k| 10f64.powf(-1.0 + 3.0 * k as f64 / 59.0)).collect();
-    logarithmic.design_point = Some(DesignPoint { x: 8.0, y: 1.9, label: "design".into() });
-    set_values(&mut logarithmic, |x, y| Some(30.0 * (2.0 * x.ln()).sin() * y - 5.0));
+    logarithmic.x_values = (0..60)
+        .map(|k| 10f64.powf(-1.0 + 3.0 * k as f64 / 59.0))
+        .collect();
+    logarithmic.design_point = Some(DesignPoint {
+        x: 8.0,
+        y: 1.9,
+        label: "design".into(),
+    });
+    set_values(&mut logarithmic, |x, y| {
+        Some(30.0 * (2.0 * x.ln()).sin() * y - 5.0)
+    });
     all.push(("logarithmic", logarithmic));
 
     let mut hostile = base(50, 50);
     hostile.title = "<b>\"R&D\" 'title'</b> that goes on & on: ".to_string()
-        + &"the growth rate at -12.5 degrees stays below −4 1/s whatever the burner does, ".repeat(6);
+        + &"the growth rate at -12.5 degrees stays below −4 1/s whatever the burner does, "
+            .repeat(6);
     hostile.subtitle = "火炎\u{7}の\u{1}応答 Ωμέγα κ ≤ 3 · 10⁻³ m² at 430 °C – \u{202e}☃".into();
     hostile.x.label = "An axis label far too long for any plot that we draw here, ".repeat(4);
     hostile.y.label = "]]> & <y>".into();
-    hostile.quantity.label = "A quantity with a name so long that it cannot fit beside the bar".into();
+    hostile.quantity.label =
+        "A quantity with a name so long that it cannot fit beside the bar".into();
     hostile.quantity.above = "grows without bound".into();
     hostile.design_point = Some(DesignPoint {
         x: 0.0,
@@ -165,7 +202,11 @@ fn gallery() -> Vec<(&'static str, StabilityMap)> {
     all.push(("hostile", hostile));
 
     let mut outside = base(40, 40);
-    outside.design_point = Some(DesignPoint { x: 12.0, y: 1.0, label: "The design".into() });
+    outside.design_point = Some(DesignPoint {
+        x: 12.0,
+        y: 1.0,
+        label: "The design".into(),
+    });
     all.push(("outside", outside));
 
     let mut specks = base(200, 200);
@@ -208,13 +249,26 @@ fn text_corners(document: &Document) -> Vec<(String, [(f64, f64); 4])> {
             };
             let (top, bottom) = (y - text::CAP_HEIGHT * size, y + text::DESCENT * size);
             let turn = n.attribute("transform").map_or(0.0, |t| {
-                t.trim_start_matches("rotate(").split(' ').next().unwrap().parse().unwrap()
+                t.trim_start_matches("rotate(")
+                    .split(' ')
+                    .next()
+                    .unwrap()
+                    .parse()
+                    .unwrap()
             });
             let (sin, cos) = f64::to_radians(turn).sin_cos();
-            let corners = [(left, top), (left + w, top), (left + w, bottom), (left, bottom)]
-                .map(|(px, py)| {
-                    (x + (px - x) * cos - (py - y) * sin, y + (px - x) * sin + (py - y) * cos)
-                });
+            let corners = [
+                (left, top),
+                (left + w, top),
+                (left + w, bottom),
+                (left, bottom),
+            ]
+            .map(|(px, py)| {
+                (
+                    x + (px - x) * cos - (py - y) * sin,
+                    y + (px - x) * sin + (py - y) * cos,
+                )
+            });
             (string, corners)
         })
         .collect()
@@ -227,7 +281,10 @@ fn every_figure_is_well_formed_and_keeps_its_text_on_the_canvas() {
         save(name, &svg);
         let document = Document::parse(&svg).unwrap_or_else(|e| panic!("{name}: {e}"));
         let root = document.root_element();
-        let (w, h) = (number(root, "width").unwrap(), number(root, "height").unwrap());
+        let (w, h) = (
+            number(root, "width").unwrap(),
+            number(root, "height").unwrap(),
+        );
         for (string, corners) in text_corners(&document) {
             for (x, y) in corners {
                 assert!(
@@ -258,11 +315,23 @@ fn hatch_and_quiet_fill_stand_exactly_where_they_are_needed() {
             fills.filter(|f| f.ends_with(&format!("-{what})"))).count()
         };
         let doubtful = figure.certified.iter().flatten().any(|c| !c);
-        let mut both = figure.certified.iter().flatten().zip(figure.values.iter().flatten());
+        let mut both = figure
+            .certified
+            .iter()
+            .flatten()
+            .zip(figure.values.iter().flatten());
         let absent = both.any(|(c, v)| *c && v.is_none());
         // Once on the map and once in the legend.
-        assert_eq!(filled("hatch"), if doubtful { 2 } else { 0 }, "{name}: hatch");
-        assert_eq!(filled("absent"), if absent { 2 } else { 0 }, "{name}: quiet fill");
+        assert_eq!(
+            filled("hatch"),
+            if doubtful { 2 } else { 0 },
+            "{name}: hatch"
+        );
+        assert_eq!(
+            filled("absent"),
+            if absent { 2 } else { 0 },
+            "{name}: quiet fill"
+        );
     }
 }
 
@@ -278,11 +347,17 @@ fn neutral_lines_follow_the_zeros_of_the_field() {
         let step = 3.0 / (n - 1) as f64;
         let point = |p: &(f64, f64)| (p.0 * step - 1.5, p.1 * step - 1.5);
         for (x, y) in found[0].iter().map(point) {
-            assert!((x.hypot(y) - 1.0).abs() < tolerance, "({x}, {y}) with n = {n}");
+            assert!(
+                (x.hypot(y) - 1.0).abs() < tolerance,
+                "({x}, {y}) with n = {n}"
+            );
         }
         let pairs = found[0].windows(2).map(|w| (point(&w[0]), point(&w[1])));
         let length: f64 = pairs.map(|(p, q)| (p.0 - q.0).hypot(p.1 - q.1)).sum();
-        assert!((length - std::f64::consts::TAU).abs() < 0.02, "length {length}");
+        assert!(
+            (length - std::f64::consts::TAU).abs() < 0.02,
+            "length {length}"
+        );
     }
 }
 
@@ -309,10 +384,27 @@ fn contradictory_arrays_are_refused_with_their_place() {
     let cut = refused(&|m| {
         m.values[1].pop();
     });
-    assert_eq!(cut, DrawError::Shape { what: "row 1 of values".into(), found: 3, expected: 4 });
+    assert_eq!(
+        cut,
+        DrawError::Shape {
+            what: "row 1 of values".into(),
+            found: 3,
+            expected: 4
+        }
+    );
     let infinite = refused(&|m| m.values[2][3] = Some(f64::INFINITY));
-    assert!(matches!(infinite, DrawError::NotFinite { row: 2, column: 3, .. }));
-    assert!(matches!(refused(&|m| m.x_values.clear()), DrawError::NoSamples { .. }));
+    assert!(matches!(
+        infinite,
+        DrawError::NotFinite {
+            row: 2,
+            column: 3,
+            ..
+        }
+    ));
+    assert!(matches!(
+        refused(&|m| m.x_values.clear()),
+        DrawError::NoSamples { .. }
+    ));
     let twice = refused(&|m| m.y_values[1] = m.y_values[0]);
     assert!(matches!(twice, DrawError::Samples { index: 1, .. }));
     let negative = refused(&|m| m.x.scale = Scale::Logarithmic);
@@ -325,7 +417,10 @@ fn numbers_carry_a_true_minus_and_equal_precision() {
     assert_eq!(text::tick_labels(&[-200.0, 0.0]), ["−200", "0"]);
     assert_eq!(text::tick_labels(&[0.0, 2.5e6]), ["0", "2.5×10⁶"]);
     assert_eq!(text::fixed(-0.001, 1), "0.0");
-    assert_eq!(text::tidy("at -3 °C, low-swirl\n  burner"), "at −3 °C, low-swirl burner");
+    assert_eq!(
+        text::tidy("at -3 °C, low-swirl\n  burner"),
+        "at −3 °C, low-swirl burner"
+    );
     for c in "AZaz09ÀÿαωΔΩ−°×–¹²³⁻₀…≤√".chars() {
         assert!(text::covers(c), "{c}");
     }

@@ -1,9 +1,12 @@
 //! Area changes: the smooth contraction and the sudden expansion.
 
-use super::knob::{KnobId, KnobSpec, Range};
+use super::Kind;
+use super::knob::{KnobId, KnobSpec, Range, Values};
+use super::lowering::{self, Acting, Between, velocity_row};
 use super::port::Port;
 use crate::numerics::dual::Real;
 use crate::units::Dimension;
+use crate::waves::primitive::Joint;
 
 /// A change to a smaller area in which stagnation pressure is kept.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -17,6 +20,39 @@ pub struct Contraction {
 pub struct Expansion {
     /// Effective length of the slug of the smaller area [m].
     pub effective_length: KnobId,
+}
+
+impl Contraction {
+    /// The slug moves with the downstream velocity.
+    pub fn lower<T: Real>(
+        &self,
+        kind: &Kind,
+        between: &Between<'_, T>,
+        values: &Values<T>,
+    ) -> Joint<T> {
+        let sense = velocity_row(between.down, T::from(1.0));
+        let slug = Acting::slug(
+            between,
+            values[self.effective_length],
+            sense,
+            between.plane + 1,
+        );
+        lowering::joint(kind, between, values, slug)
+    }
+}
+
+impl Expansion {
+    /// The slug moves with the upstream velocity.
+    pub fn lower<T: Real>(
+        &self,
+        kind: &Kind,
+        between: &Between<'_, T>,
+        values: &Values<T>,
+    ) -> Joint<T> {
+        let sense = velocity_row(between.up, T::from(1.0));
+        let slug = Acting::slug(between, values[self.effective_length], sense, between.plane);
+        lowering::joint(kind, between, values, slug)
+    }
 }
 
 /// Stagnation pressure is kept, `p_t1 - p_t2 = 0` [Pa]; with mass and enthalpy kept the change is

@@ -1,8 +1,12 @@
 //! A straight passage: plane waves in uniform flow.
 
 use super::Section;
-use super::knob::{KnobId, KnobSpec, Range};
+use super::knob::{KnobId, KnobSpec, Range, Values};
+use crate::gas::State;
+use crate::numerics::dual::Real;
 use crate::units::Dimension;
+use crate::waves::law::{Delayed, Law};
+use crate::waves::primitive::Travel;
 
 /// A passage of constant area.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -25,6 +29,30 @@ pub enum Entropy {
         /// Standard deviation of the arrival time [s].
         dispersion: KnobId,
     },
+}
+
+impl Duct {
+    /// `p+ -> p+ exp(-s L/(c+u))`, `p- -> p- exp(+s L/(c-u))`, `eta -> eta exp(-s L/u + s^2 d^2/2)` where
+    /// carried, else zero. Still gas carries no entropy anywhere.
+    pub fn lower<T: Real>(&self, state: &State<T>, values: &Values<T>) -> Travel<T> {
+        let (length, c, u) = (values[self.length], state.sound_speed(), state.velocity);
+        let entropy = match self.entropy {
+            Entropy::Carried { dispersion } if u.value() > 0.0 => {
+                let spread = values[dispersion];
+                Some(Law::Delays(vec![Delayed {
+                    weight: T::from(1.0),
+                    delay: length / u,
+                    spread,
+                }]))
+            }
+            _ => None,
+        };
+        Travel {
+            downstream: length / (c + u),
+            upstream: length / (c - u),
+            entropy,
+        }
+    }
 }
 
 /// What a file may state of a duct in numbers.

@@ -1,8 +1,16 @@
 //! The ends: the feed, where the mean flow is stated, and the exit.
 
-use super::knob::{KnobId, KnobSpec, Range};
+use std::f64::consts::PI;
+
+use super::knob::{KnobId, KnobSpec, Range, Values};
+use super::lowering::on_waves;
+use super::port::{Port, Variation};
 use super::{GasChoice, Section};
+use crate::gas::{State, choked_flux_temperature_slope};
+use crate::numerics::dual::{Grad, Real};
 use crate::units::Dimension;
+use crate::waves::law::Law;
+use crate::waves::primitive::{End, Row, Start};
 
 /// Where the stream enters: its mean state and its acoustic end.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -82,6 +90,129 @@ pub struct Reflection {
 pub struct Exit {
     /// Its acoustic end.
     pub end: ExitEnd,
+}
+
+impl Feed {
+    /// The two conditions its end sets on the first plane.
+    pub fn lower<T: Real>(&self, state: &State<T>, values: &Values<T>) -> Start<T> {
+        let (zero, one) = (T::from(0.0), T::from(1.0));
+        let no_entropy = [zero, zero, one];
+        let port = Port::around(state, 0);
+        let h_t = state.stagnation_enthalpy();
+        // u h_t' = 0: the enthalpy flow less what mass flow carries; no entropy enters still gas.
+        let stagnation = || {
+            let row = port.enthalpy_flow - port.mass_flow * Grad::constant(h_t);
+            scaled(on_waves(state, first_three(row)))
+        };
+        let mut term = None;
+        let rows = match self.end {
+            FeedEnd::Closed => [[one, -one, zero], no_entropy],
+            FeedEnd::Open => [[one, one, zero], no_entropy],
+            FeedEnd::Anechoic => [[one, zero, zero], no_entropy],
+            FeedEnd::Reservoir => {
+                let row = on_waves(state, first_three(port.stagnation_pressure));
+                [scaled(row), stagnation()]
+            }
+            FeedEnd::Choked => [
+                scaled(on_waves(state, first_three(port.mass_flow))),
+                stagnation(),
+            ],
+            FeedEnd::Reflection(r) => match r.value(values) {
+                Coefficient::Real(r) => [[one, -r, zero], no_entropy],
+                Coefficient::Complex { re, im } => {
+                    term = Some((
+                        Law::Complex {
+                            re,
+                            im,
+                            delay: zero,
+                        },
+                        [zero, -one, zero],
+                    ));
+                    [[one, zero, zero], no_entropy]
+                }
+            },
+        };
+        Start { rows, term }
+    }
+}
+
+impl Exit {
+    /// The condition its end sets on the last plane.
+    ///
+    /// The choked nozzle passes `mdot = A* G(p_t, T_t)`, hence
+    /// `mdot'/mdot = p_t'/p_t + (d ln G/d ln T_t) T_t'/T_t`; for a perfect gas this is `M' = 0` (Marble &
+    /// Candel 1977, J. Sound Vib. 55).
+    pub fn lower<T: Real>(&self, state: &State<T>, values: &Values<T>) -> End<T> {
+        let (zero, one) = (T::from(0.0), T::from(1.0));
+        let mut term = None;
+        let row = match self.end {
+            ExitEnd::Closed => [one, -one, zero],
+            ExitEnd::Open => [one, one, zero],
+            ExitEnd::Anechoic => [zero, one, zero],
+            ExitEnd::Choked { .. } => {
+                let port = Port::around(state, 0);
+                let (h_t, t_t) = (state.stagnation_enthalpy(), state.stagnation_temperature());
+                let slope = choked_flux_temperature_slope(&state.gas, t_t);
+                let heat = port.enthalpy_flow - port.mass_flow * Grad::constant(h_t);
+                // mdot T_t'/T_t
+                let warming = heat / Grad::constant(state.gas.cp(t_t) * t_t);
+                let mass = state.mass_flow();
+                let row = port.mass_flow
+                    - port.stagnation_pressure * Grad::constant(mass / state.stagnation_pressure())
+                    - warming * Grad::constant(slope);
+                scaled(on_waves(state, first_three(row)))
+            }
+            ExitEnd::Reflection(r) => match r.value(values) {
+                Coefficient::Real(r) => [-r, one, zero],
+                Coefficient::Complex { re, im } => {
+                    term = Some((
+                        Law::Complex {
+                            re,
+                            im,
+                            delay: zero,
+                        },
+                        [-one, zero, zero],
+                    ));
+                    [zero, one, zero]
+                }
+            },
+        };
+        End { row, term }
+    }
+}
+
+fn first_three<T: Real>(row: Variation<T>) -> [T; 3] {
+    [row.d[0], row.d[1], row.d[2]]
+}
+
+fn scaled<T: Real>(row: Row<T>) -> Row<T> {
+    let largest = row
+        .iter()
+        .map(|x| x.value().abs())
+        .fold(f64::MIN_POSITIVE, f64::max);
+    row.map(|x| x / largest)
+}
+
+enum Coefficient<T> {
+    Real(T),
+    Complex { re: T, im: T },
+}
+
+impl Reflection {
+    /// The coefficient; real where its phase is zero or half a turn.
+    fn value<T: Real>(&self, values: &Values<T>) -> Coefficient<T> {
+        let (modulus, phase) = (values[self.coefficient], values[self.phase]);
+        if phase.is_exactly_zero() {
+            Coefficient::Real(modulus)
+        } else if (phase - PI).is_exactly_zero() {
+            Coefficient::Real(-modulus)
+        } else {
+            Coefficient::Complex {
+                re: modulus * phase.cos(),
+                im: modulus * phase.sin(),
+            }
+        }
+    }
 }
 
 /// What a file may state of the feed in numbers, beside its gas.

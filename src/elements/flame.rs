@@ -1,10 +1,13 @@
 //! A compact flame between equal areas.
 
-use super::GasChoice;
-use super::knob::{KnobId, KnobSpec, Range};
+use super::knob::{KnobId, KnobSpec, Range, Values};
+use super::lowering::{self, Acting, Between, velocity_row};
 use super::port::Port;
+use super::{GasChoice, Kind, Sensed};
 use crate::numerics::dual::Real;
 use crate::units::Dimension;
+use crate::waves::law::{Delayed, Law};
+use crate::waves::primitive::{Joint, Term};
 
 /// A flame thin against every wavelength in the window.
 #[derive(Clone, Debug, PartialEq)]
@@ -17,6 +20,83 @@ pub struct Flame {
     pub basis: Basis,
     /// Contributions to its response, summed.
     pub responses: Vec<Response>,
+}
+
+impl Flame {
+    /// The heat release `Q' = K sum F(s) u'_ref` enters the enthalpy flow, with
+    ///
+    /// ```text
+    /// heat release basis   K = rho_ref A_ref (h_t2 - h_t1)
+    /// velocity basis       K = gamma_1 p_1/(gamma_1 - 1)  rho_ref A_ref/rho_1
+    /// ```
+    ///
+    /// which is `Q u'_ref/u_ref` with `Q = mdot (h_t2 - h_t1)`, and its limit in still gas.
+    pub fn lower<'a, T: Real>(
+        &self,
+        kind: &Kind,
+        between: &Between<'a, T>,
+        values: &Values<T>,
+        sensed: &[Sensed<'a, T>],
+    ) -> Joint<T> {
+        let zero = T::from(0.0);
+        let up = between.up;
+        let strength = match self.basis {
+            Basis::HeatRelease => between.down.stagnation_enthalpy() - up.stagnation_enthalpy(),
+            Basis::Velocity => {
+                let gamma = up.gas.gamma(up.temperature);
+                gamma * up.pressure / ((gamma - 1.0) * up.density())
+            }
+        };
+        let mut terms: Vec<Term<T>> = Vec::new();
+        for (response, at) in self.responses.iter().zip(sensed) {
+            let part = response.law.delays(values);
+            // Contributions that follow one station make one law.
+            if let Some(Term {
+                law: Law::Delays(parts),
+                ..
+            }) = terms.iter_mut().find(|t| t.at == at.plane)
+            {
+                parts.push(part);
+                continue;
+            }
+            let factor = strength * at.state.density() * at.state.area;
+            terms.push(Term {
+                law: Law::Delays(vec![part]),
+                sense: velocity_row(at.state, factor),
+                at: at.plane,
+            });
+        }
+        let acting = Acting {
+            row: [zero, T::from(1.0), zero],
+            terms,
+        };
+        lowering::joint(kind, between, values, acting)
+    }
+}
+
+impl ResponseLaw {
+    /// The law as one contribution to a measure of delays.
+    fn delays<T: Real>(self, values: &Values<T>) -> Delayed<T> {
+        match self {
+            ResponseLaw::NTau {
+                interaction_index,
+                delay,
+            } => Delayed {
+                weight: values[interaction_index],
+                delay: values[delay],
+                spread: T::from(0.0),
+            },
+            ResponseLaw::Gaussian {
+                interaction_index,
+                delay,
+                spread,
+            } => Delayed {
+                weight: values[interaction_index],
+                delay: values[delay],
+                spread: values[spread],
+            },
+        }
+    }
 }
 
 /// Momentum through a passage of constant area: `p1 + rho1 u1^2 - p2 - rho2 u2^2 = 0` [Pa].

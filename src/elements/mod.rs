@@ -6,14 +6,18 @@ pub mod duct;
 pub mod ends;
 pub mod flame;
 pub mod knob;
+pub mod lowering;
 pub mod plenum;
 pub mod port;
 pub mod restriction;
 
 use knob::{KnobId, KnobSpec, Values};
+use lowering::Between;
 use port::Port;
 
+use crate::gas::State;
 use crate::numerics::dual::Real;
+use crate::waves::primitive::{Plane, Step};
 
 /// One element of a network.
 #[derive(Clone, Debug, PartialEq)]
@@ -65,6 +69,37 @@ impl Kind {
             Kind::Restriction(r) => Some(r.balance(up, down, number)),
             Kind::Plenum(_) => Some(plenum::balance(up, down)),
             Kind::Flame(_) => Some(flame::balance(up, down)),
+        }
+    }
+}
+
+/// Where the signals of a flame come from.
+#[derive(Clone, Copy, Debug)]
+pub struct Sensed<'a, T> {
+    /// Mean state at the plane.
+    pub state: &'a State<T>,
+    /// The plane.
+    pub plane: Plane,
+}
+
+impl Kind {
+    /// The step from the plane before the element to the plane behind it; `None` for an end.
+    ///
+    /// `sensed` gives the reference of each response of a flame, in order.
+    pub fn lower<'a, T: Real>(
+        &self,
+        between: &Between<'a, T>,
+        values: &Values<T>,
+        sensed: &[Sensed<'a, T>],
+    ) -> Option<Step<T>> {
+        match self {
+            Kind::Feed(_) | Kind::Exit(_) => None,
+            Kind::Duct(duct) => Some(Step::Travel(duct.lower(between.up, values))),
+            Kind::Contraction(c) => Some(Step::Joint(c.lower(self, between, values))),
+            Kind::Expansion(e) => Some(Step::Joint(e.lower(self, between, values))),
+            Kind::Restriction(r) => Some(Step::Joint(r.lower(self, between, values))),
+            Kind::Plenum(p) => Some(Step::Joint(p.lower(between, values))),
+            Kind::Flame(f) => Some(Step::Joint(f.lower(self, between, values, sensed))),
         }
     }
 }

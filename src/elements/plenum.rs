@@ -1,15 +1,53 @@
 //! A plenum: a vessel whose gas is at rest and compressible.
 
-use super::knob::{KnobId, KnobSpec, Range};
+use super::knob::{KnobId, KnobSpec, Range, Values};
+use super::lowering::{self, Acting, Between, on_waves};
 use super::port::Port;
-use crate::numerics::dual::Real;
+use crate::numerics::dual::{Grad, Real};
 use crate::units::Dimension;
+use crate::waves::law::Law;
+use crate::waves::primitive::{Joint, Term};
 
 /// A vessel large enough for its gas to be at rest.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Plenum {
     /// Volume [m^3].
     pub volume: KnobId,
+}
+
+impl Plenum {
+    /// `mdot_1' - mdot_2' = V s p_1'/c^2` with the sound speed of the gas at rest, `p_1' = p_t2'`, and no
+    /// entropy leaves: what enters is mixed out. Stored enthalpy is `h` times stored mass and needs no
+    /// row of its own.
+    pub fn lower<T: Real>(&self, between: &Between<'_, T>, values: &Values<T>) -> Joint<T> {
+        let up = Port::around(between.up, 0);
+        let down = Port::around(between.down, 3);
+        let zero = T::from(0.0);
+        let c = between
+            .up
+            .gas
+            .sound_speed(between.up.stagnation_temperature());
+        let compliance = values[self.volume] / (c * c);
+        let acting = Acting {
+            row: [T::from(-1.0), zero, zero],
+            terms: vec![Term {
+                law: Law::Polynomial {
+                    coefficients: [zero, compliance, zero],
+                    delay: zero,
+                },
+                sense: on_waves(between.up, [T::from(1.0), zero, zero]),
+                at: between.plane,
+            }],
+        };
+        let mut no_entropy = Grad::constant(zero);
+        no_entropy.d[5] = T::from(1.0);
+        let balances = [
+            up.mass_flow - down.mass_flow,
+            no_entropy,
+            balance(&up, &down),
+        ];
+        lowering::rows(between, balances, acting)
+    }
 }
 
 /// The inflow loses its dynamic head, the outflow leaves isentropically from rest:

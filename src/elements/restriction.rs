@@ -1,10 +1,12 @@
 //! A restriction: a pressure loss between equal areas, with the inertia of the gas in it.
 
-use super::Section;
-use super::knob::{KnobId, KnobSpec, Range};
+use super::knob::{KnobId, KnobSpec, Range, Values};
+use super::lowering::{self, Acting, Between, velocity_row};
 use super::port::Port;
+use super::{Kind, Section};
 use crate::numerics::dual::Real;
 use crate::units::Dimension;
+use crate::waves::primitive::Joint;
 
 /// A burner, plate, orifice or screen between equal areas.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -29,6 +31,19 @@ impl Restriction {
         let widening = self.widening(up.area, &number);
         let dynamic = up.momentum_flux * widening * widening * 0.5;
         up.stagnation_pressure - down.stagnation_pressure - number(self.loss_coefficient) * dynamic
+    }
+
+    /// The slug moves with the velocity `u1 A1/A` in the stated area.
+    pub fn lower<T: Real>(
+        &self,
+        kind: &Kind,
+        between: &Between<'_, T>,
+        values: &Values<T>,
+    ) -> Joint<T> {
+        let widening = self.widening(between.up.area, |k| values[k]);
+        let sense = velocity_row(between.up, widening);
+        let slug = Acting::slug(between, values[self.effective_length], sense, between.plane);
+        lowering::joint(kind, between, values, slug)
     }
 
     /// `A1/A`: the upstream area over the area the numbers refer to.

@@ -1,4 +1,3 @@
-<<<<<<< HEAD
 //! Network files: TOML with positions to a [`Network`], and every problem of one in one pass.
 //!
 //! The document is read from the parsed tree and not through derived deserialisers, which lose the
@@ -133,6 +132,3 @@ fn syntax_problem(error: &toml::de::Error) -> Problem {
         problem.hint("lines are KEY = VALUE, and a value with a unit stands in quotes")
     }
 }
-=======
-//!
->>>>>>> draw

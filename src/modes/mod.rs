@@ -1,1 +1,126 @@
-//!
+//! From a window to a certified list of modes.
+
+mod window;
+
+use num_complex::Complex64;
+
+use crate::acoustics::{self, Acoustics, matrix};
+use crate::meanflow::{self, MeanFlow};
+use crate::network::Network;
+use crate::numerics::count::Effort;
+pub use crate::numerics::zeros::Scan;
+use crate::numerics::zeros::{self, Doubt};
+use crate::problems::{Problem, Problems};
+
+pub use window::{Window, cut_on};
+
+/// One mode: `p'(x, t) = Re[p(x) exp(s t)]`.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Mode {
+    /// `s = growth + 2 pi i frequency` [1/s].
+    pub s: Complex64,
+    /// The exact eigenvalue of the model lies no farther from `s` than this [1/s].
+    pub error_bound: f64,
+    /// Number of modes that coincide within `error_bound`.
+    pub multiplicity: u8,
+}
+
+impl Mode {
+    /// Frequency [Hz], not negative.
+    pub fn frequency(&self) -> f64 {
+        self.s.im / std::f64::consts::TAU
+    }
+
+    /// Growth rate [1/s]: positive grows.
+    pub fn growth(&self) -> f64 {
+        self.s.re
+    }
+
+    /// Growth rate over frequency; none for a mode that does not oscillate.
+    pub fn cycle_increment(&self) -> Option<f64> {
+        (self.s.im > 0.0).then(|| self.growth() / self.frequency())
+    }
+}
+
+/// Every mode in a window, and whether that is proved.
+#[derive(Clone, Debug, PartialEq)]
+pub struct ModeList {
+    /// Where was searched.
+    pub window: Window,
+    /// By increasing frequency.
+    pub modes: Vec<Mode>,
+    /// Number of modes in the window by the argument principle; absent where no count was reached.
+    pub expected: Option<usize>,
+    /// Why the list is not proved complete; empty when it is.
+    pub doubts: Vec<Doubt>,
+    /// Work done.
+    pub effort: Effort,
+}
+
+impl ModeList {
+    /// Whether the list is proved complete: the count agrees and no mode straddles the window's edge.
+    pub fn complete(&self) -> bool {
+        self.doubts.is_empty()
+    }
+
+    /// The mode that grows fastest, or decays slowest.
+    pub fn leading(&self) -> Option<&Mode> {
+        self.modes
+            .iter()
+            .max_by(|a, b| a.growth().total_cmp(&b.growth()))
+    }
+}
+
+/// A network with its mean flow and acoustics.
+#[derive(Clone, Debug)]
+pub struct Solved {
+    /// The mean flow.
+    pub mean: MeanFlow<f64>,
+    /// The acoustics about it.
+    pub acoustics: Acoustics<f64>,
+}
+
+/// Computes the mean flow of a network and its acoustics.
+///
+/// # Errors
+/// Where the mean flow has no solution or the acoustics cannot be assembled.
+pub fn solve(network: &Network) -> Result<Solved, Problems> {
+    let mean = meanflow::solve(network)?;
+    let acoustics = acoustics::assemble(network, &mean)?;
+    Ok(Solved { mean, acoustics })
+}
+
+/// Finds every mode in a window.
+pub fn find(solved: &Solved, window: Window, scan: Scan) -> ModeList {
+    let tape = &solved.acoustics.characteristic.tape;
+    let found = zeros::search(tape, &window.rectangle(), scan);
+    let modes = found
+        .zeros
+        .iter()
+        .map(|z| Mode {
+            s: z.at,
+            error_bound: z.error,
+            multiplicity: z.multiplicity,
+        })
+        .collect();
+    ModeList {
+        window,
+        modes,
+        expected: found.expected.and_then(|n| usize::try_from(n).ok()),
+        doubts: found.doubts,
+        effort: found.effort,
+    }
+}
+
+/// The shape of a mode with its residual in the global matrix.
+pub fn shape(solved: &Solved, mode: &Mode) -> Option<matrix::NullVector> {
+    matrix::null_vector(&solved.acoustics.chain, mode.s)
+}
+
+/// The doubts of a list as problems that qualify it.
+pub fn doubts_as_warnings(list: &ModeList) -> Vec<Problem> {
+    list.doubts
+        .iter()
+        .map(|d| Problem::warning("search", d.to_string()))
+        .collect()
+}

@@ -65,6 +65,8 @@ pub trait Real:
     }
     /// Whether the value and every derivative are finite.
     fn is_finite(self) -> bool;
+    /// Whether the value and every derivative are zero: what may be left out of a sum.
+    fn is_exactly_zero(self) -> bool;
 }
 
 impl Real for f64 {
@@ -98,6 +100,9 @@ impl Real for f64 {
     }
     fn is_finite(self) -> bool {
         f64::is_finite(self)
+    }
+    fn is_exactly_zero(self) -> bool {
+        self == 0.0
     }
 }
 
@@ -276,6 +281,9 @@ impl<T: Real, const N: usize> Real for Grad<T, N> {
     }
     fn is_finite(self) -> bool {
         self.v.is_finite() && self.d.iter().all(|d| d.is_finite())
+    }
+    fn is_exactly_zero(self) -> bool {
+        self.v.is_exactly_zero() && self.d.iter().all(|d| d.is_exactly_zero())
     }
 }
 

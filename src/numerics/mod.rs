@@ -1,3 +1,8 @@
 //! Mathematics without acoustics: numbers with derivatives, counting and finding zeros.
 
+pub mod analytic;
+pub mod count;
 pub mod dual;
+pub mod isolate;
+pub mod ledger;
+pub mod zeros;

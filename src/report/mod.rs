@@ -1,6 +1,3 @@
 //!
-<<<<<<< HEAD
 
 pub mod problems;
-=======
->>>>>>> draw

@@ -1,0 +1,73 @@
+//! What counting and finding zeros asks of a function.
+
+use num_complex::Complex64;
+
+/// Number of Taylor coefficients a bound covers: orders 0 to 4.
+pub const TAYLOR: usize = 5;
+
+/// Where a bound must hold.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Region {
+    /// Least and greatest real part.
+    pub growth: (f64, f64),
+    /// Greatest modulus.
+    pub modulus: f64,
+}
+
+impl Region {
+    /// The region of a straight segment.
+    pub fn segment(a: Complex64, b: Complex64) -> Self {
+        Region {
+            growth: (a.re.min(b.re), a.re.max(b.re)),
+            modulus: a.norm().max(b.norm()),
+        }
+    }
+
+    /// The region of a disc.
+    pub fn disc(centre: Complex64, radius: f64) -> Self {
+        Region {
+            growth: (centre.re - radius, centre.re + radius),
+            modulus: centre.norm() + radius,
+        }
+    }
+}
+
+/// How far a computed value may lie from the exact one: `u (values B_0 + arguments |s| B_1)` for the
+/// function and the same one order up for its derivative, `u` the unit roundoff and `B_k` the
+/// bounds of [`Analytic::bound`].
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Rounding {
+    /// Rounded operations on the longest path from a constant to the value.
+    pub values: f64,
+    /// Rounded operations on the argument of an exponential.
+    pub arguments: f64,
+}
+
+impl Rounding {
+    /// Bound of the rounding error of the `order`-th Taylor coefficient (0 or 1).
+    pub fn floor(&self, bounds: &[f64; TAYLOR], modulus: f64, order: usize) -> f64 {
+        let (b, next) = match order {
+            0 => (bounds[0], bounds[1]),
+            _ => (bounds[1], 2.0 * bounds[2]),
+        };
+        0.5 * f64::EPSILON * (self.values * b + self.arguments * modulus * next)
+    }
+}
+
+/// A function analytic wherever it is asked, with bounds.
+pub trait Analytic: Sync {
+    /// Value and derivative at `s`.
+    fn value_and_slope(&self, s: Complex64) -> (Complex64, Complex64);
+
+    /// Taylor coefficients `f^(k)/k!` at `s`, orders 0 to 3.
+    fn taylor(&self, s: Complex64) -> [Complex64; 4];
+
+    /// Bounds of `|f^(k)|/k!` over the region, orders 0 to 4.
+    fn bound(&self, region: &Region) -> [f64; TAYLOR];
+
+    /// The rounding error of a computed value.
+    fn rounding(&self) -> Rounding;
+
+    /// Whether `f(conj s) = conj f(s)`.
+    fn is_symmetric(&self) -> bool;
+}

@@ -1,0 +1,125 @@
+//! The list of zeros found, each proved, held against the count.
+//!
+//! A candidate enters only as a proved disc; a disc that holds a zero already listed is the same
+//! zero. A list is complete when the weights add up to the count.
+
+use num_complex::Complex64;
+
+use super::analytic::Analytic;
+use super::isolate::{self, Zero};
+
+/// What became of a candidate.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Entry {
+    /// A new zero, or two.
+    New,
+    /// A zero listed already.
+    Known,
+    /// Nothing could be proved near it.
+    Unproven,
+}
+
+/// Zeros found so far.
+#[derive(Clone, Debug)]
+pub struct Ledger<'f, F: ?Sized> {
+    f: &'f F,
+    symmetric: bool,
+    reach: f64,
+    zeros: Vec<Zero>,
+    /// Values of the function used in proofs.
+    pub evaluations: usize,
+}
+
+impl<'f, F: Analytic + ?Sized> Ledger<'f, F> {
+    /// An empty list; no proof is sought in a disc larger than `reach`.
+    pub fn new(f: &'f F, reach: f64) -> Self {
+        Ledger {
+            f,
+            symmetric: f.is_symmetric(),
+            reach,
+            zeros: Vec::new(),
+            evaluations: 0,
+        }
+    }
+
+    /// The zeros listed.
+    pub fn zeros(&self) -> &[Zero] {
+        &self.zeros
+    }
+
+    /// Whether a listed disc holds `z`, which would then converge to the zero in it.
+    pub fn covers(&self, z: Complex64) -> bool {
+        self.zeros.iter().any(|k| (k.at - z).norm() < k.radius)
+    }
+
+    /// Offers a point that Newton has reached.
+    pub fn offer(&mut self, z: Complex64) -> Entry {
+        let z = if self.symmetric && z.im < 0.0 {
+            z.conj()
+        } else {
+            z
+        };
+        if self
+            .zeros
+            .iter()
+            .any(|k| (k.at - z).norm() + k.error < k.radius)
+        {
+            return Entry::Known;
+        }
+        let proved = match isolate::simple(self.f, z, self.reach) {
+            Some(zero) => vec![zero],
+            None => match isolate::pair(self.f, z, self.reach, &mut self.evaluations) {
+                Some(zeros) => zeros,
+                None => return Entry::Unproven,
+            },
+        };
+        let mut entry = Entry::Known;
+        for zero in proved {
+            if self.enter(zero) {
+                entry = Entry::New;
+            }
+        }
+        entry
+    }
+
+    fn enter(&mut self, mut zero: Zero) -> bool {
+        if self.symmetric {
+            if zero.at.im < 0.0 {
+                zero.at = zero.at.conj();
+            }
+            // Its own conjugate is a zero too and would lie in the same disc: it is real.
+            let own_mirror = 2.0 * zero.at.im + zero.error < zero.radius;
+            if own_mirror && zero.multiplicity == 1 {
+                zero.real = true;
+                zero.at.im = 0.0;
+            }
+        }
+        let same = self.zeros.iter().any(|k| {
+            let apart = (k.at - zero.at).norm();
+            apart + zero.error < k.radius || apart + k.error < zero.radius
+        });
+        if !same {
+            self.zeros.push(zero);
+        }
+        !same
+    }
+
+    /// How much a zero weighs in the count: both of a conjugate pair are inside a symmetric contour.
+    pub fn weight(&self, zero: &Zero) -> i64 {
+        let m = i64::from(zero.multiplicity);
+        if !self.symmetric {
+            return m;
+        }
+        if zero.real {
+            return m;
+        }
+        // Two zeros whose disc meets the axis: a conjugate pair or two real ones, which weigh the same.
+        if zero.multiplicity == 2
+            && zero.at.im.abs() + zero.error < zero.radius
+            && zero.at.im <= zero.error
+        {
+            return 2;
+        }
+        2 * m
+    }
+}

@@ -1,0 +1,437 @@
+//! Every zero of an analytic function in a window, with a verdict on the list.
+//!
+//! 1. Count the zeros in the window padded by about 2 % ([`count`](super::count)); a zero on the padded
+//!    edge asks for another pad.
+//! 2. Newton from a staggered grid of pitch `1.6 B_0/B_1`, where the first step is short; each point
+//!    reached is proved ([`isolate`](super::isolate)) and entered ([`ledger`](super::ledger)), until the
+//!    weights add up to the count.
+//! 3. Else Newton deflated by the zeros found, then subdivision with counts that must add up.
+//! 4. The zeros within the window asked for are the list; one whose error disc straddles its edge makes
+//!    the list incomplete and is named.
+
+use num_complex::Complex64;
+
+use super::analytic::Analytic;
+use super::count::{CountError, Effort, Rectangle, Walker};
+use super::isolate::{self, Zero};
+use super::ledger::{Entry, Ledger};
+
+/// Why a list is not certified.
+#[derive(Clone, Copy, Debug, PartialEq, thiserror::Error)]
+pub enum Doubt {
+    /// No count was reached.
+    #[error("no count: {0}")]
+    NotCounted(CountError),
+    /// Fewer zeros were found than counted.
+    #[error("{missing} of the zeros counted were not found")]
+    Missing {
+        /// How many weigh in the count but not in the list.
+        missing: i64,
+    },
+    /// More zeros were found than counted: the function is not analytic or a zero is listed twice.
+    #[error("{excess} more zeros found than counted")]
+    Excess {
+        /// How many.
+        excess: i64,
+    },
+    /// A zero cannot be told to lie inside or outside the window.
+    #[error("a zero at {at} straddles the window's edge within its error {error:e}")]
+    OnEdge {
+        /// Where.
+        at: Complex64,
+        /// Its error bound.
+        error: f64,
+    },
+    /// A zero is proved but not converged.
+    #[error("the zero at {at} is known to {error:e} only")]
+    Coarse {
+        /// Where.
+        at: Complex64,
+        /// Its error bound.
+        error: f64,
+    },
+}
+
+/// Zeros in a window and what is known about them.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Search {
+    /// The zeros inside, by increasing imaginary part; for a symmetric function those with
+    /// nonnegative imaginary part.
+    pub zeros: Vec<Zero>,
+    /// Number of zeros in the window, with multiplicity; absent where none could be counted.
+    pub expected: Option<i64>,
+    /// Empty when the list is proved complete.
+    pub doubts: Vec<Doubt>,
+    /// Work done.
+    pub effort: Effort,
+}
+
+impl Search {
+    /// Whether the list is proved complete.
+    pub fn complete(&self) -> bool {
+        self.doubts.is_empty()
+    }
+}
+
+/// Largest error of a simple zero, relative to its modulus, that counts as converged.
+pub const CONVERGED: f64 = 1e-8;
+
+const PADS: [f64; 5] = [0.02, 0.0287, 0.0131, 0.0411, 0.0073];
+
+/// When the grid of starts may be left.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Scan {
+    /// Never before its end: more zeros than counted betray a function that is not analytic.
+    Whole,
+    /// As soon as the zeros found add up to the count: for functions analytic by construction.
+    UntilCounted,
+}
+
+/// Finds every zero in the window.
+pub fn search<F: Analytic + ?Sized>(f: &F, window: &Rectangle, scan: Scan) -> Search {
+    let symmetric = f.is_symmetric();
+    let mut walker = Walker::new(f);
+    let mut counted = Err(CountError::Overflow {
+        at: Complex64::new(0.0, 0.0),
+    });
+    let mut padded = *window;
+    for (attempt, pad) in PADS.into_iter().enumerate() {
+        padded = pad_by(window, pad, symmetric);
+        walker.effort.retries = attempt;
+        counted = count(&mut walker, &padded, symmetric);
+        if !matches!(counted, Err(CountError::OnContour { .. })) {
+            break;
+        }
+    }
+    let corner = Complex64::new(padded.growth.0, padded.omega.1);
+    let scale = isolate::scale(f, corner);
+    let mut ledger = Ledger::new(f, scale);
+    let count = match counted {
+        Ok(n) => n,
+        Err(e) => {
+            return Search {
+                zeros: Vec::new(),
+                expected: None,
+                doubts: vec![Doubt::NotCounted(e)],
+                effort: walker.effort,
+            };
+        }
+    };
+    Hunt {
+        f,
+        padded: &padded,
+        count,
+        symmetric,
+        pitch: 1.6 * scale,
+        scan,
+    }
+    .run(&mut ledger, &mut walker);
+    walker.effort.evaluations += ledger.evaluations;
+    certify(&ledger, window, &padded, count, walker.effort)
+}
+
+fn pad_by(window: &Rectangle, pad: f64, symmetric: bool) -> Rectangle {
+    let (dg, dw) = (
+        window.growth.1 - window.growth.0,
+        window.omega.1 - window.omega.0,
+    );
+    let bottom = if symmetric {
+        0.0
+    } else {
+        window.omega.0 - pad * dw
+    };
+    Rectangle {
+        growth: (window.growth.0 - pad * dg, window.growth.1 + pad * dg),
+        omega: (bottom, window.omega.1 + pad * dw),
+    }
+}
+
+fn count<F: Analytic + ?Sized>(
+    walker: &mut Walker<'_, F>,
+    r: &Rectangle,
+    symmetric: bool,
+) -> Result<i64, CountError> {
+    if symmetric {
+        walker.symmetric(r.growth, r.omega.1)
+    } else {
+        walker.rectangle(r)
+    }
+}
+
+/// The verdict: holds a ledger against the count of its padded window and filters it to the window.
+pub fn certify<F: Analytic + ?Sized>(
+    ledger: &Ledger<'_, F>,
+    window: &Rectangle,
+    padded: &Rectangle,
+    count: i64,
+    effort: Effort,
+) -> Search {
+    let symmetric = padded.omega.0 == 0.0;
+    let mut doubts = Vec::new();
+    let mut zeros = Vec::new();
+    let mut weight = 0;
+    for zero in ledger.zeros() {
+        let on_axis = symmetric && (zero.real || zero.at.im <= zero.error);
+        let mut seen = *zero;
+        if on_axis {
+            // The axis is no edge of a symmetric window.
+            seen.at.im = zero.at.im.max(zero.error);
+        }
+        if padded.holds(seen.at, zero.error) != Some(false) {
+            weight += ledger.weight(zero);
+        }
+        let mut edges = *window;
+        if on_axis && window.omega.0 <= 0.0 {
+            edges.omega.0 = 0.0;
+        } else if zero.real {
+            // Frequency exactly zero, below the window.
+            continue;
+        }
+        match edges.holds(seen.at, zero.error) {
+            Some(true) => zeros.push(*zero),
+            Some(false) => {}
+            None => {
+                zeros.push(*zero);
+                doubts.push(Doubt::OnEdge {
+                    at: zero.at,
+                    error: zero.error,
+                });
+            }
+        }
+        if !zero.settled && zero.error > CONVERGED * zero.at.norm().max(1.0) {
+            doubts.push(Doubt::Coarse {
+                at: zero.at,
+                error: zero.error,
+            });
+        }
+    }
+    let listed: i64 = zeros.iter().map(|z| i64::from(z.multiplicity)).sum();
+    let missing = count - weight;
+    if missing > 0 {
+        doubts.push(Doubt::Missing { missing });
+    }
+    if missing < 0 {
+        doubts.push(Doubt::Excess { excess: -missing });
+    }
+    let share = if symmetric { 2 } else { 1 };
+    let expected = listed + (missing as f64 / share as f64).round() as i64;
+    zeros.sort_by(|a, b| {
+        a.at.im
+            .total_cmp(&b.at.im)
+            .then(a.at.re.total_cmp(&b.at.re))
+    });
+    Search {
+        zeros,
+        expected: Some(expected),
+        doubts,
+        effort,
+    }
+}
+
+struct Hunt<'a, F: ?Sized> {
+    f: &'a F,
+    padded: &'a Rectangle,
+    count: i64,
+    symmetric: bool,
+    pitch: f64,
+    scan: Scan,
+}
+
+impl<F: Analytic + ?Sized> Hunt<'_, F> {
+    fn run(&self, ledger: &mut Ledger<'_, F>, walker: &mut Walker<'_, F>) {
+        let pitch = self.pitch;
+        self.grid(ledger, walker, pitch);
+        if self.weight(ledger) >= self.count {
+            return;
+        }
+        walker.effort.fallbacks += 1;
+        self.deflated(ledger, walker, 0.5 * pitch);
+        if self.weight(ledger) >= self.count {
+            return;
+        }
+        let whole = Cell {
+            r: *self.padded,
+            half: self.symmetric,
+        };
+        self.subdivide(ledger, walker, whole, self.count, 0);
+    }
+
+    fn inside(&self, zero: &Zero) -> bool {
+        let mut z = zero.at;
+        if self.symmetric {
+            z.im = z.im.max(zero.error);
+        }
+        self.padded.holds(z, zero.error) != Some(false)
+    }
+
+    fn weight(&self, ledger: &Ledger<'_, F>) -> i64 {
+        ledger
+            .zeros()
+            .iter()
+            .filter(|z| self.inside(z))
+            .map(|z| ledger.weight(z))
+            .sum()
+    }
+
+    /// Points of a staggered grid of the given pitch, at most some ten thousand.
+    fn points(&self, pitch: f64) -> impl Iterator<Item = Complex64> {
+        let (g, w) = (self.padded.growth, self.padded.omega);
+        let cells = |length: f64| (length / pitch).ceil().clamp(1.0, 1e6);
+        let (mut nx, mut ny) = (cells(g.1 - g.0), cells(w.1 - w.0));
+        let thinning = (nx * ny / 2e4).sqrt().max(1.0);
+        nx = (nx / thinning).ceil();
+        ny = (ny / thinning).ceil();
+        let (dx, dy) = ((g.1 - g.0) / nx, (w.1 - w.0) / ny);
+        (0..ny as usize).flat_map(move |j| {
+            let stagger = if j % 2 == 0 { 0.3 } else { 0.7 };
+            (0..nx as usize).map(move |i| {
+                Complex64::new(g.0 + (i as f64 + stagger) * dx, w.0 + (j as f64 + 0.5) * dy)
+            })
+        })
+    }
+
+    fn grid(&self, ledger: &mut Ledger<'_, F>, walker: &mut Walker<'_, F>, pitch: f64) {
+        let until_counted = self.scan == Scan::UntilCounted;
+        if until_counted && self.count <= 0 {
+            return;
+        }
+        for start in self.points(pitch) {
+            walker.effort.evaluations += 1;
+            let (value, slope) = self.f.value_and_slope(start);
+            let step = value / slope;
+            if !step.is_finite() || step.norm() > 1.2 * pitch {
+                continue;
+            }
+            let guess = start - step;
+            if ledger.covers(guess) {
+                continue;
+            }
+            let evaluations = &mut walker.effort.evaluations;
+            if let Some(z) = isolate::newton(self.f, guess, 4.0 * pitch, evaluations)
+                && ledger.offer(z) == Entry::New
+                && until_counted
+                && self.weight(ledger) >= self.count
+            {
+                return;
+            }
+        }
+    }
+
+    /// Newton on `f` divided by its known zeros: `step = 1/(f'/f - sum m/(s - z))`.
+    fn deflated(&self, ledger: &mut Ledger<'_, F>, walker: &mut Walker<'_, F>, pitch: f64) {
+        for start in self.points(pitch) {
+            let mut z = start;
+            for _ in 0..25 {
+                walker.effort.evaluations += 1;
+                let (value, slope) = self.f.value_and_slope(z);
+                let mut rate = slope / value;
+                for k in ledger.zeros() {
+                    let m = f64::from(k.multiplicity);
+                    rate -= m / (z - k.at);
+                    if self.symmetric && !k.real {
+                        rate -= m / (z - k.at.conj());
+                    }
+                }
+                let step = rate.inv();
+                if !step.is_finite() || (z - step - start).norm() > 6.0 * pitch {
+                    break;
+                }
+                z -= step;
+                if step.norm() < 1e-6 * pitch {
+                    let evaluations = &mut walker.effort.evaluations;
+                    let reached = isolate::newton(self.f, z, pitch, evaluations).unwrap_or(z);
+                    if ledger.offer(reached) == Entry::New && self.weight(ledger) >= self.count {
+                        return;
+                    }
+                    break;
+                }
+            }
+        }
+    }
+
+    fn subdivide(
+        &self,
+        ledger: &mut Ledger<'_, F>,
+        walker: &mut Walker<'_, F>,
+        cell: Cell,
+        count: i64,
+        depth: usize,
+    ) {
+        let known: i64 = ledger
+            .zeros()
+            .iter()
+            .filter(|z| cell.r.holds(z.at, 0.0) != Some(false))
+            .map(|z| {
+                if cell.half {
+                    ledger.weight(z)
+                } else {
+                    i64::from(z.multiplicity)
+                }
+            })
+            .sum();
+        if count <= known || depth > 60 {
+            return;
+        }
+        let middle = cell.middle();
+        let reach = (cell.r.growth.1 - cell.r.growth.0).hypot(cell.r.omega.1 - cell.r.omega.0);
+        let evaluations = &mut walker.effort.evaluations;
+        let before = self.weight(ledger);
+        let reached = isolate::newton(self.f, middle, reach, evaluations);
+        ledger.offer(reached.unwrap_or(middle));
+        if reached.is_none() && reach < 1e-3 * self.pitch {
+            // Slow convergence on a small cell: two zeros nearly coincide; their middle is offered.
+            ledger.offer(middle);
+        }
+        if count <= known + self.weight(ledger) - before {
+            return;
+        }
+        for fraction in [0.5, 0.4683, 0.5391, 0.4219] {
+            let (a, b) = cell.split(fraction);
+            if let (Ok(na), Ok(nb)) = (a.count(walker), b.count(walker)) {
+                let weight_of_b = if cell.half && !b.half { 2 * nb } else { nb };
+                if na + weight_of_b == count {
+                    self.subdivide(ledger, walker, a, na, depth + 1);
+                    self.subdivide(ledger, walker, b, nb, depth + 1);
+                    return;
+                }
+            }
+        }
+    }
+}
+
+/// A rectangle; `half` where it stands on the real axis and is counted with its mirror image.
+#[derive(Clone, Copy)]
+struct Cell {
+    r: Rectangle,
+    half: bool,
+}
+
+impl Cell {
+    fn middle(&self) -> Complex64 {
+        Complex64::new(
+            0.5 * (self.r.growth.0 + self.r.growth.1),
+            0.5 * (self.r.omega.0 + self.r.omega.1),
+        )
+    }
+
+    fn count<F: Analytic + ?Sized>(&self, walker: &mut Walker<'_, F>) -> Result<i64, CountError> {
+        count(walker, &self.r, self.half)
+    }
+
+    /// Halves the longer side; the first part keeps the real axis.
+    fn split(&self, fraction: f64) -> (Cell, Cell) {
+        let (mut a, mut b) = (*self, *self);
+        let (g, w) = (self.r.growth, self.r.omega);
+        if g.1 - g.0 > w.1 - w.0 {
+            let cut = g.0 + fraction * (g.1 - g.0);
+            a.r.growth.1 = cut;
+            b.r.growth.0 = cut;
+        } else {
+            let cut = w.0 + fraction * (w.1 - w.0);
+            a.r.omega.1 = cut;
+            b.r.omega.0 = cut;
+            b.half = false;
+        }
+        (a, b)
+    }
+}

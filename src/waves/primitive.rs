@@ -1,0 +1,105 @@
+//! The closed set of primitives an element lowers to.
+//!
+//! At a plane the unknowns are `x = (p+, p-, e)`: the pressure waves running downstream and upstream
+//! and the entropy flux scaled to a pressure, `e = rho c eta`, all in pascal. Along a chain of planes
+//!
+//! ```text
+//! Start    rows x_0 = 0                                    two conditions; the first may carry a law
+//! Travel   p+ -> p+ exp(-s t+),  p- -> p- exp(+s t-),  e -> F(s) e  or  e -> 0
+//! Joint    up x_j + down x_(j+1) + row sum_k F_k(s) (sense_k . x_(at_k)) = 0
+//! End      row . x_n = 0                                    may carry a law
+//! ```
+//!
+//! A joint's terms share one `row`, so that they are together of rank one in whatever they sense;
+//! what they sense may lie at any plane.
+
+use super::law::Law;
+
+/// Coefficients of the three unknowns at a plane.
+pub type Row<T> = [T; 3];
+
+/// Three rows.
+pub type Block<T> = [[T; 3]; 3];
+
+/// Index of a plane in a chain.
+pub type Plane = usize;
+
+/// Two conditions on the first plane.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Start<T> {
+    /// `rows x = 0`.
+    pub rows: [Row<T>; 2],
+    /// Added to the first row: `F(s) (sense . x)`.
+    pub term: Option<(Law<T>, Row<T>)>,
+}
+
+/// One condition on the last plane.
+#[derive(Clone, Debug, PartialEq)]
+pub struct End<T> {
+    /// `row . x = 0`.
+    pub row: Row<T>,
+    /// Added to it: `F(s) (sense . x)`.
+    pub term: Option<(Law<T>, Row<T>)>,
+}
+
+/// Waves travelling over a distance.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Travel<T> {
+    /// Time `p+` takes [s].
+    pub downstream: T,
+    /// Time `p-` takes [s].
+    pub upstream: T,
+    /// What multiplies the entropy flux; nothing arrives where absent.
+    pub entropy: Option<Law<T>>,
+}
+
+/// One term of a joint: `F(s) (sense . x_at)`.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Term<T> {
+    /// The law `F`.
+    pub law: Law<T>,
+    /// What it multiplies.
+    pub sense: Row<T>,
+    /// Where that is sensed.
+    pub at: Plane,
+}
+
+/// Three linear conditions between two adjoining planes.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Joint<T> {
+    /// Coefficients of the unknowns before it.
+    pub up: Block<T>,
+    /// Coefficients of the unknowns behind it; not singular.
+    pub down: Block<T>,
+    /// How the terms enter the three conditions.
+    pub row: Row<T>,
+    /// What enters them.
+    pub terms: Vec<Term<T>>,
+}
+
+/// One step from a plane to the next.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Step<T> {
+    /// A distance.
+    Travel(Travel<T>),
+    /// A compact element.
+    Joint(Joint<T>),
+}
+
+/// A chain: step `j` leads from plane `j` to plane `j + 1`.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Chain<T> {
+    /// Conditions at plane 0.
+    pub start: Start<T>,
+    /// The steps in order.
+    pub steps: Vec<Step<T>>,
+    /// Condition at the last plane.
+    pub end: End<T>,
+}
+
+impl<T> Chain<T> {
+    /// Number of planes.
+    pub fn planes(&self) -> usize {
+        self.steps.len() + 1
+    }
+}

@@ -1,0 +1,316 @@
+//! Counting and finding on functions whose zeros are known exactly, and the ways a certificate must
+//! fail.
+
+mod common;
+
+use common::exact::{self, Polynomial};
+use num_complex::Complex64;
+use proptest::prelude::*;
+use stillflame::numerics::analytic::{Analytic, Region, Rounding, TAYLOR};
+use stillflame::numerics::count::{CountError, Effort, Rectangle, Walker};
+use stillflame::numerics::ledger::{Entry, Ledger};
+use stillflame::numerics::zeros::{self, Doubt, Scan};
+
+const WINDOW: Rectangle = Rectangle {
+    growth: (-600.0, 600.0),
+    omega: (0.0, 6000.0),
+};
+
+fn c(re: f64, im: f64) -> Complex64 {
+    Complex64::new(re, im)
+}
+
+/// Zeros well inside or outside the window's edge.
+fn zero() -> impl Strategy<Value = Complex64> {
+    prop_oneof![
+        4 => (-900.0..900.0f64, 1.0..7500.0f64).prop_map(|(re, im)| c(re, im)),
+        1 => (-900.0..900.0f64).prop_map(|re| c(re, 0.0)),
+    ]
+}
+
+fn clear_of_edges(z: Complex64) -> bool {
+    (z.re.abs() - 600.0).abs() > 1e-3 && (z.im - 6000.0).abs() > 1e-3
+}
+
+fn inside(z: &Complex64) -> bool {
+    z.re.abs() < 600.0 && z.im < 6000.0
+}
+
+proptest! {
+    #![proptest_config(ProptestConfig::with_cases(400))]
+
+    #[test]
+    fn every_zero_of_a_symmetric_polynomial_is_found(
+        zeros in prop::collection::vec(zero(), 1..7),
+    ) {
+        prop_assume!(zeros.iter().all(|z| clear_of_edges(*z)));
+        let f = Polynomial::symmetric(&zeros);
+        let found = zeros::search(&f, &WINDOW, Scan::Whole);
+        let exact: Vec<_> = zeros.iter().filter(|z| inside(z)).collect();
+        prop_assert!(found.complete(), "{:?}", found.doubts);
+        prop_assert_eq!(found.expected, Some(exact.len() as i64));
+        for z in exact {
+            prop_assert!(
+                found.zeros.iter().any(|k| (k.at - z).norm() <= k.error + 1e-7 * z.norm()),
+                "{z} not in {:?}", found.zeros
+            );
+        }
+    }
+
+    #[test]
+    fn every_zero_is_found_without_symmetry(zeros in prop::collection::vec(zero(), 1..8)) {
+        let window = Rectangle { growth: (-600.0, 600.0), omega: (300.0, 6000.0) };
+        prop_assume!(zeros.iter().all(|z| clear_of_edges(*z) && (z.im - 300.0).abs() > 1e-3));
+        let f = Polynomial::with(&zeros);
+        let found = zeros::search(&f, &window, Scan::Whole);
+        let exact = zeros.iter().filter(|z| inside(z) && z.im > 300.0).count();
+        prop_assert!(found.complete(), "{:?}", found.doubts);
+        prop_assert_eq!(found.expected, Some(exact as i64));
+        prop_assert_eq!(found.zeros.iter().map(|z| usize::from(z.multiplicity)).sum::<usize>(), exact);
+    }
+
+    #[test]
+    fn two_zeros_however_close_are_two(
+        re in -400.0..400.0f64, im in 100.0..5000.0f64,
+        apart in -13.0..1.0f64, angle in 0.0..6.28f64,
+        third in zero(),
+    ) {
+        prop_assume!(clear_of_edges(third) && (third - c(re, im)).norm() > 50.0);
+        let z = c(re, im);
+        let other = z + Complex64::from_polar(10f64.powf(apart), angle);
+        let f = Polynomial::symmetric(&[z, other, third]);
+        let found = zeros::search(&f, &WINDOW, Scan::Whole);
+        let exact = 2 + i64::from(inside(&third));
+        prop_assert!(found.complete(), "{:?}", found.doubts);
+        prop_assert_eq!(found.expected, Some(exact));
+        for z in [z, other] {
+            prop_assert!(found.zeros.iter().any(|k| (k.at - z).norm() <= k.error * 1.01 + 1e-6));
+        }
+    }
+
+    #[test]
+    fn a_zero_on_or_beside_the_edge_is_never_wrong(
+        im in 100.0..5900.0f64, offset in prop_oneof![Just(0.0), -1.0..1.0f64, -1e-6..1e-6f64],
+    ) {
+        let z = c(600.0 + offset, im);
+        let f = Polynomial::symmetric(&[z, c(-100.0, 2500.0)]);
+        let found = zeros::search(&f, &WINDOW, Scan::Whole);
+        if found.complete() {
+            prop_assert_eq!(found.expected, Some(1 + i64::from(offset < 0.0)));
+        } else {
+            prop_assert!(offset.abs() < 1e-6, "{:?}", found.doubts);
+            let named = found.doubts.iter().any(|d| matches!(d, Doubt::OnEdge { .. }));
+            prop_assert!(named, "{:?}", found.doubts);
+        }
+    }
+
+    #[test]
+    fn zeros_of_one_delay_match_their_closed_form(
+        epsilon in 0.5..3.0f64, n in 0.3..6.0f64, tau in 0.0005..0.01f64,
+    ) {
+        let growth = (n / (1.0 + epsilon)).ln() / tau;
+        prop_assume!((growth.abs() - 600.0).abs() > 1e-3);
+        let f = exact::intrinsic(epsilon, n, tau);
+        let found = zeros::search(&f, &WINDOW, Scan::Whole);
+        prop_assert!(found.complete(), "{:?}", found.doubts);
+        let mut k = 0;
+        while (2 * k + 1) as f64 * std::f64::consts::PI / tau < 6000.0 {
+            let z = c(growth, (2 * k + 1) as f64 * std::f64::consts::PI / tau);
+            let hit = found.zeros.iter().any(|f| (f.at - z).norm() < 1e-10 * z.norm());
+            prop_assert_eq!(hit, growth.abs() < 600.0);
+            k += 1;
+        }
+        prop_assert_eq!(found.zeros.len(), if growth.abs() < 600.0 { k } else { 0 });
+    }
+}
+
+#[test]
+fn an_exact_double_zero_is_one_of_multiplicity_two() {
+    let z = c(-80.0, 2000.0);
+    let found = zeros::search(
+        &Polynomial::symmetric(&[z, z, c(50.0, 4000.0)]),
+        &WINDOW,
+        Scan::Whole,
+    );
+    assert!(found.complete(), "{:?}", found.doubts);
+    assert_eq!(found.expected, Some(3));
+    let double = &found.zeros[0];
+    assert_eq!(double.multiplicity, 2);
+    assert!((double.at - z).norm() < 1e-4);
+}
+
+/// A function with something wrong about it.
+struct Faulty<'f> {
+    inner: &'f Polynomial,
+    pole: Option<Complex64>,
+    bound_times: f64,
+}
+
+impl Analytic for Faulty<'_> {
+    fn value_and_slope(&self, s: Complex64) -> (Complex64, Complex64) {
+        let (v, d) = self.inner.value_and_slope(s);
+        match self.pole {
+            None => (v, d),
+            // A conjugate pair of poles of small residue.
+            Some(p) => {
+                let q = |s: Complex64| (s - p) * (s - p.conj()) / 1e6;
+                let dq = (s - p + s - p.conj()) / 1e6;
+                (v / q(s), d / q(s) - v * dq / (q(s) * q(s)))
+            }
+        }
+    }
+    fn taylor(&self, s: Complex64) -> [Complex64; 4] {
+        let mut t = self.inner.taylor(s);
+        (t[0], t[1]) = self.value_and_slope(s);
+        t
+    }
+    fn bound(&self, region: &Region) -> [f64; TAYLOR] {
+        // Wide enough for the pole's factor on the contour, where the injected fault must be caught
+        // by the count and not by the bound.
+        let widen = if self.pole.is_some() { 1e3 } else { 1.0 };
+        self.inner
+            .bound(region)
+            .map(|b| b * self.bound_times * widen)
+    }
+    fn rounding(&self) -> Rounding {
+        self.inner.rounding()
+    }
+    fn is_symmetric(&self) -> bool {
+        true
+    }
+}
+
+const FAULT_FREE: [Complex64; 3] = [
+    Complex64::new(-100.0, 800.0),
+    Complex64::new(40.0, 2200.0),
+    Complex64::new(-310.0, 4700.0),
+];
+
+fn padded() -> Rectangle {
+    Rectangle {
+        growth: (-624.0, 624.0),
+        omega: (0.0, 6120.0),
+    }
+}
+
+#[test]
+fn a_dropped_zero_is_reported_missing() {
+    let f = Polynomial::symmetric(&FAULT_FREE);
+    let count = Walker::new(&f)
+        .symmetric(padded().growth, padded().omega.1)
+        .unwrap();
+    assert_eq!(count, 6);
+    let mut ledger = Ledger::new(&f, 300.0);
+    for z in &FAULT_FREE[..2] {
+        assert_eq!(ledger.offer(*z), Entry::New);
+    }
+    let verdict = zeros::certify(&ledger, &WINDOW, &padded(), count, Effort::default());
+    assert!(!verdict.complete());
+    assert_eq!(verdict.doubts, [Doubt::Missing { missing: 2 }]);
+    assert_eq!(verdict.expected, Some(3));
+}
+
+#[test]
+fn a_duplicate_is_known_and_never_listed_twice() {
+    let f = Polynomial::symmetric(&FAULT_FREE);
+    let mut ledger = Ledger::new(&f, 300.0);
+    for z in &FAULT_FREE {
+        assert_eq!(ledger.offer(*z), Entry::New);
+    }
+    for z in &FAULT_FREE {
+        assert_eq!(ledger.offer(*z + 1e-9), Entry::Known);
+        assert_eq!(ledger.offer(z.conj()), Entry::Known);
+    }
+    assert_eq!(ledger.zeros().len(), 3);
+    // A list longer than the count is reported as such.
+    let verdict = zeros::certify(&ledger, &WINDOW, &padded(), 4, Effort::default());
+    assert_eq!(verdict.doubts, [Doubt::Excess { excess: 2 }]);
+}
+
+#[test]
+fn a_pole_left_in_is_reported() {
+    let inner = Polynomial::symmetric(&FAULT_FREE);
+    let f = Faulty {
+        inner: &inner,
+        pole: Some(c(-50.0, 3100.0)),
+        bound_times: 1.0,
+    };
+    let found = zeros::search(&f, &WINDOW, Scan::Whole);
+    assert!(!found.complete());
+    assert!(
+        found.doubts.iter().any(|d| matches!(
+            d,
+            Doubt::Excess { .. } | Doubt::NotCounted(CountError::BoundContradicted { .. })
+        )),
+        "{:?}",
+        found.doubts
+    );
+}
+
+#[test]
+fn a_halved_bound_is_reported() {
+    // On the real axis to the right of zeros on the left the bound is attained to a few per cent, so
+    // that half of it is exceeded by the values themselves.
+    let zeros = [c(-900.0, 0.0), c(-1500.0, 0.0)];
+    let inner = Polynomial::symmetric(&zeros);
+    let window = Rectangle {
+        growth: (-1000.0, 2000.0),
+        omega: (0.0, 300.0),
+    };
+    let sound = zeros::search(
+        &Faulty {
+            inner: &inner,
+            pole: None,
+            bound_times: 1.0,
+        },
+        &window,
+        Scan::Whole,
+    );
+    assert!(sound.complete(), "{:?}", sound.doubts);
+    let halved = zeros::search(
+        &Faulty {
+            inner: &inner,
+            pole: None,
+            bound_times: 0.5,
+        },
+        &window,
+        Scan::Whole,
+    );
+    assert!(
+        matches!(
+            halved.doubts[..],
+            [Doubt::NotCounted(CountError::BoundContradicted { .. })]
+        ),
+        "{:?}",
+        halved.doubts
+    );
+}
+
+#[test]
+fn a_halved_bound_of_a_chain_of_delays_is_reported() {
+    struct Halved(stillflame::waves::tape::Tape<f64>);
+    impl Analytic for Halved {
+        fn value_and_slope(&self, s: Complex64) -> (Complex64, Complex64) {
+            self.0.value_and_slope(s)
+        }
+        fn taylor(&self, s: Complex64) -> [Complex64; 4] {
+            self.0.taylor(s)
+        }
+        fn bound(&self, region: &Region) -> [f64; TAYLOR] {
+            self.0.bound(region).map(|b| 0.5 * b)
+        }
+        fn rounding(&self) -> Rounding {
+            self.0.rounding()
+        }
+        fn is_symmetric(&self) -> bool {
+            true
+        }
+    }
+    let f = exact::intrinsic(1.0, 2.5, 0.003);
+    assert!(zeros::search(&f, &WINDOW, Scan::Whole).complete());
+    let halved = zeros::search(&Halved(f), &WINDOW, Scan::Whole);
+    assert!(matches!(
+        halved.doubts[..],
+        [Doubt::NotCounted(CountError::BoundContradicted { .. })]
+    ));
+}
