@@ -9,8 +9,8 @@
 //!
 //! Each distance is scaled by `exp(-s t-)`, so that only decaying exponentials occur for growing `s`:
 //! `p+ -> exp(-s (t+ + t-)) p+`, `p- -> p-`. A signal in transit would take the same factor; it is
-//! folded into the delay of the law that uses it. Hence, with `t_k` the sum of `t-` up to the plane
-//! where the `k`-th awaited signal is closed,
+//! folded into the delay of the law that uses it. Hence, with `t_k` the sum of `t-` between the planes
+//! where the `k`-th awaited signal is opened and closed,
 //!
 //! ```text
 //! det A(s) = +- prod_joints det(down) prod_k exp(s t_k) D(s)
@@ -77,7 +77,6 @@ struct Front<'a, T> {
     held: Vec<T>,
     grade: usize,
     writer: Writer<T>,
-    passed: T,
     joints: T,
     closed_late: T,
 }
@@ -94,7 +93,6 @@ pub fn eliminate<T: Real>(chain: &Chain<T>) -> Result<Characteristic<T>, Elimina
         held: Vec::new(),
         grade: 1,
         writer: Writer::new(),
-        passed: zero,
         joints: T::from(1.0),
         closed_late: zero,
     };
@@ -240,10 +238,10 @@ impl<T: Real> Front<'_, T> {
                 let lawful = exterior::close(&self.unit(q), self.grade, q);
                 self.writer
                     .map(constant, vec![(Law::pure_delay(self.held[q]), lawful)]);
+                self.closed_late += self.held[q];
                 self.coordinates.remove(q);
                 self.held.remove(q);
                 self.grade -= 1;
-                self.closed_late += self.passed;
             }
         }
     }
@@ -286,7 +284,6 @@ impl<T: Real> Front<'_, T> {
                 *held += t.upstream;
             }
         }
-        self.passed += t.upstream;
     }
 
     fn joint(&mut self, joint: &Joint<T>, j: usize) -> Result<(), EliminationError> {
