@@ -15,14 +15,18 @@
 //! ```
 
 pub mod axis;
+mod bar;
 pub mod colour;
 pub mod contour;
+mod curves;
 pub mod field;
 mod frame;
 mod label;
 pub mod map;
 mod raster;
 mod region;
+mod sheet;
+mod style;
 mod svg;
 pub mod text;
 
