@@ -6,8 +6,8 @@ use std::path::Path;
 use proptest::prelude::*;
 use roxmltree::{Document, Node};
 use stillflame::draw::{
-    Axis, DesignPoint, DrawError, IsoLines, Quantity, Scale, StabilityMap, contour, field::Field,
-    map, text,
+    Axis, DesignPoint, DrawError, IsoLines, LineFigure, Panel, Quantity, Scale, Series, Shade,
+    StabilityMap, contour, field::Field, lines, map, text,
 };
 
 type Rows = Vec<Vec<Option<f64>>>;
@@ -220,6 +220,112 @@ fn gallery() -> Vec<(&'static str, StabilityMap)> {
     all
 }
 
+fn sweep() -> LineFigure {
+    let x_values = samples(1.0, 8.0, 141);
+    let branch = |k: usize, hz: f64, gain: f64, loss: f64| {
+        let frequency = x_values.iter().map(|&t| {
+            let phase = std::f64::consts::TAU * hz * t / 1000.0;
+            (k != 2 || !(3.0..3.6).contains(&t)).then(|| hz - 18.0 * phase.cos() * gain)
+        });
+        let growth = x_values.iter().map(|&t| {
+            let phase = std::f64::consts::TAU * hz * t / 1000.0;
+            (k != 2 || !(3.0..3.6).contains(&t)).then(|| 90.0 * gain * phase.sin() - loss)
+        });
+        (frequency.collect::<Vec<_>>(), growth.collect::<Vec<_>>())
+    };
+    let all: Vec<_> = [
+        (110.0, 1.0, 25.0),
+        (235.0, 1.3, 45.0),
+        (390.0, 0.9, 60.0),
+        (560.0, 0.5, 90.0),
+    ]
+    .into_iter()
+    .enumerate()
+    .map(|(k, (hz, gain, loss))| branch(k, hz, gain, loss))
+    .collect();
+    let series = |pick: fn(&(Vec<Option<f64>>, Vec<Option<f64>>)) -> &Vec<Option<f64>>| {
+        let named = all.iter().enumerate();
+        named
+            .map(|(k, b)| Series {
+                name: format!("branch {}", k + 1),
+                style: k,
+                values: pick(b).clone(),
+            })
+            .collect::<Vec<_>>()
+    };
+    LineFigure {
+        title: "Branch 1 grows for delays up to 4.2 ms; branch 2 takes over beyond".into(),
+        subtitle: "Invented atmospheric swirl rig, sweep of the flame delay, 141 networks".into(),
+        footnote: "Confirm by rig test before any decision on hardware.".into(),
+        x: Axis::new("Flame delay", "ms"),
+        certified: (0..141)
+            .map(|k| !(100..112).contains(&k) && k != 20)
+            .collect(),
+        x_values: x_values.clone(),
+        uncertified: "not certified".into(),
+        mark: Some((3.0, "design, 3 ms".into())),
+        panels: vec![
+            Panel {
+                y: Axis::new("Frequency", "Hz"),
+                series: series(|b| &b.0),
+                shade: None,
+            },
+            Panel {
+                y: Axis::new("Growth rate", "1/s"),
+                series: series(|b| &b.1),
+                shade: Some(Shade {
+                    from: 0.0,
+                    upwards: true,
+                    label: "grows".into(),
+                }),
+            },
+        ],
+    }
+}
+
+fn line_gallery() -> Vec<(&'static str, LineFigure)> {
+    let mut spectrum = sweep();
+    spectrum.title = "One peak stands 40 dB above the rest".into();
+    spectrum.mark = None;
+    spectrum.certified.clear();
+    spectrum.panels.truncate(1);
+    spectrum.panels[0].y = Axis {
+        label: "Amplitude".into(),
+        unit: "Pa".into(),
+        scale: Scale::Logarithmic,
+    };
+    spectrum.panels[0].series.truncate(1);
+    for (k, v) in spectrum.panels[0].series[0].values.iter_mut().enumerate() {
+        let f = k as f64 - 60.0;
+        *v = Some(900.0 / (1.0 + f * f) + 3.0 + (k as f64 * 1.7).sin());
+    }
+    let mut dots = sweep();
+    for series in dots.panels.iter_mut().flat_map(|p| &mut p.series) {
+        for (k, v) in series.values.iter_mut().enumerate() {
+            *v = v.filter(|_| k % 5 == 0);
+        }
+    }
+    let mut empty = sweep();
+    for series in empty.panels.iter_mut().flat_map(|p| &mut p.series) {
+        series.values.fill(None);
+    }
+    let mut single = sweep();
+    single.x_values.truncate(1);
+    single.certified = vec![false];
+    single
+        .panels
+        .iter_mut()
+        .flat_map(|p| &mut p.series)
+        .for_each(|s| s.values.truncate(1));
+    vec![
+        ("sweep", sweep()),
+        ("spectrum", spectrum),
+        ("dots", dots),
+        ("empty_lines", empty),
+        ("single_lines", single),
+    ]
+}
+
 fn save(name: &str, svg: &str) {
     let folder = Path::new(env!("CARGO_TARGET_TMPDIR")).join("draw");
     std::fs::create_dir_all(&folder).unwrap();
@@ -275,32 +381,38 @@ fn text_corners(document: &Document) -> Vec<(String, [(f64, f64); 4])> {
         .collect()
 }
 
+fn check_drawing(name: &str, svg: &str) {
+    save(name, svg);
+    let document = Document::parse(svg).unwrap_or_else(|e| panic!("{name}: {e}"));
+    let root = document.root_element();
+    let (w, h) = (
+        number(root, "width").unwrap(),
+        number(root, "height").unwrap(),
+    );
+    for (string, corners) in text_corners(&document) {
+        for (x, y) in corners {
+            assert!(
+                (0.0..=w).contains(&x) && (0.0..=h).contains(&y),
+                "{name}: {string:?} reaches ({x:.1}, {y:.1}) on {w} x {h}"
+            );
+        }
+    }
+    let attributes = document.descendants().flat_map(|n| n.attributes());
+    for a in attributes.filter(|a| !matches!(a.name(), "href" | "aria-label")) {
+        assert!(
+            !a.value().contains("NaN") && !a.value().contains("inf"),
+            "{name}: {a:?}"
+        );
+    }
+}
+
 #[test]
 fn every_figure_is_well_formed_and_keeps_its_text_on_the_canvas() {
     for (name, figure) in gallery() {
-        let svg = map::render(&figure).unwrap_or_else(|e| panic!("{name}: {e}"));
-        save(name, &svg);
-        let document = Document::parse(&svg).unwrap_or_else(|e| panic!("{name}: {e}"));
-        let root = document.root_element();
-        let (w, h) = (
-            number(root, "width").unwrap(),
-            number(root, "height").unwrap(),
-        );
-        for (string, corners) in text_corners(&document) {
-            for (x, y) in corners {
-                assert!(
-                    (0.0..=w).contains(&x) && (0.0..=h).contains(&y),
-                    "{name}: {string:?} reaches ({x:.1}, {y:.1}) on {w} x {h}"
-                );
-            }
-        }
-        let attributes = document.descendants().flat_map(|n| n.attributes());
-        for a in attributes.filter(|a| !matches!(a.name(), "href" | "aria-label")) {
-            assert!(
-                !a.value().contains("NaN") && !a.value().contains("inf"),
-                "{name}: {a:?}"
-            );
-        }
+        check_drawing(name, &map::render(&figure).unwrap());
+    }
+    for (name, figure) in line_gallery() {
+        check_drawing(name, &lines::render(&figure).unwrap());
     }
 }
 
@@ -434,6 +546,8 @@ fn numbers_carry_a_true_minus_and_equal_precision() {
 }
 
 proptest! {
+    #![proptest_config(ProptestConfig::with_cases(64))]
+
     #[test]
     fn interpolation_stays_between_the_samples_of_a_cell(
         values in proptest::collection::vec(-10.0..10.0f64, 25),

@@ -75,7 +75,9 @@ impl Curves {
                 });
             }
         }
-        let all = thin.iter().flat_map(|l| &l.lines).chain(&neutral);
+        // The neutral curve counts four times: a label on it would hide what matters.
+        let weighty = std::iter::repeat_n(&neutral, 4).flatten();
+        let all = thin.iter().flat_map(|l| &l.lines).chain(weighty);
         let mut crowd: Vec<Point> = all.flat_map(|line| spread(line, 4.0)).collect();
         for (j, row) in map.certified.iter().enumerate() {
             let doubtful = row.iter().enumerate().filter(|(_, certified)| !**certified);

@@ -133,8 +133,8 @@ pub fn render(map: &StabilityMap) -> Result<String, DrawError> {
             wanted(certified, field.sample(i, j).is_some())
         }
     };
-    let absent = sheet.outline(flags(|certified, known| certified && !known));
-    let doubtful = sheet.outline(flags(|certified, _| !certified));
+    let absent = sheet.outline(flags(|certified, known| certified && !known), false);
+    let doubtful = sheet.outline(flags(|certified, _| !certified), true);
     svg.path(&absent, &absent_style());
     frame::grid(&mut svg, plot, &x_ticks, &y_ticks, 0.11);
 

@@ -22,6 +22,7 @@ mod curves;
 pub mod field;
 mod frame;
 mod label;
+pub mod lines;
 pub mod map;
 mod raster;
 mod region;
@@ -31,6 +32,7 @@ mod svg;
 pub mod text;
 
 pub use axis::{Axis, Scale};
+pub use lines::{LineFigure, Panel, Series, Shade};
 pub use map::{DesignPoint, IsoLines, Quantity, StabilityMap, Words};
 
 /// Why a figure cannot be drawn: its arrays contradict each other.

@@ -5,7 +5,7 @@
 use super::axis::Span;
 use super::map::StabilityMap;
 use super::region;
-use super::svg::{Point, Rect, closed_path};
+use super::svg::{Point, Rect, closed_path, open_path};
 
 pub(super) fn ends(samples: &[f64]) -> (f64, f64) {
     (
@@ -55,8 +55,8 @@ impl Sheet {
     }
 
     /// Outline of the cells of marked samples, as path data. A spot too small to show its fill is
-    /// drawn larger.
-    pub fn outline(&self, marked: impl Fn(usize, usize) -> bool) -> String {
+    /// drawn larger, and where `struck` with a stroke across it, since hatching may miss it.
+    pub fn outline(&self, marked: impl Fn(usize, usize) -> bool, struck: bool) -> String {
         const SMALLEST: f64 = 6.0;
         let x = |i: usize| corner(&self.columns, i, self.plot.left, self.plot.right);
         let y = |j: usize| corner(&self.rows, j, self.plot.bottom, self.plot.top);
@@ -73,14 +73,17 @@ impl Sheet {
                 let half = SMALLEST / 2.0;
                 let cx = cx.clamp(self.plot.left + half, self.plot.right - half);
                 let cy = cy.clamp(self.plot.top + half, self.plot.bottom - half);
-                data += &Rect {
+                let spot = Rect {
                     left: cx,
                     top: cy,
                     right: cx,
                     bottom: cy,
                 }
-                .grown(half)
-                .path();
+                .grown(half);
+                data += &spot.path();
+                if struck {
+                    data += &open_path(&[(spot.left, spot.top), (spot.right, spot.bottom)]);
+                }
             } else {
                 data += &closed_path(&points);
             }
@@ -126,7 +129,7 @@ pub(super) fn index_of(nodes: &[f64], value: f64) -> f64 {
 }
 
 /// px of cell corner `i`, half-way between samples `i - 1` and `i`.
-fn corner(nodes: &[f64], i: usize, start: f64, end: f64) -> f64 {
+pub(super) fn corner(nodes: &[f64], i: usize, start: f64, end: f64) -> f64 {
     match (i.checked_sub(1).and_then(|k| nodes.get(k)), nodes.get(i)) {
         (Some(a), Some(b)) => (a + b) / 2.0,
         (None, _) => start,
