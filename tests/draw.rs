@@ -455,6 +455,38 @@ fn hatch_and_quiet_fill_stand_exactly_where_they_are_needed() {
 }
 
 #[test]
+fn a_sweep_hatches_untrusted_samples_and_breaks_at_gaps() {
+    let doubtful = |figure: &LineFigure| {
+        let svg = lines::render(figure).unwrap();
+        let document = Document::parse(&svg).unwrap();
+        let fills = document.descendants().filter_map(|n| n.attribute("fill"));
+        fills.filter(|f| f.ends_with("-hatch)")).count()
+    };
+    let mut figure = sweep();
+    assert_eq!(doubtful(&figure), 3, "two panels and the legend");
+    figure.certified.fill(true);
+    assert_eq!(doubtful(&figure), 0);
+
+    // A gap of branch 3 makes two strokes of it: its path starts twice.
+    let svg = lines::render(&figure).unwrap();
+    let document = Document::parse(&svg).unwrap();
+    let starts = |style: usize, data: &str| {
+        let curves = document
+            .descendants()
+            .filter(|n| n.attribute("stroke-width") == Some("1.9"));
+        let curve = curves.filter_map(|n| n.attribute("d")).nth(style).unwrap();
+        curve.matches(data).count()
+    };
+    assert_eq!((starts(0, "M"), starts(2, "M")), (1, 2));
+
+    figure.panels[0].series[1].values.pop();
+    assert!(matches!(
+        lines::render(&figure),
+        Err(DrawError::Shape { .. })
+    ));
+}
+
+#[test]
 fn neutral_lines_follow_the_zeros_of_the_field() {
     // x^2 + y^2 = 1 on [-1.5, 1.5]^2: a circle of radius 1.
     for (n, fine, tolerance) in [(200, 1, 1e-4), (13, 8, 2e-3)] {

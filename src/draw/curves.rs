@@ -25,7 +25,7 @@ pub(super) struct Curves {
     pub neutral: Vec<Vec<Point>>,
     thin: Vec<Level>,
     pub has_frequency: bool,
-    /// Points along every line and in every hatched spot, for keeping labels off them.
+    /// Points along every line, for keeping labels off them.
     crowd: Vec<Point>,
 }
 
@@ -78,11 +78,7 @@ impl Curves {
         // The neutral curve counts four times: a label on it would hide what matters.
         let weighty = std::iter::repeat_n(&neutral, 4).flatten();
         let all = thin.iter().flat_map(|l| &l.lines).chain(weighty);
-        let mut crowd: Vec<Point> = all.flat_map(|line| spread(line, 4.0)).collect();
-        for (j, row) in map.certified.iter().enumerate() {
-            let doubtful = row.iter().enumerate().filter(|(_, certified)| !**certified);
-            crowd.extend(doubtful.map(|(i, _)| sheet.place((i as f64, j as f64))));
-        }
+        let crowd = all.flat_map(|line| spread(line, 4.0)).collect();
         Curves {
             neutral,
             thin,
@@ -95,8 +91,15 @@ impl Curves {
         self.crowd.iter().filter(|p| r.contains(**p)).count()
     }
 
-    /// Draws the thin lines, each broken where its label goes, and gives the labels.
-    pub fn draw_thin(&self, svg: &mut Svg, plot: Rect, taken: &mut Vec<Rect>) -> Vec<LineLabel> {
+    /// Draws the thin lines, each broken where its label goes, and gives the labels. A label covers
+    /// none of `taken` and stands on `plain` points only, away from hatching and holes.
+    pub fn draw_thin(
+        &self,
+        svg: &mut Svg,
+        plot: Rect,
+        taken: &mut Vec<Rect>,
+        plain: impl Fn(Point) -> bool,
+    ) -> Vec<LineLabel> {
         let inner = plot.grown(-4.0);
         let mut labels = Vec::new();
         for level in &self.thin {
@@ -113,6 +116,17 @@ impl Curves {
                     }
                     let range = (total * k as f64 / parts, total * (k + 1) as f64 / parts);
                     let others = |r: Rect| {
+                        let middle = ((r.left + r.right) / 2.0, (r.top + r.bottom) / 2.0);
+                        let spots = [
+                            middle,
+                            (r.left, r.top),
+                            (r.right, r.top),
+                            (r.left, r.bottom),
+                            (r.right, r.bottom),
+                        ];
+                        if !spots.into_iter().all(&plain) {
+                            return usize::MAX;
+                        }
                         // The line itself fills the box once over.
                         self.crowding(r).saturating_sub((w / 4.0) as usize)
                     };

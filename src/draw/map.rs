@@ -157,7 +157,12 @@ pub fn render(map: &StabilityMap) -> Result<String, DrawError> {
             .grown(8.0),
         );
     }
-    let labels = curves.draw_thin(&mut svg, plot, &mut taken);
+    let is_plain = flags(|certified, known| certified && known);
+    let plain = |p: Point| {
+        let (i, j) = sheet.nearest(p);
+        is_plain(i, j)
+    };
+    let labels = curves.draw_thin(&mut svg, plot, &mut taken, plain);
     svg.path(&doubtful, "fill=\"#fff\" fill-opacity=\".4\"");
     svg.path(&doubtful, &hatch_style());
     curves.draw_neutral(&mut svg);

@@ -50,6 +50,12 @@ impl Sheet {
         (along(&self.columns, u), along(&self.rows, v))
     }
 
+    /// Column and row of the sample nearest to a point of the plot.
+    pub fn nearest(&self, (x, y): Point) -> (usize, usize) {
+        let nearest = |nodes: &[f64], at: f64| index_of(nodes, at).round() as usize;
+        (nearest(&self.columns, x), nearest(&self.rows, y))
+    }
+
     pub fn place_all(&self, line: &[(f64, f64)]) -> Vec<Point> {
         line.iter().map(|&p| self.place(p)).collect()
     }
