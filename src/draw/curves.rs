@@ -17,6 +17,8 @@ const LABEL_SIZE: f64 = 9.0;
 /// A group of lines at one level.
 struct Level {
     text: String,
+    /// Of the second field, whose lines mean nothing without their label.
+    second: bool,
     style: String,
     lines: Vec<Vec<Point>>,
 }
@@ -24,7 +26,6 @@ struct Level {
 pub(super) struct Curves {
     pub neutral: Vec<Vec<Point>>,
     thin: Vec<Level>,
-    pub has_frequency: bool,
     /// Points along every line, for keeping labels off them.
     crowd: Vec<Point>,
 }
@@ -46,11 +47,11 @@ impl Curves {
             let lines = trace(field, level, &|_, _| false);
             thin.push(Level {
                 text: signed(level, limit.step),
+                second: false,
                 style: iso_style(level),
                 lines,
             });
         }
-        let mut has_frequency = false;
         if let Some(second) = &map.frequency {
             let unit = &second.unit;
             let second = Field::new(&second.values);
@@ -67,9 +68,9 @@ impl Curves {
                 // Scraps between two branches say nothing.
                 lines.retain(|line| Measured::new(line).total() > 30.0);
                 let text = format!("{text} {}", tidy(unit)).trim_end().to_string();
-                has_frequency |= !lines.is_empty();
                 thin.push(Level {
                     text,
+                    second: true,
                     style: second_style(),
                     lines,
                 });
@@ -82,7 +83,6 @@ impl Curves {
         Curves {
             neutral,
             thin,
-            has_frequency,
             crowd,
         }
     }
@@ -138,8 +138,12 @@ impl Curves {
                         labels.push(LineLabel {
                             place,
                             text: level.text.clone(),
+                            second: level.second,
                         });
                     }
+                }
+                if level.second && places.is_empty() {
+                    continue;
                 }
                 for piece in measured.without(&places) {
                     data += &open_path(&piece);
@@ -167,6 +171,8 @@ fn spread(line: &[Point], gap: f64) -> Vec<Point> {
 pub(super) struct LineLabel {
     place: Place,
     text: String,
+    /// Whether it stands on a line of the second field.
+    pub second: bool,
 }
 
 impl LineLabel {

@@ -85,8 +85,8 @@ impl<'a> Measured<'a> {
     }
 }
 
-/// Most of the other points that a label may cover.
-const MOST_CROWDED: usize = 9;
+/// Most of the other points that a label may cover, for each px of its width.
+const MOST_CROWDED: f64 = 0.4;
 
 /// The best place for a label of `width` by `height` on the stretch `from..to` of a line: straight,
 /// near level, inside `frame`, clear of `taken`, with few of `others`' points under it.
@@ -124,7 +124,7 @@ pub(super) fn on_line(
             continue;
         }
         let crowd = others(bounds);
-        if crowd > MOST_CROWDED {
+        if crowd as f64 > MOST_CROWDED * width {
             continue;
         }
         let score = 20.0 * bend

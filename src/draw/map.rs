@@ -183,7 +183,13 @@ pub fn render(map: &StabilityMap) -> Result<String, DrawError> {
     if map.values.iter().flatten().any(Option::is_some) {
         bar::bar(&mut svg, &map.quantity, &limit, plot);
     }
-    let entries = legend_entries(map, &curves, !doubtful.is_empty(), !absent.is_empty());
+    let entries = legend_entries(
+        map,
+        !curves.neutral.is_empty(),
+        labels.iter().any(|l| l.second),
+        !doubtful.is_empty(),
+        !absent.is_empty(),
+    );
     let below = frame::legend(
         &mut svg,
         &entries,
@@ -332,7 +338,13 @@ fn design_label(point: &DesignPoint, sheet: &Sheet, curves: &Curves) -> DesignLa
     DesignLabel { at, label, bounds }
 }
 
-fn legend_entries(map: &StabilityMap, curves: &Curves, doubtful: bool, absent: bool) -> Vec<Entry> {
+fn legend_entries(
+    map: &StabilityMap,
+    neutral: bool,
+    second: bool,
+    doubtful: bool,
+    absent: bool,
+) -> Vec<Entry> {
     let mut entries = Vec::new();
     let mut add = |swatch: Swatch, label: &str| {
         entries.push(Entry {
@@ -340,16 +352,16 @@ fn legend_entries(map: &StabilityMap, curves: &Curves, doubtful: bool, absent: b
             label: label.to_string(),
         });
     };
-    if !curves.neutral.is_empty() {
+    if neutral {
         add(
             Swatch::Line(vec![NEUTRAL_HALO.into(), neutral_style()]),
             &map.words.zero,
         );
     }
-    if let (Some(second), true) = (&map.frequency, curves.has_frequency) {
+    if let (Some(field), true) = (&map.frequency, second) {
         add(
             Swatch::Line(vec![second_style()]),
-            &caption(&second.label, &second.unit),
+            &caption(&field.label, &field.unit),
         );
     }
     if doubtful {
