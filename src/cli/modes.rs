@@ -4,7 +4,7 @@ use clap::Args;
 
 use super::options::{Case, Common, WindowArguments};
 use super::{Answer, Failure, Status};
-use crate::modes::{self, Scan, Tendency, shapes, validity};
+use crate::modes::{self, ModeList, Scan, Tendency, shapes, validity};
 use crate::report::modes::Modes;
 
 /// Find every mode in a window and prove the list complete
@@ -47,6 +47,8 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
     let mut more = solved.mean.warnings.clone();
     more.extend(validity::of_window(&case.network, &solved.mean, &window));
     more.extend(validity::of_modes(&case.network, &list));
+    let beyond = modes::beyond(&solved, window);
+    more.extend(validity::of_growth_beyond(&window, &beyond));
     more.extend(modes::doubts_as_warnings(&list));
     let warnings = case.warnings_with(more);
     let report = Modes {
@@ -61,7 +63,8 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
     if arguments.shapes {
         files.push((case.file("shapes.csv"), report.shapes_csv()?));
     }
-    let grows = list.modes.iter().any(|m| m.tendency() == Tendency::Grows);
+    let grows = |list: &ModeList| list.modes.iter().any(|m| m.tendency() == Tendency::Grows);
+    let grows = grows(&list) || grows(&beyond);
     let status = if arguments.fail_on_growth && grows {
         Status::Grows
     } else if list.complete() {

@@ -140,6 +140,20 @@ pub fn find(solved: &Solved, window: Window, scan: Scan) -> ModeList {
     }
 }
 
+/// How far to the right of a window [`beyond`] looks, over the window's height in growth rate.
+const REACH: f64 = 3.0;
+
+/// Modes in the window's band of frequency that grow faster than its upper edge, in a strip three times
+/// as high as the window. Faster growth still is not excluded.
+pub fn beyond(solved: &Solved, window: Window) -> ModeList {
+    let (low, high) = window.growth;
+    let strip = Window {
+        growth: (high, high + REACH * (high - low)),
+        ..window
+    };
+    find(solved, strip, Scan::UntilCounted)
+}
+
 /// The shape of a mode with its residual in the global matrix.
 pub fn shape(solved: &Solved, mode: &Mode) -> Option<matrix::NullVector> {
     matrix::null_vector(&solved.acoustics.chain, mode.s)

@@ -42,11 +42,10 @@ pub fn of_window(network: &Network, mean: &MeanFlow<f64>, window: &Window) -> Ve
         if length > COMPACT * wavelength {
             let mm = |x| write_rounded(x, Dimension::Length, 3);
             let text = format!(
-                "{what} {} is more than a tenth of the wavelength at {top:.0} Hz, {}: `{}` is not compact \
-                 there",
+                "`{}` is not compact at {top:.0} Hz: {what}, {}, is more than a tenth of the wavelength, {}",
+                element.name,
                 mm(length),
-                mm(wavelength),
-                element.name
+                mm(wavelength)
             );
             let hint = format!(
                 "trust it up to {:.0} Hz, or describe it by ducts",
@@ -60,13 +59,13 @@ pub fn of_window(network: &Network, mean: &MeanFlow<f64>, window: &Window) -> Ve
 
 /// The length of an element taken as compact [m], and what it is.
 fn extent(network: &Network, kind: &Kind) -> Option<(&'static str, f64)> {
-    let slug = |k: KnobId| Some(("its effective length of", network.values[k]));
+    let slug = |k: KnobId| Some(("its effective length", network.values[k]));
     match kind {
         Kind::Contraction(c) => slug(c.effective_length),
         Kind::Expansion(e) => slug(e.effective_length),
         Kind::Restriction(r) => slug(r.effective_length),
         Kind::Plenum(p) => Some((
-            "the edge of a cube of its volume,",
+            "the edge of a cube of its volume",
             network.values[p.volume].cbrt(),
         )),
         Kind::Feed(_) | Kind::Exit(_) | Kind::Duct(_) | Kind::Flame(_) => None,
@@ -82,6 +81,22 @@ fn slowest(network: &Network, mean: &MeanFlow<f64>, id: ElementId) -> Option<f64
         .filter_map(|station| mean.state(station))
         .map(|state| state.sound_speed())
         .reduce(f64::min)
+}
+
+/// Modes that grow faster than the window's upper edge.
+pub fn of_growth_beyond(window: &Window, beyond: &ModeList) -> Option<Problem> {
+    let fastest = beyond.leading()?;
+    let top = window.growth.1;
+    let what = format!(
+        "growth faster than the window's upper edge of {top:.0} 1/s: {:.1} 1/s at {:.1} Hz, not in the list",
+        fastest.growth(),
+        fastest.frequency()
+    );
+    let to = (1.1 * fastest.growth() / 50.0).ceil() * 50.0;
+    Some(
+        Problem::warning("search.growth", what)
+            .hint(format!("search growth rates up to {to:.0} 1/s")),
+    )
 }
 
 /// What qualifies the modes of a list: growth so fast that a response is taken far from where it was

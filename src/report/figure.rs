@@ -67,12 +67,16 @@ impl MapReport<'_> {
             "{}; {} \u{d7} {} networks, {certified}",
             self.heading.title, self.map.across.points, self.map.up.points
         );
+        let beyond = match tally.beyond {
+            0 => "",
+            _ => ", faster growth found in that band included",
+        };
         let footnote = format!(
-            "Largest growth rate of the modes in {}. {OUTSIDE} {CAUTION}",
+            "Largest growth rate of the modes in {}{beyond}. {OUTSIDE} {CAUTION}",
             window_text(&self.map.window)
         );
         let (design_x, design_y) = self.design_values();
-        let design = match self.design.leading() {
+        let design = match self.design_mode() {
             Some(mode) => format!("design, {} 1/s", rate(mode.growth())),
             None => "design".to_owned(),
         };
@@ -88,12 +92,12 @@ impl MapReport<'_> {
                 above: "grows".into(),
                 below: "decays".into(),
             },
-            values: self.rows(|p| p.leading().map(|m| m.growth())),
+            values: self.rows(|p| p.fastest().map(|m| m.growth())),
             certified: self.rows(Point::complete),
             frequency: Some(IsoLines {
                 label: "Frequency".into(),
                 unit: "Hz".into(),
-                values: self.rows(|p| p.leading().map(|m| m.frequency())),
+                values: self.rows(|p| p.fastest().map(|m| m.frequency())),
             }),
             design_point: self.design_inside().then(|| DesignPoint {
                 x: design_x / x.size,

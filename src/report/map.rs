@@ -5,7 +5,7 @@ use serde::Serialize;
 use super::document::WindowFields;
 use super::{Document, Heading, OUTSIDE, closing, window_text};
 use crate::draw::text::fixed;
-use crate::modes::{ModeList, Tendency};
+use crate::modes::{Mode, ModeList, Tendency};
 use crate::network::Network;
 use crate::problems::Problem;
 use crate::studies::cautions::{place, setting};
@@ -23,6 +23,8 @@ pub struct MapReport<'a> {
     pub map: &'a Map,
     /// The modes as the file states the network: at the design point.
     pub design: &'a ModeList,
+    /// Those beyond the window's upper edge, there.
+    pub design_beyond: &'a ModeList,
     /// What qualifies it.
     pub warnings: &'a [Problem],
 }
@@ -35,6 +37,7 @@ struct Design {
     complete: bool,
     growth_per_s: Option<f64>,
     frequency_hz: Option<f64>,
+    growth_beyond_window_per_s: Option<f64>,
 }
 
 #[derive(Clone, Debug, Serialize)]
@@ -44,6 +47,7 @@ struct Counts {
     not_certified: usize,
     failed: usize,
     growing: usize,
+    growing_beyond_window: usize,
 }
 
 #[derive(Clone, Debug, Serialize)]
@@ -58,6 +62,7 @@ struct Body<'a> {
     largest_growth_per_s: Vec<Vec<Option<f64>>>,
     frequency_hz_there: Vec<Vec<Option<f64>>>,
     complete: Vec<Vec<bool>>,
+    growth_beyond_window_per_s: Vec<Vec<Option<f64>>>,
     points: Counts,
     design_point: Design,
     window: WindowFields,
@@ -82,6 +87,11 @@ impl<'a> MapReport<'a> {
     pub(super) fn design_inside(&self) -> bool {
         let (x, y) = self.design_values();
         self.map.across.holds(x) && self.map.up.holds(y)
+    }
+
+    /// The fastest mode known at the design point.
+    pub(super) fn design_mode(&self) -> Option<&Mode> {
+        self.design_beyond.leading().or(self.design.leading())
     }
 
     /// Each row as what `f` makes of its points.
@@ -113,12 +123,14 @@ impl<'a> MapReport<'a> {
             largest_growth_per_s: self.rows(|p| p.leading().map(|m| m.growth())),
             frequency_hz_there: self.rows(|p| p.leading().map(|m| m.frequency())),
             complete: self.rows(Point::complete),
+            growth_beyond_window_per_s: self.rows(|p| p.beyond().map(|m| m.growth())),
             points: Counts {
                 total: tally.points,
                 complete: tally.complete,
                 not_certified: tally.doubtful,
                 failed: tally.failed,
                 growing: tally.growing,
+                growing_beyond_window: tally.beyond,
             },
             design_point: Design {
                 across: x,
@@ -127,6 +139,7 @@ impl<'a> MapReport<'a> {
                 complete: self.design.complete(),
                 growth_per_s: leading.map(|m| m.growth()),
                 frequency_hz: leading.map(|m| m.frequency()),
+                growth_beyond_window_per_s: self.design_beyond.leading().map(|m| m.growth()),
             },
             window: (&map.window).into(),
             outside_window: OUTSIDE,
@@ -153,6 +166,7 @@ impl<'a> MapReport<'a> {
             "largest_growth_per_s",
             "frequency_hz_there",
             "error_bound_per_s",
+            "growth_beyond_window_per_s",
             "complete",
             "failed",
         ])?;
@@ -165,6 +179,7 @@ impl<'a> MapReport<'a> {
                 number(mode.map(|m| m.growth())),
                 number(mode.map(|m| m.frequency())),
                 number(mode.map(|m| m.error_bound)),
+                number(point.beyond().map(|m| m.growth())),
                 point.complete().to_string(),
                 matches!(point, Point::Failed(_)).to_string(),
             ])?;
@@ -205,7 +220,7 @@ impl<'a> MapReport<'a> {
         } else {
             " (not certified)"
         };
-        let Some(mode) = self.design.leading() else {
+        let Some(mode) = self.design_mode() else {
             return format!("the design point has no mode in the window{certified}");
         };
         let verb = match mode.tendency() {

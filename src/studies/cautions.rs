@@ -85,6 +85,7 @@ pub fn warnings(
         }
         add(&mut found, known, &place, more);
     }
+    found.extend(beyond(network, map));
     found.extend(unanswered(network, map));
     found
 }
@@ -135,6 +136,25 @@ fn moving(network: &Network, mean: &MeanFlow<f64>, across: Axis, up: Axis) -> Ve
         }
     }
     found
+}
+
+/// Points where a mode has left the window by growing.
+fn beyond(network: &Network, map: &Map) -> Option<Problem> {
+    let tally = map.tally();
+    let (x, y, fastest) = tally.greatest.filter(|_| tally.beyond > 0)?;
+    let what = format!(
+        "at {} of {} points a mode grows faster than the window's upper edge of {:.0} 1/s; the fastest, at \
+         {}: {:.0} 1/s at {:.1} Hz",
+        tally.beyond,
+        tally.points,
+        map.window.growth.1,
+        place(network, (map.across.knob, x), (map.up.knob, y)),
+        fastest.growth(),
+        fastest.frequency()
+    );
+    Some(Problem::warning("search.growth", what).hint(
+        "the figure shows those growth rates; the lists and largest_growth_per_s keep to the window",
+    ))
 }
 
 /// Points that failed, by what they failed at, and points not certified.

@@ -53,15 +53,24 @@ impl Axis {
     }
 }
 
+/// The modes that matter at a point.
+#[derive(Clone, Copy, Debug, Default, PartialEq)]
+pub struct Found {
+    /// The mode in the window that grows fastest, or decays slowest.
+    pub leading: Option<Mode>,
+    /// The fastest of those that grow faster than the window's upper edge (see [`modes::beyond`]).
+    pub beyond: Option<Mode>,
+}
+
 /// What is known of one point.
 #[derive(Clone, Debug, PartialEq)]
 pub enum Point {
-    /// The list is proved complete; its leading mode, if it has any.
-    Certified(Option<Mode>),
-    /// The list is not proved complete; the leading mode of those found.
+    /// The list of the window is proved complete.
+    Certified(Found),
+    /// It is not.
     Doubtful {
-        /// The leading mode found.
-        leading: Option<Mode>,
+        /// Of the modes found.
+        found: Found,
         /// The first doubt, in words.
         why: Box<str>,
     },
@@ -70,12 +79,26 @@ pub enum Point {
 }
 
 impl Point {
-    /// The leading mode of those found.
-    pub fn leading(&self) -> Option<&Mode> {
+    fn found(&self) -> Found {
         match self {
-            Point::Certified(leading) | Point::Doubtful { leading, .. } => leading.as_ref(),
-            Point::Failed(_) => None,
+            Point::Certified(found) | Point::Doubtful { found, .. } => *found,
+            Point::Failed(_) => Found::default(),
         }
+    }
+
+    /// The leading mode in the window.
+    pub fn leading(&self) -> Option<Mode> {
+        self.found().leading
+    }
+
+    /// The fastest mode beyond the window's upper edge.
+    pub fn beyond(&self) -> Option<Mode> {
+        self.found().beyond
+    }
+
+    /// The fastest mode known, in the window or beyond its upper edge.
+    pub fn fastest(&self) -> Option<Mode> {
+        self.beyond().or(self.leading())
     }
 
     /// Whether the list at the point is proved complete.
@@ -127,7 +150,9 @@ pub struct Tally {
     pub failed: usize,
     /// Those where a mode grows, whether or not the list is complete.
     pub growing: usize,
-    /// The largest growth rate found, with its values on `across` and `up`.
+    /// Those where a mode grows faster than the window's upper edge.
+    pub beyond: usize,
+    /// The largest growth rate found, in the window or beyond, with its values on `across` and `up`.
     pub greatest: Option<(f64, f64, Mode)>,
 }
 
@@ -142,9 +167,12 @@ impl Map {
                 Point::Doubtful { .. } => tally.doubtful += 1,
                 Point::Failed(_) => tally.failed += 1,
             }
-            let Some(mode) = point.leading() else {
+            let Some(mode) = point.fastest() else {
                 continue;
             };
+            if point.beyond().is_some() {
+                tally.beyond += 1;
+            }
             if mode.tendency() == Tendency::Grows {
                 tally.growing += 1;
             }
@@ -152,7 +180,7 @@ impl Map {
                 .greatest
                 .is_none_or(|(_, _, m)| m.growth() < mode.growth())
             {
-                tally.greatest = Some((x, y, *mode));
+                tally.greatest = Some((x, y, mode));
             }
         }
         tally
@@ -210,11 +238,14 @@ fn point(network: &Network, held: Option<&MeanFlow<f64>>, window: Window) -> Poi
     };
     // The characteristic function is analytic by construction.
     let list = modes::find(&solved, window, Scan::UntilCounted);
-    let leading = list.leading().copied();
+    let found = Found {
+        leading: list.leading().copied(),
+        beyond: modes::beyond(&solved, window).leading().copied(),
+    };
     match list.doubts.first() {
-        None => Point::Certified(leading),
+        None => Point::Certified(found),
         Some(doubt) => Point::Doubtful {
-            leading,
+            found,
             why: doubt.to_string().into(),
         },
     }
