@@ -2,7 +2,6 @@
 
 use plotters::coord::ranged1d::{KeyPointHint, Ranged};
 use plotters::coord::types::RangedCoordf64;
-use plotters::prelude::{IntoLogRange, LogCoord};
 
 use super::DrawError;
 use super::text::{tick_labels, tidy};
@@ -62,6 +61,8 @@ pub(super) struct Span {
     scale: Scale,
     start: f64,
     end: f64,
+    /// The one sample, where there is only one.
+    only: Option<f64>,
 }
 
 /// A tick: its position in px and its label.
@@ -74,6 +75,7 @@ pub(super) struct Tick {
 impl Span {
     /// Puts `low` at `start` and `high` at `end`; a single value is given room on both sides.
     pub fn new(low: f64, high: f64, scale: Scale, start: f64, end: f64) -> Self {
+        let only = (low == high).then_some(low);
         let (low, high) = match scale {
             _ if high > low => (low, high),
             Scale::Logarithmic => (low / 2.0, low * 2.0),
@@ -86,6 +88,7 @@ impl Span {
             scale,
             start,
             end,
+            only,
         }
     }
 
@@ -104,14 +107,14 @@ impl Span {
     /// Ticks at round values, at most one for each `room` px.
     pub fn ticks(&self, room: f64) -> Vec<Tick> {
         let most = (((self.end - self.start).abs() / room).floor() as usize).max(3);
-        let values: Vec<f64> = match self.scale {
-            Scale::Linear => round_values(self.low, self.high, most),
-            Scale::Logarithmic => {
-                let coord: LogCoord<f64> = (self.low..self.high).log_scale().into();
-                coord.key_points(KeyPointHintOf(most))
-            }
+        let values: Vec<f64> = match (self.only, self.scale) {
+            (Some(value), _) => vec![value],
+            (None, Scale::Linear) => round_values(self.low, self.high, most),
+            (None, Scale::Logarithmic) => decade_values(self.low, self.high, most),
         };
-        let values: Vec<f64> = values.into_iter().filter(|&v| self.covers(v)).collect();
+        let slack = 1e-9 * (self.high - self.low);
+        let inside = |v: &f64| (self.low - slack..=self.high + slack).contains(v);
+        let values: Vec<f64> = values.into_iter().filter(inside).collect();
         let labels = match self.scale {
             Scale::Linear => tick_labels(&values),
             Scale::Logarithmic => values.iter().flat_map(|&v| tick_labels(&[v])).collect(),
@@ -148,6 +151,31 @@ pub(super) fn round_values(low: f64, high: f64, most: usize) -> Vec<f64> {
     (first..=last)
         .map(|k| (k as f64 * step).clamp(low, high))
         .collect()
+}
+
+/// Powers of ten in `low..=high`, with their 2- and 5-fold, or all multiples, as far as `most` allows.
+fn decade_values(low: f64, high: f64, most: usize) -> Vec<f64> {
+    let slack = 1e-9;
+    let decades = low.log10().floor() as i32..=high.log10().ceil() as i32;
+    let among = |multiples: &[f64]| -> Vec<f64> {
+        let all = decades
+            .clone()
+            .flat_map(|k| multiples.iter().map(move |m| m * 10f64.powi(k)));
+        all.filter(|v| (low * (1.0 - slack)..=high * (1.0 + slack)).contains(v))
+            .collect()
+    };
+    let choices: [&[f64]; 3] = [
+        &[1.0, 2.0, 3.0, 4.0, 5.0, 6.0, 7.0, 8.0, 9.0],
+        &[1.0, 2.0, 5.0],
+        &[1.0],
+    ];
+    let fitting = choices.iter().map(|c| among(c)).find(|v| v.len() <= most);
+    let sparse = || {
+        let powers = among(&[1.0]);
+        let stride = powers.len().div_ceil(most.max(1)).max(1);
+        powers.into_iter().step_by(stride).collect()
+    };
+    fitting.unwrap_or_else(sparse)
 }
 
 struct KeyPointHintOf(usize);

@@ -125,17 +125,17 @@ pub(super) fn palette() -> Vec<Rgb> {
         .collect()
 }
 
-/// The least round number not below `wanted`, and a step that divides it into 3 to 5 parts.
+/// The least round number not below `wanted`, and a step that divides it into 4 to 6 parts.
 fn round_up(wanted: f64) -> (f64, f64) {
     const ROUND: [(f64, f64); 10] = [
         (1.0, 0.25),
-        (1.5, 0.5),
+        (1.5, 0.25),
         (2.0, 0.5),
         (2.5, 0.5),
-        (3.0, 1.0),
+        (3.0, 0.5),
         (4.0, 1.0),
         (5.0, 1.0),
-        (6.0, 2.0),
+        (6.0, 1.0),
         (8.0, 2.0),
         (10.0, 2.5),
     ];

@@ -85,6 +85,9 @@ impl<'a> Measured<'a> {
     }
 }
 
+/// Most of the other points that a label may cover, for each px of its width.
+const MOST_CROWDED: f64 = 0.4;
+
 /// The best place for a label of `width` by `height` on the stretch `from..to` of a line: straight,
 /// near level, inside `frame`, clear of `taken`, with few of `others`' points under it.
 pub(super) fn on_line(
@@ -120,9 +123,13 @@ pub(super) fn on_line(
         if !frame.holds(bounds) || taken.iter().any(|t| t.overlaps(bounds)) {
             continue;
         }
+        let crowd = others(bounds);
+        if crowd as f64 > MOST_CROWDED * width {
+            continue;
+        }
         let score = 20.0 * bend
             + 0.4 * turn.abs()
-            + 0.5 * others(bounds) as f64
+            + 0.5 * crowd as f64
             + 0.3 * (s - middle).abs() / (to - from);
         if best.is_none_or(|(s, _)| score < s) {
             let place = Place {

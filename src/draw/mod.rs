@@ -15,18 +15,24 @@
 //! ```
 
 pub mod axis;
+mod bar;
 pub mod colour;
 pub mod contour;
+mod curves;
 pub mod field;
 mod frame;
 mod label;
+pub mod lines;
 pub mod map;
 mod raster;
 mod region;
+mod sheet;
+mod style;
 mod svg;
 pub mod text;
 
 pub use axis::{Axis, Scale};
+pub use lines::{LineFigure, Panel, Series, Shade};
 pub use map::{DesignPoint, IsoLines, Quantity, StabilityMap, Words};
 
 /// Why a figure cannot be drawn: its arrays contradict each other.

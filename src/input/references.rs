@@ -34,7 +34,7 @@ pub(super) fn read(
     reference
 }
 
-/// Whether each reference names a station that is there, and not one behind its own flame.
+/// Whether each reference names a station that is there, with a remark on one behind its own flame.
 pub(super) fn check(reader: &mut Reader, elements: &[Element]) {
     for pending in std::mem::take(&mut reader.references) {
         if let Some(problem) = judge(&pending, elements) {
@@ -69,10 +69,11 @@ fn judge(pending: &Pending, elements: &[Element]) -> Option<Problem> {
         return Some(fail("the exit has no outlet".to_owned()).hint("write exit.in"));
     }
     if at == flame && outlet {
+        let what = "the response follows the velocity behind its own flame";
         return Some(
-            fail("the response follows the velocity behind its own flame".to_owned()).hint(
-                format!("write {name}.in for the velocity before it; a bare name is the outlet"),
-            ),
+            Problem::warning(pending.subject.as_str(), what).hint(format!(
+                "write {name}.in for the velocity before it; a bare name is the outlet"
+            )),
         );
     }
     // Station k lies between elements k and k+1; the flame begins at station flame-1.

@@ -1,0 +1,348 @@
+//! Line figures: one or more panels over a shared x axis.
+
+use super::DrawError;
+use super::axis::{Axis, Span, check_samples};
+use super::colour::{diverging, hex, oklch};
+use super::contour::simplify;
+use super::frame::{self, Entry, MARGIN, Swatch, WIDTH};
+use super::sheet::{corner, ends};
+use super::style::{hatch_style, patterns};
+use super::svg::{Anchor, GREY, INK, Point, Rect, Svg, Text, open_path, px};
+use super::text::{Weight, fit, tidy};
+
+/// One curve of a panel.
+#[derive(Debug, Clone, PartialEq, Default)]
+pub struct Series {
+    /// Legend text; curves of equal name and style share one entry.
+    pub name: String,
+    /// Which of the figure's styles (hue and dash) it takes; equal in every panel for one thing.
+    pub style: usize,
+    /// One value for each x sample; a gap where there is none.
+    pub values: Vec<Option<f64>>,
+}
+
+/// A tinted half-plane.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Shade {
+    /// Its edge, always in view.
+    pub from: f64,
+    /// Up from the edge, or down.
+    pub upwards: bool,
+    /// One word for it, printed beside the panel; may be empty.
+    pub label: String,
+}
+
+/// Curves over one y axis.
+#[derive(Debug, Clone, PartialEq, Default)]
+pub struct Panel {
+    /// Its y axis.
+    pub y: Axis,
+    /// Its curves.
+    pub series: Vec<Series>,
+    /// Optional tint.
+    pub shade: Option<Shade>,
+}
+
+/// Everything a line figure shows. Values are scaled to the units named beside them.
+#[derive(Debug, Clone, PartialEq, Default)]
+pub struct LineFigure {
+    /// The finding, in a sentence.
+    pub title: String,
+    /// What was computed; may be empty.
+    pub subtitle: String,
+    /// Small print; may be empty.
+    pub footnote: String,
+    /// The shared axis.
+    pub x: Axis,
+    /// Sample positions, strictly increasing.
+    pub x_values: Vec<f64>,
+    /// Whether the answer at a sample is trusted; empty where that does not apply.
+    pub certified: Vec<bool>,
+    /// Legend text for samples that are not.
+    pub uncertified: String,
+    /// An x position to mark, and its legend text.
+    pub mark: Option<(f64, String)>,
+    /// From top to bottom.
+    pub panels: Vec<Panel>,
+}
+
+const GAP: f64 = 14.0;
+/// Space right of the plot, for the words beside tinted half-planes.
+const RIGHT: f64 = 20.0;
+const MARK: &str = "fill=\"none\" stroke=\"#1b1e23\" stroke-dasharray=\"1.5 2\"";
+
+/// Draws the figure.
+///
+/// # Errors
+/// Where the arrays do not fit each other or hold something that cannot be placed.
+pub fn render(figure: &LineFigure) -> Result<String, DrawError> {
+    check(figure)?;
+    let mut svg = Svg::default();
+    patterns(&mut svg);
+    let top = frame::header(&mut svg, &figure.title, &figure.subtitle);
+    let height = match figure.panels.len() {
+        0 | 1 => 380.0,
+        2 => 215.0,
+        _ => 170.0,
+    };
+    let rects = |left: f64| {
+        (0..figure.panels.len()).map(move |k| {
+            let top = top + k as f64 * (height + GAP);
+            Rect {
+                left,
+                top,
+                right: WIDTH - MARGIN - RIGHT,
+                bottom: top + height,
+            }
+        })
+    };
+    let y_span = |panel: &Panel, r: Rect| {
+        let (low, high) = y_range(panel);
+        Span::new(low, high, panel.y.scale, r.bottom, r.top)
+    };
+    let left = figure
+        .panels
+        .iter()
+        .zip(rects(0.0))
+        .map(|(panel, r)| frame::left_space(&y_span(panel, r).ticks(36.0)))
+        .fold(0.0, f64::max);
+
+    let (x0, x1) = ends(&figure.x_values);
+    let x = Span::new(x0, x1, figure.x.scale, left, WIDTH - MARGIN - RIGHT);
+    let x_ticks = x.ticks(70.0);
+    let mark = figure.mark.as_ref().filter(|(at, _)| x.covers(*at));
+    let mut below = top;
+    for (k, (panel, r)) in figure.panels.iter().zip(rects(left)).enumerate() {
+        let y = y_span(panel, r);
+        let y_ticks = y.ticks(36.0);
+        shade(&mut svg, panel, r, &y);
+        frame::grid(&mut svg, r, &x_ticks, &y_ticks, 0.11);
+        doubtful(&mut svg, figure, r, &x);
+        if let Some((at, _)) = mark {
+            svg.line((x.at(*at), r.top), (x.at(*at), r.bottom), MARK);
+        }
+        for series in &panel.series {
+            curve(&mut svg, series, figure, &x, &y);
+        }
+        frame::y_axis(&mut svg, r, &panel.y, &y_ticks);
+        if k + 1 == figure.panels.len() {
+            below = frame::x_axis(&mut svg, r, &figure.x, &x_ticks);
+        }
+    }
+    let entries = legend_entries(figure, mark);
+    let below = frame::legend(&mut svg, &entries, left, below, WIDTH - MARGIN - left);
+    let height = frame::footnote(&mut svg, &figure.footnote, below);
+    Ok(svg.finish(WIDTH, height, &tidy(&figure.title)))
+}
+
+fn check(figure: &LineFigure) -> Result<(), DrawError> {
+    check_samples("the x axis", &figure.x_values, figure.x.scale)?;
+    let expected = figure.x_values.len();
+    let fits = |what: String, found: usize| {
+        if found == expected {
+            Ok(())
+        } else {
+            Err(DrawError::Shape {
+                what,
+                found,
+                expected,
+            })
+        }
+    };
+    if !figure.certified.is_empty() {
+        fits("certified".into(), figure.certified.len())?;
+    }
+    for (row, panel) in figure.panels.iter().enumerate() {
+        for series in &panel.series {
+            fits(format!("series {:?}", series.name), series.values.len())?;
+            for (column, value) in series.values.iter().enumerate() {
+                let Some(value) = *value else { continue };
+                if !value.is_finite() {
+                    return Err(DrawError::NotFinite {
+                        what: "a series",
+                        row,
+                        column,
+                        value,
+                    });
+                }
+                if panel.y.scale == super::Scale::Logarithmic && value <= 0.0 {
+                    return Err(DrawError::NotPositive {
+                        axis: "a y axis",
+                        value,
+                    });
+                }
+            }
+        }
+    }
+    Ok(())
+}
+
+/// Range of a panel: its values and the edge of its shade, with a little room on both sides.
+fn y_range(panel: &Panel) -> (f64, f64) {
+    let values = panel
+        .series
+        .iter()
+        .flat_map(|s| s.values.iter().flatten().copied());
+    let logarithmic = panel.y.scale == super::Scale::Logarithmic;
+    let edge = panel
+        .shade
+        .as_ref()
+        .map(|s| s.from)
+        .filter(|e| !logarithmic || *e > 0.0);
+    let (low, high) = values
+        .chain(edge)
+        .fold((f64::INFINITY, f64::NEG_INFINITY), |(a, b), v| {
+            (a.min(v), b.max(v))
+        });
+    if low > high {
+        return if logarithmic { (1.0, 10.0) } else { (0.0, 1.0) };
+    }
+    if logarithmic {
+        let room = (high / low).powf(0.05).max(1.2);
+        return (low / room, high * room);
+    }
+    let room = match 0.06 * (high - low) {
+        r if r > 1e-12 * high.abs().max(low.abs()) => r,
+        _ if high == 0.0 => 1.0,
+        _ => 0.1 * high.abs(),
+    };
+    (low - room, high + room)
+}
+
+fn shade(svg: &mut Svg, panel: &Panel, r: Rect, y: &Span) {
+    let Some(shade) = &panel.shade else { return };
+    let edge = y.at(shade.from).clamp(r.top, r.bottom);
+    let (tint, area) = if shade.upwards {
+        (diverging(0.0), Rect { bottom: edge, ..r })
+    } else {
+        (diverging(-0.15), Rect { top: edge, ..r })
+    };
+    svg.path(
+        &area.path(),
+        &format!("fill=\"{}\" fill-opacity=\".6\"", hex(tint)),
+    );
+    svg.line(
+        (r.left, edge),
+        (r.right, edge),
+        &format!("stroke=\"{INK}\" stroke-width=\"1.4\""),
+    );
+    let label = fit(
+        &tidy(&shade.label),
+        Weight::Semibold,
+        10.5,
+        area.height().max(24.0),
+    );
+    let at = (r.right + 13.0, (area.top + area.bottom) / 2.0);
+    let text = Text::new(at, &label, 10.5)
+        .weight(Weight::Semibold)
+        .fill(GREY);
+    svg.text(&text.anchor(Anchor::Middle).turn(-90.0));
+}
+
+fn doubtful(svg: &mut Svg, figure: &LineFigure, r: Rect, x: &Span) {
+    let nodes: Vec<f64> = figure.x_values.iter().map(|&v| x.at(v)).collect();
+    let mut data = String::new();
+    let mut start: Option<usize> = None;
+    let flags = figure.certified.iter().copied().chain([true]);
+    for (i, certified) in flags.enumerate() {
+        match (certified, start) {
+            (false, None) => start = Some(i),
+            (true, Some(first)) => {
+                let left = corner(&nodes, first, r.left, r.right);
+                let right = corner(&nodes, i, r.left, r.right);
+                let middle = ((left + right) / 2.0).clamp(r.left + 2.0, r.right - 2.0);
+                let (left, right) = (left.min(middle - 2.0), right.max(middle + 2.0));
+                data += &Rect { left, right, ..r }.path();
+                start = None;
+            }
+            _ => {}
+        }
+    }
+    svg.path(&data, &hatch_style());
+}
+
+/// Hue (degrees), lightness and dash of a style: neighbours differ in all three, for readers
+/// without colour vision and for grey print.
+fn stroke(style: usize) -> String {
+    const LOOK: [(f64, f64, &str); 7] = [
+        (255.0, 0.46, ""),
+        (45.0, 0.62, "7 2.5"),
+        (160.0, 0.52, "2.5 2"),
+        (330.0, 0.42, "9 2.5 2 2.5"),
+        (85.0, 0.58, ""),
+        (215.0, 0.64, "4 2"),
+        (20.0, 0.40, "1 2"),
+    ];
+    let (hue, lightness, dash) = LOOK
+        .get(style % LOOK.len())
+        .copied()
+        .unwrap_or((0.0, 0.4, ""));
+    let colour = hex(oklch(
+        lightness - 0.06 * ((style / LOOK.len()) % 3) as f64,
+        0.12,
+        hue,
+    ));
+    let dash = if dash.is_empty() {
+        String::new()
+    } else {
+        format!(" stroke-dasharray=\"{dash}\"")
+    };
+    format!(
+        "fill=\"none\" stroke=\"{colour}\" stroke-width=\"1.9\" stroke-linejoin=\"round\"{dash}"
+    )
+}
+
+/// Draws the stretches of a curve between its gaps; a stretch of one sample is a dot.
+fn curve(svg: &mut Svg, series: &Series, figure: &LineFigure, x: &Span, y: &Span) {
+    let points = figure.x_values.iter().zip(&series.values);
+    let points: Vec<Option<Point>> = points
+        .map(|(&u, v)| v.map(|v| (x.at(u), y.at(v))))
+        .collect();
+    let style = stroke(series.style);
+    let (mut data, mut dots) = (String::new(), String::new());
+    for run in points.split(Option::is_none) {
+        let run: Vec<Point> = run.iter().copied().flatten().collect();
+        match run.as_slice() {
+            [] => {}
+            [(u, v)] => dots += &format!("M{} {}h.1", px(*u), px(*v)),
+            many => data += &open_path(&simplify(many, 0.05)),
+        }
+    }
+    svg.path(&data, &style);
+    let solid = style.split(" stroke-dasharray").next().unwrap_or_default();
+    let dot = solid.replace(
+        "stroke-width=\"1.9\"",
+        "stroke-width=\"4\" stroke-linecap=\"round\"",
+    );
+    svg.path(&dots, &dot);
+}
+
+fn legend_entries(figure: &LineFigure, mark: Option<&(f64, String)>) -> Vec<Entry> {
+    let mut entries = Vec::new();
+    let mut seen: Vec<(&str, usize)> = Vec::new();
+    for series in figure.panels.iter().flat_map(|p| &p.series) {
+        let key = (series.name.as_str(), series.style);
+        if !series.name.is_empty() && !seen.contains(&key) {
+            seen.push(key);
+            let swatch = Swatch::Line(vec![stroke(series.style)]);
+            entries.push(Entry {
+                swatch,
+                label: series.name.clone(),
+            });
+        }
+    }
+    if let Some((_, label)) = mark {
+        entries.push(Entry {
+            swatch: Swatch::Line(vec![MARK.into()]),
+            label: label.clone(),
+        });
+    }
+    if figure.certified.contains(&false) {
+        let swatch = Swatch::Patch(vec![hatch_style()]);
+        entries.push(Entry {
+            swatch,
+            label: figure.uncertified.clone(),
+        });
+    }
+    entries
+}

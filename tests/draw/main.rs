@@ -1,0 +1,220 @@
+//! Figures from invented fields: well-formed, inside the canvas, small, the same every time, and
+//! true to the field. Every figure is also written to the target folder's `tmp/draw`, to be looked at.
+
+#[cfg(test)]
+mod check;
+#[cfg(test)]
+mod figures;
+
+use check::check_drawing;
+use figures::{Rows, base, full, gallery, line_gallery, rows, samples, sweep};
+use proptest::prelude::*;
+use roxmltree::Document;
+use stillflame::draw::{
+    DrawError, LineFigure, Scale, StabilityMap, contour, field::Field, lines, map, text,
+};
+
+#[test]
+fn every_figure_is_well_formed_and_keeps_its_text_on_the_canvas() {
+    for (name, figure) in gallery() {
+        check_drawing(name, &map::render(&figure).unwrap());
+    }
+    for (name, figure) in line_gallery() {
+        check_drawing(name, &lines::render(&figure).unwrap());
+    }
+}
+
+#[test]
+fn equal_input_gives_equal_bytes_and_a_large_map_stays_small() {
+    let svg = map::render(&full()).unwrap();
+    assert_eq!(svg, map::render(&full()).unwrap());
+    println!("200 x 200 with everything: {} bytes", svg.len());
+    assert!(svg.len() < 200_000, "{} bytes", svg.len());
+}
+
+#[test]
+fn hatch_and_quiet_fill_stand_exactly_where_they_are_needed() {
+    for (name, figure) in gallery() {
+        let svg = map::render(&figure).unwrap();
+        let document = Document::parse(&svg).unwrap();
+        let filled = |what: &str| {
+            let fills = document.descendants().filter_map(|n| n.attribute("fill"));
+            fills.filter(|f| f.ends_with(&format!("-{what})"))).count()
+        };
+        let doubtful = figure.certified.iter().flatten().any(|c| !c);
+        let mut both = figure
+            .certified
+            .iter()
+            .flatten()
+            .zip(figure.values.iter().flatten());
+        let absent = both.any(|(c, v)| *c && v.is_none());
+        // Once on the map and once in the legend.
+        assert_eq!(
+            filled("hatch"),
+            if doubtful { 2 } else { 0 },
+            "{name}: hatch"
+        );
+        assert_eq!(
+            filled("absent"),
+            if absent { 2 } else { 0 },
+            "{name}: quiet fill"
+        );
+    }
+}
+
+#[test]
+fn a_sweep_hatches_untrusted_samples_and_breaks_at_gaps() {
+    let doubtful = |figure: &LineFigure| {
+        let svg = lines::render(figure).unwrap();
+        let document = Document::parse(&svg).unwrap();
+        let fills = document.descendants().filter_map(|n| n.attribute("fill"));
+        fills.filter(|f| f.ends_with("-hatch)")).count()
+    };
+    let mut figure = sweep();
+    assert_eq!(doubtful(&figure), 3, "two panels and the legend");
+    figure.certified.fill(true);
+    assert_eq!(doubtful(&figure), 0);
+
+    // A gap of branch 3 makes two strokes of it: its path starts twice.
+    let svg = lines::render(&figure).unwrap();
+    let document = Document::parse(&svg).unwrap();
+    let starts = |style: usize, data: &str| {
+        let curves = document
+            .descendants()
+            .filter(|n| n.attribute("stroke-width") == Some("1.9"));
+        let curve = curves.filter_map(|n| n.attribute("d")).nth(style).unwrap();
+        curve.matches(data).count()
+    };
+    assert_eq!((starts(0, "M"), starts(2, "M")), (1, 2));
+
+    figure.panels[0].series[1].values.pop();
+    assert!(matches!(
+        lines::render(&figure),
+        Err(DrawError::Shape { .. })
+    ));
+}
+
+#[test]
+fn neutral_lines_follow_the_zeros_of_the_field() {
+    // x^2 + y^2 = 1 on [-1.5, 1.5]^2: a circle of radius 1.
+    for (n, fine, tolerance) in [(200, 1, 1e-4), (13, 8, 2e-3)] {
+        let axis = samples(-1.5, 1.5, n);
+        let values = rows(&axis, &axis, |x, y| Some(x * x + y * y - 1.0));
+        let found = contour::lines(&Field::new(&values), 0.0, fine, |_, _| false);
+        assert_eq!(found.len(), 1, "one loop");
+        assert_eq!(found[0].first(), found[0].last(), "closed");
+        let step = 3.0 / (n - 1) as f64;
+        let point = |p: &(f64, f64)| (p.0 * step - 1.5, p.1 * step - 1.5);
+        for (x, y) in found[0].iter().map(point) {
+            assert!(
+                (x.hypot(y) - 1.0).abs() < tolerance,
+                "({x}, {y}) with n = {n}"
+            );
+        }
+        let pairs = found[0].windows(2).map(|w| (point(&w[0]), point(&w[1])));
+        let length: f64 = pairs.map(|(p, q)| (p.0 - q.0).hypot(p.1 - q.1)).sum();
+        assert!(
+            (length - std::f64::consts::TAU).abs() < 0.02,
+            "length {length}"
+        );
+    }
+}
+
+#[test]
+fn lines_stop_at_holes() {
+    let axis = samples(0.0, 10.0, 11);
+    let hole = |x: f64| (4.5..6.5).contains(&x);
+    let values = rows(&axis, &axis, |x, y| (!hole(x)).then_some(y - 5.25));
+    let found = contour::lines(&Field::new(&values), 0.0, 4, |_, _| false);
+    assert_eq!(found.len(), 2);
+    for p in found.iter().flatten() {
+        assert!(p.0 <= 4.0 || p.0 >= 7.0, "a point beside the hole: {p:?}");
+        assert!((p.1 - 5.25).abs() < 1e-12);
+    }
+}
+
+#[test]
+fn contradictory_arrays_are_refused_with_their_place() {
+    let refused = |change: &dyn Fn(&mut StabilityMap)| {
+        let mut figure = base(4, 3);
+        change(&mut figure);
+        map::render(&figure).unwrap_err()
+    };
+    let cut = refused(&|m| {
+        m.values[1].pop();
+    });
+    assert_eq!(
+        cut,
+        DrawError::Shape {
+            what: "row 1 of values".into(),
+            found: 3,
+            expected: 4
+        }
+    );
+    let infinite = refused(&|m| m.values[2][3] = Some(f64::INFINITY));
+    assert!(matches!(
+        infinite,
+        DrawError::NotFinite {
+            row: 2,
+            column: 3,
+            ..
+        }
+    ));
+    assert!(matches!(
+        refused(&|m| m.x_values.clear()),
+        DrawError::NoSamples { .. }
+    ));
+    let twice = refused(&|m| m.y_values[1] = m.y_values[0]);
+    assert!(matches!(twice, DrawError::Samples { index: 1, .. }));
+    let negative = refused(&|m| m.x.scale = Scale::Logarithmic);
+    assert!(matches!(negative, DrawError::NotPositive { .. }));
+}
+
+#[test]
+fn numbers_carry_a_true_minus_and_equal_precision() {
+    assert_eq!(text::tick_labels(&[-0.5, 0.0, 0.5]), ["−0.5", "0.0", "0.5"]);
+    assert_eq!(text::tick_labels(&[-200.0, 0.0]), ["−200", "0"]);
+    assert_eq!(text::tick_labels(&[0.0, 2.5e6]), ["0", "2.5×10⁶"]);
+    assert_eq!(text::fixed(-0.001, 1), "0.0");
+    assert_eq!(
+        text::tidy("at -3 °C, low-swirl\n  burner"),
+        "at −3 °C, low-swirl burner"
+    );
+    for c in "AZaz09ÀÿαωΔΩ−°×–¹²³⁻₀…≤√".chars() {
+        assert!(text::covers(c), "{c}");
+    }
+}
+
+proptest! {
+    #![proptest_config(ProptestConfig::with_cases(64))]
+
+    #[test]
+    fn interpolation_stays_between_the_samples_of_a_cell(
+        values in proptest::collection::vec(-10.0..10.0f64, 25),
+        u in 0.0..4.0f64,
+        v in 0.0..4.0f64,
+    ) {
+        let values: Rows = values.chunks(5).map(|r| r.iter().copied().map(Some).collect()).collect();
+        let field = Field::new(&values);
+        let (low, high) = field.cell_range(u as usize, v as usize).unwrap();
+        let value = field.at(u, v).unwrap();
+        prop_assert!((low..=high).contains(&value));
+        prop_assert_eq!(field.at(u.floor(), v.floor()), field.sample(u as usize, v as usize));
+    }
+
+    #[test]
+    fn wrapped_lines_fit(words in "[A-Za-z0-9 äé−]{0,200}", limit in 20.0..300.0f64) {
+        for line in text::wrap(&words, text::Weight::Regular, 11.0, limit, 4) {
+            prop_assert!(text::width(&line, text::Weight::Regular, 11.0) <= limit);
+        }
+    }
+
+    #[test]
+    fn any_string_gives_well_formed_xml(title in "\\PC{0,60}|[\\x00-\\x7f]{0,40}") {
+        let mut figure = base(3, 3);
+        figure.title = title.clone();
+        figure.x.unit = title;
+        let svg = map::render(&figure).unwrap();
+        prop_assert!(Document::parse(&svg).is_ok());
+    }
+}
