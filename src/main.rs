@@ -1,3 +1,10 @@
 //! Parse, call, exit code.
 
-fn main() {}
+use std::process::ExitCode;
+
+use clap::Parser;
+use stillflame::cli::{Cli, run};
+
+fn main() -> ExitCode {
+    run(&Cli::parse()).into()
+}

@@ -1,1 +1,193 @@
+//! The command line: one file per verb, the options they share, and what becomes of an answer.
 //!
+//! A verb turns a [`Case`] into an [`Answer`] and writes nothing itself. Here the files are written
+//! first, whole or not at all, then the answer goes to standard output; everything else goes to
+//! standard error.
+
+mod check;
+mod flow;
+mod interrupt;
+mod map;
+mod modes;
+mod options;
+mod output;
+mod plane;
+
+use std::process::ExitCode;
+
+use clap::{Parser, Subcommand};
+
+use crate::problems::Problem;
+use crate::report::{document, problems};
+use options::{Case, Common};
+use output::{Destination, tell};
+
+/// Thermoacoustic modes and stability maps of gas-turbine combustor rigs.
+///
+/// A network file (TOML) describes ducts, area changes, plenums, flames with their transfer functions,
+/// and ends. stillflame computes the mean flow, finds every mode in a window of frequency and growth
+/// rate, and proves the list complete.
+#[derive(Debug, Parser)]
+#[command(name = "stillflame", version, arg_required_else_help = true, after_help = AFTER_HELP)]
+pub struct Cli {
+    #[command(subcommand)]
+    verb: Verb,
+}
+
+const AFTER_HELP: &str = "\
+Exit codes:
+  0    done
+  1    the network has problems, the computation failed, or a mode list is not proved complete
+  2    wrong usage
+  3    with --fail-on-growth, some mode grows
+  130  interrupted
+
+Predictions are for screening. Combustion oscillations break hardware and hurt people:
+confirm by rig test, and follow local codes and licensed practice.";
+
+#[derive(Debug, Subcommand)]
+enum Verb {
+    Check(check::Arguments),
+    Flow(flow::Arguments),
+    Modes(modes::Arguments),
+    Map(map::Arguments),
+}
+
+/// How a run ended; the exit code.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Status {
+    /// Done.
+    Done,
+    /// The input has problems, the computation failed, or its answer is not certified.
+    Failed,
+    /// Wrong usage.
+    Usage,
+    /// Some mode grows, and that was to fail.
+    Grows,
+}
+
+impl From<Status> for ExitCode {
+    fn from(status: Status) -> ExitCode {
+        ExitCode::from(match status {
+            Status::Done => 0,
+            Status::Failed => 1,
+            Status::Usage => 2,
+            Status::Grows => 3,
+        })
+    }
+}
+
+/// What a verb has to say.
+struct Answer {
+    /// For people, or as JSON where asked for.
+    text: String,
+    /// Name and content of each file.
+    files: Vec<(String, Vec<u8>)>,
+    status: Status,
+}
+
+/// Why there is no answer.
+struct Failure {
+    status: Status,
+    problems: Vec<Problem>,
+}
+
+impl Failure {
+    /// The network or the computation is at fault.
+    fn input(problems: impl Into<Vec<Problem>>) -> Self {
+        Failure {
+            status: Status::Failed,
+            problems: problems.into(),
+        }
+    }
+
+    /// The command line is at fault.
+    fn usage(problems: impl Into<Vec<Problem>>) -> Self {
+        Failure {
+            status: Status::Usage,
+            problems: problems.into(),
+        }
+    }
+}
+
+impl From<std::io::Error> for Failure {
+    fn from(e: std::io::Error) -> Self {
+        Failure::input([Problem::error("output", e.to_string())])
+    }
+}
+
+impl Verb {
+    fn common(&self) -> &Common {
+        match self {
+            Verb::Check(a) => &a.common,
+            Verb::Flow(a) => &a.common,
+            Verb::Modes(a) => &a.common,
+            Verb::Map(a) => &a.common,
+        }
+    }
+
+    /// Where files go: where asked for, and those of a map for people into the working directory.
+    fn destination(&self) -> Result<Option<Destination>, Failure> {
+        let common = self.common();
+        let here = (matches!(self, Verb::Map(_)) && !common.json).then(|| ".".into());
+        let directory = common.out.clone().or(here);
+        directory.map(Destination::open).transpose()
+    }
+
+    fn answer(&self, case: Case) -> Result<Answer, Failure> {
+        match self {
+            Verb::Check(a) => check::answer(a, case),
+            Verb::Flow(a) => flow::answer(a, case),
+            Verb::Modes(a) => modes::answer(a, case),
+            Verb::Map(a) => map::answer(a, case),
+        }
+    }
+}
+
+/// Does what the command line asks for.
+pub fn run(cli: &Cli) -> Status {
+    interrupt::install();
+    let common = cli.verb.common();
+    match attempt(&cli.verb) {
+        Ok(status) => status,
+        Err(Failure {
+            status,
+            problems: found,
+        }) => {
+            if common.json {
+                let refusal = document::refusal(&common.network.display().to_string(), &found);
+                // Where standard output is broken as well, the problems are on standard error.
+                if let Ok(json) = refusal {
+                    let _ = output::print(&json);
+                }
+            }
+            tell(&problems::render(&found));
+            status
+        }
+    }
+}
+
+fn attempt(verb: &Verb) -> Result<Status, Failure> {
+    let common = verb.common();
+    let case = Case::load(common)?;
+    let destination = verb.destination()?;
+    let answer = verb.answer(case)?;
+    let mut text = answer.text;
+    if let Some(destination) = destination {
+        for path in destination.write(&answer.files)? {
+            let line = format!("Wrote {}\n", path.display());
+            if common.json {
+                tell(&line);
+            } else {
+                text.push_str(&line);
+            }
+        }
+    }
+    output::print(&text).map_err(|e| {
+        Failure::input([Problem::error(
+            "standard output",
+            format!("cannot be written: {e}"),
+        )])
+    })?;
+    Ok(answer.status)
+}

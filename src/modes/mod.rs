@@ -1,5 +1,7 @@
 //! From a window to a certified list of modes.
 
+pub mod shapes;
+pub mod validity;
 mod window;
 
 use num_complex::Complex64;
@@ -40,6 +42,32 @@ impl Mode {
     pub fn cycle_increment(&self) -> Option<f64> {
         (self.s.im > 0.0).then(|| self.growth() / self.frequency())
     }
+
+    /// `-growth/|s|`; none at `s = 0`.
+    pub fn damping_ratio(&self) -> Option<f64> {
+        let size = self.s.norm();
+        (size > 0.0).then(|| -self.growth() / size)
+    }
+
+    /// Whether it grows, as far as its error bound tells.
+    pub fn tendency(&self) -> Tendency {
+        match self.growth() {
+            g if g > self.error_bound => Tendency::Grows,
+            g if g < -self.error_bound => Tendency::Decays,
+            _ => Tendency::Neutral,
+        }
+    }
+}
+
+/// What becomes of a small disturbance in a mode.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Tendency {
+    /// It grows, by more than the error bound.
+    Grows,
+    /// The error bound does not tell.
+    Neutral,
+    /// It decays, by more than the error bound.
+    Decays,
 }
 
 /// Every mode in a window, and whether that is proved.
@@ -110,6 +138,20 @@ pub fn find(solved: &Solved, window: Window, scan: Scan) -> ModeList {
         doubts: found.doubts,
         effort: found.effort,
     }
+}
+
+/// How far to the right of a window [`beyond`] looks, over the window's height in growth rate.
+const REACH: f64 = 3.0;
+
+/// Modes in the window's band of frequency that grow faster than its upper edge, in a strip three times
+/// as high as the window. Faster growth still is not excluded.
+pub fn beyond(solved: &Solved, window: Window) -> ModeList {
+    let (low, high) = window.growth;
+    let strip = Window {
+        growth: (high, high + REACH * (high - low)),
+        ..window
+    };
+    find(solved, strip, Scan::UntilCounted)
 }
 
 /// The shape of a mode with its residual in the global matrix.

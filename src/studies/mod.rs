@@ -1,1 +1,4 @@
-//!
+//! Many questions of one network.
+
+pub mod cautions;
+pub mod map;

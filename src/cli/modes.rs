@@ -1,0 +1,84 @@
+//! `stillflame modes NETWORK`.
+
+use clap::Args;
+
+use super::options::{Case, Common, WindowArguments};
+use super::{Answer, Failure, Status};
+use crate::modes::{self, ModeList, Scan, Tendency, shapes, validity};
+use crate::report::modes::Modes;
+
+/// Find every mode in a window and prove the list complete
+///
+/// For each mode: frequency, growth rate with an error bound, cycle increment (growth rate over
+/// frequency), damping ratio, multiplicity, and its residual in the global matrix. The list is complete
+/// where the number of modes counted by the argument principle is the number found and none straddles
+/// the window's edge; otherwise the report says why not, and the exit code is 1.
+#[derive(Clone, Debug, Args)]
+#[command(
+    after_help = "Example:\n  stillflame modes networks/swirl_rig.toml --frequency \"20 to 500 Hz\" --shapes --out results"
+)]
+pub(super) struct Arguments {
+    #[command(flatten)]
+    pub common: Common,
+
+    #[command(flatten)]
+    window: WindowArguments,
+
+    /// Tell the shape of each mode: amplitude and phase of pressure and velocity at the stations and
+    /// along the ducts
+    #[arg(long)]
+    shapes: bool,
+
+    /// End with exit code 3 where some mode grows
+    #[arg(long)]
+    fail_on_growth: bool,
+}
+
+pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Failure> {
+    case.narrow(&arguments.window);
+    let solved = case.solve()?;
+    let window = case.window(&solved.mean)?;
+    let list = modes::find(&solved, window, Scan::Whole);
+    let shapes: Vec<_> = list
+        .modes
+        .iter()
+        .map(|mode| shapes::along(&case.network, &solved, mode))
+        .collect();
+    let mut more = solved.mean.warnings.clone();
+    more.extend(validity::of_window(&case.network, &solved.mean, &window));
+    more.extend(validity::of_modes(&case.network, &list));
+    let beyond = modes::beyond(&solved, window);
+    more.extend(validity::of_growth_beyond(&window, &beyond));
+    more.extend(modes::doubts_as_warnings(&list));
+    let warnings = case.warnings_with(more);
+    let report = Modes {
+        heading: case.heading(),
+        network: &case.network,
+        list: &list,
+        shapes: &shapes,
+        with_shapes: arguments.shapes,
+        warnings: &warnings,
+    };
+    let mut files = vec![(case.file("modes.csv"), report.csv()?)];
+    if arguments.shapes {
+        files.push((case.file("shapes.csv"), report.shapes_csv()?));
+    }
+    let grows = |list: &ModeList| list.modes.iter().any(|m| m.tendency() == Tendency::Grows);
+    let grows = grows(&list) || grows(&beyond);
+    let status = if arguments.fail_on_growth && grows {
+        Status::Grows
+    } else if list.complete() {
+        Status::Done
+    } else {
+        Status::Failed
+    };
+    Ok(Answer {
+        text: if arguments.common.json {
+            report.json()?
+        } else {
+            report.text()
+        },
+        files,
+        status,
+    })
+}

@@ -1,0 +1,214 @@
+//! The plane of a map as written: `main_flame.delay = 0 ms to 10 ms`, `200x200`.
+
+use super::Failure;
+use crate::elements::knob::Knob;
+use crate::network::values::out_of_range;
+use crate::network::{Layout, Network};
+use crate::problems::{Place, Problem, listed, nearest};
+use crate::studies::cautions;
+use crate::studies::map::Axis;
+use crate::units::parse_span;
+
+/// Fewest and most points along an axis.
+const FEWEST: usize = 2;
+const MOST: usize = 2000;
+
+/// Columns and rows of a map.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub(super) struct Points {
+    pub across: usize,
+    pub up: usize,
+}
+
+/// `200x200`.
+pub(super) fn points(text: &str) -> Result<Points, String> {
+    let form = "write columns x rows, as in 200x200";
+    let (across, up) = text
+        .split_once(['x', 'X', '\u{d7}'])
+        .ok_or_else(|| form.to_owned())?;
+    let number = |text: &str| -> Result<usize, String> {
+        let n: usize = text.trim().parse().map_err(|_| form.to_owned())?;
+        if (FEWEST..=MOST).contains(&n) {
+            Ok(n)
+        } else {
+            Err(format!("each axis takes {FEWEST} to {MOST} points"))
+        }
+    };
+    Ok(Points {
+        across: number(across)?,
+        up: number(up)?,
+    })
+}
+
+/// Both axes of a plane, or everything that is wrong with them.
+pub(super) fn axes(
+    network: &Network,
+    across: &str,
+    up: &str,
+    points: Points,
+) -> Result<(Axis, Axis), Failure> {
+    let written_across = Written {
+        flag: "--across",
+        text: across,
+    };
+    let written_up = Written {
+        flag: "--up",
+        text: up,
+    };
+    let read = (
+        written_across.axis(&network.layout, points.across),
+        written_up.axis(&network.layout, points.up),
+    );
+    let (across, up) = match read {
+        (Ok(across), Ok(up)) => (across, up),
+        (a, b) => {
+            let wrong: Vec<Problem> = [a.err(), b.err()].into_iter().flatten().collect();
+            return Err(Failure::usage(wrong));
+        }
+    };
+    if across.knob == up.knob {
+        let what = "--across and --up name the same number";
+        let problem = Problem::error("--up", what).hint("a map needs two different ones");
+        return Err(Failure::usage(
+            [written_up.mark(problem, written_up.name())],
+        ));
+    }
+    Ok((across, up))
+}
+
+/// Whether the network makes sense over the whole plane.
+pub(super) fn check(network: &Network, across: Axis, up: Axis) -> Result<(), Failure> {
+    let refusals = cautions::refusals(network, across, up);
+    if refusals.is_empty() {
+        Ok(())
+    } else {
+        Err(Failure::usage(refusals))
+    }
+}
+
+/// One axis as written.
+#[derive(Clone, Copy)]
+struct Written<'t> {
+    flag: &'static str,
+    text: &'t str,
+}
+
+impl<'t> Written<'t> {
+    fn name(&self) -> &'t str {
+        self.text.split('=').next().unwrap_or_default().trim()
+    }
+
+    /// A problem at some part of the text.
+    fn mark(&self, problem: Problem, part: &str) -> Problem {
+        let before = self.text.find(part).and_then(|at| self.text.get(..at));
+        problem.at(Place {
+            source: self.flag.to_owned(),
+            line: 1,
+            column: before.unwrap_or_default().chars().count() + 1,
+            width: part.chars().count().max(1),
+            text: self.text.to_owned(),
+        })
+    }
+
+    fn axis(&self, layout: &Layout, points: usize) -> Result<Axis, Problem> {
+        let form = "write NAME = A to B, as in main_flame.delay = 0 ms to 10 ms";
+        let Some((_, span)) = self.text.split_once('=') else {
+            let problem = Problem::error(self.flag, "no `=` stands between a name and a span");
+            return Err(self.mark(problem.hint(form), self.text));
+        };
+        let (name, span) = (self.name(), span.trim());
+        let knob = layout.knob(name).ok_or_else(|| {
+            let what = format!("the network has no number named `{name}`");
+            self.mark(
+                Problem::error(self.flag, what).hint(meant(layout, name)),
+                name,
+            )
+        })?;
+        let fail =
+            |what: String, hint: String| self.mark(Problem::error(name, what).hint(hint), span);
+        let Some(Knob { spec, .. }) = layout.knobs.get(knob.0) else {
+            return Err(fail(
+                "the network has no such number".to_owned(),
+                form.to_owned(),
+            ));
+        };
+        let (low, high) =
+            parse_span(span, spec.dimension).map_err(|e| fail(e.to_string(), e.hint()))?;
+        if low >= high {
+            let what = if low == high {
+                "the span is empty: both its ends are the same"
+            } else {
+                "the span runs downwards"
+            };
+            let hint = "write the lower value first, as in 1 to 2";
+            return Err(fail(what.to_owned(), hint.to_owned()));
+        }
+        for end in [low, high] {
+            if let Some(problem) = out_of_range(name, spec, end) {
+                return Err(self.mark(problem, span));
+            }
+        }
+        Ok(Axis {
+            knob,
+            low,
+            high,
+            points,
+        })
+    }
+}
+
+/// What a name that is no knob may have meant.
+fn meant(layout: &Layout, name: &str) -> String {
+    let names = || layout.knobs.iter().map(|k| k.name.as_str());
+    if let Some(near) = nearest(name, names()) {
+        return format!("did you mean `{near}`?");
+    }
+    let element = name.split('.').next().unwrap_or_default();
+    let of = |element: &str| -> Vec<&str> {
+        let start = format!("{element}.");
+        names().filter(|n| n.starts_with(&start)).collect()
+    };
+    let own = of(element);
+    if !own.is_empty() {
+        return format!("`{element}` has {}", listed(own));
+    }
+    let elements = layout.elements.iter().map(|e| e.name.as_str());
+    match nearest(element, elements) {
+        Some(near) if !of(near).is_empty() => {
+            format!("did you mean `{near}`? It has {}", listed(of(near)))
+        }
+        _ => format!("its numbers are {}", listed(names())),
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn points_are_columns_and_rows() {
+        let wanted = Points {
+            across: 200,
+            up: 100,
+        };
+        for text in ["200x100", "200 x 100", "200X100", "200\u{d7}100"] {
+            assert_eq!(points(text), Ok(wanted), "{text}");
+        }
+        for text in [
+            "",
+            "200",
+            "200x",
+            "x",
+            "1x200",
+            "200x1",
+            "0x0",
+            "2001x200",
+            "-5x5",
+            "2.5x3",
+            "axb",
+            "99999999999999999999x2",
+        ] {
+            assert!(points(text).is_err(), "{text}");
+        }
+    }
+}

@@ -1,0 +1,136 @@
+//! A stability map as a figure: units for its axes and words for its labels.
+
+use super::map::{MapReport, rate};
+use super::{CAUTION, OUTSIDE, window_text};
+use crate::draw::{Axis, DesignPoint, DrawError, IsoLines, Quantity, StabilityMap, map};
+use crate::studies::map::{Axis as Values, Point};
+use crate::units::{self, Dimension, write_rounded};
+
+/// The unit an engineer writes a quantity of that size in, and its size in SI.
+fn engineers_unit(dimension: Dimension, largest: f64) -> (String, f64) {
+    let text = write_rounded(largest, dimension, 6);
+    let unit = text.split_once(' ').map_or("", |(_, unit)| unit);
+    match units::parse(&format!("1 {unit}"), dimension) {
+        Ok(size) if !unit.is_empty() => (unit.to_owned(), size),
+        _ => (dimension.si_unit().to_owned(), 1.0),
+    }
+}
+
+/// `main_flame.delay` as `Delay of main_flame`.
+fn label(name: &str) -> String {
+    let (element, key) = name.rsplit_once('.').unwrap_or(("", name));
+    let words = key.replace('_', " ");
+    let mut letters = words.chars();
+    let capital: String = letters
+        .next()
+        .into_iter()
+        .flat_map(char::to_uppercase)
+        .chain(letters)
+        .collect();
+    if element.is_empty() {
+        capital
+    } else {
+        format!("{capital} of {element}")
+    }
+}
+
+struct Scaled {
+    axis: Axis,
+    values: Vec<f64>,
+    size: f64,
+}
+
+impl MapReport<'_> {
+    fn scaled(&self, values: Values) -> Scaled {
+        let (name, dimension) = self.axis(values);
+        let largest = values.low.abs().max(values.high.abs());
+        let (unit, size) = engineers_unit(dimension, largest);
+        Scaled {
+            axis: Axis::new(label(name), unit),
+            values: values.values().into_iter().map(|v| v / size).collect(),
+            size,
+        }
+    }
+
+    /// The map as SVG.
+    ///
+    /// # Errors
+    /// Where the figure cannot be drawn.
+    pub fn svg(&self) -> Result<String, DrawError> {
+        let (x, y) = (self.scaled(self.map.across), self.scaled(self.map.up));
+        let tally = self.map.tally();
+        let certified = match tally.points - tally.complete {
+            0 => "every list proved complete".to_owned(),
+            n => format!("{n} not certified"),
+        };
+        let subtitle = format!(
+            "{}; {} \u{d7} {} networks, {certified}",
+            self.heading.title, self.map.across.points, self.map.up.points
+        );
+        let beyond = match tally.beyond {
+            0 => "",
+            _ => ", faster growth found in that band included",
+        };
+        let footnote = format!(
+            "Largest growth rate of the modes in {}{beyond}. {OUTSIDE} {CAUTION}",
+            window_text(&self.map.window)
+        );
+        let (design_x, design_y) = self.design_values();
+        let design = match self.design_mode() {
+            Some(mode) => format!("design, {} 1/s", rate(mode.growth())),
+            None => "design".to_owned(),
+        };
+        map::render(&StabilityMap {
+            title: self.finding(),
+            subtitle,
+            footnote,
+            x_values: x.values,
+            y_values: y.values,
+            quantity: Quantity {
+                label: "Largest growth rate".into(),
+                unit: "1/s".into(),
+                above: "grows".into(),
+                below: "decays".into(),
+            },
+            values: self.rows(|p| p.fastest().map(|m| m.growth())),
+            certified: self.rows(Point::complete),
+            frequency: Some(IsoLines {
+                label: "Frequency".into(),
+                unit: "Hz".into(),
+                values: self.rows(|p| p.fastest().map(|m| m.frequency())),
+            }),
+            design_point: self.design_inside().then(|| DesignPoint {
+                x: design_x / x.size,
+                y: design_y / y.size,
+                label: design,
+            }),
+            x: x.axis,
+            y: y.axis,
+            ..StabilityMap::default()
+        })
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn axes_are_in_the_units_of_the_trade() {
+        let unit = |d, x| engineers_unit(d, x);
+        assert_eq!(unit(Dimension::Time, 0.01), ("ms".to_owned(), 1e-3));
+        assert_eq!(unit(Dimension::Length, 0.9), ("mm".to_owned(), 1e-3));
+        assert_eq!(unit(Dimension::MassFlow, 0.06), ("g/s".to_owned(), 1e-3));
+        assert_eq!(unit(Dimension::Pressure, 8e5), ("kPa".to_owned(), 1e3));
+        assert_eq!(unit(Dimension::Temperature, 1900.0), ("K".to_owned(), 1.0));
+        assert_eq!(unit(Dimension::Number, 2.0), (String::new(), 1.0));
+        let (degrees, size) = unit(Dimension::Angle, 1.0);
+        assert_eq!(degrees, "deg");
+        assert!((size - 1f64.to_radians()).abs() < 1e-15);
+        assert_eq!(
+            label("main_flame.interaction_index"),
+            "Interaction index of main_flame"
+        );
+        assert_eq!(label("chamber"), "Chamber");
+    }
+}

@@ -1,0 +1,316 @@
+//! A stability map: as JSON, as CSV and in words.
+
+use serde::Serialize;
+
+use super::document::WindowFields;
+use super::{Document, Heading, OUTSIDE, closing, window_text};
+use crate::draw::text::fixed;
+use crate::modes::{Mode, ModeList, Tendency};
+use crate::network::Network;
+use crate::problems::Problem;
+use crate::studies::cautions::{place, setting};
+use crate::studies::map::{Axis, Map, Point};
+use crate::units::{Dimension, write_rounded};
+
+/// A map to report.
+#[derive(Clone, Copy, Debug)]
+pub struct MapReport<'a> {
+    /// Of which network.
+    pub heading: Heading<'a>,
+    /// The network as its file states it.
+    pub network: &'a Network,
+    /// The answers.
+    pub map: &'a Map,
+    /// The modes as the file states the network: at the design point.
+    pub design: &'a ModeList,
+    /// Those beyond the window's upper edge, there.
+    pub design_beyond: &'a ModeList,
+    /// What qualifies it.
+    pub warnings: &'a [Problem],
+}
+
+#[derive(Clone, Debug, Serialize)]
+struct Design {
+    across: f64,
+    up: f64,
+    inside: bool,
+    complete: bool,
+    growth_per_s: Option<f64>,
+    frequency_hz: Option<f64>,
+    growth_beyond_window_per_s: Option<f64>,
+}
+
+#[derive(Clone, Debug, Serialize)]
+struct Counts {
+    total: usize,
+    complete: usize,
+    not_certified: usize,
+    failed: usize,
+    growing: usize,
+    growing_beyond_window: usize,
+}
+
+#[derive(Clone, Debug, Serialize)]
+struct Body<'a> {
+    finding: String,
+    across_knob: &'a str,
+    across_unit: &'static str,
+    across: Vec<f64>,
+    up_knob: &'a str,
+    up_unit: &'static str,
+    up: Vec<f64>,
+    largest_growth_per_s: Vec<Vec<Option<f64>>>,
+    frequency_hz_there: Vec<Vec<Option<f64>>>,
+    complete: Vec<Vec<bool>>,
+    growth_beyond_window_per_s: Vec<Vec<Option<f64>>>,
+    points: Counts,
+    design_point: Design,
+    window: WindowFields,
+    outside_window: &'static str,
+}
+
+impl<'a> MapReport<'a> {
+    /// The name and the dimension of an axis.
+    pub(super) fn axis(&self, axis: Axis) -> (&'a str, Dimension) {
+        let knob = self.network.layout.knobs.get(axis.knob.0);
+        knob.map_or(("", Dimension::Number), |k| {
+            (k.name.as_str(), k.spec.dimension)
+        })
+    }
+
+    /// The design point on both axes.
+    pub(super) fn design_values(&self) -> (f64, f64) {
+        let values = &self.network.values;
+        (values[self.map.across.knob], values[self.map.up.knob])
+    }
+
+    pub(super) fn design_inside(&self) -> bool {
+        let (x, y) = self.design_values();
+        self.map.across.holds(x) && self.map.up.holds(y)
+    }
+
+    /// The fastest mode known at the design point.
+    pub(super) fn design_mode(&self) -> Option<&Mode> {
+        self.design_beyond.leading().or(self.design.leading())
+    }
+
+    /// Each row as what `f` makes of its points.
+    pub(super) fn rows<T>(&self, f: impl Fn(&Point) -> T) -> Vec<Vec<T>> {
+        self.map
+            .rows()
+            .map(|row| row.iter().map(&f).collect())
+            .collect()
+    }
+
+    /// As JSON.
+    ///
+    /// # Errors
+    /// Where it has no form in JSON.
+    pub fn json(&self) -> std::io::Result<String> {
+        let map = self.map;
+        let tally = map.tally();
+        let (x, y) = self.design_values();
+        let ((across_knob, across), (up_knob, up)) = (self.axis(map.across), self.axis(map.up));
+        let leading = self.design.leading();
+        let body = Body {
+            finding: self.finding(),
+            across_knob,
+            across_unit: across.si_unit(),
+            across: map.across.values(),
+            up_knob,
+            up_unit: up.si_unit(),
+            up: map.up.values(),
+            largest_growth_per_s: self.rows(|p| p.leading().map(|m| m.growth())),
+            frequency_hz_there: self.rows(|p| p.leading().map(|m| m.frequency())),
+            complete: self.rows(Point::complete),
+            growth_beyond_window_per_s: self.rows(|p| p.beyond().map(|m| m.growth())),
+            points: Counts {
+                total: tally.points,
+                complete: tally.complete,
+                not_certified: tally.doubtful,
+                failed: tally.failed,
+                growing: tally.growing,
+                growing_beyond_window: tally.beyond,
+            },
+            design_point: Design {
+                across: x,
+                up: y,
+                inside: self.design_inside(),
+                complete: self.design.complete(),
+                growth_per_s: leading.map(|m| m.growth()),
+                frequency_hz: leading.map(|m| m.frequency()),
+                growth_beyond_window_per_s: self.design_beyond.leading().map(|m| m.growth()),
+            },
+            window: (&map.window).into(),
+            outside_window: OUTSIDE,
+        };
+        Document::new("stillflame/map", &self.heading, body, self.warnings).to_json()
+    }
+
+    /// A line for each point, in SI.
+    ///
+    /// # Errors
+    /// Where a row cannot be written.
+    pub fn csv(&self) -> std::io::Result<Vec<u8>> {
+        let named = |axis| {
+            let (name, dimension): (&str, Dimension) = self.axis(axis);
+            match dimension.si_unit() {
+                "" => name.to_owned(),
+                unit => format!("{name} [{unit}]"),
+            }
+        };
+        let mut writer = csv::Writer::from_writer(Vec::new());
+        writer.write_record([
+            named(self.map.across).as_str(),
+            named(self.map.up).as_str(),
+            "largest_growth_per_s",
+            "frequency_hz_there",
+            "error_bound_per_s",
+            "growth_beyond_window_per_s",
+            "complete",
+            "failed",
+        ])?;
+        let number = |x: Option<f64>| x.map_or(String::new(), |x| x.to_string());
+        for (x, y, point) in self.map.placed() {
+            let mode = point.leading();
+            writer.write_record([
+                x.to_string(),
+                y.to_string(),
+                number(mode.map(|m| m.growth())),
+                number(mode.map(|m| m.frequency())),
+                number(mode.map(|m| m.error_bound)),
+                number(point.beyond().map(|m| m.growth())),
+                point.complete().to_string(),
+                matches!(point, Point::Failed(_)).to_string(),
+            ])?;
+        }
+        writer
+            .into_inner()
+            .map_err(|e| std::io::Error::other(e.to_string()))
+    }
+
+    /// What the map shows, in a sentence.
+    pub fn finding(&self) -> String {
+        let tally = self.map.tally();
+        let unknown = tally.points - tally.complete;
+        let mut text = match (tally.growing, unknown) {
+            (0, 0) => "No mode in the window grows on the map".to_owned(),
+            (0, n) if n == tally.points => "No point of the map is certified".to_owned(),
+            (0, _) => "No mode grows where the map is certified".to_owned(),
+            (n, _) => format!("Unstable over {} of the map", percent(n, tally.points)),
+        };
+        if unknown > 0 && unknown < tally.points {
+            text.push_str(&format!(
+                ", {} not certified",
+                percent(unknown, tally.points)
+            ));
+        }
+        text.push_str("; ");
+        text.push_str(&self.design_words());
+        text
+    }
+
+    /// What becomes of the design point.
+    fn design_words(&self) -> String {
+        if !self.design_inside() {
+            return "the design point lies outside it".to_owned();
+        }
+        let certified = if self.design.complete() {
+            ""
+        } else {
+            " (not certified)"
+        };
+        let Some(mode) = self.design_mode() else {
+            return format!("the design point has no mode in the window{certified}");
+        };
+        let verb = match mode.tendency() {
+            Tendency::Grows => "grows",
+            Tendency::Neutral => "is neutral",
+            Tendency::Decays => "decays",
+        };
+        format!(
+            "the design point {verb} at {} 1/s and {} Hz{certified}",
+            rate(mode.growth()),
+            fixed(mode.frequency(), 0)
+        )
+    }
+
+    /// For people.
+    pub fn text(&self) -> String {
+        let map = self.map;
+        let tally = map.tally();
+        let range = |axis: Axis| {
+            let (name, dimension) = self.axis(axis);
+            format!(
+                "{name} from {} to {} in {} steps",
+                write_rounded(axis.low, dimension, 6),
+                write_rounded(axis.high, dimension, 6),
+                axis.points.saturating_sub(1)
+            )
+        };
+        let mut text = format!(
+            "{}\n{}.\n\nAcross  {}\nUp      {}\nModes in {} at each of {} points\n",
+            self.heading.text(),
+            self.finding(),
+            range(map.across),
+            range(map.up),
+            window_text(&map.window),
+            tally.points
+        );
+        text.push_str(&format!(
+            "Certified complete: {}; not certified: {}; failed: {}\n",
+            tally.complete, tally.doubtful, tally.failed
+        ));
+        if let Some((x, y, mode)) = tally.greatest {
+            text.push_str(&format!(
+                "Largest growth rate: {} 1/s at {:.1} Hz, at {}\n",
+                rate(mode.growth()),
+                mode.frequency(),
+                place(self.network, (map.across.knob, x), (map.up.knob, y))
+            ));
+        }
+        let (x, y) = self.design_values();
+        text.push_str(&format!(
+            "Design point: {}, {}\n{OUTSIDE}\n",
+            setting(self.network, (map.across.knob, x)),
+            setting(self.network, (map.up.knob, y))
+        ));
+        text.push_str(&closing(self.warnings));
+        text
+    }
+}
+
+/// A growth rate with its sign, whole where it is large.
+pub(super) fn rate(growth: f64) -> String {
+    let digits = if growth.abs() < 9.95 { 1 } else { 0 };
+    let text = fixed(growth, digits);
+    if growth > 0.0 {
+        format!("+{text}")
+    } else {
+        text
+    }
+}
+
+/// `41 %`; what is neither nothing nor all is never said to be.
+fn percent(part: usize, whole: usize) -> String {
+    let exact = 100.0 * part as f64 / whole.max(1) as f64;
+    match exact {
+        p if p > 0.0 && p < 1.0 => "less than 1 %".to_owned(),
+        p if p > 99.0 && p < 100.0 => "more than 99 %".to_owned(),
+        p => format!("{p:.0} %"),
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn percentages_do_not_round_to_nothing_or_all() {
+        assert_eq!(percent(0, 7), "0 %");
+        assert_eq!(percent(1, 40_000), "less than 1 %");
+        assert_eq!(percent(39_999, 40_000), "more than 99 %");
+        assert_eq!(percent(41, 100), "41 %");
+        assert_eq!(percent(7, 7), "100 %");
+    }
+}

@@ -1,0 +1,273 @@
+//! A certified mode list.
+
+use serde::Serialize;
+
+use super::document::WindowFields;
+use super::shapes::{self, ShapeFields};
+use super::table::{Lean, Table};
+use super::{Document, Heading, OUTSIDE, closing, counted, csv_of, window_text};
+use crate::modes::shapes::Shape;
+use crate::modes::{Mode, ModeList, Tendency};
+use crate::network::Network;
+use crate::numerics::count::Effort;
+use crate::problems::Problem;
+
+/// A mode list to report.
+#[derive(Clone, Copy, Debug)]
+pub struct Modes<'a> {
+    /// Of which network.
+    pub heading: Heading<'a>,
+    /// The network.
+    pub network: &'a Network,
+    /// The list.
+    pub list: &'a ModeList,
+    /// The shape of each mode, in the order of the list; absent where it did not settle.
+    pub shapes: &'a [Option<Shape>],
+    /// Whether the shapes themselves are told, and not only their residuals.
+    pub with_shapes: bool,
+    /// What qualifies it.
+    pub warnings: &'a [Problem],
+}
+
+/// One mode, in SI.
+#[derive(Clone, Debug, Serialize)]
+struct Row {
+    frequency_hz: f64,
+    growth_per_s: f64,
+    error_bound_per_s: f64,
+    cycle_increment: Option<f64>,
+    damping_ratio: Option<f64>,
+    multiplicity: u8,
+    tendency: &'static str,
+    residual: Option<f64>,
+}
+
+#[derive(Clone, Debug, Serialize)]
+struct Entry<'a> {
+    #[serde(flatten)]
+    row: Row,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    shape: Option<ShapeFields<'a>>,
+}
+
+#[derive(Clone, Debug, Serialize)]
+struct EffortFields {
+    evaluations: usize,
+    bounds: usize,
+    refinements: usize,
+    retries: usize,
+    fallbacks: usize,
+}
+
+impl From<&Effort> for EffortFields {
+    fn from(e: &Effort) -> Self {
+        EffortFields {
+            evaluations: e.evaluations,
+            bounds: e.bounds,
+            refinements: e.refinements,
+            retries: e.retries,
+            fallbacks: e.fallbacks,
+        }
+    }
+}
+
+#[derive(Clone, Debug, Serialize)]
+struct Body<'a> {
+    complete: bool,
+    expected: Option<usize>,
+    found: usize,
+    doubts: Vec<String>,
+    window: WindowFields,
+    modes: Vec<Entry<'a>>,
+    effort: EffortFields,
+    outside_window: &'static str,
+}
+
+fn tendency(mode: &Mode) -> &'static str {
+    match mode.tendency() {
+        Tendency::Grows => "grows",
+        Tendency::Neutral => "neutral",
+        Tendency::Decays => "decays",
+    }
+}
+
+impl Modes<'_> {
+    fn shape(&self, index: usize) -> Option<&Shape> {
+        self.shapes.get(index)?.as_ref()
+    }
+
+    fn rows(&self) -> impl Iterator<Item = Row> {
+        self.list.modes.iter().enumerate().map(|(i, mode)| Row {
+            frequency_hz: mode.frequency(),
+            growth_per_s: mode.growth(),
+            error_bound_per_s: mode.error_bound,
+            cycle_increment: mode.cycle_increment(),
+            damping_ratio: mode.damping_ratio(),
+            multiplicity: mode.multiplicity,
+            tendency: tendency(mode),
+            residual: self.shape(i).map(|s| s.residual).filter(|r| r.is_finite()),
+        })
+    }
+
+    /// Modes found, each as often as it coincides.
+    fn found(&self) -> usize {
+        let weights = self.list.modes.iter().map(|m| usize::from(m.multiplicity));
+        weights.sum()
+    }
+
+    /// As JSON.
+    ///
+    /// # Errors
+    /// Where it has no form in JSON.
+    pub fn json(&self) -> std::io::Result<String> {
+        let told = |i: usize| self.shape(i).filter(|_| self.with_shapes);
+        let entry = |(i, row)| Entry {
+            row,
+            shape: told(i).map(|s| ShapeFields::new(self.network, s)),
+        };
+        let body = Body {
+            complete: self.list.complete(),
+            expected: self.list.expected,
+            found: self.found(),
+            doubts: self.list.doubts.iter().map(ToString::to_string).collect(),
+            window: (&self.list.window).into(),
+            modes: self.rows().enumerate().map(entry).collect(),
+            effort: (&self.list.effort).into(),
+            outside_window: OUTSIDE,
+        };
+        Document::new("stillflame/modes", &self.heading, body, self.warnings).to_json()
+    }
+
+    /// The modes as CSV, in SI.
+    ///
+    /// # Errors
+    /// Where a row cannot be written.
+    pub fn csv(&self) -> std::io::Result<Vec<u8>> {
+        csv_of(self.rows())
+    }
+
+    /// Every shape as CSV, in SI.
+    ///
+    /// # Errors
+    /// Where a row cannot be written.
+    pub fn shapes_csv(&self) -> std::io::Result<Vec<u8>> {
+        csv_of(shapes::csv_rows(self.network, self.list, self.shapes))
+    }
+
+    /// For people.
+    pub fn text(&self) -> String {
+        let mut text = format!(
+            "{}\nModes in {}\n\n",
+            self.heading.text(),
+            window_text(&self.list.window)
+        );
+        if !self.list.modes.is_empty() {
+            text.push_str(&self.table());
+            text.push('\n');
+        }
+        text.push_str(&self.verdict());
+        if self.with_shapes {
+            for (i, mode) in self.list.modes.iter().enumerate() {
+                text.push_str(&shapes::text(self.network, i, mode, self.shape(i)));
+            }
+        }
+        text.push_str(&closing(self.warnings));
+        text
+    }
+
+    fn table(&self) -> String {
+        use Lean::{Left, Right};
+        let mut table = Table::new(&[Right, Right, Right, Left, Right, Right, Right, Right, Right]);
+        table.heading(&[
+            "mode",
+            "frequency",
+            "growth rate",
+            "",
+            "error bound",
+            "cycle",
+            "damping",
+            "multi-",
+            "residual",
+        ]);
+        table.heading(&[
+            "",
+            "Hz",
+            "1/s",
+            "",
+            "1/s",
+            "increment",
+            "ratio",
+            "plicity",
+            "",
+        ]);
+        let some = |x: Option<f64>, digits: usize| match x {
+            Some(x) => format!("{x:.digits$}"),
+            None => "none".to_owned(),
+        };
+        for (i, row) in self.rows().enumerate() {
+            table.row(vec![
+                format!("{}", i + 1),
+                format!("{:.3}", row.frequency_hz),
+                format!("{:.3}", row.growth_per_s),
+                row.tendency.to_owned(),
+                format!("{:.0e}", row.error_bound_per_s),
+                some(row.cycle_increment, 4),
+                some(row.damping_ratio, 4),
+                format!("{}", row.multiplicity),
+                row.residual
+                    .map_or("none".to_owned(), |r| format!("{r:.0e}")),
+            ]);
+        }
+        table.text()
+    }
+
+    /// What the list proves, in words.
+    fn verdict(&self) -> String {
+        let list = self.list;
+        let found = self.found();
+        let mut text = match (list.complete(), list.expected) {
+            (true, Some(n)) => format!(
+                "Complete: the argument principle counts {} in the window, {found} found.\n",
+                counted(n, "mode")
+            ),
+            (_, Some(n)) => format!(
+                "NOT PROVED COMPLETE: {} expected in the window, {found} found.\n",
+                counted(n, "mode")
+            ),
+            (_, None) => {
+                format!("NOT PROVED COMPLETE: no count was reached; {found} found.\n")
+            }
+        };
+        for doubt in &list.doubts {
+            text.push_str(&format!("  {doubt}\n"));
+        }
+        let growing = list
+            .modes
+            .iter()
+            .filter(|m| m.tendency() == Tendency::Grows)
+            .count();
+        text.push_str(&match (growing, list.leading()) {
+            (0, None) => "No mode was found in the window.\n".to_owned(),
+            (0, Some(m)) => format!(
+                "No mode found in the window grows; the slowest to decay: {:.3} 1/s at {:.2} Hz.\n",
+                m.growth(),
+                m.frequency()
+            ),
+            (n, Some(m)) => format!(
+                "{} grow{}; the fastest: {:+.3} 1/s at {:.2} Hz.\n",
+                counted(n, "mode"),
+                if n == 1 { "s" } else { "" },
+                m.growth(),
+                m.frequency()
+            ),
+            (n, None) => format!("{} grow.\n", counted(n, "mode")),
+        });
+        text.push_str(OUTSIDE);
+        let e = &list.effort;
+        text.push_str(&format!(
+            "\nEffort: {} evaluations, {} bounds, {} refinements, {} retries, {} fallbacks.\n",
+            e.evaluations, e.bounds, e.refinements, e.retries, e.fallbacks
+        ));
+        text
+    }
+}

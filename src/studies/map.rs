@@ -1,0 +1,305 @@
+//! A stability map: the certified mode list at every point of a plane of two knobs.
+//!
+//! Values come from their index, `low + i (high - low)/(n - 1)`, and both ends are exact. Every point
+//! is computed on its own, so the answer does not depend on the number of threads.
+
+use std::ops::ControlFlow;
+
+use rayon::prelude::*;
+
+use crate::acoustics;
+use crate::elements::Kind;
+use crate::elements::duct::Entropy;
+use crate::elements::ends::{ExitEnd, FeedEnd};
+use crate::elements::flame::ResponseLaw;
+use crate::elements::knob::KnobId;
+use crate::meanflow::MeanFlow;
+use crate::modes::{self, Mode, Scan, Solved, Tendency, Window};
+use crate::network::Network;
+use crate::problems::{Problem, Problems};
+
+/// A knob and the values it takes, in SI.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Axis {
+    /// The knob.
+    pub knob: KnobId,
+    /// First value.
+    pub low: f64,
+    /// Last value.
+    pub high: f64,
+    /// Number of values, both ends among them.
+    pub points: usize,
+}
+
+impl Axis {
+    /// The value of that index.
+    pub fn value(&self, index: usize) -> f64 {
+        let last = self.points.saturating_sub(1);
+        match index {
+            0 => self.low,
+            i if i >= last => self.high,
+            i => self.low + (self.high - self.low) * (i as f64 / last as f64),
+        }
+    }
+
+    /// Every value in order.
+    pub fn values(&self) -> Vec<f64> {
+        (0..self.points).map(|i| self.value(i)).collect()
+    }
+
+    /// Whether a value lies on the axis.
+    pub fn holds(&self, value: f64) -> bool {
+        (self.low..=self.high).contains(&value)
+    }
+}
+
+/// The modes that matter at a point.
+#[derive(Clone, Copy, Debug, Default, PartialEq)]
+pub struct Found {
+    /// The mode in the window that grows fastest, or decays slowest.
+    pub leading: Option<Mode>,
+    /// The fastest of those that grow faster than the window's upper edge (see [`modes::beyond`]).
+    pub beyond: Option<Mode>,
+}
+
+/// What is known of one point.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Point {
+    /// The list of the window is proved complete.
+    Certified(Found),
+    /// It is not.
+    Doubtful {
+        /// Of the modes found.
+        found: Found,
+        /// The first doubt, in words.
+        why: Box<str>,
+    },
+    /// There is no mean flow, or no acoustics about it.
+    Failed(Box<Problem>),
+}
+
+impl Point {
+    fn found(&self) -> Found {
+        match self {
+            Point::Certified(found) | Point::Doubtful { found, .. } => *found,
+            Point::Failed(_) => Found::default(),
+        }
+    }
+
+    /// The leading mode in the window.
+    pub fn leading(&self) -> Option<Mode> {
+        self.found().leading
+    }
+
+    /// The fastest mode beyond the window's upper edge.
+    pub fn beyond(&self) -> Option<Mode> {
+        self.found().beyond
+    }
+
+    /// The fastest mode known, in the window or beyond its upper edge.
+    pub fn fastest(&self) -> Option<Mode> {
+        self.beyond().or(self.leading())
+    }
+
+    /// Whether the list at the point is proved complete.
+    pub fn complete(&self) -> bool {
+        matches!(self, Point::Certified(_))
+    }
+}
+
+/// The answers over a plane.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Map {
+    /// The axis along a row.
+    pub across: Axis,
+    /// The axis from row to row.
+    pub up: Axis,
+    /// Where modes were searched at every point.
+    pub window: Window,
+    /// Row by row, each of `across.points`.
+    pub points: Vec<Point>,
+}
+
+impl Map {
+    /// The rows, from the lowest value of `up`.
+    pub fn rows(&self) -> impl Iterator<Item = &[Point]> {
+        self.points.chunks(self.across.points.max(1))
+    }
+
+    /// Each point with its values on `across` and `up`.
+    pub fn placed(&self) -> impl Iterator<Item = (f64, f64, &Point)> {
+        self.rows().enumerate().flat_map(move |(j, row)| {
+            let up = self.up.value(j);
+            row.iter()
+                .enumerate()
+                .map(move |(i, point)| (self.across.value(i), up, point))
+        })
+    }
+}
+
+/// How many points came out how.
+#[derive(Clone, Copy, Debug, Default, PartialEq)]
+pub struct Tally {
+    /// All of them.
+    pub points: usize,
+    /// Those whose list is proved complete.
+    pub complete: usize,
+    /// Those whose list is not.
+    pub doubtful: usize,
+    /// Those without a mean flow.
+    pub failed: usize,
+    /// Those where a mode grows, whether or not the list is complete.
+    pub growing: usize,
+    /// Those where a mode grows faster than the window's upper edge.
+    pub beyond: usize,
+    /// The largest growth rate found, in the window or beyond, with its values on `across` and `up`.
+    pub greatest: Option<(f64, f64, Mode)>,
+}
+
+impl Map {
+    /// Counts the points.
+    pub fn tally(&self) -> Tally {
+        let mut tally = Tally::default();
+        for (x, y, point) in self.placed() {
+            tally.points += 1;
+            match point {
+                Point::Certified(_) => tally.complete += 1,
+                Point::Doubtful { .. } => tally.doubtful += 1,
+                Point::Failed(_) => tally.failed += 1,
+            }
+            let Some(mode) = point.fastest() else {
+                continue;
+            };
+            if point.beyond().is_some() {
+                tally.beyond += 1;
+            }
+            if mode.tendency() == Tendency::Grows {
+                tally.growing += 1;
+            }
+            if tally
+                .greatest
+                .is_none_or(|(_, _, m)| m.growth() < mode.growth())
+            {
+                tally.greatest = Some((x, y, mode));
+            }
+        }
+        tally
+    }
+}
+
+/// Asks for the modes at every point of the plane, on all cores.
+///
+/// `mean` is the mean flow of the network; it is computed anew at each point where a knob of the plane
+/// can move it. `watch` is called once for each point done and may end the work, which then has no
+/// answer.
+pub fn map(
+    network: &Network,
+    mean: &MeanFlow<f64>,
+    (across, up): (Axis, Axis),
+    window: Window,
+    watch: impl Fn() -> ControlFlow<()> + Sync,
+) -> Option<Map> {
+    let moves = moves_mean_flow(network, across.knob) || moves_mean_flow(network, up.knob);
+    let held = (!moves).then_some(mean);
+    let columns = across.points;
+    let points: Option<Vec<Point>> = (0..columns * up.points)
+        .into_par_iter()
+        .map(|index| {
+            let (i, j) = (index % columns, index / columns);
+            let mut here = network.clone();
+            here.values[across.knob] = across.value(i);
+            here.values[up.knob] = up.value(j);
+            let point = point(&here, held, window);
+            watch().is_continue().then_some(point)
+        })
+        .collect();
+    Some(Map {
+        across,
+        up,
+        window,
+        points: points?,
+    })
+}
+
+fn point(network: &Network, held: Option<&MeanFlow<f64>>, window: Window) -> Point {
+    let solved = match held {
+        None => modes::solve(network),
+        Some(mean) => acoustics::assemble(network, mean).map(|acoustics| Solved {
+            mean: mean.clone(),
+            acoustics,
+        }),
+    };
+    let solved = match solved {
+        Ok(solved) => solved,
+        Err(Problems(problems)) => {
+            let unsaid = || Problem::error("network", "this point has no solution");
+            return Point::Failed(Box::new(problems.into_iter().next().unwrap_or_else(unsaid)));
+        }
+    };
+    // The characteristic function is analytic by construction.
+    let list = modes::find(&solved, window, Scan::UntilCounted);
+    let found = Found {
+        leading: list.leading().copied(),
+        beyond: modes::beyond(&solved, window).leading().copied(),
+    };
+    match list.doubts.first() {
+        None => Point::Certified(found),
+        Some(doubt) => Point::Doubtful {
+            found,
+            why: doubt.to_string().into(),
+        },
+    }
+}
+
+/// Whether a knob can move the mean flow. Those of the acoustics alone cannot: ducts lose nothing along
+/// their length, slugs and volumes are at rest in steady flow, and a response answers fluctuations.
+pub fn moves_mean_flow(network: &Network, knob: KnobId) -> bool {
+    !network
+        .layout
+        .elements
+        .iter()
+        .any(|e| acoustics_only(&e.kind).contains(&knob))
+}
+
+/// The knobs of an element that no steady balance reads.
+fn acoustics_only(kind: &Kind) -> Vec<KnobId> {
+    match kind {
+        Kind::Feed(feed) => match feed.end {
+            FeedEnd::Reflection(r) => vec![r.coefficient, r.phase],
+            FeedEnd::Closed
+            | FeedEnd::Open
+            | FeedEnd::Reservoir
+            | FeedEnd::Anechoic
+            | FeedEnd::Choked => Vec::new(),
+        },
+        Kind::Exit(exit) => match exit.end {
+            ExitEnd::Reflection(r) => vec![r.coefficient, r.phase],
+            ExitEnd::Closed | ExitEnd::Open | ExitEnd::Anechoic | ExitEnd::Choked { .. } => {
+                Vec::new()
+            }
+        },
+        Kind::Duct(duct) => match duct.entropy {
+            Entropy::Mixed => vec![duct.length],
+            Entropy::Carried { dispersion } => vec![duct.length, dispersion],
+        },
+        Kind::Contraction(c) => vec![c.effective_length],
+        Kind::Expansion(e) => vec![e.effective_length],
+        Kind::Restriction(r) => vec![r.effective_length],
+        Kind::Plenum(p) => vec![p.volume],
+        Kind::Flame(flame) => flame
+            .responses
+            .iter()
+            .flat_map(|r| match r.law {
+                ResponseLaw::NTau {
+                    interaction_index,
+                    delay,
+                } => vec![interaction_index, delay],
+                ResponseLaw::Gaussian {
+                    interaction_index,
+                    delay,
+                    spread,
+                } => vec![interaction_index, delay, spread],
+            })
+            .collect(),
+    }
+}
