@@ -9,7 +9,7 @@ use crate::elements::{
     Element, GAS_KNOBS, GasChoice, Kind, Section, area_change, duct, flame, plenum, restriction,
 };
 use crate::gas::Gas;
-use crate::network::{ElementId, Layout, Link, Network, Search};
+use crate::network::{ElementId, Layout, Link, Network, Search, areas};
 
 /// How much flows.
 #[derive(Clone, Copy, Debug)]
@@ -184,11 +184,13 @@ impl Rig {
                 from: ElementId(i - 1),
                 to: ElementId(i),
             })
-            .collect();
+            .collect::<Vec<_>>();
+        let (sections, _) = areas::assign(&self.elements, &links);
         let layout = Layout {
             title: "test chain".to_owned(),
             elements: self.elements,
             links,
+            station_sections: sections.into_iter().flatten().collect(),
             knobs: self.knobs,
             search: Search::default(),
         };
