@@ -1,0 +1,329 @@
+//! The rules of the house that no compiler holds: who may use whom, who touches files, how long a file
+//! may be, and words that have no place in the product. The reasons stand in `docs/architecture.md`.
+
+use std::collections::BTreeSet;
+use std::path::{Path, PathBuf};
+
+/// Every module at the top of `src`, with those it may use. Each uses only modules named before it.
+const MAY_USE: &[(&str, &[&str])] = &[
+    ("numerics", &[]),
+    ("problems", &[]),
+    ("draw", &[]),
+    ("units", &["problems"]),
+    ("gas", &["numerics"]),
+    ("waves", &["numerics"]),
+    ("flame", &["numerics", "waves"]),
+    ("elements", &["flame", "gas", "numerics", "units", "waves"]),
+    ("network", &["elements", "numerics", "problems", "units"]),
+    ("input", &["elements", "network", "problems", "units"]),
+    (
+        "meanflow",
+        &["elements", "gas", "network", "numerics", "problems"],
+    ),
+    (
+        "acoustics",
+        &[
+            "elements", "gas", "meanflow", "network", "numerics", "problems", "waves",
+        ],
+    ),
+    (
+        "modes",
+        &[
+            "acoustics",
+            "elements",
+            "gas",
+            "meanflow",
+            "network",
+            "numerics",
+            "problems",
+            "units",
+            "waves",
+        ],
+    ),
+    ("measured", &["numerics", "problems", "units"]),
+    (
+        "studies",
+        &[
+            "acoustics",
+            "elements",
+            "gas",
+            "meanflow",
+            "measured",
+            "modes",
+            "network",
+            "numerics",
+            "problems",
+            "units",
+        ],
+    ),
+    (
+        "report",
+        &[
+            "draw", "elements", "gas", "meanflow", "measured", "modes", "network", "numerics",
+            "problems", "studies", "units",
+        ],
+    ),
+    (
+        "cli",
+        &[
+            "draw", "elements", "input", "meanflow", "measured", "modes", "network", "problems",
+            "report", "studies", "units",
+        ],
+    ),
+];
+
+/// Modules that may touch files.
+const FILE_KEEPERS: &[&str] = &["cli", "input", "measured", "report"];
+
+/// What touching files looks like.
+const FILE_MARKS: &[&str] = &["std::fs", "fs::", "File::", "tempfile::", "OpenOptions"];
+
+/// Most lines of one file.
+const LONGEST: usize = 500;
+
+/// Words without a place in the product, each in two parts so that this file does not hold it.
+const UNWANTED: &[(&str, &str)] = &[
+    ("lec", "ture"),
+    ("lec", "turer"),
+    ("trans", "cript"),
+    ("home", "work"),
+    ("stu", "dents"),
+    ("tea", "cher"),
+    ("tu", "torial"),
+    ("cur", "riculum"),
+    ("brief", ".md"),
+    ("shared", "/"),
+    ("/work", "/"),
+    ("TO", "DO"),
+    ("FIX", "ME"),
+    ("XX", "X"),
+    ("todo", "!"),
+    ("unimplemented", "!"),
+    ("dbg", "!"),
+];
+
+fn root() -> &'static Path {
+    Path::new(env!("CARGO_MANIFEST_DIR"))
+}
+
+/// Files under a folder with one of the endings, in order.
+fn files(folder: &str, endings: &[&str]) -> Vec<PathBuf> {
+    let (mut waiting, mut found) = (vec![root().join(folder)], Vec::new());
+    while let Some(path) = waiting.pop() {
+        let name = path.file_name().unwrap_or_default().to_string_lossy();
+        if path.is_dir() {
+            if name != "__pycache__" {
+                let inside = std::fs::read_dir(&path).unwrap();
+                waiting.extend(inside.map(|e| e.unwrap().path()));
+            }
+        } else if endings.iter().any(|e| name.ends_with(e)) {
+            found.push(path);
+        }
+    }
+    found.sort();
+    found
+}
+
+fn shown(path: &Path) -> String {
+    path.strip_prefix(root()).unwrap().display().to_string()
+}
+
+/// The top module a file of `src` belongs to; `None` for `lib.rs` and `main.rs`, which see everything.
+fn module(path: &Path) -> Option<String> {
+    let inside = path.strip_prefix(root().join("src")).unwrap();
+    let first = inside.iter().next()?.to_str()?;
+    let name = first.strip_suffix(".rs").unwrap_or(first);
+    (!matches!(name, "lib" | "main")).then(|| name.to_owned())
+}
+
+fn without_comment(line: &str) -> &str {
+    line.split("//").next().unwrap_or_default()
+}
+
+/// The modules that follow each `crate::` in a text, those of a group `crate::{a, b::c}` among them.
+fn used(text: &str) -> BTreeSet<String> {
+    let code: Vec<&str> = text.lines().map(without_comment).collect();
+    let code = code.join("\n");
+    let word = |t: &str| -> String {
+        let letters = t.trim_start().chars();
+        letters
+            .take_while(|c| c.is_alphanumeric() || *c == '_')
+            .collect()
+    };
+    let mut found = BTreeSet::new();
+    for rest in code.split("crate::").skip(1) {
+        let Some(group) = rest.trim_start().strip_prefix('{') else {
+            found.insert(word(rest));
+            continue;
+        };
+        let (mut depth, mut start) = (0, 0);
+        for (i, c) in group.char_indices() {
+            match c {
+                '{' => depth += 1,
+                ',' if depth == 0 => {
+                    found.insert(word(&group[start..i]));
+                    start = i + 1;
+                }
+                '}' if depth == 0 => {
+                    found.insert(word(&group[start..i]));
+                    break;
+                }
+                '}' => depth -= 1,
+                _ => {}
+            }
+        }
+    }
+    found.remove("");
+    found
+}
+
+#[test]
+fn modules_use_only_what_lies_below_them() {
+    let mut faults = Vec::new();
+    for path in files("src", &[".rs"]) {
+        let Some(module) = module(&path) else {
+            continue;
+        };
+        let Some((_, allowed)) = MAY_USE.iter().find(|(m, _)| *m == module) else {
+            faults.push(format!(
+                "{}: `{module}` has no place in the house",
+                shown(&path)
+            ));
+            continue;
+        };
+        let text = std::fs::read_to_string(&path).unwrap();
+        for other in used(&text) {
+            if other != module && !allowed.contains(&other.as_str()) {
+                faults.push(format!(
+                    "{}: `{module}` may not use `{other}`",
+                    shown(&path)
+                ));
+            }
+        }
+        // A path upwards could leave the module unseen: from a file directly in it, two steps do.
+        let depth = path
+            .strip_prefix(root().join("src"))
+            .unwrap()
+            .iter()
+            .count();
+        if text.contains(&"super::".repeat(depth.max(2) + 1)) {
+            faults.push(format!(
+                "{}: say `crate::` for what lies so far up",
+                shown(&path)
+            ));
+        }
+    }
+    assert!(faults.is_empty(), "{}", faults.join("\n"));
+}
+
+#[test]
+fn the_house_has_no_rooms_but_those_listed_and_no_cycle() {
+    let lib = std::fs::read_to_string(root().join("src/lib.rs")).unwrap();
+    let declared: BTreeSet<&str> = lib
+        .lines()
+        .filter_map(|l| l.strip_prefix("pub mod ")?.strip_suffix(';'))
+        .collect();
+    let listed: BTreeSet<&str> = MAY_USE.iter().map(|(m, _)| *m).collect();
+    assert!(!declared.is_empty());
+    assert!(
+        declared.is_subset(&listed),
+        "{:?} have no place in the house",
+        declared.difference(&listed)
+    );
+    let mut below = BTreeSet::new();
+    for (module, allowed) in MAY_USE {
+        for other in *allowed {
+            assert!(
+                below.contains(other),
+                "`{module}` names `{other}`, which is not below it"
+            );
+        }
+        below.insert(module);
+    }
+}
+
+#[test]
+fn only_the_keepers_of_files_touch_files() {
+    let mut faults = Vec::new();
+    for path in files("src", &[".rs"]) {
+        if module(&path).is_some_and(|m| FILE_KEEPERS.contains(&m.as_str())) {
+            continue;
+        }
+        let text = std::fs::read_to_string(&path).unwrap();
+        for (i, line) in text.lines().enumerate() {
+            let code = without_comment(line);
+            if let Some(mark) = FILE_MARKS.iter().find(|m| code.contains(*m)) {
+                faults.push(format!("{}:{}: `{mark}`", shown(&path), i + 1));
+            }
+        }
+    }
+    assert!(faults.is_empty(), "{}", faults.join("\n"));
+}
+
+#[test]
+fn no_file_is_too_long() {
+    let mut faults = Vec::new();
+    let folders = ["src", "tests", "examples"];
+    for path in folders.iter().flat_map(|f| files(f, &[".rs", ".py"])) {
+        let lines = std::fs::read_to_string(&path).unwrap().lines().count();
+        if lines > LONGEST {
+            faults.push(format!("{}: {lines} lines", shown(&path)));
+        }
+    }
+    assert!(
+        faults.is_empty(),
+        "over {LONGEST} lines:\n{}",
+        faults.join("\n")
+    );
+}
+
+#[test]
+fn words_without_a_place_in_the_product_do_not_stand_in_it() {
+    let endings = [".rs", ".py", ".md", ".toml", ".txt", ".csv", ".json"];
+    let folders = ["src", "tests", "examples", "networks", "docs"];
+    let mut all: Vec<PathBuf> = folders.iter().flat_map(|f| files(f, &endings)).collect();
+    let top = ["README.md", "DEVELOPERS.md", "Cargo.toml", ".ci/run"];
+    all.extend(top.iter().map(|name| root().join(name)));
+    let mut faults = Vec::new();
+    for path in all {
+        let text = std::fs::read_to_string(&path).unwrap();
+        for (i, line) in text.lines().enumerate() {
+            for (a, b) in UNWANTED {
+                if stands_in(line, &format!("{a}{b}")) {
+                    faults.push(format!("{}:{}: `{a}{b}`", shown(&path), i + 1));
+                }
+            }
+        }
+    }
+    assert!(faults.is_empty(), "{}", faults.join("\n"));
+}
+
+/// Whether a word stands in a line by itself, whatever its case where it has no capitals.
+fn stands_in(line: &str, word: &str) -> bool {
+    let lower = line.to_lowercase();
+    let line = if word.chars().any(char::is_uppercase) {
+        line
+    } else {
+        &lower
+    };
+    let letter = |c: Option<char>| c.is_some_and(|c| c.is_alphanumeric() || c == '_');
+    line.match_indices(word).any(|(at, _)| {
+        let (before, after) = (
+            line[..at].chars().next_back(),
+            line[at + word.len()..].chars().next(),
+        );
+        let (first, last) = (word.chars().next(), word.chars().next_back());
+        !(letter(first) && letter(before)) && !(letter(last) && letter(after))
+    })
+}
+
+#[test]
+fn the_test_itself_sees_what_it_looks_for() {
+    let text = "use crate::{a::b, c::{d, e}, f};\nlet x = crate::g::h(); // crate::i\n";
+    let found: Vec<String> = used(text).into_iter().collect();
+    assert_eq!(found, ["a", "c", "f", "g"]);
+    assert!(stands_in("// to do: Home, then work", "home"));
+    assert!(!stands_in("// homely", "home"));
+    assert!(stands_in("see ../elsewhere/notes", "elsewhere/"));
+    assert!(!stands_in("a todo list", "TO"));
+}
