@@ -62,12 +62,6 @@ impl Rig {
         rig
     }
 
-    pub(super) fn no_pressure(&mut self) {
-        if let Kind::Feed(f) = &mut self.elements[0].kind {
-            f.pressure = None;
-        }
-    }
-
     fn push(&mut self, name: &str, kind: Kind) {
         self.elements.push(Element {
             name: name.to_owned(),
