@@ -34,6 +34,8 @@ pub(super) struct Chain<'a, T> {
     pub(super) values: &'a Values<T>,
     /// Area at each station [m^2].
     pub(super) areas: &'a [T],
+    /// A flow tried on the way to the answer: a flame may be colder than its inlet in it.
+    pub(super) trial: bool,
 }
 
 impl<T: Real> Chain<'_, T> {
@@ -65,6 +67,7 @@ impl<T: Real> Chain<'_, T> {
                 id: link.from,
                 element,
                 values: self.values,
+                trial: self.trial,
             };
             up = match &element.kind {
                 Kind::Duct(_) | Kind::Feed(_) | Kind::Exit(_) => up,
@@ -86,6 +89,7 @@ struct Here<'a, T> {
     id: ElementId,
     element: &'a Element,
     values: &'a Values<T>,
+    trial: bool,
 }
 
 impl<T: Real> Here<'_, T> {
@@ -128,7 +132,7 @@ impl<T: Real> Here<'_, T> {
             .burnt_temperature
             .map_or(up.temperature, |k| self.values[k]);
         let (asked, inlet) = (burnt.value(), up.temperature.value());
-        if asked < inlet {
+        if asked < inlet && !self.trial {
             return Err(Fault::Colder {
                 element: self.id,
                 asked,

@@ -186,6 +186,7 @@ fn run<T: Real>(
         layout,
         values,
         areas,
+        trial: false,
     };
     let gas = gas(feed.gas, values);
     let temperature = values[feed.temperature];

@@ -114,13 +114,10 @@ fn check_derivatives(network: &Network<f64>, tolerance: f64) -> Result<(), TestC
         let h = if x == 0.0 { 1e-5 } else { 2e-4 * x };
         let at = |d: f64| solve(&network.with(knob, x + d));
         let around = [at(-2.0 * h), at(-h), at(h), at(2.0 * h)];
-        let Ok([a, b, c, d]): Result<[MeanFlow<f64>; 4], _> = around
-            .into_iter()
-            .collect::<Result<Vec<_>, _>>()
-            .unwrap()
-            .try_into()
-        else {
-            unreachable!()
+        let around: Result<Vec<MeanFlow<f64>>, _> = around.into_iter().collect();
+        let Ok([a, b, c, d]) = around.as_deref() else {
+            // A flow at the end of what a chain can pass has neighbours without an answer.
+            return Err(TestCaseError::reject("a neighbour has no answer"));
         };
         let compare = |exact: Dual, value: f64, f: [f64; 4], scale: f64, what: &str| {
             let slope = (8.0 * (f[2] - f[1]) - (f[3] - f[0])) / (12.0 * h);

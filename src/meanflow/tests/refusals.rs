@@ -220,3 +220,32 @@ fn doubtful_states_are_warned_of() {
     assert_eq!(warnings[0].subject, "feed.temperature");
     assert!(warnings[0].what.contains("150.0 K"));
 }
+
+/// Found by the random chains: the temperature before the second flame falls as the Mach number rises,
+/// so that flows short of the answer make it colder than its inlet.
+#[test]
+fn a_flame_too_cold_beside_the_answer_does_not_hide_it() {
+    let rig = |flow, pressure| {
+        Rig::new(Gas::Air, flow, 600.0, pressure, FeedEnd::Reservoir)
+            .duct("a", 0.01)
+            .flame("f1", Some(2000.0), None)
+            .duct("b", 0.01)
+            .plenum("p")
+            .duct("c", 0.01)
+    };
+    let choked = || ExitEnd::Choked { throat: None };
+    let before = solve(&rig(Flow::Mach(0.1), Some(1e5)).exit(choked())).unwrap();
+    let inlet = before.states.last().unwrap().temperature;
+    let rig = |flow, pressure| {
+        rig(flow, pressure)
+            .flame("f2", Some(inlet + 0.01), None)
+            .duct("d", 0.01)
+    };
+    let flow = solve(&rig(Flow::Mach(0.1), Some(1e5)).exit(choked())).unwrap();
+    let throat = flow.throat_area.unwrap();
+    let again = solve(&rig(Flow::FromThroat, Some(1e5)).throat(throat)).unwrap();
+    let (a, b) = (flow.states[0].velocity, again.states[0].velocity);
+    assert!((a / b - 1.0).abs() < 1e-9);
+    let colder = only_problem(&rig(Flow::FromThroat, Some(1e5)).throat(0.95 * throat));
+    assert_eq!(colder.subject, "f2.burnt_temperature");
+}
