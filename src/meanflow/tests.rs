@@ -170,7 +170,9 @@ proptest! {
             Ok(flow) => check_balances(&network, &flow)?,
             Err(problems) => {
                 let told = problems.to_string();
-                prop_assert!(told.contains("flow beyond Mach 1"), "{told}");
+                // Brought to rest, a fast stream may be hotter than the next flame is stated.
+                let refused = ["flow beyond Mach 1", "colder than its inlet"];
+                prop_assert!(refused.iter().any(|r| told.contains(r)), "{told}");
                 prop_assert!(mach > 0.02, "{told}");
             }
         }
