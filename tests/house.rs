@@ -2,6 +2,7 @@
 //! may be, and words that have no place in the product. The reasons stand in `docs/architecture.md`.
 
 use std::collections::BTreeSet;
+use std::io;
 use std::path::{Path, PathBuf};
 
 /// Every module at the top of `src`, with those it may use. Each uses only modules named before it.
@@ -107,30 +108,34 @@ fn root() -> &'static Path {
 }
 
 /// Files under a folder with one of the endings, in order.
-fn files(folder: &str, endings: &[&str]) -> Vec<PathBuf> {
+fn files(folder: &str, endings: &[&str]) -> io::Result<Vec<PathBuf>> {
     let (mut waiting, mut found) = (vec![root().join(folder)], Vec::new());
     while let Some(path) = waiting.pop() {
         let name = path.file_name().unwrap_or_default().to_string_lossy();
         if path.is_dir() {
             if name != "__pycache__" {
-                let inside = std::fs::read_dir(&path).unwrap();
-                waiting.extend(inside.map(|e| e.unwrap().path()));
+                for entry in std::fs::read_dir(&path)? {
+                    waiting.push(entry?.path());
+                }
             }
         } else if endings.iter().any(|e| name.ends_with(e)) {
             found.push(path);
         }
     }
     found.sort();
-    found
+    Ok(found)
 }
 
 fn shown(path: &Path) -> String {
-    path.strip_prefix(root()).unwrap().display().to_string()
+    path.strip_prefix(root())
+        .unwrap_or(path)
+        .display()
+        .to_string()
 }
 
 /// The top module a file of `src` belongs to; `None` for `lib.rs` and `main.rs`, which see everything.
 fn module(path: &Path) -> Option<String> {
-    let inside = path.strip_prefix(root().join("src")).unwrap();
+    let inside = path.strip_prefix(root().join("src")).ok()?;
     let first = inside.iter().next()?.to_str()?;
     let name = first.strip_suffix(".rs").unwrap_or(first);
     (!matches!(name, "lib" | "main")).then(|| name.to_owned())
@@ -141,10 +146,10 @@ fn without_comment(line: &str) -> &str {
 }
 
 /// The text of a file of `src` without the tests at its end, which may look further.
-fn product(path: &Path) -> String {
-    let text = std::fs::read_to_string(path).unwrap();
-    let tests = text.find("#[cfg(test)]\nmod tests {");
-    text[..tests.unwrap_or(text.len())].to_owned()
+fn product(path: &Path) -> io::Result<String> {
+    let text = std::fs::read_to_string(path)?;
+    let product = text.split("#[cfg(test)]\nmod tests {").next();
+    Ok(product.unwrap_or_default().to_owned())
 }
 
 /// The modules that follow each `crate::` in a text, those of a group `crate::{a, b::c}` among them.
@@ -187,7 +192,7 @@ fn used(text: &str) -> BTreeSet<String> {
 #[test]
 fn modules_use_only_what_lies_below_them() {
     let mut faults = Vec::new();
-    for path in files("src", &[".rs"]) {
+    for path in files("src", &[".rs"]).unwrap() {
         let Some(module) = module(&path) else {
             continue;
         };
@@ -198,7 +203,7 @@ fn modules_use_only_what_lies_below_them() {
             ));
             continue;
         };
-        let text = product(&path);
+        let text = product(&path).unwrap();
         for other in used(&text) {
             if other != module && !allowed.contains(&other.as_str()) {
                 faults.push(format!(
@@ -252,11 +257,11 @@ fn the_house_has_no_rooms_but_those_listed_and_no_cycle() {
 #[test]
 fn only_the_keepers_of_files_touch_files() {
     let mut faults = Vec::new();
-    for path in files("src", &[".rs"]) {
+    for path in files("src", &[".rs"]).unwrap() {
         if module(&path).is_some_and(|m| FILE_KEEPERS.contains(&m.as_str())) {
             continue;
         }
-        let text = product(&path);
+        let text = product(&path).unwrap();
         for (i, line) in text.lines().enumerate() {
             let code = without_comment(line);
             if let Some(mark) = FILE_MARKS.iter().find(|m| code.contains(*m)) {
@@ -271,7 +276,10 @@ fn only_the_keepers_of_files_touch_files() {
 fn no_file_is_too_long() {
     let mut faults = Vec::new();
     let folders = ["src", "tests", "examples"];
-    for path in folders.iter().flat_map(|f| files(f, &[".rs", ".py"])) {
+    for path in folders
+        .iter()
+        .flat_map(|f| files(f, &[".rs", ".py"]).unwrap())
+    {
         let lines = std::fs::read_to_string(&path).unwrap().lines().count();
         if lines > LONGEST {
             faults.push(format!("{}: {lines} lines", shown(&path)));
@@ -288,7 +296,10 @@ fn no_file_is_too_long() {
 fn words_without_a_place_in_the_product_do_not_stand_in_it() {
     let endings = [".rs", ".py", ".md", ".toml", ".txt", ".csv", ".json"];
     let folders = ["src", "tests", "examples", "networks", "docs"];
-    let mut all: Vec<PathBuf> = folders.iter().flat_map(|f| files(f, &endings)).collect();
+    let mut all: Vec<PathBuf> = folders
+        .iter()
+        .flat_map(|f| files(f, &endings).unwrap())
+        .collect();
     let top = ["README.md", "DEVELOPERS.md", "Cargo.toml", ".ci/run"];
     all.extend(top.iter().map(|name| root().join(name)));
     let mut faults = Vec::new();
