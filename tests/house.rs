@@ -331,7 +331,8 @@ fn stands_in(line: &str, word: &str) -> bool {
             line[at + word.len()..].chars().next(),
         );
         let (first, last) = (word.chars().next(), word.chars().next_back());
-        !(letter(first) && letter(before)) && !(letter(last) && letter(after))
+        let goes_on = |inside, outside| letter(inside) && letter(outside);
+        !goes_on(first, before) && !goes_on(last, after)
     })
 }
 
