@@ -321,7 +321,7 @@ fn what_qualifies_an_answer_goes_with_it() {
     said(
         &["--frequency", "20 to 3000 Hz"],
         "swirl_rig",
-        &["first cut-on of `plenum`", "2033 Hz"],
+        &["first cut-on of `plenum`", "at 2035 Hz"],
     );
     said(
         &["--set", "dump.effective_length = 80 mm"],
