@@ -113,7 +113,6 @@ impl MapReport<'_> {
             },
             x: x.axis,
             y: y.axis,
-            ..StabilityMap::default()
         })
     }
 }
