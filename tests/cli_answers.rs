@@ -1,5 +1,6 @@
 //! `check`, `flow` and `modes` of the real binary.
 
+#[cfg(test)]
 #[path = "common/cli.rs"]
 mod cli;
 
@@ -8,6 +9,13 @@ use std::path::PathBuf;
 use cli::{NETWORKS, json, network, run};
 use serde_json::Value;
 
+#[cfg(test)]
+fn numbers(value: &Value) -> Vec<f64> {
+    let items = value.as_array().unwrap();
+    items.iter().map(|v| v.as_f64().unwrap()).collect()
+}
+
+#[cfg(test)]
 fn f(value: &Value, field: &str) -> f64 {
     value[field]
         .as_f64()
@@ -15,6 +23,7 @@ fn f(value: &Value, field: &str) -> f64 {
 }
 
 /// A network file of the test's own.
+#[cfg(test)]
 fn written(folder: &tempfile::TempDir, text: &str) -> PathBuf {
     let path = folder.path().join("own.toml");
     std::fs::write(&path, text).unwrap();
@@ -276,14 +285,8 @@ fn the_window_and_the_numbers_can_be_set() {
     ];
     let (value, code) = json("modes", &network("swirl_rig"), &narrow);
     assert_eq!(code, Some(0));
-    assert_eq!(
-        cli::numbers(&value["window"]["frequency_hz"]),
-        [100.0, 400.0]
-    );
-    assert_eq!(
-        cli::numbers(&value["window"]["growth_per_s"]),
-        [-200.0, 300.0]
-    );
+    assert_eq!(numbers(&value["window"]["frequency_hz"]), [100.0, 400.0]);
+    assert_eq!(numbers(&value["window"]["growth_per_s"]), [-200.0, 300.0]);
     let (all, _) = json("modes", &network("swirl_rig"), &[]);
     let inside: Vec<&Value> = all["modes"]
         .as_array()

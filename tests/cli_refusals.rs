@@ -1,5 +1,6 @@
 //! Bad usage, bad files, places that cannot be written, readers that go away, and Ctrl-C.
 
+#[cfg(test)]
 #[path = "common/cli.rs"]
 mod cli;
 
@@ -7,7 +8,7 @@ use std::path::{Path, PathBuf};
 use std::process::{Command, Stdio};
 use std::time::{Duration, Instant};
 
-use cli::{json, network, run};
+use cli::{NETWORKS, json, network, run};
 
 const VERBS: [&str; 4] = ["check", "flow", "modes", "map"];
 const PLANE: [&str; 4] = [
@@ -18,6 +19,7 @@ const PLANE: [&str; 4] = [
 ];
 
 /// What a verb must be told beside the network.
+#[cfg(test)]
 fn needed(verb: &str) -> Vec<&'static str> {
     match verb {
         "map" => PLANE.to_vec(),
@@ -25,6 +27,7 @@ fn needed(verb: &str) -> Vec<&'static str> {
     }
 }
 
+#[cfg(test)]
 fn binary() -> Command {
     Command::new(env!("CARGO_BIN_EXE_stillflame"))
 }
@@ -222,11 +225,11 @@ fn a_place_that_cannot_be_written_is_told_before_the_work() {
 
 #[test]
 fn a_reader_that_goes_away_is_no_failure() {
-    for more in [&["--json"][..], &["--shapes"]] {
+    for name in NETWORKS {
         let mut child = binary()
             .arg("modes")
-            .arg(network("twenty_elements"))
-            .args(more)
+            .arg(network(name))
+            .arg("--shapes")
             .stdout(Stdio::piped())
             .stderr(Stdio::piped())
             .spawn()

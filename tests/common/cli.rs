@@ -7,7 +7,6 @@ use assert_cmd::Command;
 use serde_json::Value;
 
 /// The networks that come with the program.
-#[allow(dead_code)]
 pub const NETWORKS: [&str; 5] = [
     "flame_in_tube",
     "pressurised_rig",
@@ -61,11 +60,4 @@ pub fn json(verb: &str, file: &Path, more: &[&str]) -> (Value, Option<i32>) {
     }
     assert!(value["version"].is_u64() && value["warnings"].is_array());
     (value, ran.code)
-}
-
-/// Finite numbers of an array.
-#[allow(dead_code)]
-pub fn numbers(value: &Value) -> Vec<f64> {
-    let items = value.as_array().unwrap();
-    items.iter().map(|v| v.as_f64().unwrap()).collect()
 }
