@@ -1,6 +1,6 @@
 //! The command line: one file per verb, the options they share, and what becomes of an answer.
 //!
-//! A verb turns a [`Case`] into an [`Answer`] and writes nothing itself. Here the files are written
+//! A verb turns a case (a network as read) into an answer and writes nothing itself. Here the files are written
 //! first, whole or not at all, then the answer goes to standard output; everything else goes to
 //! standard error.
 

@@ -11,7 +11,7 @@ use crate::units::parse_span;
 
 /// Fewest and most points along an axis.
 const FEWEST: usize = 2;
-const MOST: usize = 2000;
+const MOST: usize = 1000;
 
 /// Columns and rows of a map.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -62,16 +62,16 @@ pub(super) fn axes(
     let (across, up) = match read {
         (Ok(across), Ok(up)) => (across, up),
         (a, b) => {
-            let wrong: Vec<Problem> = [a.err(), b.err()].into_iter().flatten().collect();
-            return Err(Failure::usage(wrong));
+            let wrong = [a.err(), b.err()].into_iter().flatten();
+            return Err(Failure::usage(wrong.map(|p| *p).collect::<Vec<_>>()));
         }
     };
     if across.knob == up.knob {
         let what = "--across and --up name the same number";
         let problem = Problem::error("--up", what).hint("a map needs two different ones");
-        return Err(Failure::usage(
-            [written_up.mark(problem, written_up.name())],
-        ));
+        return Err(Failure::usage([
+            *written_up.mark(problem, written_up.name())
+        ]));
     }
     Ok((across, up))
 }
@@ -99,18 +99,18 @@ impl<'t> Written<'t> {
     }
 
     /// A problem at some part of the text.
-    fn mark(&self, problem: Problem, part: &str) -> Problem {
+    fn mark(&self, problem: Problem, part: &str) -> Box<Problem> {
         let before = self.text.find(part).and_then(|at| self.text.get(..at));
-        problem.at(Place {
+        Box::new(problem.at(Place {
             source: self.flag.to_owned(),
             line: 1,
             column: before.unwrap_or_default().chars().count() + 1,
             width: part.chars().count().max(1),
             text: self.text.to_owned(),
-        })
+        }))
     }
 
-    fn axis(&self, layout: &Layout, points: usize) -> Result<Axis, Problem> {
+    fn axis(&self, layout: &Layout, points: usize) -> Result<Axis, Box<Problem>> {
         let form = "write NAME = A to B, as in main_flame.delay = 0 ms to 10 ms";
         let Some((_, span)) = self.text.split_once('=') else {
             let problem = Problem::error(self.flag, "no `=` stands between a name and a span");
@@ -202,7 +202,7 @@ mod tests {
             "1x200",
             "200x1",
             "0x0",
-            "2001x200",
+            "1001x200",
             "-5x5",
             "2.5x3",
             "axb",

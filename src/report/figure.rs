@@ -2,7 +2,7 @@
 
 use super::map::{MapReport, rate};
 use super::{CAUTION, OUTSIDE, window_text};
-use crate::draw::{Axis, DesignPoint, DrawError, IsoLines, Quantity, StabilityMap, map};
+use crate::draw::{Axis, DesignPoint, DrawError, IsoLines, Quantity, StabilityMap, Words, map};
 use crate::studies::map::{Axis as Values, Point};
 use crate::units::{self, Dimension, write_rounded};
 
@@ -104,9 +104,15 @@ impl MapReport<'_> {
                 y: design_y / y.size,
                 label: design,
             }),
+            words: Words {
+                uncertified: match tally.failed {
+                    0 => "not certified".into(),
+                    _ => "not certified, or no mean flow".into(),
+                },
+                ..Words::default()
+            },
             x: x.axis,
             y: y.axis,
-            ..StabilityMap::default()
         })
     }
 }

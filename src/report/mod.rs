@@ -36,7 +36,11 @@ pub struct Heading<'a> {
 
 impl Heading<'_> {
     fn text(&self) -> String {
-        format!("{}\n{}\n", self.title, self.network)
+        format!(
+            "{}\n{}\n",
+            problems::visible(self.title),
+            problems::visible(self.network)
+        )
     }
 }
 

@@ -96,7 +96,7 @@ fn excerpt(place: &Place) -> (String, String) {
 }
 
 /// Text as one line that a terminal shows character by character: no tab, escape or control.
-fn visible(text: &str) -> String {
+pub(super) fn visible(text: &str) -> String {
     text.chars()
         .map(|c| match c {
             '\t' => ' ',

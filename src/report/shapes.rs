@@ -79,6 +79,11 @@ fn phase(z: Complex64) -> f64 {
     if z.norm() > 0.0 { z.arg() } else { 0.0 }
 }
 
+/// In degrees to a tenth, without a negative zero.
+fn degrees(phase: f64) -> String {
+    format!("{:.1}", (phase.to_degrees() * 10.0).round() / 10.0 + 0.0)
+}
+
 /// One line of the CSV of shapes.
 #[derive(Clone, Debug, Serialize)]
 pub(super) struct CsvRow<'a> {
@@ -140,9 +145,9 @@ pub(super) fn text(network: &Network, index: usize, mode: &Mode, shape: Option<&
             s.side.unwrap_or_default().to_owned(),
             format!("{:.3}", s.position_m),
             format!("{:.4}", s.pressure_amplitude_pa),
-            format!("{:.1}", s.pressure_phase_rad.to_degrees()),
+            degrees(s.pressure_phase_rad),
             format!("{:.4}", s.velocity_amplitude_m_s * 1e3),
-            format!("{:.1}", s.velocity_phase_rad.to_degrees()),
+            degrees(s.velocity_phase_rad),
         ]);
     }
     format!(

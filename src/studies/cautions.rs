@@ -27,6 +27,23 @@ fn corners(network: &Network, across: Axis, up: Axis) -> Vec<(String, Network)> 
     all
 }
 
+/// Points spread over the plane, ends included, and where each is in words.
+fn sampled(network: &Network, across: Axis, up: Axis) -> Vec<(String, Network)> {
+    const MOST: usize = 25;
+    let spread = |axis: Axis| Axis {
+        points: axis.points.min(MOST),
+        ..axis
+    };
+    let mut all = Vec::new();
+    for y in spread(up).values() {
+        for x in spread(across).values() {
+            let place = place(network, (across.knob, x), (up.knob, y));
+            all.push((place, at(network, (across, x), (up, y))));
+        }
+    }
+    all
+}
+
 /// `main_flame.delay = 3 ms, main_flame.interaction_index = 1`.
 pub fn place(network: &Network, across: (KnobId, f64), up: (KnobId, f64)) -> String {
     format!("{}, {}", setting(network, across), setting(network, up))
@@ -66,7 +83,7 @@ pub fn refusals(network: &Network, across: Axis, up: Axis) -> Vec<Problem> {
     found
 }
 
-/// What qualifies a map beyond what is `known` of the network itself: assumptions that fail at a corner,
+/// What qualifies a map beyond what is `known` of the network itself: assumptions that fail somewhere on it,
 /// what moves and what stays while the mean flow moves, points without an answer.
 pub fn warnings(
     network: &Network,
@@ -76,12 +93,19 @@ pub fn warnings(
 ) -> Vec<Problem> {
     let (across, up) = (map.across, map.up);
     let mut found = moving(network, mean, across, up);
-    for (place, corner) in corners(network, across, up) {
-        let mut more = validity::of_responses(&corner);
-        // A corner without a mean flow is told as a failed point.
-        if let Ok(mean) = meanflow::solve(&corner) {
+    let moves = [across, up].map(|a| moves_mean_flow(network, a.knob));
+    let looked = if moves.contains(&true) {
+        // The flow is not monotone over the plane, and a corner may have none.
+        sampled(network, across, up)
+    } else {
+        corners(network, across, up)
+    };
+    for (place, sample) in looked {
+        let mut more = validity::of_responses(&sample);
+        // A point without a mean flow is told as a failed one.
+        if let Ok(mean) = meanflow::solve(&sample) {
             more.extend(mean.warnings.iter().cloned());
-            more.extend(validity::of_window(&corner, &mean, &map.window));
+            more.extend(validity::of_window(&sample, &mean, &map.window));
         }
         add(&mut found, known, &place, more);
     }
@@ -109,7 +133,7 @@ fn moving(network: &Network, mean: &MeanFlow<f64>, across: Axis, up: Axis) -> Ve
     for (delay, _) in validity::delays(network) {
         if delay != across.knob && delay != up.knob {
             let what =
-                format!("{by} can move velocities over the map, while this delay stays fixed");
+                format!("this delay stays fixed, while {by} can move velocities over the map");
             found.push(
                 Problem::warning(name(delay), what)
                     .hint("a delay of convection shortens as velocity rises: map it as well"),

@@ -303,3 +303,52 @@ fn acoustics_only(kind: &Kind) -> Vec<KnobId> {
             .collect(),
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::{input, meanflow};
+
+    #[test]
+    fn values_come_from_the_index_and_the_ends_are_exact() {
+        let axis = Axis {
+            knob: KnobId(0),
+            low: 0.1,
+            high: 0.7,
+            points: 7,
+        };
+        let values = axis.values();
+        assert_eq!((values[0], values[6]), (0.1, 0.7));
+        for (i, v) in values.iter().enumerate() {
+            assert!((v - 0.1 * (i as f64 + 1.0)).abs() < 1e-15);
+        }
+        assert!(values.windows(2).all(|w| w[0] < w[1]));
+    }
+
+    /// A knob said to leave the mean flow alone has derivative zero, exactly, in every state; the
+    /// knobs of feed, areas and burnt temperatures have not.
+    #[test]
+    fn only_knobs_that_leave_the_mean_flow_alone_are_said_to() {
+        let folder = std::path::Path::new(env!("CARGO_MANIFEST_DIR")).join("networks");
+        let (mut still, mut moving) = (0, 0);
+        for entry in std::fs::read_dir(folder).unwrap() {
+            let path = entry.unwrap().path();
+            let network = input::read(&path, &[]).unwrap().network;
+            for (i, knob) in network.layout.knobs.iter().enumerate() {
+                let mean = meanflow::solve(&network.seeded(KnobId(i))).unwrap();
+                let moves = mean.states.iter().any(|s| {
+                    [s.pressure, s.temperature, s.velocity, s.area]
+                        .iter()
+                        .any(|x| x.d[0] != 0.0)
+                });
+                if moves {
+                    assert!(moves_mean_flow(&network, KnobId(i)), "{}", knob.name);
+                    moving += 1;
+                } else if !moves_mean_flow(&network, KnobId(i)) {
+                    still += 1;
+                }
+            }
+        }
+        assert!(still > 40 && moving > 40, "{still} still, {moving} moving");
+    }
+}

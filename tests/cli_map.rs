@@ -1,0 +1,281 @@
+//! `map` of the real binary.
+
+#[cfg(test)]
+#[path = "common/cli.rs"]
+mod cli;
+
+use cli::{NETWORKS, command, json, network, run};
+use serde_json::Value;
+
+const DELAY: &str = "main_flame.delay = 0 ms to 10 ms";
+const INDEX: &str = "main_flame.interaction_index = 0 to 2";
+
+fn arguments<'a>(across: &'a str, up: &'a str, points: &'a str) -> Vec<&'a str> {
+    vec!["--across", across, "--up", up, "--points", points]
+}
+
+#[cfg(test)]
+fn numbers(value: &Value) -> Vec<f64> {
+    let items = value.as_array().unwrap();
+    items.iter().map(|v| v.as_f64().unwrap()).collect()
+}
+
+#[cfg(test)]
+fn rows(value: &Value, field: &str) -> Vec<Vec<Option<f64>>> {
+    let rows = value[field].as_array().unwrap();
+    rows.iter()
+        .map(|r| r.as_array().unwrap().iter().map(Value::as_f64).collect())
+        .collect()
+}
+
+/// The largest growth rate and its frequency by `modes`.
+#[cfg(test)]
+fn by_modes(name: &str, settings: &[String]) -> Option<(f64, f64)> {
+    let set: Vec<&str> = settings
+        .iter()
+        .flat_map(|s| ["--set", s.as_str()])
+        .collect();
+    let (value, _) = json("modes", &network(name), &set);
+    assert_eq!(value["complete"], true);
+    let modes = value["modes"].as_array().unwrap().iter();
+    modes
+        .map(|m| {
+            (
+                m["growth_per_s"].as_f64().unwrap(),
+                m["frequency_hz"].as_f64().unwrap(),
+            )
+        })
+        .max_by(|a, b| a.0.total_cmp(&b.0))
+}
+
+#[cfg(test)]
+fn same_as_modes(name: &str, across: (&str, &str), up: (&str, &str), points: &str) {
+    let (text_across, text_up) = (
+        format!("{} = {}", across.0, across.1),
+        format!("{} = {}", up.0, up.1),
+    );
+    let (value, code) = json(
+        "map",
+        &network(name),
+        &arguments(&text_across, &text_up, points),
+    );
+    assert_eq!(code, Some(0));
+    assert_eq!(value["schema"], "stillflame/map");
+    let (xs, ys) = (numbers(&value["across"]), numbers(&value["up"]));
+    let (growth, frequency) = (
+        rows(&value, "largest_growth_per_s"),
+        rows(&value, "frequency_hz_there"),
+    );
+    let complete = value["complete"].as_array().unwrap();
+    assert_eq!(
+        (growth.len(), frequency.len(), complete.len()),
+        (ys.len(), ys.len(), ys.len())
+    );
+    let unit = |field: &str| value[field].as_str().unwrap().to_owned();
+    for (j, y) in ys.iter().enumerate() {
+        assert_eq!(growth[j].len(), xs.len());
+        for (i, x) in xs.iter().enumerate() {
+            let settings = [
+                format!("{} = {x} {}", across.0, unit("across_unit")),
+                format!("{} = {y} {}", up.0, unit("up_unit")),
+            ];
+            let expected = by_modes(name, &settings);
+            assert_eq!(complete[j][i], true);
+            assert_eq!(growth[j][i].is_some(), expected.is_some());
+            if let (Some(g), Some(f), Some((eg, ef))) = (growth[j][i], frequency[j][i], expected) {
+                assert!((g - eg).abs() < 1e-8 * (1.0 + ef), "{settings:?}: {g} {eg}");
+                assert!((f - ef).abs() < 1e-8 * (1.0 + ef), "{settings:?}: {f} {ef}");
+            }
+        }
+    }
+}
+
+#[test]
+fn a_map_is_the_mode_lists_of_its_points() {
+    same_as_modes(
+        "swirl_rig",
+        ("main_flame.delay", "0 ms to 10 ms"),
+        ("main_flame.interaction_index", "0 to 2"),
+        "4x3",
+    );
+    same_as_modes(
+        "staged_flame",
+        ("main_flame.response.2.spread", "0.1 ms to 1.5 ms"),
+        ("exit.coefficient", "-1 to -0.2"),
+        "3x2",
+    );
+}
+
+#[test]
+fn a_map_follows_the_mean_flow_where_an_axis_moves_it() {
+    same_as_modes(
+        "swirl_rig",
+        ("feed.mass_flow", "10 g/s to 60 g/s"),
+        ("chamber.length", "0.5 m to 0.9 m"),
+        "3x2",
+    );
+    same_as_modes(
+        "pressurised_rig",
+        ("main_flame.burnt_gas.gamma", "1.25 to 1.35"),
+        ("chamber.diameter", "130 mm to 170 mm"),
+        "2x3",
+    );
+}
+
+#[test]
+fn every_network_can_be_mapped() {
+    for name in NETWORKS {
+        let (across, up) = match name {
+            "staged_flame" => (
+                "main_flame.response.1.delay = 1 ms to 5 ms",
+                "main_flame.response.1.interaction_index = 0 to 2",
+            ),
+            _ => (DELAY, INDEX),
+        };
+        let folder = tempfile::tempdir().unwrap();
+        let out = folder.path().to_str().unwrap();
+        let mut all = arguments(across, up, "7x5");
+        all.extend(["--out", out]);
+        let ran = run("map", &network(name), &all);
+        assert_eq!(ran.code, Some(0), "{name}: {}", ran.stderr);
+        assert!(
+            ran.stderr.is_empty(),
+            "no bar but on a terminal: {}",
+            ran.stderr
+        );
+        let svg = std::fs::read_to_string(folder.path().join(format!("{name}_map.svg"))).unwrap();
+        roxmltree::Document::parse(&svg).unwrap();
+        assert!(svg.contains("design"));
+        let csv = std::fs::read_to_string(folder.path().join(format!("{name}_map.csv"))).unwrap();
+        assert_eq!(csv.lines().count(), 36);
+        assert!(ran.stdout.contains("Wrote") && ran.stdout.contains("Caution"));
+        assert!(!csv.contains("NaN") && !ran.stdout.contains("NaN"));
+    }
+}
+
+#[test]
+fn axes_are_exact_at_their_ends() {
+    let (value, _) = json(
+        "map",
+        &network("swirl_rig"),
+        &arguments(DELAY, INDEX, "7x4"),
+    );
+    let (across, up) = (numbers(&value["across"]), numbers(&value["up"]));
+    assert_eq!((across[0], across[6], across[3]), (0.0, 0.01, 0.005));
+    assert_eq!((up[0], up[3]), (0.0, 2.0));
+    assert_eq!(
+        (&value["across_knob"], &value["across_unit"]),
+        (&"main_flame.delay".into(), &"s".into())
+    );
+    assert_eq!(value["design_point"]["across"], 0.003);
+    assert_eq!(value["design_point"]["inside"], true);
+    assert_eq!(value["points"]["total"], 28);
+}
+
+#[test]
+fn the_design_point_is_the_file_with_its_overrides() {
+    let mut all = arguments(DELAY, INDEX, "2x2");
+    all.extend(["--set", "main_flame.delay = 20 ms"]);
+    let (value, _) = json("map", &network("swirl_rig"), &all);
+    assert_eq!(value["design_point"]["inside"], false);
+    assert!(value["finding"].as_str().unwrap().contains("outside"));
+}
+
+#[test]
+fn a_point_without_mean_flow_is_marked_and_counted() {
+    let flow = "feed.mass_flow = 20 g/s to 400 g/s";
+    let length = "chamber.length = 0.5 m to 0.9 m";
+    let (value, code) = json(
+        "map",
+        &network("swirl_rig"),
+        &arguments(flow, length, "6x3"),
+    );
+    assert_eq!(code, Some(0));
+    let failed = value["points"]["failed"].as_u64().unwrap();
+    assert!(failed > 0 && failed < 18);
+    let growth = rows(&value, "largest_growth_per_s");
+    for (row, complete) in growth.iter().zip(value["complete"].as_array().unwrap()) {
+        assert!(row[0].is_some() && complete[0] == true);
+        assert!(row[5].is_none() && complete[5] == false);
+    }
+    let warnings = value["warnings"].to_string();
+    for words in [
+        "points have no answer",
+        "beyond Mach 1",
+        "this delay stays fixed",
+        "loss-free",
+    ] {
+        assert!(warnings.contains(words), "{words}: {warnings}");
+    }
+    let folder = tempfile::tempdir().unwrap();
+    let mut all = arguments(flow, length, "6x3");
+    all.extend(["--out", folder.path().to_str().unwrap()]);
+    run("map", &network("swirl_rig"), &all);
+    let svg = std::fs::read_to_string(folder.path().join("swirl_rig_map.svg")).unwrap();
+    assert!(svg.contains("not certified, or no mean flow"));
+    // Nowhere an answer: the computation failed.
+    let all = arguments("feed.mass_flow = 300 g/s to 400 g/s", length, "2x2");
+    let (value, code) = json("map", &network("swirl_rig"), &all);
+    assert_eq!(
+        (value["points"]["complete"].as_u64(), code),
+        (Some(0), Some(1))
+    );
+}
+
+#[test]
+fn growth_that_leaves_the_window_does_not_look_calm() {
+    let up = "main_flame.interaction_index = 1.8 to 2";
+    let all = arguments("main_flame.delay = 1 ms to 1.4 ms", up, "5x3");
+    let (value, _) = json("map", &network("swirl_rig"), &all);
+    let beyond = rows(&value, "growth_beyond_window_per_s");
+    let window = rows(&value, "largest_growth_per_s");
+    let fastest = beyond
+        .iter()
+        .flatten()
+        .flatten()
+        .fold(0.0, |a: f64, b| a.max(*b));
+    assert!(fastest > 300.0);
+    assert!(window.iter().flatten().flatten().all(|g| *g <= 300.0));
+    assert!(
+        value["warnings"]
+            .to_string()
+            .contains("faster than the window's upper edge")
+    );
+    assert!(value["finding"].as_str().unwrap().contains("100 %"));
+}
+
+#[test]
+fn the_same_map_has_the_same_bytes_on_any_number_of_threads() {
+    let once = |threads: &str| {
+        let folder = tempfile::tempdir().unwrap();
+        let mut all = arguments(DELAY, INDEX, "24x16");
+        all.extend(["--out", folder.path().to_str().unwrap()]);
+        let mut command = command("map", &network("swirl_rig"), &all);
+        command.env("RAYON_NUM_THREADS", threads).assert().success();
+        let read = |name: &str| std::fs::read(folder.path().join(name)).unwrap();
+        (read("swirl_rig_map.svg"), read("swirl_rig_map.csv"))
+    };
+    let one = once("1");
+    assert!(one == once("1") && one == once("4"));
+}
+
+#[test]
+fn files_of_a_map_go_to_the_working_directory_unless_told_otherwise() {
+    let folder = tempfile::tempdir().unwrap();
+    let all = arguments(DELAY, INDEX, "3x3");
+    command("map", &network("swirl_rig"), &all)
+        .current_dir(folder.path())
+        .assert()
+        .success();
+    assert!(folder.path().join("swirl_rig_map.svg").is_file());
+    assert!(folder.path().join("swirl_rig_map.csv").is_file());
+    // JSON alone leaves no files about.
+    let folder = tempfile::tempdir().unwrap();
+    let mut command = command("map", &network("swirl_rig"), &all);
+    command
+        .arg("--json")
+        .current_dir(folder.path())
+        .assert()
+        .success();
+    assert_eq!(std::fs::read_dir(folder.path()).unwrap().count(), 0);
+}

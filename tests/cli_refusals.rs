@@ -1,0 +1,342 @@
+//! Bad usage, bad files, places that cannot be written, readers that go away, and Ctrl-C.
+
+#[cfg(test)]
+#[path = "common/cli.rs"]
+mod cli;
+
+use std::path::{Path, PathBuf};
+use std::process::{Command, Stdio};
+use std::time::{Duration, Instant};
+
+use cli::{NETWORKS, json, network, run};
+
+const VERBS: [&str; 4] = ["check", "flow", "modes", "map"];
+const PLANE: [&str; 4] = [
+    "--across",
+    "main_flame.delay = 0 ms to 10 ms",
+    "--up",
+    "main_flame.interaction_index = 0 to 2",
+];
+
+/// What a verb must be told beside the network.
+#[cfg(test)]
+fn needed(verb: &str) -> Vec<&'static str> {
+    match verb {
+        "map" => PLANE.to_vec(),
+        _ => Vec::new(),
+    }
+}
+
+#[cfg(test)]
+fn binary() -> Command {
+    Command::new(env!("CARGO_BIN_EXE_stillflame"))
+}
+
+#[test]
+fn files_that_are_no_networks_are_refused_by_every_verb() {
+    let folder = tempfile::tempdir().unwrap();
+    let write = |name: &str, bytes: &[u8]| -> PathBuf {
+        let path = folder.path().join(name);
+        std::fs::write(&path, bytes).unwrap();
+        path
+    };
+    let cases = [
+        (folder.path().join("missing.toml"), "no such file"),
+        (folder.path().to_owned(), "directory"),
+        (write("binary.toml", b"\x7fELF\0\0\0\x01"), "not text"),
+        (write("latin.toml", b"title = \"430 \xb0C\"\n"), "UTF-8"),
+        (write("empty.toml", b""), "empty"),
+        (write("broken.toml", b"title = \"x\n[feed"), "TOML"),
+        (write("large.toml", &vec![b'#'; 5 << 20]), "larger than"),
+    ];
+    for (path, words) in &cases {
+        for verb in VERBS {
+            let ran = run(verb, path, &needed(verb));
+            assert_eq!(ran.code, Some(1), "{verb} {}", path.display());
+            assert!(ran.stdout.is_empty());
+            let said = ran.stderr.to_lowercase();
+            assert!(said.contains(&words.to_lowercase()), "{words}: {said}");
+            assert!(!said.contains("panic"));
+            let (value, code) = json(verb, path, &needed(verb));
+            assert_eq!(code, Some(1));
+            assert_eq!(value["schema"], "stillflame/problems");
+            assert!(!value["problems"].as_array().unwrap().is_empty());
+        }
+    }
+}
+
+#[test]
+fn every_problem_is_told_at_once_with_its_place() {
+    let folder = tempfile::tempdir().unwrap();
+    let text = std::fs::read_to_string(network("swirl_rig")).unwrap();
+    let text = text
+        .replace("length   = \"0.70 m\"", "length   = \"0.70 ms\"")
+        .replace(
+            "kind     = \"duct\"\nlength   = \"0.10 m\"",
+            "kind     = \"ductt\"\nlength   = \"0.10 m\"",
+        )
+        .replace("mixing_tube.out", "mixing_tub.out");
+    let path = folder.path().join("bad.toml");
+    std::fs::write(&path, text).unwrap();
+    let (value, code) = json("check", &path, &["--set", "plenum.lenght = 1 m"]);
+    assert_eq!(code, Some(1));
+    let problems = value["problems"].as_array().unwrap();
+    assert!(problems.len() >= 4, "{value}");
+    for problem in problems {
+        assert!(problem["subject"].is_string() && problem["message"].is_string());
+        assert!(
+            problem["line"].is_u64() && problem["column"].is_u64(),
+            "{problem}"
+        );
+    }
+    assert!(problems.iter().any(|p| p["file"] == "--set"));
+    let ran = run("check", &path, &[]);
+    assert!(ran.stderr.contains("bad.toml:") && ran.stderr.contains("~~~"));
+    assert!(
+        ran.stderr.contains("did you mean \"duct\"?"),
+        "{}",
+        ran.stderr
+    );
+}
+
+#[test]
+fn flow_beyond_mach_one_and_cold_flames_are_problems() {
+    for (set, words) in [
+        ("feed.mass_flow = 1 kg/s", "Mach 1"),
+        (
+            "main_flame.burnt_temperature = 250 K",
+            "colder than its inlet",
+        ),
+    ] {
+        for verb in ["check", "flow", "modes"] {
+            let ran = run(verb, &network("swirl_rig"), &["--set", set]);
+            assert_eq!(ran.code, Some(1));
+            assert!(ran.stderr.contains(words), "{}", ran.stderr);
+            assert!(ran.stderr.contains("swirl_rig.toml:") || ran.stderr.contains("--set:"));
+        }
+    }
+}
+
+#[test]
+fn wrong_usage_is_two() {
+    let swirl = network("swirl_rig");
+    let swirl = swirl.to_str().unwrap();
+    let cases: &[&[&str]] = &[
+        &[],
+        &["check"],
+        &["mode", swirl],
+        &["modes", swirl, "--growths"],
+        &["modes", swirl, "--frequency", "20 to 800"],
+        &["modes", swirl, "--frequency", "800 to 20 Hz"],
+        &["modes", swirl, "--frequency", "20 to 20 Hz"],
+        &["modes", swirl, "--frequency", "-20 to 20 Hz"],
+        &["modes", swirl, "--growth", "-300 to nan 1/s"],
+        &["modes", swirl, "--growth", "-300 to 300 m"],
+        &["map", swirl],
+        &["map", swirl, "--across", "main_flame.delay = 0 ms to 10 ms"],
+    ];
+    for case in cases {
+        let output = binary().args(*case).output().unwrap();
+        assert_eq!(output.status.code(), Some(2), "{case:?}");
+        assert!(output.stdout.is_empty() && !output.stderr.is_empty());
+    }
+}
+
+#[test]
+fn wrong_axes_are_wrong_usage_and_say_what_would_be_right() {
+    let cases = [
+        (
+            "main_flame.dealy = 0 ms to 10 ms",
+            "did you mean `main_flame.delay`?",
+        ),
+        (
+            "main_flam.delay = 0 ms to 10 ms",
+            "did you mean `main_flame.delay`?",
+        ),
+        ("chamber.temperature = 1 K to 2 K", "chamber.length"),
+        ("nonsense = 1 to 2", "its numbers are"),
+        ("main_flame.delay", "write NAME = A to B"),
+        ("= 0 ms to 1 ms", "no number named"),
+        ("main_flame.delay = 3 ms", "no span"),
+        ("main_flame.delay = 0 to 10", "no unit"),
+        ("main_flame.delay = 0 mm to 10 mm", "unit of length"),
+        ("main_flame.delay = 10 ms to 0 ms", "downwards"),
+        ("main_flame.delay = 1 ms to 1 ms", "empty"),
+        ("main_flame.delay = -1 ms to 1 ms", "must not be negative"),
+        ("main_flame.delay = nan to inf ms", "not finite"),
+        (
+            "chamber.diameter = 20 mm to 100 mm",
+            "this expansion narrows",
+        ),
+        (
+            "mixing_tube.diameter = 20 mm to 100 mm",
+            "leaves the area as it is",
+        ),
+        ("feed.mass_flow = 0 g/s to 10 g/s", "nothing flows"),
+        ("main_flame.interaction_index = 0 to 1", "the same number"),
+    ];
+    for (across, words) in cases {
+        let all = ["--across", across, PLANE[2], PLANE[3], "--points", "3x3"];
+        let ran = run("map", &network("swirl_rig"), &all);
+        assert_eq!(ran.code, Some(2), "{across}: {}", ran.stderr);
+        assert!(ran.stderr.contains(words), "{across}: {}", ran.stderr);
+        assert!(ran.stdout.is_empty());
+        let (value, code) = json("map", &network("swirl_rig"), &all);
+        assert_eq!(
+            (value["schema"].as_str(), code),
+            (Some("stillflame/problems"), Some(2))
+        );
+    }
+    for points in ["1x5", "5", "axb", "0x0", "5000x5000", "-3x3", ""] {
+        let all = [&PLANE[..], &["--points", points]].concat();
+        assert_eq!(
+            run("map", &network("swirl_rig"), &all).code,
+            Some(2),
+            "{points}"
+        );
+    }
+}
+
+#[test]
+fn a_place_that_cannot_be_written_is_told_before_the_work() {
+    let folder = tempfile::tempdir().unwrap();
+    let file = folder.path().join("a_file");
+    std::fs::write(&file, "x").unwrap();
+    for place in [
+        file.clone(),
+        file.join("below"),
+        PathBuf::from("/proc/stillflame"),
+    ] {
+        for verb in ["flow", "modes", "map"] {
+            let mut all = needed(verb);
+            // A map of this size would take minutes.
+            if verb == "map" {
+                all.extend(["--points", "1000x1000"]);
+            }
+            all.extend(["--out", place.to_str().unwrap()]);
+            let ran = run(verb, &network("swirl_rig"), &all);
+            assert_eq!(ran.code, Some(1), "{verb} {}", place.display());
+            assert!(ran.stderr.contains("cannot be written"), "{}", ran.stderr);
+            assert!(ran.stdout.is_empty());
+        }
+    }
+    assert_eq!(std::fs::read_to_string(&file).unwrap(), "x");
+}
+
+#[test]
+fn a_reader_that_goes_away_is_no_failure() {
+    for name in NETWORKS {
+        let mut child = binary()
+            .arg("modes")
+            .arg(network(name))
+            .arg("--shapes")
+            .stdout(Stdio::piped())
+            .stderr(Stdio::piped())
+            .spawn()
+            .unwrap();
+        drop(child.stdout.take());
+        let output = child.wait_with_output().unwrap();
+        assert_eq!(output.status.code(), Some(0));
+        assert_eq!(String::from_utf8(output.stderr).unwrap(), "");
+    }
+    let output = binary()
+        .arg("--help")
+        .stdout(Stdio::null())
+        .output()
+        .unwrap();
+    assert!(output.status.success());
+}
+
+#[cfg(target_os = "linux")]
+#[test]
+fn a_full_standard_output_is_a_failure() {
+    let full = std::fs::OpenOptions::new()
+        .write(true)
+        .open("/dev/full")
+        .unwrap();
+    let output = binary()
+        .arg("flow")
+        .arg(network("swirl_rig"))
+        .stdout(full)
+        .output()
+        .unwrap();
+    assert_eq!(output.status.code(), Some(1));
+    assert!(
+        String::from_utf8(output.stderr)
+            .unwrap()
+            .contains("annot be written")
+    );
+}
+
+#[cfg(unix)]
+#[test]
+fn an_interrupt_ends_a_long_map_at_once_and_leaves_nothing() {
+    let folder = tempfile::tempdir().unwrap();
+    let child = binary()
+        .arg("map")
+        .arg(network("twenty_elements"))
+        .args(PLANE)
+        .args(["--points", "1000x1000"])
+        .current_dir(folder.path())
+        .stdout(Stdio::piped())
+        .stderr(Stdio::piped())
+        .spawn()
+        .unwrap();
+    std::thread::sleep(Duration::from_millis(1500));
+    let pid = child.id().to_string();
+    assert!(
+        Command::new("kill")
+            .args(["-INT", &pid])
+            .status()
+            .unwrap()
+            .success()
+    );
+    let sent = Instant::now();
+    let output = child.wait_with_output().unwrap();
+    assert!(sent.elapsed() < Duration::from_secs(5));
+    assert_eq!(output.status.code(), Some(130));
+    assert!(output.stdout.is_empty());
+    assert!(
+        String::from_utf8(output.stderr)
+            .unwrap()
+            .contains("Interrupted")
+    );
+    assert_eq!(std::fs::read_dir(folder.path()).unwrap().count(), 0);
+}
+
+#[test]
+fn help_speaks_the_trade_and_its_examples_run() {
+    let text = |arguments: &[&str]| {
+        let output = binary().args(arguments).output().unwrap();
+        assert!(output.status.success());
+        String::from_utf8(output.stdout).unwrap()
+    };
+    assert!(text(&["--version"]).starts_with("stillflame "));
+    let top = text(&["--help"]);
+    for word in ["check", "flow", "modes", "map", "Exit codes", "rig test"] {
+        assert!(top.contains(word), "{word}");
+    }
+    let folder = tempfile::tempdir().unwrap();
+    for verb in VERBS {
+        let help = text(&[verb, "--help"]);
+        for option in ["--set", "--json", "--out"] {
+            assert!(help.contains(option));
+        }
+        let (_, example) = help.split_once("Example:").unwrap();
+        let example = example.replace("\\\n", " ").replace("200x200", "4x3");
+        let program = env!("CARGO_BIN_EXE_stillflame");
+        let networks = Path::new(env!("CARGO_MANIFEST_DIR")).join("networks");
+        let line = example
+            .trim()
+            .replace("stillflame ", &format!("{program} "))
+            .replace("networks/", &format!("{}/", networks.display()));
+        let status = Command::new("sh")
+            .args(["-c", &line])
+            .current_dir(folder.path())
+            .stdout(Stdio::null())
+            .status()
+            .unwrap();
+        assert!(status.success(), "{line}");
+    }
+    assert!(folder.path().join("results/swirl_rig_map.svg").is_file());
+}
