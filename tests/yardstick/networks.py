@@ -16,6 +16,7 @@ FEED_ENDS = ["closed", "open", "reservoir", "anechoic", "reflection"]
 EXIT_ENDS = ["closed", "open", "anechoic", "reflection"]
 PRESSURE_STATED_THROAT = (21,)
 FLOW_STATED_THROAT = (11, 36)
+REAL_ROOT = (17, 37)  # kept only where a real root lies in the window
 
 
 def short(x, n=4):
