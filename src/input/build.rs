@@ -33,9 +33,10 @@ pub(super) fn network(reader: &mut Reader, root: &Table) -> Network<f64> {
             end: ExitEnd::Closed,
         },
         Found::Absent => {
-            reader.report_subject(
-                Problem::error("exit", "the file has no [exit]")
-                    .hint("end it with [exit] and, say, end = \"open\""),
+            let problem = Problem::error("exit", "the file has no [exit]");
+            fields.missing(
+                &["exit"],
+                problem.hint("end it with [exit] and, say, end = \"open\""),
             );
             Exit {
                 end: ExitEnd::Closed,
@@ -47,10 +48,9 @@ pub(super) fn network(reader: &mut Reader, root: &Table) -> Network<f64> {
         Found::Table(t) => ends::feed(reader, t, throat_stated),
         Found::Wrong => unread_feed(reader),
         Found::Absent => {
-            reader.report_subject(
-                Problem::error("feed", "the file has no [feed]")
-                    .hint("begin it with [feed]: gas, mass_flow, temperature, pressure and end"),
-            );
+            let problem = Problem::error("feed", "the file has no [feed]");
+            let hint = "begin it with [feed]: gas, mass_flow, temperature, pressure and end";
+            fields.missing(&["feed"], problem.hint(hint));
             unread_feed(reader)
         }
     };
@@ -111,10 +111,9 @@ fn assemble(
 
 fn title(reader: &mut Reader, fields: &mut Fields<'_>) -> String {
     if !fields.states("title") {
-        reader.report_subject(
-            Problem::error("title", "the file has no title")
-                .hint("begin it with title = \"...\", a line for the head of reports"),
-        );
+        let problem = Problem::error("title", "the file has no title");
+        let hint = "begin it with title = \"...\", a line for the head of reports";
+        fields.missing(&["title"], problem.hint(hint));
     }
     match fields.text(reader, "title") {
         Some((text, mark)) if text.trim().is_empty() => {
@@ -206,7 +205,8 @@ fn window(
 fn element_list(reader: &mut Reader, fields: &mut Fields<'_>) -> Option<Vec<Element>> {
     let hint = "list the elements in flow order, each under its own [[element]]";
     let Some(Entry { node, mark, .. }) = fields.entry(reader, "element") else {
-        reader.report_subject(Problem::error("element", "the file has no [[element]]").hint(hint));
+        let problem = Problem::error("element", "the file has no [[element]]");
+        fields.missing(&["element"], problem.hint(hint));
         return None;
     };
     let wrong = |noun: &str| {

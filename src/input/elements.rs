@@ -37,6 +37,7 @@ pub(super) fn element(reader: &mut Reader, table: &Table, name: String) -> Eleme
     fields.text(reader, "name");
     let Some(word) = fields.required_choice(reader, "kind", KINDS) else {
         // Its other keys cannot be judged.
+        fields.abandon(reader);
         return Element {
             kind: unread_element(reader),
             name,
@@ -80,9 +81,11 @@ fn duct(reader: &mut Reader, fields: &mut Fields<'_>) -> Duct {
     let section = fields
         .section(reader, duct::KNOBS, "diameter", "area")
         .unwrap_or_else(|| {
-            reader.report_subject(
-                Problem::error(fields.prefix.as_str(), "a duct needs diameter or area")
-                    .hint("such as diameter = \"80 mm\""),
+            let problem =
+                Problem::error(fields.prefix.as_str(), "a duct needs `diameter` or `area`");
+            fields.missing(
+                &["diameter", "area"],
+                problem.hint("such as diameter = \"80 mm\""),
             );
             Section::Area(reader.unread())
         });
@@ -122,13 +125,12 @@ fn flame(reader: &mut Reader, fields: &mut Fields<'_>) -> Flame {
     let burnt_temperature = fields.number(reader, flame::KNOBS, "burnt_temperature");
     let needs_temperature = basis == Some(Basis::HeatRelease) || !stated;
     if burnt_temperature.is_none() && needs_temperature {
-        reader.report_subject(
-            Problem::error(
-                fields.subject("burnt_temperature"),
-                "a flame needs burnt_temperature (static temperature behind the flame)",
-            )
-            .hint("such as burnt_temperature = \"1800 K\"; only basis = \"velocity\" does without"),
+        let problem = Problem::error(
+            fields.subject("burnt_temperature"),
+            "a flame needs `burnt_temperature`, the static temperature behind it",
         );
+        let hint = "such as burnt_temperature = \"1800 K\"; only basis = \"velocity\" does without";
+        fields.missing(&["burnt_temperature"], problem.hint(hint));
     }
     let burnt_gas = gas(reader, fields, "burnt_gas");
     let responses = responses(reader, fields);
@@ -185,6 +187,8 @@ fn responses(reader: &mut Reader, fields: &mut Fields<'_>) -> Vec<Response> {
         if let Some(response) = response(reader, &mut fields, &flame) {
             fields.finish(reader);
             found.push(response);
+        } else {
+            fields.abandon(reader);
         }
     }
     found

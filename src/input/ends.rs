@@ -26,18 +26,16 @@ enum End {
 
 pub(super) fn feed(reader: &mut Reader, table: &Table, throat_stated: bool) -> Feed {
     let mut fields = Fields::new(table, "feed", "a feed");
-    let gas = gas(reader, &mut fields, "gas").unwrap_or_else(|| {
-        if !fields.states("gas") {
-            reader.report_subject(
-                Problem::error("feed.gas", "a feed needs gas").hint("write gas = \"air\", say"),
-            );
-        }
-        GasChoice::Air
-    });
+    if !fields.states("gas") {
+        let problem = Problem::error("feed.gas", "a feed needs `gas`");
+        fields.missing(&["gas"], problem.hint("write gas = \"air\", say"));
+    }
+    let gas = gas(reader, &mut fields, "gas").unwrap_or(GasChoice::Air);
     let stated = fields.one_of(reader, FEED_KNOBS, &["mass_flow", "velocity", "mach"]);
     let pressure = fields.number(reader, FEED_KNOBS, "pressure");
     balance_of_statements(
         reader,
+        &mut fields,
         stated.map(|(key, _)| key),
         pressure.is_some(),
         throat_stated,
@@ -81,29 +79,51 @@ pub(super) fn feed(reader: &mut Reader, table: &Table, throat_stated: bool) -> F
 }
 
 /// The mean flow needs two of feed pressure, feed flow and throat area, and bears no third.
-fn balance_of_statements(reader: &mut Reader, flow: Option<&str>, pressure: bool, throat: bool) {
-    let problem = match (flow, pressure, throat) {
-        (Some(flow), true, true) => Problem::error(
-            format!("feed.{flow}"),
-            format!("{flow}, pressure and the exit's throat are all given, and two of them say the third"),
-        )
-        .hint(format!("remove one of feed.{flow}, feed.pressure and the exit's throat")),
-        (None, true, false) => Problem::error("feed", "a feed needs its flow").hint(
-            "give one of mass_flow, velocity or mach; \"0 kg/s\" is still gas; or give the throat of a choked exit",
-        ),
-        (Some(_), false, false) => Problem::error("feed.pressure", "a feed needs pressure")
-            .hint("write pressure = \"101325 Pa\", say; or give the throat of a choked exit"),
-        (None, false, true) => Problem::error(
-            "feed",
-            "a throat alone does not say the flow: a feed needs pressure or its flow",
-        )
-        .hint("give pressure, or one of mass_flow, velocity or mach"),
-        (None, false, false) => Problem::error("feed", "a feed needs pressure and its flow").hint(
-            "give pressure, and one of mass_flow, velocity or mach; \"0 kg/s\" is still gas",
-        ),
+fn balance_of_statements(
+    reader: &mut Reader,
+    fields: &mut Fields<'_>,
+    flow: Option<&str>,
+    pressure: bool,
+    throat: bool,
+) {
+    const FLOW: &[&str] = &["mass_flow", "velocity", "mach"];
+    const EITHER: &[&str] = &["mass_flow", "velocity", "mach", "pressure"];
+    let (keys, subject, what, hint) = match (flow, pressure, throat) {
         (Some(_), true, false) | (Some(_), false, true) | (None, true, true) => return,
+        (Some(flow), true, true) => {
+            let what = format!(
+                "`{flow}`, `pressure` and the exit's throat are all given, and two of them say the third"
+            );
+            let hint = format!("remove `feed.{flow}`, `feed.pressure` or the throat of the exit");
+            reader.report_subject(Problem::error(format!("feed.{flow}"), what).hint(hint));
+            return;
+        }
+        (None, true, false) => (
+            FLOW,
+            "feed",
+            "a feed needs its flow",
+            "give `mass_flow`, `velocity` or `mach`, zero for still gas, or the throat of a choked exit",
+        ),
+        (Some(_), false, false) => (
+            &["pressure"][..],
+            "feed.pressure",
+            "a feed needs `pressure`",
+            "write pressure = \"101325 Pa\", say, or give the throat of a choked exit",
+        ),
+        (None, false, true) => (
+            EITHER,
+            "feed",
+            "a throat alone does not say the flow: a feed needs `pressure` or its flow",
+            "give `pressure`, or `mass_flow`, `velocity` or `mach`",
+        ),
+        (None, false, false) => (
+            EITHER,
+            "feed",
+            "a feed needs `pressure` and its flow",
+            "give `pressure`, and `mass_flow`, `velocity` or `mach`, zero for still gas",
+        ),
     };
-    reader.report_subject(problem);
+    fields.missing(keys, Problem::error(subject, what).hint(hint));
 }
 
 pub(super) fn exit(reader: &mut Reader, table: &Table) -> Exit {
@@ -213,10 +233,9 @@ pub(super) fn gas(
             gas_constant,
         },
         None => {
-            let what = format!("a gas needs {}", listed(keys));
-            reader.report_subject(
-                Problem::error(subject, what).hint("such as gas_constant = \"287 J/(kg K)\""),
-            );
+            let what = format!("a gas needs {}", listed(keys.map(|k| format!("`{k}`"))));
+            let hint = "such as gas_constant = \"287 J/(kg K)\"";
+            fields.missing(&keys, Problem::error(subject, what).hint(hint));
             GasChoice::PerfectByConstant {
                 gamma,
                 gas_constant: reader.unread(),

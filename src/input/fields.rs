@@ -82,6 +82,15 @@ pub(super) struct Fields<'d> {
     what: String,
     offered: Vec<&'static str>,
     misplaced: Vec<Misplaced>,
+    missing: Vec<Missing>,
+}
+
+/// Something the table needs and does not state.
+#[derive(Debug)]
+struct Missing {
+    /// The keys that would state it.
+    keys: Vec<&'static str>,
+    problem: Problem,
 }
 
 /// A key that has a meaning, but not beside what is stated.
@@ -103,6 +112,7 @@ impl<'d> Fields<'d> {
             what: what.to_owned(),
             offered: Vec::new(),
             misplaced: Vec::new(),
+            missing: Vec::new(),
         }
     }
 
@@ -115,12 +125,13 @@ impl<'d> Fields<'d> {
         }
     }
 
-    /// Notes that something is missing from the table.
-    pub fn report_missing(&self, reader: &mut Reader, problem: Problem) {
-        match &self.home {
-            Some(mark) => reader.report(mark, problem),
-            None => reader.report_subject(problem),
-        }
+    /// Notes that the table needs one of `keys`. Told at the end, unless a misspelt key turns out
+    /// to be the one.
+    pub fn missing(&mut self, keys: &[&'static str], problem: Problem) {
+        self.missing.push(Missing {
+            keys: keys.to_vec(),
+            problem,
+        });
     }
 
     /// Says what the table describes, once known.
@@ -216,8 +227,8 @@ impl<'d> Fields<'d> {
         if !self.states(key) {
             self.offered.push(key);
             let words = listed(choices.iter().map(|(word, _)| format!("\"{word}\"")));
-            let p = Problem::error(self.subject(key), format!("{} needs {key}", self.what));
-            self.report_missing(reader, p.hint(format!("{key} may be {words}")));
+            let p = Problem::error(self.subject(key), format!("{} needs `{key}`", self.what));
+            self.missing(&[key], p.hint(format!("`{key}` may be {words}")));
             return None;
         }
         self.choice(reader, key, choices)
@@ -256,9 +267,10 @@ impl<'d> Fields<'d> {
             return knob;
         }
         let spec = specs.iter().find(|s| s.key == key).unwrap_or(&UNREAD);
-        let what = format!("{} needs {key} ({})", self.what, spec.doc);
+        let what = format!("{} needs `{key}`, the {}", self.what, spec.doc);
         let hint = format!("such as {key} = {}", quoted(spec.dimension));
-        self.report_missing(reader, Problem::error(self.knob_name(key), what).hint(hint));
+        let problem = Problem::error(self.knob_name(key), what).hint(hint);
+        self.missing(&[key], problem);
         reader.knob(&self.knobs, spec, f64::NAN)
     }
 
@@ -281,7 +293,7 @@ impl<'d> Fields<'d> {
         let earliest = stated.next();
         for entry in stated {
             let other = earliest.map_or("", |e| &e.key);
-            let what = format!("{other} is given too, and the two say the same thing");
+            let what = format!("`{other}` is given too, and the two say the same thing");
             let p = Problem::error(self.subject(&entry.key), what);
             reader.report(&entry.mark, p.hint(format!("keep one of {}", listed(keys))));
         }
@@ -344,14 +356,21 @@ impl<'d> Fields<'d> {
                 Err(e) => fail(e.to_string()).hint(e.hint()),
             },
             (Value::Number(text), _) => {
-                let unit = dimension.example().split_once(' ').map_or("", |(_, u)| u);
-                fail(format!(
-                    "`{text}` has no unit, and {} needs one",
-                    dimension.noun()
-                ))
-                .hint(format!(
-                    "say in which unit, in quotes: {key} = \"{text} {unit}\", say"
-                ))
+                let hint = format!("write it like {key} = {}", quoted(*dimension));
+                match units::parse_number(text) {
+                    // `inf` and `1e400` lack more than a unit.
+                    Err(e) => fail(e.to_string()).hint(hint),
+                    Ok(_) => {
+                        let unit = dimension.example().split_once(' ').map_or("", |(_, u)| u);
+                        fail(format!(
+                            "`{text}` has no unit, and {} needs one",
+                            dimension.noun()
+                        ))
+                        .hint(format!(
+                            "say in which unit, in quotes, such as {key} = \"{text} {unit}\""
+                        ))
+                    }
+                }
             }
             (other, _) => fail(format!(
                 "{} belongs here, and this is {}",
@@ -364,8 +383,18 @@ impl<'d> Fields<'d> {
         None
     }
 
-    /// Reports every key that was not asked for.
-    pub fn finish(self, reader: &mut Reader) {
+    /// Reports what is missing from a table whose other keys cannot be judged.
+    pub fn abandon(self, reader: &mut Reader) {
+        for Missing { problem, .. } in self.missing {
+            match &self.home {
+                Some(mark) => reader.report(mark, problem),
+                None => reader.report_subject(problem),
+            }
+        }
+    }
+
+    /// Reports every key that was not asked for, and what is missing.
+    pub fn finish(mut self, reader: &mut Reader) {
         for entry in &self.table.entries {
             let key = entry.key.as_str();
             if self.offered.contains(&key) {
@@ -377,8 +406,8 @@ impl<'d> Fields<'d> {
                 let p = if m.overridden && !entry.mark.is_override() {
                     Problem::warning(subject, format!("is left out, as {}", m.why))
                 } else {
-                    Problem::error(subject, format!("{key} has no meaning here: {}", m.why))
-                        .hint(format!("remove {key}"))
+                    Problem::error(subject, format!("`{key}` has no meaning here: {}", m.why))
+                        .hint(format!("remove `{key}`"))
                 };
                 reader.report(&entry.mark, p);
                 continue;
@@ -388,12 +417,18 @@ impl<'d> Fields<'d> {
                 self.offered.iter().copied().chain(misplaced)
             };
             let what = format!("{} has no key `{}`", self.what, shown(key));
-            let hint = match nearest(key, legal()) {
+            // A key already stated is hardly the one meant.
+            let unstated = legal().filter(|k| !self.states(k));
+            let meant = nearest(key, unstated).or_else(|| nearest(key, legal()));
+            let hint = match meant {
                 Some(meant) => format!("did you mean `{meant}`?"),
                 None => format!("its keys are {}", listed(self.offered.iter())),
             };
+            self.missing
+                .retain(|m| !m.keys.iter().any(|k| Some(*k) == meant));
             reader.report(&entry.mark, Problem::error(subject, what).hint(hint));
         }
+        self.abandon(reader);
     }
 }
 

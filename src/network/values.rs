@@ -3,7 +3,7 @@
 use super::Network;
 use crate::elements::Kind;
 use crate::elements::ends::{ExitEnd, FeedEnd, FeedFlow};
-use crate::elements::knob::{KnobSpec, Range};
+use crate::elements::knob::{KnobId, KnobSpec, Range};
 use crate::problems::Problem;
 use crate::units::write_rounded;
 
@@ -33,8 +33,8 @@ pub(crate) fn out_of_range(name: &str, spec: &KnobSpec, value: f64) -> Option<Pr
         Range::Above(bound) => format!("be greater than {}", number(bound)),
     };
     let key = spec.key;
-    let what = format!("{key} is {}, and must {wanted}", number(value));
-    Some(Problem::error(name, what).hint(format!("{key} is the {}", spec.doc)))
+    let what = format!("`{key}` is {}, and must {wanted}", number(value));
+    Some(Problem::error(name, what).hint(format!("`{key}` is the {}", spec.doc)))
 }
 
 /// A choked end passes no mass where nothing flows.
@@ -52,7 +52,7 @@ pub(crate) fn choked_without_flow(network: &Network<f64>) -> Vec<Problem> {
             _ => false,
         };
         if choked {
-            let what = format!("this end is choked, but nothing flows: {flow} is zero");
+            let what = format!("this end is choked, but nothing flows: `{flow}` is zero");
             let hint = "state a flow, or end = \"closed\" for still gas behind a shut valve";
             problems.push(Problem::error(format!("{}.end", element.name), what).hint(hint));
         }
@@ -61,7 +61,7 @@ pub(crate) fn choked_without_flow(network: &Network<f64>) -> Vec<Problem> {
 }
 
 /// The knob that says the gas is still, if it is.
-pub(crate) fn still(network: &Network<f64>) -> Option<crate::elements::knob::KnobId> {
+pub(crate) fn still(network: &Network<f64>) -> Option<KnobId> {
     let feed = network.layout.elements.iter().find_map(|e| match &e.kind {
         Kind::Feed(feed) => Some(feed),
         _ => None,

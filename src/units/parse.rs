@@ -116,7 +116,7 @@ impl QuantityError {
             QuantityError::MissingUnit { text, wanted } => {
                 let unit = wanted.example().split_once(' ').map_or("", |(_, u)| u);
                 format!(
-                    "say in which unit: `{text} {unit}`, say; it may be {}",
+                    "say in which unit, such as `{text} {unit}`; it may be {}",
                     listed(wanted.unit_names())
                 )
             }
