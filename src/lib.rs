@@ -13,7 +13,7 @@
 //! # Conventions
 //!
 //! - Time dependence `q'(x, t) = Re[q(x) exp(s t)]`, `s = sigma + 2 pi i f`: a positive growth rate
-//!   `sigma` [1/s] grows. A delay is `exp(-s tau)`.
+//!   `sigma` (1/s) grows. A delay is `exp(-s tau)`.
 //! - `x` runs with the mean flow; `p' = p+ + p-` and `rho c u' = p+ - p-` with `p+` running downstream.
 //! - A reflection coefficient is the reflected over the incident pressure wave at its plane.
 //! - SI inside; units are read and written at the border ([`units`]).
@@ -64,6 +64,8 @@
 //! # Ok::<(), stillflame::problems::Problems>(())
 //! ```
 
+#![warn(clippy::unwrap_used, clippy::expect_used, clippy::panic)]
+
 pub mod acoustics;
 pub mod cli;
 pub mod draw;
@@ -71,6 +73,7 @@ pub mod elements;
 pub mod flame;
 pub mod gas;
 pub mod input;
+pub mod knobs;
 pub mod meanflow;
 pub mod modes;
 pub mod network;

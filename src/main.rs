@@ -1,5 +1,7 @@
 //! Parse, call, exit code.
 
+#![warn(clippy::unwrap_used, clippy::expect_used, clippy::panic)]
+
 use std::process::ExitCode;
 
 use clap::Parser;

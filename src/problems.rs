@@ -42,7 +42,7 @@ pub struct Problem {
     /// What would be right, one sentence without a full stop.
     pub hint: Option<String>,
     /// Where it stands, once the input layer has looked it up.
-    pub place: Option<Place>,
+    pub place: Option<Box<Place>>,
 }
 
 impl Problem {
@@ -75,7 +75,7 @@ impl Problem {
     /// The same problem at a known place.
     #[must_use]
     pub fn at(mut self, place: Place) -> Self {
-        self.place = Some(place);
+        self.place = Some(Box::new(place));
         self
     }
 }

@@ -18,29 +18,29 @@ pub use write::{write, write_rounded};
 pub enum Dimension {
     /// No unit.
     Number,
-    /// Length [m].
+    /// Length (m).
     Length,
-    /// Area [m^2].
+    /// Area (m^2).
     Area,
-    /// Volume [m^3].
+    /// Volume (m^3).
     Volume,
-    /// Absolute temperature [K]; `degC` and `degF` are shifted, not scaled.
+    /// Absolute temperature (K); `degC` and `degF` are shifted, not scaled.
     Temperature,
-    /// Pressure [Pa].
+    /// Pressure (Pa).
     Pressure,
-    /// Mass flow [kg/s].
+    /// Mass flow (kg/s).
     MassFlow,
-    /// Velocity [m/s].
+    /// Velocity (m/s).
     Velocity,
-    /// Time [s].
+    /// Time (s).
     Time,
-    /// Frequency [Hz].
+    /// Frequency (Hz).
     Frequency,
-    /// Growth rate [1/s].
+    /// Growth rate (1/s).
     Rate,
-    /// Plane angle [rad].
+    /// Plane angle (rad).
     Angle,
-    /// Specific gas constant [J/(kg K)].
+    /// Specific gas constant (J/(kg K)).
     SpecificGasConstant,
     /// Molar mass [kg/mol].
     MolarMass,

@@ -1,6 +1,5 @@
 //! `check`, `flow` and `modes` of the real binary.
 
-#[cfg(test)]
 #[path = "common/cli.rs"]
 mod cli;
 
@@ -9,13 +8,11 @@ use std::path::PathBuf;
 use cli::{NETWORKS, json, network, run};
 use serde_json::Value;
 
-#[cfg(test)]
 fn numbers(value: &Value) -> Vec<f64> {
     let items = value.as_array().unwrap();
     items.iter().map(|v| v.as_f64().unwrap()).collect()
 }
 
-#[cfg(test)]
 fn f(value: &Value, field: &str) -> f64 {
     value[field]
         .as_f64()
@@ -23,7 +20,6 @@ fn f(value: &Value, field: &str) -> f64 {
 }
 
 /// A network file of the test's own.
-#[cfg(test)]
 fn written(folder: &tempfile::TempDir, text: &str) -> PathBuf {
     let path = folder.path().join("own.toml");
     std::fs::write(&path, text).unwrap();

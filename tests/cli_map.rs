@@ -1,6 +1,5 @@
 //! `map` of the real binary.
 
-#[cfg(test)]
 #[path = "common/cli.rs"]
 mod cli;
 
@@ -14,13 +13,11 @@ fn arguments<'a>(across: &'a str, up: &'a str, points: &'a str) -> Vec<&'a str> 
     vec!["--across", across, "--up", up, "--points", points]
 }
 
-#[cfg(test)]
 fn numbers(value: &Value) -> Vec<f64> {
     let items = value.as_array().unwrap();
     items.iter().map(|v| v.as_f64().unwrap()).collect()
 }
 
-#[cfg(test)]
 fn rows(value: &Value, field: &str) -> Vec<Vec<Option<f64>>> {
     let rows = value[field].as_array().unwrap();
     rows.iter()
@@ -29,7 +26,6 @@ fn rows(value: &Value, field: &str) -> Vec<Vec<Option<f64>>> {
 }
 
 /// The largest growth rate and its frequency by `modes`.
-#[cfg(test)]
 fn by_modes(name: &str, settings: &[String]) -> Option<(f64, f64)> {
     let set: Vec<&str> = settings
         .iter()
@@ -48,7 +44,6 @@ fn by_modes(name: &str, settings: &[String]) -> Option<(f64, f64)> {
         .max_by(|a, b| a.0.total_cmp(&b.0))
 }
 
-#[cfg(test)]
 fn same_as_modes(name: &str, across: (&str, &str), up: (&str, &str), points: &str) {
     let (text_across, text_up) = (
         format!("{} = {}", across.0, across.1),

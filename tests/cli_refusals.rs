@@ -1,6 +1,5 @@
 //! Bad usage, bad files, places that cannot be written, readers that go away, and Ctrl-C.
 
-#[cfg(test)]
 #[path = "common/cli.rs"]
 mod cli;
 
@@ -19,7 +18,6 @@ const PLANE: [&str; 4] = [
 ];
 
 /// What a verb must be told beside the network.
-#[cfg(test)]
 fn needed(verb: &str) -> Vec<&'static str> {
     match verb {
         "map" => PLANE.to_vec(),
@@ -27,7 +25,6 @@ fn needed(verb: &str) -> Vec<&'static str> {
     }
 }
 
-#[cfg(test)]
 fn binary() -> Command {
     Command::new(env!("CARGO_BIN_EXE_stillflame"))
 }

@@ -13,13 +13,25 @@ const MAY_USE: &[(&str, &[&str])] = &[
     ("units", &["problems"]),
     ("gas", &["numerics"]),
     ("waves", &["numerics"]),
-    ("flame", &["numerics", "waves"]),
-    ("elements", &["flame", "gas", "numerics", "units", "waves"]),
-    ("network", &["elements", "numerics", "problems", "units"]),
-    ("input", &["elements", "network", "problems", "units"]),
+    ("knobs", &["numerics", "units"]),
+    ("flame", &["knobs", "numerics", "units", "waves"]),
+    (
+        "elements",
+        &["flame", "gas", "knobs", "numerics", "units", "waves"],
+    ),
+    (
+        "network",
+        &["elements", "knobs", "numerics", "problems", "units"],
+    ),
+    (
+        "input",
+        &["elements", "flame", "knobs", "network", "problems", "units"],
+    ),
     (
         "meanflow",
-        &["elements", "gas", "network", "numerics", "problems"],
+        &[
+            "elements", "gas", "knobs", "network", "numerics", "problems",
+        ],
     ),
     (
         "acoustics",
@@ -32,7 +44,9 @@ const MAY_USE: &[(&str, &[&str])] = &[
         &[
             "acoustics",
             "elements",
+            "flame",
             "gas",
+            "knobs",
             "meanflow",
             "network",
             "numerics",
@@ -47,7 +61,9 @@ const MAY_USE: &[(&str, &[&str])] = &[
         &[
             "acoustics",
             "elements",
+            "flame",
             "gas",
+            "knobs",
             "meanflow",
             "measured",
             "modes",
@@ -67,8 +83,8 @@ const MAY_USE: &[(&str, &[&str])] = &[
     (
         "cli",
         &[
-            "draw", "elements", "input", "meanflow", "measured", "modes", "network", "problems",
-            "report", "studies", "units",
+            "draw", "elements", "input", "knobs", "meanflow", "measured", "modes", "network",
+            "problems", "report", "studies", "units",
         ],
     ),
 ];

@@ -72,7 +72,7 @@ proptest! {
     #[test]
     fn two_zeros_however_close_are_two(
         re in -400.0..400.0f64, im in 100.0..5000.0f64,
-        apart in -13.0..1.0f64, angle in 0.0..6.28f64,
+        apart in -13.0..1.0f64, angle in 0.0..std::f64::consts::TAU,
         third in zero(),
     ) {
         prop_assume!(clear_of_edges(third) && (third - c(re, im)).norm() > 50.0);

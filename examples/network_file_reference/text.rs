@@ -5,12 +5,12 @@
 
 use std::fmt::Write;
 
-use stillflame::elements::knob::{KnobSpec, Range};
 use stillflame::elements::{
     GAS_KNOBS, area_change, duct,
     ends::{EXIT_KNOBS, FEED_KNOBS},
     flame, plenum, restriction,
 };
+use stillflame::knobs::{KnobSpec, Range};
 use stillflame::units::{Dimension, write};
 
 /// Every knob table by the name the page has for it.
@@ -23,7 +23,7 @@ pub const TABLES: &[(&str, &[KnobSpec])] = &[
     ("restriction", restriction::KNOBS),
     ("plenum", plenum::KNOBS),
     ("flame", flame::KNOBS),
-    ("response", flame::RESPONSE_KNOBS),
+    ("response", stillflame::flame::KNOBS),
     ("exit", EXIT_KNOBS),
 ];
 

@@ -128,7 +128,7 @@ impl Case {
     /// Problems with the place of their subject, where it has one.
     pub fn placed(&self, mut problems: Vec<Problem>) -> Vec<Problem> {
         for problem in problems.iter_mut().filter(|p| p.place.is_none()) {
-            problem.place = self.sources.place(&problem.subject);
+            problem.place = self.sources.place(&problem.subject).map(Box::new);
         }
         problems
     }

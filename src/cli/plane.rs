@@ -1,7 +1,7 @@
 //! The plane of a map as written: `main_flame.delay = 0 ms to 10 ms`, `200x200`.
 
 use super::Failure;
-use crate::elements::knob::Knob;
+use crate::knobs::Knob;
 use crate::network::values::out_of_range;
 use crate::network::{Layout, Network};
 use crate::problems::{Place, Problem, listed, nearest};

@@ -1,9 +1,9 @@
 //! Area changes: the smooth contraction and the sudden expansion.
 
 use super::Kind;
-use super::knob::{KnobId, KnobSpec, Range, Values};
 use super::lowering::{self, Acting, Between, velocity_row};
 use super::port::Port;
+use crate::knobs::{KnobId, KnobSpec, Range, Values};
 use crate::numerics::dual::Real;
 use crate::units::Dimension;
 use crate::waves::primitive::Joint;
@@ -11,14 +11,14 @@ use crate::waves::primitive::Joint;
 /// A change to a smaller area in which stagnation pressure is kept.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Contraction {
-    /// Effective length of the slug of the smaller area [m].
+    /// Effective length of the slug of the smaller area (m).
     pub effective_length: KnobId,
 }
 
 /// A sudden change to a larger area: Borda-Carnot.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Expansion {
-    /// Effective length of the slug of the smaller area [m].
+    /// Effective length of the slug of the smaller area (m).
     pub effective_length: KnobId,
 }
 
@@ -55,14 +55,14 @@ impl Expansion {
     }
 }
 
-/// Stagnation pressure is kept, `p_t1 - p_t2 = 0` [Pa]; with mass and enthalpy kept the change is
+/// Stagnation pressure is kept, `p_t1 - p_t2 = 0` (Pa); with mass and enthalpy kept the change is
 /// isentropic.
 pub fn contraction<N: Real>(up: &Port<N>, down: &Port<N>) -> N {
     up.stagnation_pressure - down.stagnation_pressure
 }
 
 /// Momentum with the upstream pressure on the step's face, over the larger area:
-/// `p1 + rho1 u1^2 A1/A2 - p2 - rho2 u2^2 = 0` [Pa] (Borda-Carnot, compressible).
+/// `p1 + rho1 u1^2 A1/A2 - p2 - rho2 u2^2 = 0` (Pa) (Borda-Carnot, compressible).
 pub fn expansion<N: Real>(up: &Port<N>, down: &Port<N>) -> N {
     up.pressure + up.momentum_flux * up.area / down.area - down.pressure - down.momentum_flux
 }

@@ -1,8 +1,8 @@
 //! A straight passage: plane waves in uniform flow.
 
 use super::Section;
-use super::knob::{KnobId, KnobSpec, Range, Values};
 use crate::gas::State;
+use crate::knobs::{KnobId, KnobSpec, Range, Values};
 use crate::numerics::dual::Real;
 use crate::units::Dimension;
 use crate::waves::law::{Delayed, Law};
@@ -11,7 +11,7 @@ use crate::waves::primitive::Travel;
 /// A passage of constant area.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Duct {
-    /// Length [m].
+    /// Length (m).
     pub length: KnobId,
     /// Its area.
     pub section: Section,
@@ -26,7 +26,7 @@ pub enum Entropy {
     Mixed,
     /// They travel with the flow and spread.
     Carried {
-        /// Standard deviation of the arrival time [s].
+        /// Standard deviation of the arrival time (s).
         dispersion: KnobId,
     },
 }

@@ -2,11 +2,11 @@
 
 use std::f64::consts::PI;
 
-use super::knob::{KnobId, KnobSpec, Range, Values};
 use super::lowering::on_waves;
 use super::port::{Port, Variation};
 use super::{GasChoice, Section};
 use crate::gas::{State, choked_flux_temperature_slope};
+use crate::knobs::{KnobId, KnobSpec, Range, Values};
 use crate::numerics::dual::{Grad, Real};
 use crate::units::Dimension;
 use crate::waves::law::Law;
@@ -19,9 +19,9 @@ pub struct Feed {
     pub gas: GasChoice,
     /// How much of it flows.
     pub flow: FeedFlow,
-    /// Static temperature at the first station [K].
+    /// Static temperature at the first station (K).
     pub temperature: KnobId,
-    /// Static pressure at the first station [Pa]; absent where a stated throat area sets it.
+    /// Static pressure at the first station (Pa); absent where a stated throat area sets it.
     pub pressure: Option<KnobId>,
     /// Its acoustic end.
     pub end: FeedEnd,
@@ -30,9 +30,9 @@ pub struct Feed {
 /// How the flow is stated.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub enum FeedFlow {
-    /// Mass flow [kg/s].
+    /// Mass flow (kg/s).
     MassFlow(KnobId),
-    /// Velocity at the first station [m/s].
+    /// Velocity at the first station (m/s).
     Velocity(KnobId),
     /// Mach number at the first station.
     Mach(KnobId),
@@ -81,7 +81,7 @@ pub enum ExitEnd {
 pub struct Reflection {
     /// Signed modulus.
     pub coefficient: KnobId,
-    /// Phase [rad].
+    /// Phase (rad).
     pub phase: KnobId,
 }
 

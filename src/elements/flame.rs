@@ -1,18 +1,19 @@
 //! A compact flame between equal areas.
 
-use super::knob::{KnobId, KnobSpec, Range, Values};
 use super::lowering::{self, Acting, Between, velocity_row};
 use super::port::Port;
 use super::{GasChoice, Kind, Sensed};
+use crate::flame::ResponseLaw;
+use crate::knobs::{KnobId, KnobSpec, Range, Values};
 use crate::numerics::dual::Real;
 use crate::units::Dimension;
-use crate::waves::law::{Delayed, Law};
+use crate::waves::law::Law;
 use crate::waves::primitive::{Joint, Term};
 
 /// A flame thin against every wavelength in the window.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Flame {
-    /// Static temperature behind it [K]; the inlet's where none is stated (velocity basis only).
+    /// Static temperature behind it (K); the inlet's where none is stated (velocity basis only).
     pub burnt_temperature: Option<KnobId>,
     /// The gas behind it; the same as before it where none is stated.
     pub burnt_gas: Option<GasChoice>,
@@ -74,32 +75,7 @@ impl Flame {
     }
 }
 
-impl ResponseLaw {
-    /// The law as one contribution to a measure of delays.
-    fn delays<T: Real>(self, values: &Values<T>) -> Delayed<T> {
-        match self {
-            ResponseLaw::NTau {
-                interaction_index,
-                delay,
-            } => Delayed {
-                weight: values[interaction_index],
-                delay: values[delay],
-                spread: T::from(0.0),
-            },
-            ResponseLaw::Gaussian {
-                interaction_index,
-                delay,
-                spread,
-            } => Delayed {
-                weight: values[interaction_index],
-                delay: values[delay],
-                spread: values[spread],
-            },
-        }
-    }
-}
-
-/// Momentum through a passage of constant area: `p1 + rho1 u1^2 - p2 - rho2 u2^2 = 0` [Pa].
+/// Momentum through a passage of constant area: `p1 + rho1 u1^2 - p2 - rho2 u2^2 = 0` (Pa).
 pub fn balance<N: Real>(up: &Port<N>, down: &Port<N>) -> N {
     up.pressure + up.momentum_flux - down.pressure - down.momentum_flux
 }
@@ -133,27 +109,6 @@ pub enum Reference {
     OutletOf(String),
 }
 
-/// A law `F(s)`.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub enum ResponseLaw {
-    /// `n exp(-s tau)` (Crocco 1951).
-    NTau {
-        /// Interaction index `n`, of either sign.
-        interaction_index: KnobId,
-        /// Delay `tau` [s].
-        delay: KnobId,
-    },
-    /// `n exp(-s tau + s^2 w^2/2)`: delays normally distributed about `tau`.
-    Gaussian {
-        /// Interaction index `n`, of either sign.
-        interaction_index: KnobId,
-        /// Mean delay `tau` [s].
-        delay: KnobId,
-        /// Standard deviation `w` of the delay [s].
-        spread: KnobId,
-    },
-}
-
 /// What a file may state of a flame in numbers, beside its response.
 pub const KNOBS: &[KnobSpec] = &[KnobSpec {
     key: "burnt_temperature",
@@ -162,28 +117,3 @@ pub const KNOBS: &[KnobSpec] = &[KnobSpec {
     default: None,
     doc: "static temperature behind the flame",
 }];
-
-/// What a file may state of a response in numbers.
-pub const RESPONSE_KNOBS: &[KnobSpec] = &[
-    KnobSpec {
-        key: "interaction_index",
-        dimension: Dimension::Number,
-        range: Range::Any,
-        default: None,
-        doc: "gain of the response at zero frequency, of either sign",
-    },
-    KnobSpec {
-        key: "delay",
-        dimension: Dimension::Time,
-        range: Range::NotNegative,
-        default: None,
-        doc: "mean delay between velocity and heat release",
-    },
-    KnobSpec {
-        key: "spread",
-        dimension: Dimension::Time,
-        range: Range::NotNegative,
-        default: None,
-        doc: "standard deviation of the delay (kind \"gaussian\")",
-    },
-];

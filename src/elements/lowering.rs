@@ -5,9 +5,9 @@
 //! which no zero of the determinant feels.
 
 use super::Kind;
-use super::knob::Values;
 use super::port::{Port, UNKNOWNS, Variation};
 use crate::gas::State;
+use crate::knobs::Values;
 use crate::numerics::dual::{Grad, Real};
 use crate::waves::law::Law;
 use crate::waves::primitive::{Joint, Plane, Row, Term};
@@ -39,7 +39,7 @@ pub fn velocity_row<T: Real>(state: &State<T>, factor: T) -> Row<T> {
 /// What beside the steady balances acts in a compact element: it enters mass, enthalpy flow and third
 /// balance by `row`, each term `F(s)` times what it senses.
 pub struct Acting<T> {
-    /// Weight in mass [kg/s], enthalpy flow [W] and third balance [Pa].
+    /// Weight in mass (kg/s), enthalpy flow (W) and third balance (Pa).
     pub row: Row<T>,
     /// The terms.
     pub terms: Vec<Term<T>>,

@@ -5,17 +5,16 @@ pub mod area_change;
 pub mod duct;
 pub mod ends;
 pub mod flame;
-pub mod knob;
 pub mod lowering;
 pub mod plenum;
 pub mod port;
 pub mod restriction;
 
-use knob::{KnobId, KnobSpec, Values};
 use lowering::Between;
 use port::Port;
 
 use crate::gas::State;
+use crate::knobs::{KnobId, KnobSpec, Range, Values};
 use crate::numerics::dual::Real;
 use crate::waves::primitive::{Plane, Step};
 
@@ -50,7 +49,7 @@ pub enum Kind {
 }
 
 impl Kind {
-    /// The element's third steady balance, beside mass and enthalpy flow, as a residual [Pa] that is
+    /// The element's third steady balance, beside mass and enthalpy flow, as a residual (Pa) that is
     /// zero: `None` for an end, which balances nothing. The mean flow solves it; the acoustics
     /// differentiates it.
     ///
@@ -107,14 +106,14 @@ impl Kind {
 /// How an area is stated.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub enum Section {
-    /// By the diameter of a round passage [m].
+    /// By the diameter of a round passage (m).
     Diameter(KnobId),
-    /// By its area [m^2].
+    /// By its area (m^2).
     Area(KnobId),
 }
 
 impl Section {
-    /// The area [m^2].
+    /// The area (m^2).
     pub fn area<T: Real>(self, values: &Values<T>) -> T {
         match self {
             Section::Diameter(d) => values[d] * values[d] * (std::f64::consts::PI / 4.0),
@@ -132,7 +131,7 @@ pub enum GasChoice {
     PerfectByConstant {
         /// Ratio of specific heats.
         gamma: KnobId,
-        /// Specific gas constant [J/(kg K)].
+        /// Specific gas constant (J/(kg K)).
         gas_constant: KnobId,
     },
     /// A perfect gas by molar mass.
@@ -149,21 +148,21 @@ pub const GAS_KNOBS: &[KnobSpec] = &[
     KnobSpec {
         key: "gamma",
         dimension: crate::units::Dimension::Number,
-        range: knob::Range::Above(1.0),
+        range: Range::Above(1.0),
         default: None,
         doc: "ratio of specific heats",
     },
     KnobSpec {
         key: "gas_constant",
         dimension: crate::units::Dimension::SpecificGasConstant,
-        range: knob::Range::Positive,
+        range: Range::Positive,
         default: None,
         doc: "specific gas constant",
     },
     KnobSpec {
         key: "molar_mass",
         dimension: crate::units::Dimension::MolarMass,
-        range: knob::Range::Positive,
+        range: Range::Positive,
         default: None,
         doc: "molar mass, instead of the gas constant",
     },

@@ -1,8 +1,8 @@
 //! A plenum: a vessel whose gas is at rest and compressible.
 
-use super::knob::{KnobId, KnobSpec, Range, Values};
 use super::lowering::{self, Acting, Between, on_waves};
 use super::port::Port;
+use crate::knobs::{KnobId, KnobSpec, Range, Values};
 use crate::numerics::dual::{Grad, Real};
 use crate::units::Dimension;
 use crate::waves::law::Law;
@@ -11,7 +11,7 @@ use crate::waves::primitive::{Joint, Term};
 /// A vessel large enough for its gas to be at rest.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Plenum {
-    /// Volume [m^3].
+    /// Volume (m^3).
     pub volume: KnobId,
 }
 
@@ -51,7 +51,7 @@ impl Plenum {
 }
 
 /// The inflow loses its dynamic head, the outflow leaves isentropically from rest:
-/// `p1 - p_t2 = 0` [Pa].
+/// `p1 - p_t2 = 0` (Pa).
 pub fn balance<N: Real>(up: &Port<N>, down: &Port<N>) -> N {
     up.pressure - down.stagnation_pressure
 }

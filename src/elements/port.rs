@@ -2,7 +2,7 @@
 //! rest.
 //!
 //! With `rho` density, `u` velocity, `c` sound speed, `h_t` stagnation enthalpy, `T` temperature,
-//! `eta = u s'/cp` entropy flux [m/s], the first-order changes are
+//! `eta = u s'/cp` entropy flux (m/s), the first-order changes are
 //!
 //! ```text
 //! (rho u)'      = rho u' + u p'/c^2 - rho eta
@@ -20,19 +20,19 @@ use crate::numerics::dual::{Grad, Real};
 /// The fluxes through one station.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Port<N> {
-    /// Static pressure `p` [Pa].
+    /// Static pressure `p` (Pa).
     pub pressure: N,
-    /// Velocity `u` [m/s].
+    /// Velocity `u` (m/s).
     pub velocity: N,
-    /// Mass flow `rho u A` [kg/s].
+    /// Mass flow `rho u A` (kg/s).
     pub mass_flow: N,
-    /// Momentum flux `rho u^2` [Pa].
+    /// Momentum flux `rho u^2` (Pa).
     pub momentum_flux: N,
-    /// Flow of stagnation enthalpy `rho u A h_t` [W].
+    /// Flow of stagnation enthalpy `rho u A h_t` (W).
     pub enthalpy_flow: N,
-    /// Isentropic stagnation pressure [Pa].
+    /// Isentropic stagnation pressure (Pa).
     pub stagnation_pressure: N,
-    /// Area [m^2].
+    /// Area (m^2).
     pub area: N,
 }
 

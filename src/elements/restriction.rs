@@ -1,9 +1,9 @@
 //! A restriction: a pressure loss between equal areas, with the inertia of the gas in it.
 
-use super::knob::{KnobId, KnobSpec, Range, Values};
 use super::lowering::{self, Acting, Between, velocity_row};
 use super::port::Port;
 use super::{Kind, Section};
+use crate::knobs::{KnobId, KnobSpec, Range, Values};
 use crate::numerics::dual::Real;
 use crate::units::Dimension;
 use crate::waves::primitive::Joint;
@@ -13,7 +13,7 @@ use crate::waves::primitive::Joint;
 pub struct Restriction {
     /// Loss of isentropic stagnation pressure over `rho_1 u^2/2`.
     pub loss_coefficient: KnobId,
-    /// Effective length of the slug of gas in it [m].
+    /// Effective length of the slug of gas in it (m).
     pub effective_length: KnobId,
     /// Area whose velocity `u = mdot/(rho_1 A)` the two numbers above refer to; the upstream
     /// station's where none is stated.
@@ -21,7 +21,7 @@ pub struct Restriction {
 }
 
 impl Restriction {
-    /// `p_t1 - p_t2 - zeta rho1 u^2/2 = 0` [Pa] with `u = mdot/(rho1 A) = u1 A1/A`.
+    /// `p_t1 - p_t2 - zeta rho1 u^2/2 = 0` (Pa) with `u = mdot/(rho1 A) = u1 A1/A`.
     pub fn balance<N: Real>(
         &self,
         up: &Port<N>,

@@ -23,7 +23,7 @@ const COMPOSITION: [(Species, f64); 4] = [
     (CARBON_DIOXIDE, 0.0004),
 ];
 
-/// Specific gas constant of dry air [J/(kg K)].
+/// Specific gas constant of dry air (J/(kg K)).
 pub(crate) const GAS_CONSTANT: f64 = MOLAR_GAS_CONSTANT / molar_mass();
 
 /// Polynomials below 200 K, to 1000 K, to 6000 K and above.
@@ -121,22 +121,22 @@ fn piece(t: f64) -> &'static Piece {
     }
 }
 
-/// `cp` [J/(kg K)].
+/// `cp` (J/(kg K)).
 pub(crate) fn cp<T: Real>(t: T) -> T {
     piece(t.value()).cp(t) * GAS_CONSTANT
 }
 
-/// Sensible enthalpy from 298.15 K [J/kg].
+/// Sensible enthalpy from 298.15 K (J/kg).
 pub(crate) fn enthalpy<T: Real>(t: T) -> T {
     piece(t.value()).enthalpy(t) * GAS_CONSTANT
 }
 
-/// `integral cp/T dT` [J/(kg K)], zero at no particular temperature.
+/// `integral cp/T dT` (J/(kg K)), zero at no particular temperature.
 pub(crate) fn entropy<T: Real>(t: T) -> T {
     piece(t.value()).entropy(t) * GAS_CONSTANT
 }
 
-/// Temperature [K] at which [`enthalpy`] is `h` [J/kg], sought from `guess` [K].
+/// Temperature (K) at which [`enthalpy`] is `h` (J/kg), sought from `guess` (K).
 ///
 /// Enthalpy is continuous and increases, its slope lying between 3.4 and 4.8 times `R`, so Newton's
 /// iteration contracts from any guess.

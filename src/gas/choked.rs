@@ -2,7 +2,7 @@
 //!
 //! Isentropic from rest at `p_t, T_t` to the throat `*`, where `u* = c*`:
 //! `h(T*) + c(T*)^2/2 = h(T_t)`, `p* = p_t exp((phi(T*) - phi(T_t))/R)`, `phi' = cp/T`, and the flux is
-//! `G = p* c*/(R T*)` [kg/(s m^2)]. For a perfect gas
+//! `G = p* c*/(R T*)` (kg/(s m^2)). For a perfect gas
 //! `G = p_t sqrt(gamma/(R T_t)) (2/(gamma+1))^((gamma+1)/(2(gamma-1)))`.
 //!
 //! `G` is the greatest flux the isentrope allows, so `dG/dT* = 0` at given `T_t`, and with
@@ -12,7 +12,7 @@
 use super::{Gas, implicit};
 use crate::numerics::dual::{Dual, Real};
 
-/// Static temperature [K] at Mach 1 of a stream with stagnation temperature `t_t` [K].
+/// Static temperature (K) at Mach 1 of a stream with stagnation temperature `t_t` (K).
 pub fn choked_temperature<T: Real>(gas: &Gas<T>, t_t: T) -> T {
     match *gas {
         Gas::Perfect { gamma, .. } => t_t * 2.0 / (gamma + 1.0),
@@ -40,7 +40,7 @@ pub fn choked_temperature<T: Real>(gas: &Gas<T>, t_t: T) -> T {
     }
 }
 
-/// Mass flux `G` [kg/(s m^2)] at Mach 1 from stagnation pressure `p_t` [Pa] and temperature `t_t` [K].
+/// Mass flux `G` (kg/(s m^2)) at Mach 1 from stagnation pressure `p_t` (Pa) and temperature `t_t` (K).
 pub fn choked_flux<T: Real>(gas: &Gas<T>, p_t: T, t_t: T) -> T {
     let r = gas.gas_constant();
     match *gas {

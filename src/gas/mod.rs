@@ -15,20 +15,20 @@ pub use state::State;
 
 use crate::numerics::dual::Real;
 
-/// Molar gas constant [J/(mol K)], exact (SI, CODATA 2018).
+/// Molar gas constant (J/(mol K)), exact (SI, CODATA 2018).
 pub const MOLAR_GAS_CONSTANT: f64 = 8.314_462_618_153_24;
 
-/// Temperature at which sensible enthalpy is zero [K].
+/// Temperature at which sensible enthalpy is zero (K).
 pub const REFERENCE_TEMPERATURE: f64 = 298.15;
 
 /// A gas of fixed composition obeying `p = rho R T`.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub enum Gas<T> {
-    /// Constant ratio of specific heats and specific gas constant [J/(kg K)].
+    /// Constant ratio of specific heats and specific gas constant (J/(kg K)).
     Perfect {
         /// Ratio of specific heats.
         gamma: T,
-        /// Specific gas constant [J/(kg K)].
+        /// Specific gas constant (J/(kg K)).
         gas_constant: T,
     },
     /// Dry air, thermally perfect: N2 0.78084, O2 0.20946, Ar 0.00934, CO2 0.0004 by mole,
@@ -53,7 +53,7 @@ impl<T> Gas<T> {
 }
 
 impl<T: Real> Gas<T> {
-    /// Specific gas constant `R` [J/(kg K)].
+    /// Specific gas constant `R` (J/(kg K)).
     pub fn gas_constant(&self) -> T {
         match *self {
             Gas::Perfect { gas_constant, .. } => gas_constant,
@@ -61,7 +61,7 @@ impl<T: Real> Gas<T> {
         }
     }
 
-    /// Specific heat at constant pressure [J/(kg K)] at `t` [K].
+    /// Specific heat at constant pressure (J/(kg K)) at `t` (K).
     pub fn cp(&self, t: T) -> T {
         match *self {
             Gas::Perfect {
@@ -72,7 +72,7 @@ impl<T: Real> Gas<T> {
         }
     }
 
-    /// Ratio of specific heats at `t` [K].
+    /// Ratio of specific heats at `t` (K).
     pub fn gamma(&self, t: T) -> T {
         match *self {
             Gas::Perfect { gamma, .. } => gamma,
@@ -83,7 +83,7 @@ impl<T: Real> Gas<T> {
         }
     }
 
-    /// Sensible enthalpy [J/kg] at `t` [K], zero at [`REFERENCE_TEMPERATURE`].
+    /// Sensible enthalpy (J/kg) at `t` (K), zero at [`REFERENCE_TEMPERATURE`].
     pub fn enthalpy(&self, t: T) -> T {
         match self {
             Gas::Perfect { .. } => self.cp(t) * (t - REFERENCE_TEMPERATURE),
@@ -91,7 +91,7 @@ impl<T: Real> Gas<T> {
         }
     }
 
-    /// `integral cp/T dT` [J/(kg K)] at `t` [K], from a datum of its own: only differences mean
+    /// `integral cp/T dT` (J/(kg K)) at `t` (K), from a datum of its own: only differences mean
     /// something. Along an isentrope `p` varies as `exp(entropy_function/R)`.
     pub fn entropy_function(&self, t: T) -> T {
         match self {
@@ -100,12 +100,12 @@ impl<T: Real> Gas<T> {
         }
     }
 
-    /// Frozen sound speed `sqrt(gamma R T)` [m/s] at `t` [K].
+    /// Frozen sound speed `sqrt(gamma R T)` (m/s) at `t` (K).
     pub fn sound_speed(&self, t: T) -> T {
         (self.gamma(t) * self.gas_constant() * t).sqrt()
     }
 
-    /// Temperature [K] at which the sensible enthalpy is `h` [J/kg].
+    /// Temperature (K) at which the sensible enthalpy is `h` (J/kg).
     ///
     /// Not positive where `h` lies below the enthalpy at absolute zero.
     pub fn temperature_at_enthalpy(&self, h: T) -> T {
@@ -113,7 +113,7 @@ impl<T: Real> Gas<T> {
         self.temperature_at_enthalpy_near(h, guess)
     }
 
-    /// [`Gas::temperature_at_enthalpy`] with a guess [K], which saves iterations.
+    /// [`Gas::temperature_at_enthalpy`] with a guess (K), which saves iterations.
     pub(crate) fn temperature_at_enthalpy_near(&self, h: T, guess: f64) -> T {
         match self {
             Gas::Perfect { .. } => h / self.cp(h) + REFERENCE_TEMPERATURE,
@@ -124,7 +124,7 @@ impl<T: Real> Gas<T> {
         }
     }
 
-    /// `p_a/p_b` between temperatures `a` and `b` [K] of one isentrope.
+    /// `p_a/p_b` between temperatures `a` and `b` (K) of one isentrope.
     pub fn isentropic_pressure_ratio(&self, a: T, b: T) -> T {
         match *self {
             Gas::Perfect { gamma, .. } => (a / b).pow(gamma / (gamma - 1.0)),
@@ -137,7 +137,7 @@ impl<T: Real> Gas<T> {
         self.map(Real::value)
     }
 
-    /// Temperatures [K] between which the gas's properties are known; `None` where they hold by
+    /// Temperatures (K) between which the gas's properties are known; `None` where they hold by
     /// definition.
     pub fn range(&self) -> Option<(f64, f64)> {
         match self {
@@ -146,7 +146,7 @@ impl<T: Real> Gas<T> {
         }
     }
 
-    /// A remark, where `t` [K] lies outside [`Gas::range`]; properties there are extrapolated.
+    /// A remark, where `t` (K) lies outside [`Gas::range`]; properties there are extrapolated.
     pub fn beyond_range(&self, t: T) -> Option<String> {
         let (lowest, highest) = self.range()?;
         let t = t.value();

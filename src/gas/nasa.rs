@@ -1,7 +1,7 @@
 //! NASA seven-coefficient polynomials of one species.
 //!
 //! `cp/R = a1 + a2 T + a3 T^2 + a4 T^3 + a5 T^4`,
-//! `h/R = a6 + a1 T + a2 T^2/2 + a3 T^3/3 + a4 T^4/4 + a5 T^5/5` [K],
+//! `h/R = a6 + a1 T + a2 T^2/2 + a3 T^3/3 + a4 T^4/4 + a5 T^5/5` (K),
 //! `s/R = a7 + a1 ln T + a2 T + a3 T^2/2 + a4 T^3/3 + a5 T^4/4` at one bar,
 //! with `R` the molar gas constant, `h` counted from the elements at 298.15 K, and one set of
 //! `a1..a7` on either side of a mid-point temperature.
@@ -34,7 +34,7 @@ impl Piece {
         horner(&self.cp, t)
     }
 
-    /// `h/R` [K].
+    /// `h/R` (K).
     pub(crate) fn enthalpy<T: Real>(&self, t: T) -> T {
         horner(&self.enthalpy, t)
     }
@@ -64,11 +64,11 @@ pub(crate) struct Species {
     pub(crate) high: [f64; 7],
 }
 
-/// Lowest temperature of every species' polynomial below [K].
+/// Lowest temperature of every species' polynomial below (K).
 pub(crate) const LOWEST: f64 = 200.0;
-/// Where the two sets meet [K].
+/// Where the two sets meet (K).
 pub(crate) const MIDDLE: f64 = 1000.0;
-/// Highest temperature [K].
+/// Highest temperature (K).
 pub(crate) const HIGHEST: f64 = 6000.0;
 
 // Molar masses: IUPAC standard atomic weights, abridged (2021): N 14.007, O 15.999, C 12.011,

@@ -11,13 +11,13 @@ use crate::numerics::dual::Real;
 pub struct State<T> {
     /// Its gas.
     pub gas: Gas<T>,
-    /// Static pressure [Pa].
+    /// Static pressure (Pa).
     pub pressure: T,
-    /// Static temperature [K].
+    /// Static temperature (K).
     pub temperature: T,
-    /// Velocity along the flow [m/s].
+    /// Velocity along the flow (m/s).
     pub velocity: T,
-    /// Area of the passage [m^2].
+    /// Area of the passage (m^2).
     pub area: T,
 }
 
@@ -35,12 +35,12 @@ impl<T> State<T> {
 }
 
 impl<T: Real> State<T> {
-    /// Density [kg/m^3].
+    /// Density (kg/m^3).
     pub fn density(&self) -> T {
         self.pressure / (self.gas.gas_constant() * self.temperature)
     }
 
-    /// Sound speed [m/s].
+    /// Sound speed (m/s).
     pub fn sound_speed(&self) -> T {
         self.gas.sound_speed(self.temperature)
     }
@@ -50,17 +50,17 @@ impl<T: Real> State<T> {
         self.velocity / self.sound_speed()
     }
 
-    /// Mass flow [kg/s].
+    /// Mass flow (kg/s).
     pub fn mass_flow(&self) -> T {
         self.density() * self.velocity * self.area
     }
 
-    /// Stagnation enthalpy [J/kg]: sensible enthalpy from 298.15 K plus `u^2/2`.
+    /// Stagnation enthalpy (J/kg): sensible enthalpy from 298.15 K plus `u^2/2`.
     pub fn stagnation_enthalpy(&self) -> T {
         self.gas.enthalpy(self.temperature) + self.velocity * self.velocity * 0.5
     }
 
-    /// Stagnation temperature [K].
+    /// Stagnation temperature (K).
     pub fn stagnation_temperature(&self) -> T {
         let kinetic = self.velocity * self.velocity * 0.5;
         match self.gas {
@@ -74,7 +74,7 @@ impl<T: Real> State<T> {
         }
     }
 
-    /// Isentropic stagnation pressure [Pa].
+    /// Isentropic stagnation pressure (Pa).
     pub fn stagnation_pressure(&self) -> T {
         let t_t = self.stagnation_temperature();
         self.pressure * self.gas.isentropic_pressure_ratio(t_t, self.temperature)

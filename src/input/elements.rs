@@ -7,10 +7,11 @@ use super::fields::{Fields, Reader};
 use super::references;
 use crate::elements::area_change::{self, Contraction, Expansion};
 use crate::elements::duct::{self, Duct, Entropy};
-use crate::elements::flame::{self, Basis, Flame, Reference, Response, ResponseLaw};
+use crate::elements::flame::{self, Basis, Flame, Reference, Response};
 use crate::elements::plenum::{self, Plenum};
 use crate::elements::restriction::{self, Restriction};
 use crate::elements::{Element, Kind, Section};
+use crate::flame::{KNOBS as RESPONSES, ResponseLaw};
 use crate::problems::Problem;
 
 #[derive(Clone, Copy)]
@@ -198,10 +199,10 @@ fn responses(reader: &mut Reader, fields: &mut Fields<'_>) -> Vec<Response> {
 fn response(reader: &mut Reader, fields: &mut Fields<'_>, flame: &str) -> Option<Response> {
     let gaussian =
         fields.required_choice(reader, "kind", &[("n-tau", false), ("gaussian", true)])?;
-    let interaction_index = fields.required(reader, flame::RESPONSE_KNOBS, "interaction_index");
-    let delay = fields.required(reader, flame::RESPONSE_KNOBS, "delay");
+    let interaction_index = fields.required(reader, RESPONSES, "interaction_index");
+    let delay = fields.required(reader, RESPONSES, "delay");
     let law = if gaussian {
-        let spread = fields.required(reader, flame::RESPONSE_KNOBS, "spread");
+        let spread = fields.required(reader, RESPONSES, "spread");
         ResponseLaw::Gaussian {
             interaction_index,
             delay,

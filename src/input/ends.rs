@@ -6,8 +6,8 @@ use super::fields::{Fields, Reader};
 use crate::elements::ends::{
     EXIT_KNOBS, Exit, ExitEnd, FEED_KNOBS, Feed, FeedEnd, FeedFlow, Reflection,
 };
-use crate::elements::knob::KnobSpec;
 use crate::elements::{GAS_KNOBS, GasChoice};
+use crate::knobs::KnobSpec;
 use crate::problems::{Problem, listed, nearest};
 
 /// Gases a file may name, with what they are.

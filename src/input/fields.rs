@@ -4,7 +4,7 @@ use super::document::{Entry, Mark, Node, Table, Value};
 use super::sources::SourceMap;
 use crate::elements::Section;
 use crate::elements::flame::Reference;
-use crate::elements::knob::{Knob, KnobId, KnobSpec, Range};
+use crate::knobs::{Knob, KnobId, KnobSpec, Range};
 use crate::network::values::out_of_range;
 use crate::problems::{Problem, listed, nearest};
 use crate::units::{self, Dimension};

@@ -7,7 +7,7 @@ use std::path::Path;
 use super::sources::place;
 use crate::problems::{Problem, Problems, nearest};
 
-/// Largest file read [bytes]; a network of a thousand elements takes a twentieth of it.
+/// Largest file read (bytes); a network of a thousand elements takes a twentieth of it.
 pub const LARGEST_FILE: u64 = 4 << 20;
 
 /// The text of a file.

@@ -112,7 +112,7 @@ fn ordered(reader: Reader) -> (Vec<Problem>, SourceMap) {
     let problems = problems
         .into_iter()
         .map(|(mark, mut problem)| {
-            problem.place = mark.and_then(|m| sources.place_of(&m));
+            problem.place = mark.and_then(|m| sources.place_of(&m)).map(Box::new);
             sources.locate(&mut problem);
             problem
         })

@@ -5,7 +5,7 @@ use toml::de::DeValue;
 
 use super::document::{self, Entry, Mark, Node, Table, Value};
 use super::fields::{Reader, shown};
-use crate::elements::flame::RESPONSE_KNOBS;
+use crate::flame;
 use crate::problems::{Problem, nearest};
 
 /// Keys that say the same thing: stating one by override takes back the others of the file.
@@ -183,7 +183,7 @@ fn in_element(table: &mut Table, name: &str, rest: &[Step<'_>], mark: &Mark, nod
         );
         return Err((at.clone(), p.hint("change it in the file")));
     }
-    let response_key = RESPONSE_KNOBS.iter().any(|s| s.key == *key) || *key == "reference";
+    let response_key = flame::KNOBS.iter().any(|s| s.key == *key) || *key == "reference";
     let responds = table.get("response").is_some();
     match deeper.split_first() {
         None if response_key && responds => in_response(table, name, &[], &rest[..1], node),

@@ -1,8 +1,9 @@
 //! Warnings that the file alone can tell, before any mean flow.
 
 use crate::elements::ends::{Exit, ExitEnd, Feed, FeedEnd, Reflection};
-use crate::elements::flame::{Flame, ResponseLaw};
+use crate::elements::flame::Flame;
 use crate::elements::{Element, Kind};
+use crate::flame::ResponseLaw;
 use crate::network::areas::{TOLERANCE, station_areas};
 use crate::network::{ElementId, Network, values};
 use crate::problems::Problem;

@@ -44,7 +44,7 @@ impl SourceMap {
         if problem.place.is_none() {
             let top = Mark::new(FILE, 0..0);
             let mark = self.mark(&problem.subject).unwrap_or(&top);
-            problem.place = self.place_of(mark);
+            problem.place = self.place_of(mark).map(Box::new);
         }
     }
 

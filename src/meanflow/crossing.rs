@@ -18,17 +18,17 @@
 //! `F' >= 0` proves that there is none.
 
 use crate::elements::Kind;
-use crate::elements::knob::KnobId;
 use crate::elements::port::Port;
 use crate::gas::{Gas, REFERENCE_TEMPERATURE, State, implicit};
+use crate::knobs::KnobId;
 use crate::numerics::dual::{Dual, Real};
 
 /// What closes the energy balance of an element.
 #[derive(Clone, Copy, Debug)]
 pub(super) enum Energy<N> {
-    /// Stagnation enthalpy [J/kg], kept.
+    /// Stagnation enthalpy (J/kg), kept.
     Kept(N),
-    /// Static temperature [K] behind it, stated.
+    /// Static temperature (K) behind it, stated.
     Stated(N),
 }
 
@@ -37,11 +37,11 @@ pub(super) enum Energy<N> {
 pub(super) struct Crossing<N> {
     /// Fluxes at its inlet.
     pub(super) up: Port<N>,
-    /// Mass flow [kg/s].
+    /// Mass flow (kg/s).
     pub(super) mass_flow: N,
     /// Gas behind it.
     pub(super) gas: Gas<N>,
-    /// Area behind it [m^2].
+    /// Area behind it (m^2).
     pub(super) area: N,
     /// Its energy balance.
     pub(super) energy: Energy<N>,
@@ -57,7 +57,7 @@ pub(super) enum Failure {
 }
 
 impl<N: Real> Crossing<N> {
-    /// The state behind the element if its static pressure is `pressure` [Pa]; `guess` [K] is where a
+    /// The state behind the element if its static pressure is `pressure` (Pa); `guess` (K) is where a
     /// temperature is sought from.
     fn down(&self, pressure: N, guess: f64) -> State<N> {
         let per_kelvin = self.mass_flow * self.gas.gas_constant() / (pressure * self.area);
@@ -74,7 +74,7 @@ impl<N: Real> Crossing<N> {
         }
     }
 
-    /// The third balance [Pa] at that pressure, and the temperature behind [K]. An element that
+    /// The third balance (Pa) at that pressure, and the temperature behind (K). An element that
     /// balances nothing keeps the pressure.
     fn third(
         &self,
@@ -113,8 +113,8 @@ impl<N: Real> Crossing<N> {
         }
     }
 
-    /// The state behind the element, sought from pressure `pressure` [Pa] and temperature
-    /// `temperature` [K].
+    /// The state behind the element, sought from pressure `pressure` (Pa) and temperature
+    /// `temperature` (K).
     pub(super) fn solve(
         &self,
         kind: &Kind,
@@ -192,8 +192,8 @@ fn newton(
     Err(Failure::Choked)
 }
 
-/// Static temperature [K] of a stream with stagnation enthalpy `h_t` [J/kg] whose velocity is
-/// `per_kelvin` [m/(s K)] times it: `h(T) + (k T)^2/2 = h_t`, sought from `guess` [K].
+/// Static temperature (K) of a stream with stagnation enthalpy `h_t` (J/kg) whose velocity is
+/// `per_kelvin` (m/(s K)) times it: `h(T) + (k T)^2/2 = h_t`, sought from `guess` (K).
 ///
 /// For a perfect gas `T = 2 T_t/(1 + sqrt(1 + 2 k^2 T_t/cp))`, which holds at rest.
 fn static_temperature<N: Real>(gas: &Gas<N>, h_t: N, per_kelvin: N, guess: f64) -> N {

@@ -1,6 +1,6 @@
 //! Why a mean flow does not exist, in numbers; told in words once, when it is reported.
 
-use crate::elements::knob::KnobId;
+use crate::knobs::KnobId;
 use crate::network::{ElementId, Layout};
 use crate::problems::Problem;
 
@@ -9,33 +9,33 @@ use crate::problems::Problem;
 pub(super) enum Fault {
     /// The flow stated at the feed is supersonic at the first station.
     SupersonicFeed { mach: f64 },
-    /// No subsonic state behind an element passes the mass flow [kg/s]; `most` of it could.
+    /// No subsonic state behind an element passes the mass flow (kg/s); `most` of it could.
     Choked {
         element: ElementId,
         mach: f64,
         mass_flow: f64,
         most: f64,
     },
-    /// The open area of a restriction cannot pass the mass flow [kg/s].
+    /// The open area of a restriction cannot pass the mass flow (kg/s).
     ChokedPassage {
         element: ElementId,
         mass_flow: f64,
         most: f64,
     },
-    /// A flame is asked for more than the hottest static temperature [K] heating can reach.
+    /// A flame is asked for more than the hottest static temperature (K) heating can reach.
     ThermallyChoked {
         element: ElementId,
         mach: f64,
         asked: f64,
         hottest: f64,
     },
-    /// A flame's stated temperature [K] lies below its inlet's.
+    /// A flame's stated temperature (K) lies below its inlet's.
     Colder {
         element: ElementId,
         asked: f64,
         inlet: f64,
     },
-    /// A choked nozzle's throat [m^2] is not smaller than the passage before it.
+    /// A choked nozzle's throat (m^2) is not smaller than the passage before it.
     WideThroat { throat: f64, passage: f64 },
     /// A choked end, but nothing flows.
     NoFlow { element: ElementId },

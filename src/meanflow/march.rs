@@ -3,10 +3,10 @@
 use super::crossing::{Crossing, Energy, Failure};
 use super::fault::Fault;
 use crate::elements::flame::Flame;
-use crate::elements::knob::Values;
 use crate::elements::port::Port;
 use crate::elements::{Element, GasChoice, Kind};
 use crate::gas::{Gas, MOLAR_GAS_CONSTANT, State, choked_flux};
+use crate::knobs::Values;
 use crate::network::{ElementId, Layout};
 use crate::numerics::dual::Real;
 
@@ -32,7 +32,7 @@ pub(super) fn gas<T: Real>(choice: GasChoice, values: &Values<T>) -> Gas<T> {
 pub(super) struct Chain<'a, T> {
     pub(super) layout: &'a Layout,
     pub(super) values: &'a Values<T>,
-    /// Area at each station [m^2].
+    /// Area at each station (m^2).
     pub(super) areas: &'a [T],
     /// A flow tried on the way to the answer: a flame may be colder than its inlet in it.
     pub(super) trial: bool,
@@ -190,7 +190,7 @@ impl<T: Real> Here<'_, T> {
         }
     }
 
-    /// Greatest mass flow [kg/s] the stagnation pressure left behind the element could drive through
+    /// Greatest mass flow (kg/s) the stagnation pressure left behind the element could drive through
     /// the area there.
     fn most(&self, up: &State<T>, crossing: &Crossing<T>) -> f64 {
         let up = up.value();

@@ -3,8 +3,8 @@
 //! Mass flow is the same everywhere. Stagnation enthalpy is kept except over a flame, whose static
 //! temperature is stated. What remains in each element is its third balance,
 //! [`Kind::third_balance`], solved on the subsonic branch element by element from the feed
-//! ([`crossing`]). A stated throat at the exit fixes the Mach number at the first station instead
-//! ([`throat`]). Values are found in plain numbers; derivatives follow by Newton corrections in the
+//! (`crossing`). A stated throat at the exit fixes the Mach number at the first station instead
+//! (`throat`). Values are found in plain numbers; derivatives follow by Newton corrections in the
 //! number type asked for, and are exact.
 
 mod areas;
@@ -15,8 +15,8 @@ mod throat;
 
 use crate::elements::Kind;
 use crate::elements::ends::{Exit, ExitEnd, Feed, FeedEnd, FeedFlow};
-use crate::elements::knob::KnobId;
 use crate::gas::State;
+use crate::knobs::KnobId;
 use crate::network::{ElementId, Layout, Network, StationId};
 use crate::numerics::dual::Real;
 use crate::problems::{Problem, Problems};
@@ -32,9 +32,9 @@ pub const LOSS_FREE_MACH: f64 = 0.3;
 pub struct MeanFlow<T> {
     /// The state at each station, by [`StationId`].
     pub states: Vec<State<T>>,
-    /// Throat area of a choked exit [m^2]; it follows from the flow where not stated.
+    /// Throat area of a choked exit (m^2); it follows from the flow where not stated.
     pub throat_area: Option<T>,
-    /// Mean heat release [W] by [`ElementId`], of flames only.
+    /// Mean heat release (W) by [`ElementId`], of flames only.
     pub heat_release: Vec<Option<T>>,
     /// What qualifies the answer.
     pub warnings: Vec<Problem>,

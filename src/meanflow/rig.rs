@@ -4,11 +4,11 @@ use std::sync::Arc;
 
 use crate::elements::ends::{EXIT_KNOBS, Exit, ExitEnd, FEED_KNOBS, Feed, FeedEnd, FeedFlow};
 use crate::elements::flame::{Basis, Flame};
-use crate::elements::knob::{Knob, KnobId, KnobSpec, Values};
 use crate::elements::{
     Element, GAS_KNOBS, GasChoice, Kind, Section, area_change, duct, flame, plenum, restriction,
 };
 use crate::gas::Gas;
+use crate::knobs::{Knob, KnobId, KnobSpec, Values};
 use crate::network::{ElementId, Layout, Link, Network, Search, areas};
 
 /// How much flows.

@@ -292,7 +292,7 @@ fn nested_derivatives() {
             let layout = std::sync::Arc::clone(&network.layout);
             solve(&Network {
                 layout,
-                values: crate::elements::knob::Values(values),
+                values: crate::knobs::Values(values),
             })
             .unwrap()
         };
@@ -317,7 +317,7 @@ fn nested_derivatives() {
 
 #[test]
 fn molar_mass_and_constant_name_the_same_gas() {
-    let values = crate::elements::knob::Values(vec![1.4, 28.96e-3]);
+    let values = crate::knobs::Values(vec![1.4, 28.96e-3]);
     let choice = crate::elements::GasChoice::PerfectByMolarMass {
         gamma: KnobId(0),
         molar_mass: KnobId(1),

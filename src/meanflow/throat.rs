@@ -14,16 +14,16 @@ use argmin::solver::brent::BrentRoot;
 
 use super::fault::Fault;
 use super::march::Chain;
-use crate::elements::knob::Values;
 use crate::gas::{Gas, State, choked_flux, implicit};
+use crate::knobs::Values;
 use crate::numerics::dual::{Dual, Real};
 
 /// What the file states of the flow beside the throat.
 #[derive(Clone, Copy, Debug)]
 pub(super) enum Stated<T> {
-    /// Static pressure at the first station [Pa].
+    /// Static pressure at the first station (Pa).
     Pressure(T),
-    /// Mass flow [kg/s].
+    /// Mass flow (kg/s).
     MassFlow(T),
 }
 
@@ -31,9 +31,9 @@ pub(super) enum Stated<T> {
 #[derive(Clone, Copy, Debug)]
 pub(super) struct Inflow<T> {
     pub(super) gas: Gas<T>,
-    /// Static temperature [K].
+    /// Static temperature (K).
     pub(super) temperature: T,
-    /// Area [m^2].
+    /// Area (m^2).
     pub(super) area: T,
     pub(super) stated: Stated<T>,
 }
@@ -73,7 +73,7 @@ impl<T: Real> Inflow<T> {
 struct Nozzled<'a, T> {
     chain: Chain<'a, T>,
     inflow: Inflow<T>,
-    /// Throat area [m^2].
+    /// Throat area (m^2).
     throat: T,
 }
 
@@ -85,7 +85,7 @@ impl<T: Real> Nozzled<'_, T> {
     }
 }
 
-/// Flux at Mach 1 [kg/(s m^2)] from the stagnation conditions of a state.
+/// Flux at Mach 1 (kg/(s m^2)) from the stagnation conditions of a state.
 pub(super) fn exit_flux<T: Real>(state: &State<T>) -> T {
     choked_flux(
         &state.gas,
@@ -94,7 +94,7 @@ pub(super) fn exit_flux<T: Real>(state: &State<T>) -> T {
     )
 }
 
-/// Fills `states` with the flow that chokes the throat of area `throat` [m^2].
+/// Fills `states` with the flow that chokes the throat of area `throat` (m^2).
 pub(super) fn march<T: Real>(
     chain: Chain<'_, T>,
     inflow: Inflow<T>,

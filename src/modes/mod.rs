@@ -19,21 +19,21 @@ pub use window::{Window, cut_on};
 /// One mode: `p'(x, t) = Re[p(x) exp(s t)]`.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Mode {
-    /// `s = growth + 2 pi i frequency` [1/s].
+    /// `s = growth + 2 pi i frequency` (1/s).
     pub s: Complex64,
-    /// The exact eigenvalue of the model lies no farther from `s` than this [1/s].
+    /// The exact eigenvalue of the model lies no farther from `s` than this (1/s).
     pub error_bound: f64,
     /// Number of modes that coincide within `error_bound`.
     pub multiplicity: u8,
 }
 
 impl Mode {
-    /// Frequency [Hz], not negative.
+    /// Frequency (Hz), not negative.
     pub fn frequency(&self) -> f64 {
         self.s.im / std::f64::consts::TAU
     }
 
-    /// Growth rate [1/s]: positive grows.
+    /// Growth rate (1/s): positive grows.
     pub fn growth(&self) -> f64 {
         self.s.re
     }

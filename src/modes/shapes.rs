@@ -20,11 +20,11 @@ use crate::network::{ElementId, Network};
 pub struct Sample {
     /// The element.
     pub element: ElementId,
-    /// Distance from the feed along the ducts [m].
+    /// Distance from the feed along the ducts (m).
     pub position: f64,
-    /// Pressure [Pa].
+    /// Pressure (Pa).
     pub pressure: Complex64,
-    /// Axial velocity [m/s].
+    /// Axial velocity (m/s).
     pub velocity: Complex64,
 }
 

@@ -3,8 +3,8 @@
 
 use super::{ModeList, Window, cut_on};
 use crate::elements::Kind;
-use crate::elements::flame::ResponseLaw;
-use crate::elements::knob::KnobId;
+use crate::flame::ResponseLaw;
+use crate::knobs::KnobId;
 use crate::meanflow::MeanFlow;
 use crate::network::{ElementId, Network};
 use crate::problems::Problem;
@@ -57,7 +57,7 @@ pub fn of_window(network: &Network, mean: &MeanFlow<f64>, window: &Window) -> Ve
     found
 }
 
-/// The length of an element taken as compact [m], and what it is.
+/// The length of an element taken as compact (m), and what it is.
 fn extent(network: &Network, kind: &Kind) -> Option<(&'static str, f64)> {
     let slug = |k: KnobId| Some(("its effective length", network.values[k]));
     match kind {
@@ -72,7 +72,7 @@ fn extent(network: &Network, kind: &Kind) -> Option<(&'static str, f64)> {
     }
 }
 
-/// The lower of the sound speeds on both sides [m/s].
+/// The lower of the sound speeds on both sides (m/s).
 fn slowest(network: &Network, mean: &MeanFlow<f64>, id: ElementId) -> Option<f64> {
     let layout = &network.layout;
     [layout.inlet(id), layout.outlet(id)]

@@ -15,15 +15,15 @@ const FIRST_CUT_ON: f64 = 1.841_183_781_340_659;
 /// Part of the lowest cut-on frequency the default window reaches.
 const BELOW_CUT_ON: f64 = 0.9;
 
-/// Growth rates of the default window [1/s].
+/// Growth rates of the default window (1/s).
 const DEFAULT_GROWTH: (f64, f64) = (-500.0, 500.0);
 
 /// A window in the plane of frequency and growth rate.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Window {
-    /// Lowest and highest frequency [Hz].
+    /// Lowest and highest frequency (Hz).
     pub frequency: (f64, f64),
-    /// Lowest and highest growth rate [1/s].
+    /// Lowest and highest growth rate (1/s).
     pub growth: (f64, f64),
 }
 
@@ -68,7 +68,7 @@ impl Window {
     }
 }
 
-/// The lowest cut-on frequency [Hz] of each duct, `1.8412 c sqrt(1 - M^2)/(pi D)`, by name. A duct of
+/// The lowest cut-on frequency (Hz) of each duct, `1.8412 c sqrt(1 - M^2)/(pi D)`, by name. A duct of
 /// stated area is taken as round.
 pub fn cut_on(network: &Network, mean: &MeanFlow<f64>) -> Vec<(String, f64)> {
     let mut all = Vec::new();

@@ -14,7 +14,7 @@ use crate::units::{Dimension, write_rounded};
 /// Areas agree within this, relative.
 pub const TOLERANCE: f64 = 1e-9;
 
-/// Area of each station [m^2], in the order of [`Layout::links`].
+/// Area of each station (m^2), in the order of [`Layout::links`].
 pub fn station_areas<T: Real>(network: &Network<T>) -> Vec<T> {
     network
         .layout

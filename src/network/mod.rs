@@ -1,7 +1,7 @@
 //! The network: elements joined by links, and the numbers that describe them.
 //!
 //! A [`Layout`] is the graph and says nothing in numbers; a [`Network`] is a layout with one value
-//! for each knob, over any [`Real`]. Stations are the links of the graph: the plane where one
+//! for each knob, over any [`Real`](crate::numerics::dual::Real). Stations are the links of the graph: the plane where one
 //! element ends is the plane where the next begins.
 
 pub mod areas;
@@ -9,8 +9,8 @@ pub mod values;
 
 use std::sync::Arc;
 
-use crate::elements::knob::{Knob, KnobId, Values};
 use crate::elements::{Element, Kind, Section};
+use crate::knobs::{Knob, KnobId, Values};
 use crate::numerics::dual::Dual;
 
 /// Index of an element in [`Layout::elements`].
@@ -51,9 +51,9 @@ pub struct Layout {
 /// filled in from the network (see `modes::window`).
 #[derive(Clone, Copy, Debug, Default, PartialEq)]
 pub struct Search {
-    /// Lowest and highest frequency [Hz].
+    /// Lowest and highest frequency (Hz).
     pub frequency: Option<(f64, f64)>,
-    /// Lowest and highest growth rate [1/s].
+    /// Lowest and highest growth rate (1/s).
     pub growth: Option<(f64, f64)>,
 }
 

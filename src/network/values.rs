@@ -3,7 +3,7 @@
 use super::Network;
 use crate::elements::Kind;
 use crate::elements::ends::{ExitEnd, FeedEnd, FeedFlow};
-use crate::elements::knob::{KnobId, KnobSpec, Range};
+use crate::knobs::{KnobId, KnobSpec, Range};
 use crate::problems::Problem;
 use crate::units::write_rounded;
 

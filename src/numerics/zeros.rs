@@ -3,7 +3,7 @@
 //! 1. Count the zeros in the window padded by about 2 % ([`count`](super::count)); a zero on the padded
 //!    edge asks for another pad.
 //! 2. Newton from a staggered grid of pitch `1.6 B_0/B_1`, where the first step is short; each point
-//!    reached is proved ([`isolate`](super::isolate)) and entered ([`ledger`](super::ledger)), until the
+//!    reached is proved ([`isolate`]) and entered ([`ledger`](super::ledger)), until the
 //!    weights add up to the count.
 //! 3. Else Newton deflated by the zeros found, then subdivision with counts that must add up.
 //! 4. The zeros within the window asked for are the list; one whose error disc straddles its edge makes

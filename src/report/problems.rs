@@ -15,7 +15,7 @@ use std::fmt::Write;
 
 use crate::problems::{Place, Problem, Severity};
 
-/// Widest part of a source line shown [characters].
+/// Widest part of a source line shown (characters).
 const WIDEST: usize = 100;
 
 /// Problems one below the other, and a last line that counts them. Empty for no problems.

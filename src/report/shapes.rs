@@ -74,7 +74,7 @@ fn at<'a>(element: &'a str, side: Option<&'static str>, s: &Sample) -> At<'a> {
     }
 }
 
-/// The phase [rad]; zero for a zero.
+/// The phase (rad); zero for a zero.
 fn phase(z: Complex64) -> f64 {
     if z.norm() > 0.0 { z.arg() } else { 0.0 }
 }

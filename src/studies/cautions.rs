@@ -3,7 +3,7 @@
 use super::map::{Axis, Map, Point, moves_mean_flow};
 use crate::elements::Kind;
 use crate::elements::ends::{Exit, ExitEnd};
-use crate::elements::knob::KnobId;
+use crate::knobs::KnobId;
 use crate::meanflow::{self, MeanFlow};
 use crate::modes::validity;
 use crate::network::{Network, areas, values};

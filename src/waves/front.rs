@@ -4,7 +4,7 @@
 //! `(p+, p-, e)` at the plane reached, followed by the signals in transit: those *remembered* from a
 //! plane passed, and those *awaited* from a plane to come, each a free coordinate until it is closed
 //! there. The subspace has one dimension and one more for each awaited signal; its minors
-//! ([`exterior`](super::exterior)) are what the tape carries. The end's condition leaves one number,
+//! ([`exterior`]) are what the tape carries. The end's condition leaves one number,
 //! `D(s)`.
 //!
 //! Each distance is scaled by `exp(-s t-)`, so that only decaying exponentials occur for growing `s`:
@@ -33,7 +33,7 @@ pub struct Characteristic<T> {
     pub tape: Tape<T>,
     /// `prod det(down)` over the joints.
     pub joints: T,
-    /// `sum_k t_k` [s].
+    /// `sum_k t_k` (s).
     pub closed_late: T,
 }
 
@@ -92,7 +92,7 @@ pub fn eliminate<T: Real>(chain: &Chain<T>) -> Result<Characteristic<T>, Elimina
         coordinates: Vec::new(),
         held: Vec::new(),
         grade: 1,
-        writer: Writer::new(),
+        writer: Writer::default(),
         joints: T::from(1.0),
         closed_late: zero,
     };

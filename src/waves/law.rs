@@ -6,7 +6,7 @@
 //! Complex     F(s) = (a + i b) exp(-s t)                    for Im s > 0; conjugate below
 //! ```
 //!
-//! `t` delays [s], `d` standard deviations [s]. Each law evaluates itself in every arithmetic, so an
+//! `t` delays (s), `d` standard deviations (s). Each law evaluates itself in every arithmetic, so an
 //! element that carries one needs no line of its own.
 
 use super::complex::Cx;
@@ -18,9 +18,9 @@ use crate::numerics::dual::Real;
 pub struct Delayed<T> {
     /// Signed weight.
     pub weight: T,
-    /// Mean delay [s].
+    /// Mean delay (s).
     pub delay: T,
-    /// Standard deviation of the delay [s]; zero for a sharp delay.
+    /// Standard deviation of the delay (s); zero for a sharp delay.
     pub spread: T,
 }
 
@@ -33,7 +33,7 @@ pub enum Law<T> {
     Polynomial {
         /// `a_0, a_1, a_2`.
         coefficients: [T; 3],
-        /// Delay [s].
+        /// Delay (s).
         delay: T,
     },
     /// A complex constant times a delay. Breaks conjugate symmetry of the analytic continuation.
@@ -42,7 +42,7 @@ pub enum Law<T> {
         re: T,
         /// Imaginary part, for positive frequency.
         im: T,
-        /// Delay [s].
+        /// Delay (s).
         delay: T,
     },
 }

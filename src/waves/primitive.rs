@@ -45,9 +45,9 @@ pub struct End<T> {
 /// Waves travelling over a distance.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Travel<T> {
-    /// Time `p+` takes [s].
+    /// Time `p+` takes (s).
     pub downstream: T,
-    /// Time `p-` takes [s].
+    /// Time `p-` takes (s).
     pub upstream: T,
     /// What multiplies the entropy flux; nothing arrives where absent.
     pub entropy: Option<Law<T>>,

@@ -219,15 +219,17 @@ enum Pending<T> {
     },
 }
 
-impl<T: Real> Writer<T> {
+impl<T: Real> Default for Writer<T> {
     /// An empty program.
-    pub fn new() -> Self {
+    fn default() -> Self {
         Writer {
             ops: Vec::new(),
             too_wide: false,
         }
     }
+}
 
+impl<T: Real> Writer<T> {
     /// `v_i -> exp(-s t_i) v_i` with one delay for each slot.
     pub fn scale(&mut self, delays: &[T]) {
         let mut groups: Vec<(T, Vec<usize>)> = Vec::new();

@@ -106,7 +106,7 @@ impl Analytic for Polynomial {
 
 /// `1 + epsilon + n exp(-s tau)` with zeros `(ln(n/(1 + epsilon)) + i (2k + 1) pi)/tau`.
 pub fn intrinsic(epsilon: f64, n: f64, tau: f64) -> Tape<f64> {
-    let mut writer = Writer::new();
+    let mut writer = Writer::default();
     let law = Law::Delays(vec![Delayed {
         weight: n,
         delay: tau,

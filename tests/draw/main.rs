@@ -1,9 +1,7 @@
 //! Figures from invented fields: well-formed, inside the canvas, small, the same every time, and
 //! true to the field. Every figure is also written to the target folder's `tmp/draw`, to be looked at.
 
-#[cfg(test)]
 mod check;
-#[cfg(test)]
 mod figures;
 
 use check::check_drawing;
