@@ -301,10 +301,11 @@ fn warnings<T: Real>(
     for (element, heat) in layout.elements.iter().zip(heat_release) {
         if let Some(q) = heat.map(Real::value).filter(|&q| q < 0.0) {
             let name = &element.name;
-            found.push(Problem::warning(
-                name,
-                format!("the mean heat release of `{name}` is negative ({q:.1} W)"),
-            ));
+            let what = format!(
+                "its mean heat release is negative, {q:.1} W: it cools the stream that reaches it"
+            );
+            let hint = "state a temperature above that of its inlet, which `stillflame flow` prints";
+            found.push(Problem::warning(format!("{name}.burnt_temperature"), what).hint(hint));
         }
     }
     found
