@@ -304,7 +304,8 @@ fn warnings<T: Real>(
             let what = format!(
                 "its mean heat release is negative, {q:.1} W: it cools the stream that reaches it"
             );
-            let hint = "state a temperature above that of its inlet, which `stillflame flow` prints";
+            let hint =
+                "state a temperature above that of its inlet, which `stillflame flow` prints";
             found.push(Problem::warning(format!("{name}.burnt_temperature"), what).hint(hint));
         }
     }
