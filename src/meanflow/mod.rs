@@ -7,7 +7,6 @@
 //! (`throat`). Values are found in plain numbers; derivatives follow by Newton corrections in the
 //! number type asked for, and are exact.
 
-mod areas;
 mod crossing;
 mod fault;
 mod march;
@@ -17,7 +16,7 @@ use crate::elements::Kind;
 use crate::elements::ends::{Exit, ExitEnd, Feed, FeedEnd, FeedFlow};
 use crate::gas::State;
 use crate::knobs::KnobId;
-use crate::network::{ElementId, Layout, Network, StationId};
+use crate::network::{ElementId, Layout, Network, StationId, areas};
 use crate::numerics::dual::Real;
 use crate::problems::{Problem, Problems};
 use fault::Fault;
