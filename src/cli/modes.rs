@@ -4,7 +4,7 @@ use clap::Args;
 
 use super::options::{Case, Common, WindowArguments};
 use super::{Answer, Failure, Status};
-use crate::modes::{self, ModeList, Scan, Tendency, shapes, validity};
+use crate::modes::{self, Scan, Tendency, shapes, validity};
 use crate::report::modes::Modes;
 
 /// Find every mode in a window and prove the list complete
@@ -47,14 +47,15 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
     let mut more = solved.mean.warnings.clone();
     more.extend(validity::of_window(&case.network, &solved.mean, &window));
     more.extend(validity::of_modes(&case.network, &list));
-    let beyond = modes::beyond(&solved, window);
-    more.extend(validity::of_growth_beyond(&window, &beyond));
+    let outside = modes::outside(&solved, window, 0.0);
+    more.extend(validity::of_growth_outside(&window, &outside));
     more.extend(modes::doubts_as_warnings(&list));
     let warnings = case.warnings_with(more);
     let report = Modes {
         heading: case.heading(),
         network: &case.network,
         list: &list,
+        outside: &outside,
         shapes: &shapes,
         with_shapes: arguments.shapes,
         warnings: &warnings,
@@ -63,8 +64,10 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
     if arguments.shapes {
         files.push((case.file("shapes.csv"), report.shapes_csv()?));
     }
-    let grows = |list: &ModeList| list.modes.iter().any(|m| m.tendency() == Tendency::Grows);
-    let grows = grows(&list) || grows(&beyond);
+    let listed = list.modes.iter().chain(&outside.faster);
+    let grows = listed
+        .chain(&outside.slower)
+        .any(|m| m.tendency() == Tendency::Grows);
     let status = if arguments.fail_on_growth && grows {
         Status::Grows
     } else if list.complete() {

@@ -1,5 +1,6 @@
 //! From a window to a certified list of modes.
 
+mod outside;
 pub mod shapes;
 pub mod validity;
 mod window;
@@ -14,6 +15,7 @@ pub use crate::numerics::zeros::Scan;
 use crate::numerics::zeros::{self, Doubt};
 use crate::problems::{Problem, Problems};
 
+pub use outside::{Outside, outside};
 pub use window::{Window, cut_on};
 
 /// One mode: `p'(x, t) = Re[p(x) exp(s t)]`.

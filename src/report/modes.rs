@@ -5,9 +5,9 @@ use serde::Serialize;
 use super::document::WindowFields;
 use super::shapes::{self, ShapeFields};
 use super::table::{Lean, Table};
-use super::{Document, Heading, OUTSIDE, closing, counted, csv_of, window_text};
+use super::{Document, Heading, closing, counted, csv_of, window_text};
 use crate::modes::shapes::Shape;
-use crate::modes::{Mode, ModeList, Tendency, doubt_in_words};
+use crate::modes::{Mode, ModeList, Outside, Tendency, doubt_in_words};
 use crate::network::Network;
 use crate::numerics::count::Effort;
 use crate::problems::Problem;
@@ -21,6 +21,8 @@ pub struct Modes<'a> {
     pub network: &'a Network,
     /// The list.
     pub list: &'a ModeList,
+    /// What grows outside its window.
+    pub outside: &'a Outside,
     /// The shape of each mode, in the order of the list; absent where it did not settle.
     pub shapes: &'a [Option<Shape>],
     /// Whether the shapes themselves are told, and not only their residuals.
@@ -80,7 +82,28 @@ struct Body<'a> {
     window: WindowFields,
     modes: Vec<Entry<'a>>,
     effort: EffortFields,
-    outside_window: &'static str,
+    growth_excluded_beyond: bool,
+    growth_not_excluded_because: Option<&'a str>,
+    growth_searched_to_per_s: f64,
+    outside_window: Vec<OutsideRow>,
+}
+
+/// A mode outside the window, in SI.
+#[derive(Clone, Debug, Serialize)]
+struct OutsideRow {
+    frequency_hz: f64,
+    growth_per_s: f64,
+    error_bound_per_s: f64,
+}
+
+impl From<&Mode> for OutsideRow {
+    fn from(mode: &Mode) -> Self {
+        OutsideRow {
+            frequency_hz: mode.frequency(),
+            growth_per_s: mode.growth(),
+            error_bound_per_s: mode.error_bound,
+        }
+    }
 }
 
 fn tendency(mode: &Mode) -> &'static str {
@@ -138,7 +161,13 @@ impl Modes<'_> {
             window: (&self.list.window).into(),
             modes: self.rows().enumerate().map(entry).collect(),
             effort: (&self.list.effort).into(),
-            outside_window: OUTSIDE,
+            growth_excluded_beyond: self.outside.excluded(),
+            growth_not_excluded_because: self.outside.reason.as_deref(),
+            growth_searched_to_per_s: self.outside.searched_to,
+            outside_window: (self.outside.slower.iter())
+                .chain(&self.outside.faster)
+                .map(Into::into)
+                .collect(),
         };
         Document::new("stillflame/modes", &self.heading, body, self.warnings).to_json()
     }
@@ -267,10 +296,21 @@ impl Modes<'_> {
             ),
             (n, None) => format!("{} grow.\n", counted(n, "mode")),
         });
-        text.push_str(OUTSIDE);
+        let top = list.window.frequency.1;
+        text.push_str(&match &self.outside.reason {
+            None => format!("Growth outside the window is excluded up to {top:.0} Hz, by proof.\n"),
+            Some(reason) if self.outside.fastest().is_some() || !self.outside.complete => {
+                format!("Growth outside the window is NOT EXCLUDED: {reason}.\n")
+            }
+            Some(reason) => format!(
+                "No growth outside the window up to {top:.0} Hz and {:.0} 1/s; faster growth is NOT EXCLUDED: \
+                 {reason}.\n",
+                self.outside.searched_to
+            ),
+        });
         let e = &list.effort;
         text.push_str(&format!(
-            "\nEffort: {} evaluations, {} bounds, {} refinements, {} retries, {} fallbacks.\n",
+            "Effort: {} evaluations, {} bounds, {} refinements, {} retries, {} fallbacks.\n",
             e.evaluations, e.bounds, e.refinements, e.retries, e.fallbacks
         ));
         text
