@@ -1,5 +1,6 @@
 //! From a window to a certified list of modes.
 
+pub mod budget;
 mod outside;
 pub mod shapes;
 pub mod validity;
