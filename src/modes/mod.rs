@@ -1,6 +1,7 @@
 //! From a window to a certified list of modes.
 
 pub mod budget;
+pub mod margins;
 mod outside;
 pub mod shapes;
 pub mod validity;

@@ -47,6 +47,36 @@ pub enum Law<T> {
     },
 }
 
+impl<T> Law<T> {
+    /// The same law in another number type.
+    pub fn map<U>(&self, f: impl Fn(&T) -> U) -> Law<U> {
+        match self {
+            Law::Delays(delays) => Law::Delays(
+                delays
+                    .iter()
+                    .map(|d| Delayed {
+                        weight: f(&d.weight),
+                        delay: f(&d.delay),
+                        spread: f(&d.spread),
+                    })
+                    .collect(),
+            ),
+            Law::Polynomial {
+                coefficients,
+                delay,
+            } => Law::Polynomial {
+                coefficients: coefficients.each_ref().map(&f),
+                delay: f(delay),
+            },
+            Law::Complex { re, im, delay } => Law::Complex {
+                re: f(re),
+                im: f(im),
+                delay: f(delay),
+            },
+        }
+    }
+}
+
 impl<T: Real> Law<T> {
     /// `F(s) = s`.
     pub fn s() -> Self {
