@@ -1,6 +1,7 @@
 //! From a window to a certified list of modes.
 
 pub mod budget;
+pub mod explain;
 pub mod margins;
 mod outside;
 pub mod shapes;
@@ -51,6 +52,11 @@ impl Mode {
     pub fn damping_ratio(&self) -> Option<f64> {
         let size = self.s.norm();
         (size > 0.0).then(|| -self.growth() / size)
+    }
+
+    /// Full width at half power of the peak a damped mode makes in a spectrum, `-growth/pi` (Hz).
+    pub fn half_power_width(&self) -> Option<f64> {
+        (self.growth() < 0.0).then(|| -self.growth() / std::f64::consts::PI)
     }
 
     /// Whether it grows, as far as its error bound tells.
