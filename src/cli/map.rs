@@ -3,11 +3,10 @@
 use std::ops::ControlFlow;
 
 use clap::Args;
-use indicatif::{ProgressBar, ProgressStyle};
 
 use super::options::{Case, Common, WindowArguments};
 use super::plane::{self, Points};
-use super::{Answer, Failure, Status};
+use super::{Answer, Failure, Status, progress};
 use crate::modes::{self, Scan, validity};
 use crate::problems::Problem;
 use crate::report::map::MapReport;
@@ -54,7 +53,7 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
     let design = modes::find(&solved, window, Scan::Whole);
     let design_beyond = modes::beyond(&solved, window);
 
-    let bar = bar(across.points * up.points);
+    let bar = progress::bar(across.points * up.points);
     let watch = || {
         bar.inc(1);
         ControlFlow::Continue(())
@@ -105,13 +104,4 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
             Status::Failed
         },
     })
-}
-
-/// A bar on standard error; nothing where that is no terminal.
-fn bar(points: usize) -> ProgressBar {
-    let bar = ProgressBar::new(points as u64);
-    if let Ok(style) = ProgressStyle::with_template("{bar:40} {pos} of {len} points, {eta} left") {
-        bar.set_style(style);
-    }
-    bar
 }

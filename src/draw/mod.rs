@@ -5,10 +5,11 @@
 //! pure function of its input: equal input, equal bytes.
 //!
 //! ```text
-//! map, lines            the figures
+//! map, lines, locus     the figures
 //!   frame               title, plot rectangle, axes, legend, footnote
 //!   raster, contour     a sampled field as an embedded image, its level lines
 //!   region, label       outlines of marked cells, places for labels
+//!   symbol, tags        marks and names on curves
 //!   field               interpolation that adds no extrema
 //!   axis, colour        value to position, value to colour
 //!   svg, text           elements and escaping, glyph widths
@@ -23,17 +24,22 @@ pub mod field;
 mod frame;
 mod label;
 pub mod lines;
+pub mod locus;
 pub mod map;
 mod raster;
 mod region;
 mod sheet;
 mod style;
 mod svg;
+pub mod symbol;
+mod tags;
 pub mod text;
 
 pub use axis::{Axis, Scale};
 pub use lines::{LineFigure, Panel, Series, Shade};
+pub use locus::{Locus, Trail};
 pub use map::{DesignPoint, IsoLines, Quantity, StabilityMap, Words};
+pub use symbol::{Spot, Symbol};
 
 /// Why a figure cannot be drawn: its arrays contradict each other.
 #[derive(Debug, Clone, PartialEq, thiserror::Error)]

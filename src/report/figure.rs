@@ -7,7 +7,7 @@ use crate::studies::map::{Axis as Values, Point};
 use crate::units::{self, Dimension, write_rounded};
 
 /// The unit an engineer writes a quantity of that size in, and its size in SI.
-fn engineers_unit(dimension: Dimension, largest: f64) -> (String, f64) {
+pub(super) fn engineers_unit(dimension: Dimension, largest: f64) -> (String, f64) {
     let text = write_rounded(largest, dimension, 6);
     let unit = text.split_once(' ').map_or("", |(_, unit)| unit);
     match units::parse(&format!("1 {unit}"), dimension) {
@@ -17,7 +17,7 @@ fn engineers_unit(dimension: Dimension, largest: f64) -> (String, f64) {
 }
 
 /// `main_flame.delay` as `Delay of main_flame`.
-fn label(name: &str) -> String {
+pub(super) fn label(name: &str) -> String {
     let (element, key) = name.rsplit_once('.').unwrap_or(("", name));
     let words = key.replace('_', " ");
     let mut letters = words.chars();

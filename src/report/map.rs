@@ -292,7 +292,7 @@ pub(super) fn rate(growth: f64) -> String {
 }
 
 /// `41 %`; what is neither nothing nor all is never said to be.
-fn percent(part: usize, whole: usize) -> String {
+pub(super) fn percent(part: usize, whole: usize) -> String {
     let exact = 100.0 * part as f64 / whole.max(1) as f64;
     match exact {
         p if p > 0.0 && p < 1.0 => "less than 1 %".to_owned(),

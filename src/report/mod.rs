@@ -12,6 +12,7 @@ pub mod map;
 pub mod modes;
 pub mod problems;
 pub mod shapes;
+pub mod sweep;
 mod table;
 
 pub use document::{Document, Remark};

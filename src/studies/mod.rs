@@ -2,3 +2,5 @@
 
 pub mod cautions;
 pub mod map;
+pub mod path;
+pub mod sweep;

@@ -1,8 +1,8 @@
 //! Invented figures, plain and hostile.
 
 use stillflame::draw::{
-    Axis, DesignPoint, IsoLines, LineFigure, Panel, Quantity, Scale, Series, Shade, StabilityMap,
-    text,
+    Axis, DesignPoint, IsoLines, LineFigure, Panel, Quantity, Scale, Series, Shade, Spot,
+    StabilityMap, Symbol, text,
 };
 
 pub type Rows = Vec<Vec<Option<f64>>>;
@@ -246,6 +246,7 @@ pub fn sweep() -> LineFigure {
                 name: format!("branch {}", k + 1),
                 style: k,
                 values: pick(b).clone(),
+                tag: (k + 1).to_string(),
             })
             .collect::<Vec<_>>()
     };
@@ -265,6 +266,13 @@ pub fn sweep() -> LineFigure {
                 y: Axis::new("Frequency", "Hz"),
                 series: series(|b| &b.0),
                 shade: None,
+                spots: vec![Spot {
+                    x: 2.0,
+                    y: 235.0,
+                    symbol: Symbol::Diamond,
+                    style: None,
+                    label: String::new(),
+                }],
             },
             Panel {
                 y: Axis::new("Growth rate", "1/s"),
@@ -274,7 +282,18 @@ pub fn sweep() -> LineFigure {
                     upwards: true,
                     label: "grows".into(),
                 }),
+                spots: vec![Spot {
+                    x: 4.2,
+                    y: 0.0,
+                    symbol: Symbol::Circle,
+                    style: Some(0),
+                    label: String::new(),
+                }],
             },
+        ],
+        symbols: vec![
+            (Symbol::Circle, "neutral".into()),
+            (Symbol::Diamond, "two modes meet".into()),
         ],
     }
 }
