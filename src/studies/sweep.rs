@@ -218,6 +218,7 @@ pub fn sweep(
         .collect();
     events.extend(neutral.into_iter().flatten());
     events.sort_by(|a, b| a.u.total_cmp(&b.u).then(a.branches.cmp(&b.branches)));
+    tell_meetings_once(&mut events);
 
     let mut effort = Effort::default();
     let inserted = stretches.iter().flat_map(|s| &s.between);
@@ -239,6 +240,38 @@ pub fn sweep(
         between,
         effort,
     })
+}
+
+/// Next to a meeting the shortest steps may be in doubt as well: within [`SAME`] of a meeting of the same
+/// branches nothing is told again, and that they become real or oscillating goes before.
+fn tell_meetings_once(events: &mut Vec<Event>) {
+    const SAME: f64 = 1e-9;
+    let rank = |k: Kind| match k {
+        Kind::BecomesReal | Kind::BecomesOscillating => Some(0),
+        Kind::ExceptionalPoint | Kind::Crossing => Some(1),
+        _ => None,
+    };
+    let set = |e: &Event| {
+        let mut branches = e.branches.clone();
+        branches.sort_unstable();
+        branches
+    };
+    let mut kept: Vec<Event> = Vec::with_capacity(events.len());
+    for event in events.drain(..) {
+        let Some(this) = rank(event.kind) else {
+            kept.push(event);
+            continue;
+        };
+        let same = kept.iter_mut().rev().find(|e| {
+            rank(e.kind).is_some() && event.u - e.u <= SAME && set(e) == set(&event)
+        });
+        match same {
+            Some(told) if rank(told.kind) > Some(this) => *told = event,
+            Some(_) => {}
+            None => kept.push(event),
+        }
+    }
+    *events = kept;
 }
 
 fn add(sum: &mut Effort, more: &Effort) {

@@ -77,7 +77,12 @@ impl SweepReport<'_> {
         let unknown = not_certified + failed;
         if unknown > 0 && complete > 0 {
             let share = percent(unknown, sweep.points.len());
-            text.push_str(&format!("; {share} of the points not certified"));
+            let what = match (not_certified, failed) {
+                (_, 0) => "not certified",
+                (0, _) => "without an answer",
+                _ => "not certified or without an answer",
+            };
+            text.push_str(&format!("; {share} of the points {what}"));
         }
         text
     }
