@@ -1,0 +1,71 @@
+//! The networks whose speed is measured, with the map drawn of each: gain and delay of the main flame.
+
+use std::path::{Path, PathBuf};
+
+use stillflame::modes::{self, Solved, Window};
+use stillflame::network::Network;
+use stillflame::studies::map::{self, Axis, Map};
+use stillflame::{input, problems};
+
+/// A network ready to be asked.
+pub struct Rig {
+    /// What it is called in figures.
+    pub name: &'static str,
+    /// As its file states it.
+    pub network: Network,
+    /// Its mean flow and acoustics.
+    pub solved: Solved,
+    /// The window its file states.
+    pub window: Window,
+}
+
+/// Points of a map along each axis.
+pub const POINTS: usize = 200;
+
+/// A file of the repository.
+pub fn file(path: &str) -> PathBuf {
+    Path::new(env!("CARGO_MANIFEST_DIR")).join(path)
+}
+
+impl Rig {
+    /// Reads a network and solves its mean flow.
+    pub fn read(name: &'static str, path: &str) -> Result<Rig, problems::Problems> {
+        let network = input::read(&file(path), &[])?.network;
+        let solved = modes::solve(&network)?;
+        let window = Window::of(&network, &solved.mean)?;
+        Ok(Rig {
+            name,
+            network,
+            solved,
+            window,
+        })
+    }
+
+    /// The delay, 0 to 10 ms, and the gain, 0 to 2, of the main flame.
+    pub fn axes(&self, points: usize) -> (Axis, Axis) {
+        let axis = |key: &str, low, high| Axis {
+            knob: self.network.layout.knob(key).expect("a knob of the rig"),
+            low,
+            high,
+            points,
+        };
+        (
+            axis("main_flame.delay", 0.0, 0.01),
+            axis("main_flame.interaction_index", 0.0, 2.0),
+        )
+    }
+
+    /// The modes at every point of a plane.
+    pub fn map(&self, axes: (Axis, Axis)) -> Map {
+        let go_on = || std::ops::ControlFlow::Continue(());
+        map::map(&self.network, &self.solved.mean, axes, self.window, go_on).expect("not ended")
+    }
+}
+
+/// Threads to share a map among.
+pub fn threads(number: usize) -> rayon::ThreadPool {
+    rayon::ThreadPoolBuilder::new()
+        .num_threads(number)
+        .build()
+        .expect("threads")
+}
