@@ -1,5 +1,9 @@
 //! From a window to a certified list of modes.
 
+pub mod budget;
+pub mod explain;
+pub mod margins;
+mod outside;
 pub mod shapes;
 pub mod validity;
 mod window;
@@ -9,11 +13,12 @@ use num_complex::Complex64;
 use crate::acoustics::{self, Acoustics, matrix};
 use crate::meanflow::{self, MeanFlow};
 use crate::network::Network;
-use crate::numerics::count::Effort;
+use crate::numerics::count::{CountError, Effort};
 pub use crate::numerics::zeros::Scan;
 use crate::numerics::zeros::{self, Doubt};
 use crate::problems::{Problem, Problems};
 
+pub use outside::{Outside, outside};
 pub use window::{Window, cut_on};
 
 /// One mode: `p'(x, t) = Re[p(x) exp(s t)]`.
@@ -47,6 +52,11 @@ impl Mode {
     pub fn damping_ratio(&self) -> Option<f64> {
         let size = self.s.norm();
         (size > 0.0).then(|| -self.growth() / size)
+    }
+
+    /// Full width at half power of the peak a damped mode makes in a spectrum, `-growth/pi` (Hz).
+    pub fn half_power_width(&self) -> Option<f64> {
+        (self.growth() < 0.0).then(|| -self.growth() / std::f64::consts::PI)
     }
 
     /// Whether it grows, as far as its error bound tells.
@@ -182,6 +192,60 @@ pub fn shape(solved: &Solved, mode: &Mode) -> Option<matrix::NullVector> {
 pub fn doubts_as_warnings(list: &ModeList) -> Vec<Problem> {
     list.doubts
         .iter()
-        .map(|d| Problem::warning("search", d.to_string()))
+        .map(|d| {
+            let (what, hint) = doubt_in_words(d);
+            Problem::warning("search", what).hint(hint)
+        })
         .collect()
+}
+
+/// What a doubt says of the modes, and what may mend it.
+pub fn doubt_in_words(doubt: &Doubt) -> (String, &'static str) {
+    let place = |s: &Complex64| {
+        let frequency = s.im.abs() / std::f64::consts::TAU;
+        format!("{frequency:.4} Hz with growth rate {:+.4} 1/s", s.re)
+    };
+    let defect = "the list is not to be relied on: this is a defect of the program, worth a report";
+    match doubt {
+        Doubt::NotCounted(CountError::OnContour { near }) => (
+            format!(
+                "the modes could not be counted: one lies on the edge of each window tried, near {}",
+                place(near)
+            ),
+            "move the edges of the window",
+        ),
+        Doubt::NotCounted(CountError::Overflow { at }) => (
+            format!(
+                "the modes could not be counted: at {} the waves of the longest delays overflow",
+                place(at)
+            ),
+            "raise the lower growth rate, or carry entropy through fewer slow ducts",
+        ),
+        Doubt::NotCounted(CountError::BoundContradicted { at }) => (
+            format!(
+                "the modes could not be counted: at {} a value exceeds its bound",
+                place(at)
+            ),
+            defect,
+        ),
+        Doubt::Missing { missing } => (
+            format!("of the modes counted {missing} could not be found or proved"),
+            "a window less deep, or moved, may list them; rounding hides modes that delays damp strongly",
+        ),
+        Doubt::Excess { excess } => (
+            format!("{excess} more modes were found than counted"),
+            defect,
+        ),
+        Doubt::OnEdge { at, error } => (
+            format!(
+                "the mode at {} lies within its error, {error:.1e} 1/s, of the window's edge",
+                place(at)
+            ),
+            "move that edge",
+        ),
+        Doubt::Coarse { at, error } => (
+            format!("the mode at {} is known to {error:.1e} 1/s only", place(at)),
+            "a window less deep in decay avoids modes that rounding blurs",
+        ),
+    }
 }

@@ -12,6 +12,8 @@ pub struct Region {
     pub growth: (f64, f64),
     /// Greatest modulus.
     pub modulus: f64,
+    /// Least modulus of the imaginary part.
+    pub omega: f64,
 }
 
 impl Region {
@@ -20,6 +22,11 @@ impl Region {
         Region {
             growth: (a.re.min(b.re), a.re.max(b.re)),
             modulus: a.norm().max(b.norm()),
+            omega: if a.im * b.im > 0.0 {
+                a.im.abs().min(b.im.abs())
+            } else {
+                0.0
+            },
         }
     }
 
@@ -28,6 +35,7 @@ impl Region {
         Region {
             growth: (centre.re - radius, centre.re + radius),
             modulus: centre.norm() + radius,
+            omega: (centre.im.abs() - radius).max(0.0),
         }
     }
 }

@@ -262,7 +262,7 @@ fn point(
         None => Point::Certified(found),
         Some(doubt) => Point::Doubtful {
             found,
-            why: doubt.to_string().into(),
+            why: modes::doubt_in_words(doubt).0.into(),
         },
     }
 }

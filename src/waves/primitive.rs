@@ -14,6 +14,7 @@
 //! what they sense may lie at any plane.
 
 use super::law::Law;
+use crate::numerics::dual::Real;
 
 /// Coefficients of the three unknowns at a plane.
 pub type Row<T> = [T; 3];
@@ -101,5 +102,46 @@ impl<T> Chain<T> {
     /// Number of planes.
     pub fn planes(&self) -> usize {
         self.steps.len() + 1
+    }
+}
+
+impl Chain<f64> {
+    /// The same chain in another number type, as constants.
+    pub fn lift<T: Real>(&self) -> Chain<T> {
+        let row = |r: &Row<f64>| r.map(T::from);
+        let law = |l: &Law<f64>| l.map(|&x| T::from(x));
+        let term = |t: &Option<(Law<f64>, Row<f64>)>| t.as_ref().map(|(l, r)| (law(l), row(r)));
+        let step = |s: &Step<f64>| match s {
+            Step::Travel(t) => Step::Travel(Travel {
+                downstream: T::from(t.downstream),
+                upstream: T::from(t.upstream),
+                entropy: t.entropy.as_ref().map(law),
+            }),
+            Step::Joint(j) => Step::Joint(Joint {
+                up: j.up.map(|r| row(&r)),
+                down: j.down.map(|r| row(&r)),
+                row: row(&j.row),
+                terms: j
+                    .terms
+                    .iter()
+                    .map(|t| Term {
+                        law: law(&t.law),
+                        sense: row(&t.sense),
+                        at: t.at,
+                    })
+                    .collect(),
+            }),
+        };
+        Chain {
+            start: Start {
+                rows: self.start.rows.map(|r| row(&r)),
+                term: term(&self.start.term),
+            },
+            steps: self.steps.iter().map(step).collect(),
+            end: End {
+                row: row(&self.end.row),
+                term: term(&self.end.term),
+            },
+        }
     }
 }
