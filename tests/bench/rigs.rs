@@ -2,6 +2,7 @@
 
 use std::path::{Path, PathBuf};
 
+use num_complex::Complex64;
 use stillflame::modes::{self, Solved, Window};
 use stillflame::network::Network;
 use stillflame::studies::map::{self, Axis, Map};
@@ -39,6 +40,20 @@ impl Rig {
             solved,
             window,
         })
+    }
+
+    /// Points spread over the window: multiples of the golden ratio across, even steps up.
+    pub fn points(&self, number: u32) -> Vec<Complex64> {
+        let r = self.window.rectangle();
+        let within = |(a, b): (f64, f64), part: f64| a + (b - a) * part;
+        let golden = 0.5 * (5f64.sqrt() - 1.0);
+        (0..number)
+            .map(|i| {
+                let across = (f64::from(i) * golden).fract();
+                let up = f64::from(i) / f64::from(number);
+                Complex64::new(within(r.growth, across), within(r.omega, up))
+            })
+            .collect()
     }
 
     /// The delay, 0 to 10 ms, and the gain, 0 to 2, of the main flame.

@@ -15,7 +15,7 @@ use criterion::{BenchmarkGroup, Criterion, SamplingMode, criterion_group, criter
 use num_complex::Complex64;
 use rigs::{POINTS, Rig};
 use stillflame::modes::{self, Scan};
-use stillflame::numerics::analytic::Analytic;
+use stillflame::numerics::analytic::{Analytic, Region};
 use stillflame::numerics::count::Walker;
 
 const RIGS: [(&str, &str); 3] = [
@@ -29,22 +29,6 @@ fn rigs() -> Vec<Rig> {
     RIGS.into_iter().map(read).collect()
 }
 
-/// Points spread over a window: multiples of the golden ratio across, even steps up.
-fn points(rig: &Rig) -> Vec<Complex64> {
-    let r = rig.window.rectangle();
-    let within = |(a, b): (f64, f64), part: f64| a + (b - a) * part;
-    let golden = 0.5 * (5f64.sqrt() - 1.0);
-    (0..1024)
-        .map(|i| {
-            let i = f64::from(i);
-            Complex64::new(
-                within(r.growth, (i * golden).fract()),
-                within(r.omega, i / 1024.0),
-            )
-        })
-        .collect()
-}
-
 fn each(c: &mut Criterion, step: &str, run: impl Fn(&mut BenchmarkGroup<'_, WallTime>, &Rig)) {
     let mut group = c.benchmark_group(step);
     for rig in rigs() {
@@ -56,7 +40,7 @@ fn each(c: &mut Criterion, step: &str, run: impl Fn(&mut BenchmarkGroup<'_, Wall
 fn values(c: &mut Criterion) {
     each(c, "D and slope at a point", |group, rig| {
         let tape = &rig.solved.acoustics.characteristic.tape;
-        let points = points(rig);
+        let points = rig.points(1024);
         let mut next = points.iter().cycle();
         group.bench_function(rig.name, |b| {
             b.iter(|| next.next().map(|&s| tape.value_and_slope(black_box(s))));
@@ -67,11 +51,11 @@ fn values(c: &mut Criterion) {
 fn bounds(c: &mut Criterion) {
     each(c, "bounds over a segment", |group, rig| {
         let tape = &rig.solved.acoustics.characteristic.tape;
-        let (low, high) = rig.window.growth;
-        let region = stillflame::numerics::analytic::Region {
-            growth: (low, high),
-            modulus: rig.window.rectangle().omega.1,
-        };
+        let r = rig.window.rectangle();
+        let region = Region::segment(
+            Complex64::new(r.growth.0, r.omega.0),
+            Complex64::new(r.growth.1, r.omega.1),
+        );
         group.bench_function(rig.name, |b| b.iter(|| tape.bound(black_box(&region))));
     });
 }
