@@ -61,7 +61,7 @@ pub fn newton<F: Analytic + ?Sized>(
         if settled {
             return Some(z);
         }
-        if (z - start).norm() > reach {
+        if (z - start).norm_sqr() > reach * reach {
             return None;
         }
         last = size;
