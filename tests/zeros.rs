@@ -8,6 +8,7 @@ use num_complex::Complex64;
 use proptest::prelude::*;
 use stillflame::numerics::analytic::{Analytic, Region, Rounding, TAYLOR};
 use stillflame::numerics::count::{CountError, Effort, Rectangle, Walker};
+use stillflame::numerics::isolate::Zero;
 use stillflame::numerics::ledger::{Entry, Ledger};
 use stillflame::numerics::zeros::{self, Doubt, Scan};
 
@@ -54,6 +55,31 @@ proptest! {
                 found.zeros.iter().any(|k| (k.at - z).norm() <= k.error + 1e-7 * z.norm()),
                 "{z} not in {:?}", found.zeros
             );
+        }
+    }
+
+    #[test]
+    fn where_a_search_starts_does_not_change_what_it_finds(
+        zeros in prop::collection::vec(zero(), 1..5),
+        astray in prop::collection::vec((-900.0..900.0f64, -100.0..7500.0f64), 0..4),
+        known in 0..5usize,
+    ) {
+        prop_assume!(zeros.iter().all(|z| clear_of_edges(*z)));
+        let f = Polynomial::symmetric(&zeros);
+        let from_grid = zeros::search(&f, &WINDOW, Scan::UntilCounted);
+        // Some of the zeros, some of them twice, among points that are none.
+        let starts: Vec<_> = astray
+            .into_iter()
+            .map(|(re, im)| c(re, im))
+            .chain(from_grid.met.iter().copied().take(known))
+            .chain(from_grid.met.iter().copied().take(1))
+            .collect();
+        let found = zeros::search_from(&f, &WINDOW, Scan::UntilCounted, &starts);
+        prop_assert!(found.complete(), "{:?}", found.doubts);
+        prop_assert_eq!(found.expected, from_grid.expected);
+        for z in &from_grid.zeros {
+            let same = |k: &Zero| (k.at - z.at).norm() <= k.error + z.error;
+            prop_assert!(found.zeros.iter().any(same), "{z:?} not in {:?}", found.zeros);
         }
     }
 

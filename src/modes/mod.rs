@@ -89,6 +89,9 @@ pub struct ModeList {
     pub modes: Vec<Mode>,
     /// Number of modes in the window by the argument principle; absent where no count was reached.
     pub expected: Option<usize>,
+    /// Every zero met, those just outside the window among them: where to start for a network much like
+    /// this one.
+    pub met: Vec<Complex64>,
     /// Why the list is not proved complete; empty when it is.
     pub doubts: Vec<Doubt>,
     /// Work done.
@@ -130,8 +133,18 @@ pub fn solve(network: &Network) -> Result<Solved, Problems> {
 
 /// Finds every mode in a window.
 pub fn find(solved: &Solved, window: Window, scan: Scan) -> ModeList {
-    let tape = &solved.acoustics.characteristic.tape;
-    let found = zeros::search(tape, &window.rectangle(), scan);
+    find_from(&solved.acoustics, window, scan, &[])
+}
+
+/// The same, trying first where zeros are to be expected: those met in a network much like this one.
+pub fn find_from(
+    acoustics: &Acoustics<f64>,
+    window: Window,
+    scan: Scan,
+    starts: &[Complex64],
+) -> ModeList {
+    let tape = &acoustics.characteristic.tape;
+    let found = zeros::search_from(tape, &window.rectangle(), scan, starts);
     let modes = found
         .zeros
         .iter()
@@ -145,6 +158,7 @@ pub fn find(solved: &Solved, window: Window, scan: Scan) -> ModeList {
         window,
         modes,
         expected: found.expected.and_then(|n| usize::try_from(n).ok()),
+        met: found.met,
         doubts: found.doubts,
         effort: found.effort,
     }
@@ -156,12 +170,17 @@ const REACH: f64 = 3.0;
 /// Modes in the window's band of frequency that grow faster than its upper edge, in a strip three times
 /// as high as the window. Faster growth still is not excluded.
 pub fn beyond(solved: &Solved, window: Window) -> ModeList {
+    beyond_from(&solved.acoustics, window, &[])
+}
+
+/// The same, trying first where zeros are to be expected.
+pub fn beyond_from(acoustics: &Acoustics<f64>, window: Window, starts: &[Complex64]) -> ModeList {
     let (low, high) = window.growth;
     let strip = Window {
         growth: (high, high + REACH * (high - low)),
         ..window
     };
-    find(solved, strip, Scan::UntilCounted)
+    find_from(acoustics, strip, Scan::UntilCounted, starts)
 }
 
 /// The shape of a mode with its residual in the global matrix.

@@ -61,7 +61,7 @@ pub fn newton<F: Analytic + ?Sized>(
         if settled {
             return Some(z);
         }
-        if (z - start).norm() > reach {
+        if (z - start).norm_sqr() > reach * reach {
             return None;
         }
         last = size;
@@ -72,6 +72,7 @@ pub fn newton<F: Analytic + ?Sized>(
 /// Proves one zero near `z`, which Newton has reached, in a disc no larger than `reach`.
 pub fn simple<F: Analytic + ?Sized>(f: &F, z: Complex64, reach: f64) -> Option<Zero> {
     let rounding = f.rounding();
+    let (value, slope) = f.value_and_slope(z);
     let mut reach = reach;
     let mut best: Option<(f64, f64)> = None;
     let mut settled = false;
@@ -82,7 +83,6 @@ pub fn simple<F: Analytic + ?Sized>(f: &F, z: Complex64, reach: f64) -> Option<Z
         }
         let bounds = f.bound(&Region::disc(z, reach));
         let floor = |order| rounding.floor(&bounds, z.norm(), order);
-        let (value, slope) = f.value_and_slope(z);
         let (e, a) = (value.norm() + floor(0), slope.norm() - floor(1));
         let root = a * a - 4.0 * bounds[2] * e;
         if a > 0.0 && root > 0.0 {

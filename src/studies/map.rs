@@ -1,10 +1,12 @@
 //! A stability map: the certified mode list at every point of a plane of two knobs.
 //!
-//! Values come from their index, `low + i (high - low)/(n - 1)`, and both ends are exact. Every point
-//! is computed on its own, so the answer does not depend on the number of threads.
+//! Values come from their index, `low + i (high - low)/(n - 1)`, and both ends are exact. Every point has
+//! its own count and its own proofs. A search starts at the zeros met at the point before in its stretch
+//! of a row; stretches are fixed, so the answer does not depend on the number of threads.
 
 use std::ops::ControlFlow;
 
+use num_complex::Complex64;
 use rayon::prelude::*;
 
 use crate::acoustics;
@@ -14,7 +16,7 @@ use crate::elements::ends::{ExitEnd, FeedEnd};
 use crate::flame::ResponseLaw;
 use crate::knobs::KnobId;
 use crate::meanflow::MeanFlow;
-use crate::modes::{self, Mode, Scan, Solved, Tendency, Window};
+use crate::modes::{self, Mode, Scan, Tendency, Window};
 use crate::network::Network;
 use crate::problems::{Problem, Problems};
 
@@ -187,6 +189,9 @@ impl Map {
     }
 }
 
+/// Points of a row that are solved one after another.
+const STRETCH: usize = 50;
+
 /// Asks for the modes at every point of the plane, on all cores.
 ///
 /// `mean` is the mean flow of the network; it is computed anew at each point where a knob of the plane
@@ -201,46 +206,57 @@ pub fn map(
 ) -> Option<Map> {
     let moves = moves_mean_flow(network, across.knob) || moves_mean_flow(network, up.knob);
     let held = (!moves).then_some(mean);
-    let columns = across.points;
-    let points: Option<Vec<Point>> = (0..columns * up.points)
+    let in_row = across.points.div_ceil(STRETCH);
+    let stretches: Option<Vec<Vec<Point>>> = (0..in_row * up.points)
         .into_par_iter()
         .map(|index| {
-            let (i, j) = (index % columns, index / columns);
+            let (first, j) = (index % in_row * STRETCH, index / in_row);
             let mut here = network.clone();
-            here.values[across.knob] = across.value(i);
-            here.values[up.knob] = up.value(j);
-            let point = point(&here, held, window);
-            watch().is_continue().then_some(point)
+            let mut known = Vec::new();
+            (first..across.points.min(first + STRETCH))
+                .map(|i| {
+                    here.values[across.knob] = across.value(i);
+                    here.values[up.knob] = up.value(j);
+                    let point = point(&here, held, window, &mut known);
+                    watch().is_continue().then_some(point)
+                })
+                .collect()
         })
         .collect();
     Some(Map {
         across,
         up,
         window,
-        points: points?,
+        points: stretches?.into_iter().flatten().collect(),
     })
 }
 
-fn point(network: &Network, held: Option<&MeanFlow<f64>>, window: Window) -> Point {
-    let solved = match held {
-        None => modes::solve(network),
-        Some(mean) => acoustics::assemble(network, mean).map(|acoustics| Solved {
-            mean: mean.clone(),
-            acoustics,
-        }),
+/// One point. `known` holds the zeros met at the point before and is left with those met here.
+fn point(
+    network: &Network,
+    held: Option<&MeanFlow<f64>>,
+    window: Window,
+    known: &mut Vec<Complex64>,
+) -> Point {
+    let acoustics = match held {
+        None => modes::solve(network).map(|solved| solved.acoustics),
+        Some(mean) => acoustics::assemble(network, mean),
     };
-    let solved = match solved {
-        Ok(solved) => solved,
+    let acoustics = match acoustics {
+        Ok(acoustics) => acoustics,
         Err(Problems(problems)) => {
             let unsaid = || Problem::error("network", "this point has no solution");
             return Point::Failed(Box::new(problems.into_iter().next().unwrap_or_else(unsaid)));
         }
     };
     // The characteristic function is analytic by construction.
-    let list = modes::find(&solved, window, Scan::UntilCounted);
+    let list = modes::find_from(&acoustics, window, Scan::UntilCounted, known);
+    let beyond = modes::beyond_from(&acoustics, window, known);
+    known.clear();
+    known.extend(list.met.iter().chain(&beyond.met));
     let found = Found {
         leading: list.leading().copied(),
-        beyond: modes::beyond(&solved, window).leading().copied(),
+        beyond: beyond.leading().copied(),
     };
     match list.doubts.first() {
         None => Point::Certified(found),
