@@ -18,7 +18,7 @@ pub use crate::numerics::zeros::Scan;
 use crate::numerics::zeros::{self, Doubt};
 use crate::problems::{Problem, Problems};
 
-pub use outside::{Outside, outside};
+pub use outside::{Outside, outside, outside_from};
 pub use window::{Window, cut_on};
 
 /// One mode: `p'(x, t) = Re[p(x) exp(s t)]`.
@@ -162,25 +162,6 @@ pub fn find_from(
         doubts: found.doubts,
         effort: found.effort,
     }
-}
-
-/// How far to the right of a window [`beyond`] looks, over the window's height in growth rate.
-const REACH: f64 = 3.0;
-
-/// Modes in the window's band of frequency that grow faster than its upper edge, in a strip three times
-/// as high as the window. Faster growth still is not excluded.
-pub fn beyond(solved: &Solved, window: Window) -> ModeList {
-    beyond_from(&solved.acoustics, window, &[])
-}
-
-/// The same, trying first where zeros are to be expected.
-pub fn beyond_from(acoustics: &Acoustics<f64>, window: Window, starts: &[Complex64]) -> ModeList {
-    let (low, high) = window.growth;
-    let strip = Window {
-        growth: (high, high + REACH * (high - low)),
-        ..window
-    };
-    find_from(acoustics, strip, Scan::UntilCounted, starts)
 }
 
 /// The shape of a mode with its residual in the global matrix.

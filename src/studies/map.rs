@@ -60,8 +60,12 @@ impl Axis {
 pub struct Found {
     /// The mode in the window that grows fastest, or decays slowest.
     pub leading: Option<Mode>,
-    /// The fastest of those that grow faster than the window's upper edge (see [`modes::beyond`]).
-    pub beyond: Option<Mode>,
+    /// The fastest of those that grow outside it, up to its highest frequency (see [`modes::outside`]).
+    pub outside: Option<Mode>,
+    /// Whether further growth there is excluded, by proof.
+    pub excluded: bool,
+    /// Growth rate (1/s) up to which was searched.
+    pub searched_to: f64,
 }
 
 /// What is known of one point.
@@ -93,14 +97,20 @@ impl Point {
         self.found().leading
     }
 
-    /// The fastest mode beyond the window's upper edge.
-    pub fn beyond(&self) -> Option<Mode> {
-        self.found().beyond
+    /// The fastest mode that grows outside the window.
+    pub fn outside(&self) -> Option<Mode> {
+        self.found().outside
     }
 
-    /// The fastest mode known, in the window or beyond its upper edge.
+    /// The fastest mode known, in the window or outside.
     pub fn fastest(&self) -> Option<Mode> {
-        self.beyond().or(self.leading())
+        let both = [self.outside(), self.leading()].into_iter().flatten();
+        both.max_by(|a, b| a.growth().total_cmp(&b.growth()))
+    }
+
+    /// Whether growth beside the modes known is excluded, up to the window's highest frequency.
+    pub fn excluded(&self) -> bool {
+        self.found().excluded
     }
 
     /// Whether the list at the point is proved complete.
@@ -152,9 +162,13 @@ pub struct Tally {
     pub failed: usize,
     /// Those where a mode grows, whether or not the list is complete.
     pub growing: usize,
-    /// Those where a mode grows faster than the window's upper edge.
-    pub beyond: usize,
-    /// The largest growth rate found, in the window or beyond, with its values on `across` and `up`.
+    /// Those where a mode grows outside the window.
+    pub outside: usize,
+    /// Those where growth beside the modes known is not excluded.
+    pub open: usize,
+    /// Least growth rate (1/s) up to which growth outside the window was searched at those.
+    pub searched_to: Option<f64>,
+    /// The largest growth rate found, in the window or outside, with its values on `across` and `up`.
     pub greatest: Option<(f64, f64, Mode)>,
 }
 
@@ -169,12 +183,15 @@ impl Map {
                 Point::Doubtful { .. } => tally.doubtful += 1,
                 Point::Failed(_) => tally.failed += 1,
             }
+            if !point.excluded() {
+                tally.open += 1;
+                let to = point.found().searched_to;
+                tally.searched_to = Some(tally.searched_to.map_or(to, |least| least.min(to)));
+            }
             let Some(mode) = point.fastest() else {
                 continue;
             };
-            if point.beyond().is_some() {
-                tally.beyond += 1;
-            }
+            tally.outside += usize::from(point.outside().is_some());
             if mode.tendency() == Tendency::Grows {
                 tally.growing += 1;
             }
@@ -212,7 +229,7 @@ pub fn map(
         .map(|index| {
             let (first, j) = (index % in_row * STRETCH, index / in_row);
             let mut here = network.clone();
-            let mut known = Vec::new();
+            let mut known = Known::default();
             (first..across.points.min(first + STRETCH))
                 .map(|i| {
                     here.values[across.knob] = across.value(i);
@@ -231,12 +248,19 @@ pub fn map(
     })
 }
 
-/// One point. `known` holds the zeros met at the point before and is left with those met here.
+/// What was met at the point before.
+#[derive(Default)]
+struct Known {
+    zeros: Vec<Complex64>,
+    clear_beyond: f64,
+}
+
+/// One point. `known` is of the point before and is left with what is met here.
 fn point(
     network: &Network,
     held: Option<&MeanFlow<f64>>,
     window: Window,
-    known: &mut Vec<Complex64>,
+    known: &mut Known,
 ) -> Point {
     let acoustics = match held {
         None => modes::solve(network).map(|solved| solved.acoustics),
@@ -250,13 +274,19 @@ fn point(
         }
     };
     // The characteristic function is analytic by construction.
-    let list = modes::find_from(&acoustics, window, Scan::UntilCounted, known);
-    let beyond = modes::beyond_from(&acoustics, window, known);
-    known.clear();
-    known.extend(list.met.iter().chain(&beyond.met));
+    let list = modes::find_from(&acoustics, window, Scan::UntilCounted, &known.zeros);
+    let outside = modes::outside_from(&acoustics, window, known.clear_beyond, &known.zeros);
+    known.zeros.clear();
+    known.zeros.extend(list.met.iter().chain(&outside.met));
+    known.clear_beyond = outside.searched_to;
+    let grows = outside
+        .fastest()
+        .filter(|m| m.tendency() == Tendency::Grows);
     let found = Found {
         leading: list.leading().copied(),
-        beyond: beyond.leading().copied(),
+        outside: grows.copied(),
+        excluded: outside.rest_excluded(),
+        searched_to: outside.searched_to,
     };
     match list.doubts.first() {
         None => Point::Certified(found),
