@@ -234,7 +234,7 @@ fn growth_that_leaves_the_window_does_not_look_calm() {
     assert!(
         value["warnings"]
             .to_string()
-            .contains("faster than the window's upper edge")
+            .contains("a mode grows outside the window")
     );
     assert!(value["finding"].as_str().unwrap().contains("100 %"));
 }
