@@ -70,7 +70,7 @@ fn main() -> Outcome<()> {
     }
     let python = environment()?;
     let cores = std::thread::available_parallelism()?.get();
-    println!("{}, {cores} cores\n", processor());
+    println!("{}, {cores} cores, {}\n", processor(), load());
     println!("| network | work | here | NumPy | NumPy / here |");
     println!("| --- | --- | --- | --- | --- |");
     let mut version = String::new();
@@ -80,7 +80,10 @@ fn main() -> Outcome<()> {
         compare(&rig, &numpy, cores)?;
         version = numpy.numpy;
     }
-    println!("\nNumPy {version}, one core. Best of several runs each.");
+    println!(
+        "\nNumPy {version}, one core. Best of several runs each. At the end {}.",
+        load()
+    );
     Ok(())
 }
 
@@ -130,6 +133,13 @@ fn processor() -> String {
     format!("{name} ({})", vectors.join(", "))
 }
 
+/// How many processes wanted a core in the last minute: above the number of cores times are too long.
+fn load() -> String {
+    let told = std::fs::read_to_string("/proc/loadavg").unwrap_or_default();
+    let last_minute = told.split(' ').next().unwrap_or_default();
+    format!("load {last_minute}")
+}
+
 fn compare(rig: &Rig, numpy: &Numpy, cores: usize) -> Outcome<()> {
     let find = || modes::find(&rig.solved, rig.window, Scan::Whole);
     same_modes(rig.name, &find(), &numpy.modes)?;
@@ -169,7 +179,7 @@ fn compare(rig: &Rig, numpy: &Numpy, cores: usize) -> Outcome<()> {
         (cores, format!("{cores} threads")),
     ] {
         let pool = rigs::threads(threads);
-        let here = best(3, || pool.install(|| rig.map(rig.axes(POINTS))));
+        let here = best(5, || pool.install(|| rig.map(rig.axes(POINTS))));
         let work = |how| format!("map, {POINTS} x {POINTS}, {words}; {how}");
         let searched = numpy.s_per_map_solved_at_each_point;
         row(
