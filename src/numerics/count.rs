@@ -168,10 +168,12 @@ impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
         Ok(Sample { s, value, slope })
     }
 
-    /// Bounds for a segment; its modulus is rounded up, so that neighbours share an evaluation.
+    /// Bounds for a segment; its region is widened a little, so that neighbours share an evaluation.
     fn bound(&mut self, a: Complex64, b: Complex64) -> Result<[f64; TAYLOR], CountError> {
         let mut region = Region::segment(a, b);
-        region.modulus = 1.5f64.powf(region.modulus.max(1.0).log(1.5).ceil());
+        region.modulus = 1.1f64.powf(region.modulus.max(1.0).log(1.1).ceil());
+        let notch = region.modulus / 128.0;
+        region.omega = (region.omega / notch).floor() * notch;
         if let Some((cached, bounds)) = self.cached
             && cached == region
         {

@@ -27,9 +27,13 @@ pub struct Zero {
     pub settled: bool,
 }
 
-/// The scale on which a function varies at `z`: `B_0/B_1`, the reciprocal of an effective delay.
+/// The scale on which a function varies between the real axis and `z`: `B_0/B_1`, the reciprocal of an
+/// effective delay.
 pub fn scale<F: Analytic + ?Sized>(f: &F, z: Complex64) -> f64 {
-    let b = f.bound(&Region::disc(z, 0.0));
+    let b = f.bound(&Region {
+        omega: 0.0,
+        ..Region::disc(z, 0.0)
+    });
     b[0] / b[1].max(f64::MIN_POSITIVE)
 }
 
