@@ -123,7 +123,9 @@ fn try_one(drawn: &Drawn) -> Tally {
 /// What the witness holds against a list.
 fn disagreement(list: &ModeList, walk: &mut Walk<'_>) -> Option<String> {
     let mirrored = walk.chain.start.term.is_none() && walk.chain.end.term.is_none();
-    let omega = WINDOW.rectangle().omega;
+    let (_, top) = WINDOW.rectangle().omega;
+    // Without a mirror image the axis is an edge, and a mode on it is in the list.
+    let omega = (if mirrored { 0.0 } else { -1e-6 }, top);
     let weight: i64 = list
         .modes
         .iter()
