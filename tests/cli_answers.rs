@@ -266,7 +266,11 @@ fn a_mode_on_the_edge_leaves_the_list_unproved() {
     let (value, code) = json("modes", &network("swirl_rig"), &["--frequency", &window]);
     assert_eq!((value["complete"].as_bool(), code), (Some(false), Some(1)));
     assert!(!value["doubts"].as_array().unwrap().is_empty());
-    assert!(value["warnings"].to_string().contains("straddles"));
+    assert!(
+        value["warnings"]
+            .to_string()
+            .contains("of the window's edge")
+    );
     let ran = run("modes", &network("swirl_rig"), &["--frequency", &window]);
     assert!(ran.stdout.contains("NOT PROVED COMPLETE"));
 }

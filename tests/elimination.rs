@@ -157,7 +157,7 @@ proptest! {
     ) {
         let Ok(c) = front::eliminate(&chain) else { return Ok(()) };
         let s = Complex64::new(re, im);
-        let region = Region { growth: (re - width, re + width), omega: 0.7 * im, modulus: s.norm() + width };
+        let region = Region { growth: (re - width, re + width), modulus: s.norm() + width, omega: (s.im.abs() - width).max(0.0) };
         let bounds = c.tape.bound(&region);
         let values = c.tape.taylor_at::<5>(s);
         for (v, b) in values.iter().zip(bounds) {

@@ -16,13 +16,18 @@ pub struct Plenum {
 }
 
 impl Plenum {
-    /// `mdot_1' - mdot_2' = V s p_1'/c^2` with the sound speed of the gas at rest, `p_1' = p_t2'`, and no
-    /// entropy leaves: what enters is mixed out. Stored enthalpy is `h` times stored mass and needs no
-    /// row of its own.
+    /// `A_1 (rho u' + u p'/c^2)_1 - mdot_2' = V s p_1'/c^2` with the sound speed of the gas at rest,
+    /// `p_1' = p_t2'`, and no entropy leaves.
+    ///
+    /// The row is the vessel's energy balance `(mdot h_t)_1' - (mdot h_t)_2' = V s p_1'/(gamma - 1)` over
+    /// its enthalpy, to second order in the Mach numbers: entropy flowing in brings energy and lacks
+    /// mass, so that `mdot_1'` counts without its share of entropy. A flame before the vessel acts on
+    /// it through this, though it leaves the mass flow as it is.
     pub fn lower<T: Real>(&self, between: &Between<'_, T>, values: &Values<T>) -> Joint<T> {
-        let up = Port::around(between.up, 0);
-        let down = Port::around(between.down, 3);
         let zero = T::from(0.0);
+        let mut inflow = Port::around(between.up, 0);
+        inflow.mass_flow.d[2] = zero;
+        let down = Port::around(between.down, 3);
         let c = between
             .up
             .gas
@@ -42,9 +47,9 @@ impl Plenum {
         let mut no_entropy = Grad::constant(zero);
         no_entropy.d[5] = T::from(1.0);
         let balances = [
-            up.mass_flow - down.mass_flow,
+            inflow.mass_flow - down.mass_flow,
             no_entropy,
-            balance(&up, &down),
+            balance(&inflow, &down),
         ];
         lowering::rows(between, balances, acting)
     }

@@ -10,6 +10,10 @@ use crate::knobs::Values;
 use crate::network::{ElementId, Layout};
 use crate::numerics::dual::Real;
 
+/// Share of its inlet's temperature by which a flame may lie below it: the stream between two flames stated
+/// equally hot slows down and warms by less. Such a flame is remarked on; one colder still is refused.
+const COOLING_TAKEN: f64 = 0.01;
+
 /// The gas a network names, with its numbers.
 pub(super) fn gas<T: Real>(choice: GasChoice, values: &Values<T>) -> Gas<T> {
     match choice {
@@ -132,7 +136,7 @@ impl<T: Real> Here<'_, T> {
             .burnt_temperature
             .map_or(up.temperature, |k| self.values[k]);
         let (asked, inlet) = (burnt.value(), up.temperature.value());
-        if asked < inlet && !self.trial {
+        if asked < inlet * (1.0 - COOLING_TAKEN) && !self.trial {
             return Err(Fault::Colder {
                 element: self.id,
                 asked,

@@ -7,7 +7,6 @@
 //! (`throat`). Values are found in plain numbers; derivatives follow by Newton corrections in the
 //! number type asked for, and are exact.
 
-mod areas;
 mod crossing;
 mod fault;
 mod march;
@@ -17,7 +16,7 @@ use crate::elements::Kind;
 use crate::elements::ends::{Exit, ExitEnd, Feed, FeedEnd, FeedFlow};
 use crate::gas::State;
 use crate::knobs::KnobId;
-use crate::network::{ElementId, Layout, Network, StationId};
+use crate::network::{ElementId, Layout, Network, StationId, areas};
 use crate::numerics::dual::Real;
 use crate::problems::{Problem, Problems};
 use fault::Fault;
@@ -301,10 +300,12 @@ fn warnings<T: Real>(
     for (element, heat) in layout.elements.iter().zip(heat_release) {
         if let Some(q) = heat.map(Real::value).filter(|&q| q < 0.0) {
             let name = &element.name;
-            found.push(Problem::warning(
-                name,
-                format!("the mean heat release of `{name}` is negative ({q:.1} W)"),
-            ));
+            let what = format!(
+                "its mean heat release is negative, {q:.1} W: it cools the stream that reaches it"
+            );
+            let hint =
+                "state a temperature above that of its inlet, which `stillflame flow` prints";
+            found.push(Problem::warning(format!("{name}.burnt_temperature"), what).hint(hint));
         }
     }
     found

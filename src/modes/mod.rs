@@ -9,7 +9,7 @@ use num_complex::Complex64;
 use crate::acoustics::{self, Acoustics, matrix};
 use crate::meanflow::{self, MeanFlow};
 use crate::network::Network;
-use crate::numerics::count::Effort;
+use crate::numerics::count::{CountError, Effort};
 pub use crate::numerics::zeros::Scan;
 use crate::numerics::zeros::{self, Doubt};
 use crate::problems::{Problem, Problems};
@@ -163,6 +163,60 @@ pub fn shape(solved: &Solved, mode: &Mode) -> Option<matrix::NullVector> {
 pub fn doubts_as_warnings(list: &ModeList) -> Vec<Problem> {
     list.doubts
         .iter()
-        .map(|d| Problem::warning("search", d.to_string()))
+        .map(|d| {
+            let (what, hint) = doubt_in_words(d);
+            Problem::warning("search", what).hint(hint)
+        })
         .collect()
+}
+
+/// What a doubt says of the modes, and what may mend it.
+pub fn doubt_in_words(doubt: &Doubt) -> (String, &'static str) {
+    let place = |s: &Complex64| {
+        let frequency = s.im.abs() / std::f64::consts::TAU;
+        format!("{frequency:.4} Hz with growth rate {:+.4} 1/s", s.re)
+    };
+    let defect = "the list is not to be relied on: this is a defect of the program, worth a report";
+    match doubt {
+        Doubt::NotCounted(CountError::OnContour { near }) => (
+            format!(
+                "the modes could not be counted: one lies on the edge of each window tried, near {}",
+                place(near)
+            ),
+            "move the edges of the window",
+        ),
+        Doubt::NotCounted(CountError::Overflow { at }) => (
+            format!(
+                "the modes could not be counted: at {} the waves of the longest delays overflow",
+                place(at)
+            ),
+            "raise the lower growth rate, or carry entropy through fewer slow ducts",
+        ),
+        Doubt::NotCounted(CountError::BoundContradicted { at }) => (
+            format!(
+                "the modes could not be counted: at {} a value exceeds its bound",
+                place(at)
+            ),
+            defect,
+        ),
+        Doubt::Missing { missing } => (
+            format!("of the modes counted {missing} could not be found or proved"),
+            "a window less deep, or moved, may list them; rounding hides modes that delays damp strongly",
+        ),
+        Doubt::Excess { excess } => (
+            format!("{excess} more modes were found than counted"),
+            defect,
+        ),
+        Doubt::OnEdge { at, error } => (
+            format!(
+                "the mode at {} lies within its error, {error:.1e} 1/s, of the window's edge",
+                place(at)
+            ),
+            "move that edge",
+        ),
+        Doubt::Coarse { at, error } => (
+            format!("the mode at {} is known to {error:.1e} 1/s only", place(at)),
+            "a window less deep in decay avoids modes that rounding blurs",
+        ),
+    }
 }

@@ -10,10 +10,10 @@ pub const TAYLOR: usize = 5;
 pub struct Region {
     /// Least and greatest real part.
     pub growth: (f64, f64),
-    /// Least modulus of the imaginary part.
-    pub omega: f64,
     /// Greatest modulus.
     pub modulus: f64,
+    /// Least modulus of the imaginary part.
+    pub omega: f64,
 }
 
 impl Region {
@@ -21,12 +21,12 @@ impl Region {
     pub fn segment(a: Complex64, b: Complex64) -> Self {
         Region {
             growth: (a.re.min(b.re), a.re.max(b.re)),
+            modulus: a.norm().max(b.norm()),
             omega: if a.im * b.im > 0.0 {
                 a.im.abs().min(b.im.abs())
             } else {
                 0.0
             },
-            modulus: a.norm().max(b.norm()),
         }
     }
 
@@ -34,8 +34,8 @@ impl Region {
     pub fn disc(centre: Complex64, radius: f64) -> Self {
         Region {
             growth: (centre.re - radius, centre.re + radius),
-            omega: (centre.im.abs() - radius).max(0.0),
             modulus: centre.norm() + radius,
+            omega: (centre.im.abs() - radius).max(0.0),
         }
     }
 }

@@ -95,6 +95,9 @@ struct Sample {
 /// Most halvings of one segment before a zero is taken to lie on it.
 const DEEPEST: u32 = 60;
 
+/// Ratio of the moduli between which segments share a bound.
+const WIDENING: f64 = 1.5;
+
 /// Walks contours of one function.
 pub struct Walker<'f, F: ?Sized> {
     f: &'f F,
@@ -168,12 +171,15 @@ impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
         Ok(Sample { s, value, slope })
     }
 
-    /// Bounds for a segment; its region is widened a little, so that neighbours share an evaluation.
+    /// Bounds for a segment; its region is widened in steps, so that neighbours share an evaluation.
     fn bound(&mut self, a: Complex64, b: Complex64) -> Result<[f64; TAYLOR], CountError> {
         let mut region = Region::segment(a, b);
-        region.modulus = 1.1f64.powf(region.modulus.max(1.0).log(1.1).ceil());
-        let notch = region.modulus / 128.0;
-        region.omega = (region.omega / notch).floor() * notch;
+        let power = |exponent: f64| WIDENING.powf(exponent);
+        region.modulus = power(region.modulus.max(1.0).log(WIDENING).ceil());
+        region.omega = match region.omega {
+            below if below < 1.0 => 0.0,
+            omega => power(omega.log(WIDENING).floor()),
+        };
         if let Some((cached, bounds)) = self.cached
             && cached == region
         {

@@ -25,7 +25,7 @@ pub enum Doubt {
     /// Fewer zeros were found than counted.
     #[error("{missing} of the zeros counted were not found")]
     Missing {
-        /// How many weigh in the count but not in the list.
+        /// How many in the padded window; for a symmetric function a pair of conjugates is one.
         missing: i64,
     },
     /// More zeros were found than counted: the function is not analytic or a zero is listed twice.
@@ -208,14 +208,20 @@ pub fn certify<F: Analytic + ?Sized>(
         }
     }
     let listed: i64 = zeros.iter().map(|z| i64::from(z.multiplicity)).sum();
+    // Conjugates are counted both and listed once.
+    let share = if symmetric { 2 } else { 1 };
+    let shared = |weight: i64| (weight + share - 1) / share;
     let missing = count - weight;
     if missing > 0 {
-        doubts.push(Doubt::Missing { missing });
+        doubts.push(Doubt::Missing {
+            missing: shared(missing),
+        });
     }
     if missing < 0 {
-        doubts.push(Doubt::Excess { excess: -missing });
+        doubts.push(Doubt::Excess {
+            excess: shared(-missing),
+        });
     }
-    let share = if symmetric { 2 } else { 1 };
     let expected = listed + (missing as f64 / share as f64).round() as i64;
     zeros.sort_by(|a, b| {
         a.at.im

@@ -7,7 +7,7 @@ use super::shapes::{self, ShapeFields};
 use super::table::{Lean, Table};
 use super::{Document, Heading, OUTSIDE, closing, counted, csv_of, window_text};
 use crate::modes::shapes::Shape;
-use crate::modes::{Mode, ModeList, Tendency};
+use crate::modes::{Mode, ModeList, Tendency, doubt_in_words};
 use crate::network::Network;
 use crate::numerics::count::Effort;
 use crate::problems::Problem;
@@ -21,7 +21,7 @@ pub struct Modes<'a> {
     pub network: &'a Network,
     /// The list.
     pub list: &'a ModeList,
-    /// The shape of each mode, in the order of the list; absent where it did not settle.
+    /// The shape of each mode, in the order of the list; absent where it did not settle or holds no pressure.
     pub shapes: &'a [Option<Shape>],
     /// Whether the shapes themselves are told, and not only their residuals.
     pub with_shapes: bool,
@@ -129,7 +129,12 @@ impl Modes<'_> {
             complete: self.list.complete(),
             expected: self.list.expected,
             found: self.found(),
-            doubts: self.list.doubts.iter().map(ToString::to_string).collect(),
+            doubts: self
+                .list
+                .doubts
+                .iter()
+                .map(|d| doubt_in_words(d).0)
+                .collect(),
             window: (&self.list.window).into(),
             modes: self.rows().enumerate().map(entry).collect(),
             effort: (&self.list.effort).into(),
@@ -239,7 +244,7 @@ impl Modes<'_> {
             }
         };
         for doubt in &list.doubts {
-            text.push_str(&format!("  {doubt}\n"));
+            text.push_str(&format!("  {}\n", doubt_in_words(doubt).0));
         }
         let growing = list
             .modes

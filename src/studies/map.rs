@@ -246,7 +246,7 @@ fn point(network: &Network, held: Option<&MeanFlow<f64>>, window: Window) -> Poi
         None => Point::Certified(found),
         Some(doubt) => Point::Doubtful {
             found,
-            why: doubt.to_string().into(),
+            why: modes::doubt_in_words(doubt).0.into(),
         },
     }
 }

@@ -192,9 +192,9 @@ pub fn product<T: Real, const N: usize>(a: &[Cx<T>; N], b: &[Cx<T>; N]) -> [Cx<T
 /// Bounds of `|F^(k)|/k!`, `k = 0..TAYLOR`, over a region.
 ///
 /// A measure of delays is bounded as a measure: `|F^(k)| <= integral |t|^k exp(-sigma t) d|mu|`,
-/// which is convex in `sigma`, so its greatest value is at an edge of the region. That knows nothing
-/// of frequency; away from the real axis the closed form of a normal density, whose modulus is
-/// `exp(-sigma t + (sigma^2 - omega^2) d^2/2)`, is bounded too, and the lesser bound holds.
+/// which is convex in `sigma`, so its greatest value is at an edge of the region. Where a spread delay
+/// has faded, its closed form `|exp(g)| = exp(-sigma t + (sigma^2 - omega^2) d^2/2)` bounds it better;
+/// the lesser of the two counts.
 impl Law<f64> {
     /// The bounds.
     pub fn majorant(&self, region: &Region) -> [f64; TAYLOR] {
@@ -258,21 +258,21 @@ fn spread_majorant(region: &Region, t: f64, d: f64) -> [f64; TAYLOR] {
         ]
     };
     let (a, b) = (edge(region.growth.0), edge(region.growth.1));
-    let closed = closed_majorant(region, t, d);
-    std::array::from_fn(|k| a[k].max(b[k]).min(closed[k]))
+    let faded = faded_majorant(region, t, d);
+    std::array::from_fn(|k| a[k].max(b[k]).min(faded[k]))
 }
 
-/// Bounds for `exp(g)`, `g = -s t + s^2 d^2/2`, from `k e_k = g' e_(k-1) + d^2 e_(k-2)` with
-/// `|g'| <= t + |s| d^2`.
-fn closed_majorant(region: &Region, t: f64, d: f64) -> [f64; TAYLOR] {
-    let square = d * d;
-    let exponent = |sigma: f64| -sigma * t + 0.5 * sigma * sigma * square;
-    let greatest = exponent(region.growth.0).max(exponent(region.growth.1));
-    let slope = t + region.modulus * square;
-    let mut e = [(greatest - 0.5 * region.omega * region.omega * square).exp(); TAYLOR];
-    e[1] *= slope;
-    for k in 2..TAYLOR {
-        e[k] = (slope * e[k - 1] + square * e[k - 2]) / k as f64;
+/// From `g = -s t + s^2 d^2/2`: the greatest `|exp(g)|`, and `k e_k <= |g'| e_{k-1} + d^2 e_{k-2}`.
+fn faded_majorant(region: &Region, t: f64, d: f64) -> [f64; TAYLOR] {
+    let (d2, (low, high)) = (d * d, region.growth);
+    let exponent =
+        |sigma: f64| -sigma * t + 0.5 * (sigma - region.omega) * (sigma + region.omega) * d2;
+    let real = (t - low * d2).abs().max((t - high * d2).abs());
+    let slope = real.hypot(region.modulus * d2);
+    let mut e = [exponent(low).max(exponent(high)).exp(); TAYLOR];
+    for k in 1..TAYLOR {
+        let before = if k >= 2 { e[k - 2] * d2 } else { 0.0 };
+        e[k] = (slope * e[k - 1] + before) / k as f64;
     }
     e
 }
@@ -323,13 +323,13 @@ mod tests {
             width in 0.0..300.0f64,
             position in 0.0..1.0f64,
             omega in -6000.0..6000.0f64,
-            nearest in 0.0..1.0f64,
+            share in 0.0..=1.0f64,
         ) {
             let s = Cx::new(growth + position * width, omega);
             let region = Region {
                 growth: (growth, growth + width),
-                omega: nearest * omega.abs(),
                 modulus: (growth.abs().max((growth + width).abs())).hypot(omega),
+                omega: omega.abs() * share,
             };
             let values: [Cx<f64>; TAYLOR] = law.taylor(s);
             let bounds = law.majorant(&region);
@@ -361,12 +361,29 @@ mod tests {
         }]);
         let region = Region {
             growth: (-50.0, 80.0),
-            omega: 0.0,
             modulus: 100.0,
+            omega: 0.0,
         };
         let v: [Cx<f64>; TAYLOR] = law.taylor(Cx::new(-50.0, 0.0));
         for (v, b) in v.iter().zip(law.majorant(&region)) {
             assert!((v.value().norm() / b - 1.0).abs() < 1e-14);
+        }
+    }
+
+    #[test]
+    fn a_spread_delay_that_has_faded_is_bounded_by_what_is_left_of_it() {
+        let law = Law::Delays(vec![Delayed {
+            weight: 1.0,
+            delay: 0.02,
+            spread: 5e-3,
+        }]);
+        for (re, im) in [(-300.0, 2600.0), (40.0, 900.0), (-10.0, 1800.0)] {
+            let point = Region::disc(num_complex::Complex64::new(re, im), 0.0);
+            let v: [Cx<f64>; TAYLOR] = law.taylor(Cx::new(re, im));
+            let bounds = law.majorant(&point);
+            assert!((v[0].value().norm() / bounds[0] - 1.0).abs() < 1e-12);
+            let slope = v[1].value().norm() / bounds[1];
+            assert!((0.95..1.0 + 1e-12).contains(&slope), "{slope}");
         }
     }
 }

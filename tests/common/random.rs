@@ -8,7 +8,7 @@ use fastrand::Rng;
 use stillflame::modes::{self, Solved};
 use stillflame::network::Network;
 
-use super::rig::{End, Exit, Feed, Flow, Gas, Piece, Response, Rig, Size, What};
+use super::rig::{End, Exit, Feed, Gas, Inflow, Piece, Response, Rig, Size, What};
 
 /// What may be drawn.
 #[derive(Clone, Debug)]
@@ -189,12 +189,12 @@ impl Draw<'_> {
             Stream::Either => self.chance(0.65),
         };
         let trial = if flows || self.wish.stream == Stream::Variable {
-            Flow::Mach(self.scale(0.005..FASTEST))
+            Inflow::Mach(self.scale(0.005..FASTEST))
         } else {
             match self.rng.u8(0..3) {
-                0 => Flow::MassFlow(0.0),
-                1 => Flow::Velocity(0.0),
-                _ => Flow::Mach(0.0),
+                0 => Inflow::MassFlow(0.0),
+                1 => Inflow::Velocity(0.0),
+                _ => Inflow::Mach(0.0),
             }
         };
         let temperature = self.within(280.0..900.0);
@@ -374,7 +374,7 @@ impl Draw<'_> {
     /// Slows the trial flow until it stays below Mach 0.3, then states it in one of the ways there
     /// are. False where no flow is found.
     fn let_flow(&mut self, rig: &mut Rig) -> bool {
-        let Some(Flow::Mach(mut mach)) = rig.feed.flow else {
+        let Some(Inflow::Mach(mut mach)) = rig.feed.flow else {
             return true;
         };
         if mach == 0.0 {
@@ -382,7 +382,7 @@ impl Draw<'_> {
         }
         let throat = rig.exit.throat.take();
         for _ in 0..30 {
-            rig.feed.flow = Some(Flow::Mach(mach));
+            rig.feed.flow = Some(Inflow::Mach(mach));
             let fastest = modes::solve(&rig.network()).ok().map(|solved| {
                 let states = &solved.mean.states;
                 let fastest = states.iter().map(|s| s.mach()).fold(0.0, f64::max);
@@ -403,8 +403,8 @@ impl Draw<'_> {
         let first = &solved.mean.states[0];
         if self.wish.stream != Stream::Variable {
             match self.rng.u8(0..3) {
-                0 => rig.feed.flow = Some(Flow::MassFlow(first.mass_flow())),
-                1 => rig.feed.flow = Some(Flow::Velocity(first.velocity)),
+                0 => rig.feed.flow = Some(Inflow::MassFlow(first.mass_flow())),
+                1 => rig.feed.flow = Some(Inflow::Velocity(first.velocity)),
                 _ => {}
             }
         }
@@ -416,7 +416,7 @@ impl Draw<'_> {
             if self.rng.bool() {
                 rig.feed.flow = None;
             } else {
-                rig.feed.flow = Some(Flow::MassFlow(first.mass_flow()));
+                rig.feed.flow = Some(Inflow::MassFlow(first.mass_flow()));
                 rig.feed.pressure = None;
             }
         }

@@ -18,7 +18,7 @@ pub struct Rig {
 #[derive(Clone, Debug, PartialEq)]
 pub struct Feed {
     pub gas: Gas,
-    pub flow: Option<Flow>,
+    pub flow: Option<Inflow>,
     /// K.
     pub temperature: f64,
     /// Pa.
@@ -43,7 +43,7 @@ pub enum Gas {
 
 /// In kg/s, in m/s, or plain.
 #[derive(Clone, Copy, Debug, PartialEq)]
-pub enum Flow {
+pub enum Inflow {
     MassFlow(f64),
     Velocity(f64),
     Mach(f64),
@@ -184,9 +184,9 @@ impl Display for Rig {
         let feed = &self.feed;
         writeln!(f, "gas = {}", feed.gas)?;
         match feed.flow {
-            Some(Flow::MassFlow(m)) => writeln!(f, "mass_flow = \"{m} kg/s\"")?,
-            Some(Flow::Velocity(u)) => writeln!(f, "velocity = \"{u} m/s\"")?,
-            Some(Flow::Mach(m)) => writeln!(f, "mach = {m}")?,
+            Some(Inflow::MassFlow(m)) => writeln!(f, "mass_flow = \"{m} kg/s\"")?,
+            Some(Inflow::Velocity(u)) => writeln!(f, "velocity = \"{u} m/s\"")?,
+            Some(Inflow::Mach(m)) => writeln!(f, "mach = {m}")?,
             None => {}
         }
         writeln!(f, "temperature = \"{} K\"", feed.temperature)?;

@@ -119,11 +119,13 @@ def plenum_rows(e, s1, s2, i, o):
     V = e["_volume"]
     inside = s1.moved(s1.p, mpf(0), s1.Tt)
     storage = V * s1.gamma * s1.p / inside.c**2  # per unit of a at the inlet
+    # Entropy that flows in is mixed out: it heats the vessel as isentropic inflow of the same energy would.
     if s1.u == 0:
-        mass = Row().add_all(i, (0, s1.A * s1.rho * s1.c, -s1.A * s1.rho * s1.c))
+        mass = Row().add_all(i, (0, s1.A * s1.rho * s1.c, 0))
         mass.add_all(o, (0, -s2.A * s2.rho * s2.c, s2.A * s2.rho * s2.c))
     else:
-        mass = Row().add_all(i, gradient(lambda s: s.flow, s1)).add_all(o, gradient(lambda s: s.flow, s2), factor=-1)
+        inflow = [*gradient(lambda s: s.flow, s1)[:2], 0]
+        mass = Row().add_all(i, inflow).add_all(o, gradient(lambda s: s.flow, s2), factor=-1)
     mass.add(i, -storage, power=1)
     pressure = Row().add(i, s1.gamma * s1.p)
     pressure.add_all(o, [s2.gamma * s2.p, 0, 0] if s1.u == 0 else gradient(lambda s: s.pt, s2), factor=-1)

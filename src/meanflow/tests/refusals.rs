@@ -139,6 +139,11 @@ fn a_flame_colder_than_its_inlet_is_told() {
     let problem = only_problem(&network);
     assert_eq!(problem.subject, "pilot.burnt_temperature");
     assert!(problem.what.contains("650.00 K") && problem.what.contains("700.00 K"));
+    // A little below, as between two flames stated equally hot, it is remarked on.
+    let pilot = network.layout.knob("pilot.burnt_temperature").unwrap();
+    let warnings = solve(&network.with(pilot, 699.0)).unwrap().warnings;
+    assert_eq!(warnings.len(), 1);
+    assert_eq!(warnings[0].subject, "pilot.burnt_temperature");
     // The same temperature is no flame to the mean flow, and no error.
     let knob = network.layout.knob("pilot.burnt_temperature").unwrap();
     let flow = solve(&network.with(knob, 700.0)).unwrap();
@@ -238,7 +243,7 @@ fn a_flame_too_cold_beside_the_answer_does_not_hide_it() {
     let inlet = before.states.last().unwrap().temperature;
     let rig = |flow, pressure| {
         rig(flow, pressure)
-            .flame("f2", Some(inlet + 0.01), None)
+            .flame("f2", Some(0.99 * inlet + 0.01), None)
             .duct("d", 0.01)
     };
     let flow = solve(&rig(Flow::Mach(0.1), Some(1e5)).exit(choked())).unwrap();
