@@ -9,19 +9,21 @@ use stillflame::acoustics::matrix;
 use stillflame::waves::law::Law;
 use stillflame::waves::primitive::{Chain, Step};
 
-/// The phase of `det A(s)` as a number of modulus one; `None` where the determinant is zero or not
+/// `det A(s)` as a number of modulus one and the logarithm of its modulus; `None` where it is zero or not
 /// finite.
-pub fn phase(chain: &Chain<f64>, s: Complex64) -> Option<Complex64> {
+pub fn determinant(chain: &Chain<f64>, s: Complex64) -> Option<(Complex64, f64)> {
     let a = matrix::assemble(chain, s);
     let n = a.nrows();
     let is_entry = |x: &Complex64| x.re != 0.0 || x.im != 0.0;
     // Most of the matrix is empty: each row with the place behind its last entry.
     let mut rows: Vec<(usize, Vec<Complex64>)> = Vec::with_capacity(n);
+    let mut log = 0.0;
     for i in 0..n {
         let mut row: Vec<Complex64> = a.row(i).iter().copied().collect();
         // Pivots are compared between rows of unit size.
         let size = row.iter().map(|x| x.norm()).fold(0.0, f64::max);
         row.iter_mut().for_each(|x| *x /= size);
+        log += size.ln();
         let end = row.iter().rposition(is_entry).map_or(0, |last| last + 1);
         rows.push((end, row));
     }
@@ -37,7 +39,8 @@ pub fn phase(chain: &Chain<f64>, s: Complex64) -> Option<Complex64> {
         let (end, upper) = &done[k];
         let head = upper[k];
         phase *= head / head.norm();
-        if !phase.is_finite() {
+        log += head.norm().ln();
+        if !(phase.is_finite() && log.is_finite()) {
             return None;
         }
         for (last, row) in rest {
@@ -50,7 +53,7 @@ pub fn phase(chain: &Chain<f64>, s: Complex64) -> Option<Complex64> {
             }
         }
     }
-    Some(phase / phase.norm())
+    Some((phase / phase.norm(), log))
 }
 
 /// A delay no product in the determinant exceeds (s): its reciprocal is how finely to look.
@@ -78,7 +81,7 @@ pub struct Walk<'c> {
 impl Walk<'_> {
     fn look(&mut self, s: Complex64) -> Option<Complex64> {
         self.looks += 1;
-        phase(self.chain, s)
+        determinant(self.chain, s).map(|(phase, _)| phase)
     }
 
     /// Change of phase (rad) along a polygon.
@@ -140,19 +143,29 @@ impl Walk<'_> {
         whole(self.along(corners)? / unit)
     }
 
-    /// Number of zeros within a small circle.
-    pub fn around(&mut self, centre: Complex64, radius: f64) -> Option<i64> {
+    /// Distance from `centre` to the only zero of the determinant in a circle about it, with what
+    /// rounding leaves open of it. `None` where its linear part does not outweigh the rest, so that it
+    /// holds no zero or several.
+    pub fn off_by(&mut self, centre: Complex64, radius: f64) -> Option<(f64, f64)> {
         const POINTS: usize = 16;
-        let on = |i: usize| {
-            let angle = TAU * (i % POINTS) as f64 / POINTS as f64;
-            centre + Complex64::from_polar(radius, angle)
+        self.looks += POINTS;
+        let turn = |i: usize| Complex64::from_polar(1.0, TAU * (i % POINTS) as f64 / POINTS as f64);
+        let look = |i| determinant(self.chain, centre + radius * turn(i));
+        let seen: Option<Vec<(Complex64, f64)>> = (0..POINTS).map(look).collect();
+        let seen = seen?;
+        // Fourier coefficients: what is beyond the third is rounding.
+        let values = seen
+            .iter()
+            .map(|(phase, log)| phase * (log - seen[0].1).exp());
+        let values: Vec<Complex64> = values.collect();
+        let coefficient = |k: usize| {
+            let sum: Complex64 = (0..POINTS).map(|i| values[i] * turn(i * k).conj()).sum();
+            (sum / POINTS as f64).norm()
         };
-        let phases: Option<Vec<Complex64>> = (0..POINTS).map(|i| self.look(on(i))).collect();
-        let phases = phases?;
-        let turned: f64 = (0..POINTS)
-            .map(|i| (phases[(i + 1) % POINTS] * phases[i].conj()).arg())
-            .sum();
-        whole(turned / TAU)
+        let c: Vec<f64> = (0..POINTS).map(coefficient).collect();
+        let noise = c[4..].iter().fold(0.0, |a: f64, &b| a.max(b));
+        let outweighs = c[1] > 2.0 * (c[0] + c[2] + c[3] + 12.0 * noise);
+        outweighs.then_some((radius * c[0] / c[1], radius * noise / c[1]))
     }
 }
 
