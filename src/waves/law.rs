@@ -47,6 +47,34 @@ pub enum Law<T> {
     },
 }
 
+impl<T: Copy> Law<T> {
+    /// The same law with each number replaced by `f` of it.
+    pub fn map<U>(&self, f: impl Fn(T) -> U) -> Law<U> {
+        match self {
+            Law::Delays(all) => {
+                let part = |d: &Delayed<T>| Delayed {
+                    weight: f(d.weight),
+                    delay: f(d.delay),
+                    spread: f(d.spread),
+                };
+                Law::Delays(all.iter().map(part).collect())
+            }
+            Law::Polynomial {
+                coefficients,
+                delay,
+            } => Law::Polynomial {
+                coefficients: coefficients.map(&f),
+                delay: f(*delay),
+            },
+            Law::Complex { re, im, delay } => Law::Complex {
+                re: f(*re),
+                im: f(*im),
+                delay: f(*delay),
+            },
+        }
+    }
+}
+
 impl<T: Real> Law<T> {
     /// `F(s) = s`.
     pub fn s() -> Self {

@@ -97,6 +97,44 @@ pub struct Chain<T> {
     pub end: End<T>,
 }
 
+impl<T: Copy> Chain<T> {
+    /// The same chain with each number replaced by `f` of it.
+    pub fn map<U>(&self, f: impl Fn(T) -> U + Copy) -> Chain<U> {
+        let row = |r: &Row<T>| r.map(f);
+        let block = |b: &Block<T>| b.map(|r| r.map(f));
+        let signal = |(law, sense): &(Law<T>, Row<T>)| (law.map(f), row(sense));
+        let term = |t: &Term<T>| Term {
+            law: t.law.map(f),
+            sense: row(&t.sense),
+            at: t.at,
+        };
+        let step = |step: &Step<T>| match step {
+            Step::Travel(t) => Step::Travel(Travel {
+                downstream: f(t.downstream),
+                upstream: f(t.upstream),
+                entropy: t.entropy.as_ref().map(|law| law.map(f)),
+            }),
+            Step::Joint(j) => Step::Joint(Joint {
+                up: block(&j.up),
+                down: block(&j.down),
+                row: row(&j.row),
+                terms: j.terms.iter().map(term).collect(),
+            }),
+        };
+        Chain {
+            start: Start {
+                rows: self.start.rows.map(|r| r.map(f)),
+                term: self.start.term.as_ref().map(signal),
+            },
+            steps: self.steps.iter().map(step).collect(),
+            end: End {
+                row: row(&self.end.row),
+                term: self.end.term.as_ref().map(signal),
+            },
+        }
+    }
+}
+
 impl<T> Chain<T> {
     /// Number of planes.
     pub fn planes(&self) -> usize {

@@ -127,6 +127,42 @@ impl Arithmetic<f64> for Majorant<'_> {
     }
 }
 
+impl<T: Copy> Tape<T> {
+    /// The same program with each number replaced by `f` of it.
+    pub fn map<U>(&self, f: impl Fn(T) -> U + Copy) -> Tape<U> {
+        let entry = |e: &Entry<T>| Entry {
+            row: e.row,
+            column: e.column,
+            coefficient: f(e.coefficient),
+        };
+        let entries = |all: &[Entry<T>]| all.iter().map(entry).collect();
+        let op = |op: &Op<T>| match op {
+            Op::Scale { delay, slots } => Op::Scale {
+                delay: f(*delay),
+                slots: slots.clone(),
+            },
+            Op::Map {
+                rows,
+                constant,
+                lawful,
+            } => Op::Map {
+                rows: *rows,
+                constant: entries(constant),
+                lawful: lawful
+                    .iter()
+                    .map(|(law, b)| (law.map(f), entries(b)))
+                    .collect(),
+            },
+        };
+        Tape {
+            ops: self.ops.iter().map(op).collect(),
+            width: self.width,
+            rounding: self.rounding,
+            symmetric: self.symmetric,
+        }
+    }
+}
+
 impl<T: Real> Tape<T> {
     fn run<A: Arithmetic<T>>(&self, arithmetic: &A) -> A::Element {
         match self.width {
