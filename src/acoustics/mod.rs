@@ -2,6 +2,7 @@
 //! chain of them eliminated into one characteristic function, and the global matrix as its witness.
 
 pub mod matrix;
+pub mod vary;
 
 use crate::elements::flame::Reference;
 use crate::elements::lowering::Between;

@@ -4,13 +4,15 @@ use clap::Args;
 
 use super::options::{Case, Common, WindowArguments};
 use super::{Answer, Failure, Status};
-use crate::modes::{self, ModeList, Scan, Tendency, shapes, validity};
+use crate::modes::explain::explain;
+use crate::modes::{self, Scan, Tendency, validity};
 use crate::report::modes::Modes;
 
 /// Find every mode in a window and prove the list complete
 ///
 /// For each mode: frequency, growth rate with an error bound, cycle increment (growth rate over
-/// frequency), damping ratio, multiplicity, and its residual in the global matrix. The list is complete
+/// frequency), damping ratio, multiplicity, and a label: a mode of the plenum or the chamber (by where its
+/// energy is), intrinsic (it lives by the flame's feedback), or convective (by carried entropy). The list is complete
 /// where the number of modes counted by the argument principle is the number found and none straddles
 /// the window's edge; otherwise the report says why not, and the exit code is 1.
 #[derive(Clone, Debug, Args)]
@@ -29,6 +31,10 @@ pub(super) struct Arguments {
     #[arg(long)]
     shapes: bool,
 
+    /// Tell for each mode what drives and damps it, element by element, and what makes it neutral
+    #[arg(long)]
+    explain: bool,
+
     /// End with exit code 3 where some mode grows
     #[arg(long)]
     fail_on_growth: bool,
@@ -39,32 +45,36 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
     let solved = case.solve()?;
     let window = case.window(&solved.mean)?;
     let list = modes::find(&solved, window, Scan::Whole);
-    let shapes: Vec<_> = list
+    let explained: Vec<_> = list
         .modes
         .iter()
-        .map(|mode| shapes::along(&case.network, &solved, mode))
+        .map(|mode| explain(&case.network, &solved, mode))
         .collect();
     let mut more = solved.mean.warnings.clone();
     more.extend(validity::of_window(&case.network, &solved.mean, &window));
     more.extend(validity::of_modes(&case.network, &list));
-    let beyond = modes::beyond(&solved, window);
-    more.extend(validity::of_growth_beyond(&window, &beyond));
+    let outside = modes::outside(&solved, window, 0.0);
+    more.extend(validity::of_growth_outside(&window, &outside));
     more.extend(modes::doubts_as_warnings(&list));
     let warnings = case.warnings_with(more);
     let report = Modes {
         heading: case.heading(),
         network: &case.network,
         list: &list,
-        shapes: &shapes,
+        outside: &outside,
+        explained: &explained,
         with_shapes: arguments.shapes,
+        with_explanation: arguments.explain,
         warnings: &warnings,
     };
     let mut files = vec![(case.file("modes.csv"), report.csv()?)];
     if arguments.shapes {
         files.push((case.file("shapes.csv"), report.shapes_csv()?));
     }
-    let grows = |list: &ModeList| list.modes.iter().any(|m| m.tendency() == Tendency::Grows);
-    let grows = grows(&list) || grows(&beyond);
+    let listed = list.modes.iter().chain(&outside.faster);
+    let grows = listed
+        .chain(&outside.slower)
+        .any(|m| m.tendency() == Tendency::Grows);
     let status = if arguments.fail_on_growth && grows {
         Status::Grows
     } else if list.complete() {

@@ -234,7 +234,7 @@ pub const FEED_KNOBS: &[KnobSpec] = &[
     KnobSpec {
         key: "mach",
         dimension: Dimension::Number,
-        range: Range::NotNegative,
+        range: Range::Subsonic,
         default: None,
         doc: "Mach number at the first station, instead of the mass flow",
     },

@@ -1,5 +1,9 @@
 //! From a window to a certified list of modes.
 
+pub mod budget;
+pub mod explain;
+pub mod margins;
+mod outside;
 pub mod shapes;
 pub mod validity;
 mod window;
@@ -14,6 +18,7 @@ pub use crate::numerics::zeros::Scan;
 use crate::numerics::zeros::{self, Doubt};
 use crate::problems::{Problem, Problems};
 
+pub use outside::{Outside, outside};
 pub use window::{Window, cut_on};
 
 /// One mode: `p'(x, t) = Re[p(x) exp(s t)]`.
@@ -47,6 +52,11 @@ impl Mode {
     pub fn damping_ratio(&self) -> Option<f64> {
         let size = self.s.norm();
         (size > 0.0).then(|| -self.growth() / size)
+    }
+
+    /// Full width at half power of the peak a damped mode makes in a spectrum, `-growth/pi` (Hz).
+    pub fn half_power_width(&self) -> Option<f64> {
+        (self.growth() < 0.0).then(|| -self.growth() / std::f64::consts::PI)
     }
 
     /// Whether it grows, as far as its error bound tells.

@@ -1,7 +1,7 @@
 //! Where the assumptions of the model fail, as far as a window, a mean flow or a list of modes decides
 //! it.
 
-use super::{ModeList, Window, cut_on};
+use super::{Mode, ModeList, Outside, Window, cut_on};
 use crate::elements::Kind;
 use crate::flame::ResponseLaw;
 use crate::knobs::KnobId;
@@ -83,20 +83,35 @@ fn slowest(network: &Network, mean: &MeanFlow<f64>, id: ElementId) -> Option<f64
         .reduce(f64::min)
 }
 
-/// Modes that grow faster than the window's upper edge.
-pub fn of_growth_beyond(window: &Window, beyond: &ModeList) -> Option<Problem> {
-    let fastest = beyond.leading()?;
-    let top = window.growth.1;
-    let what = format!(
-        "growth faster than the window's upper edge of {top:.0} 1/s: {:.1} 1/s at {:.1} Hz, not in the list",
-        fastest.growth(),
-        fastest.frequency()
-    );
-    let to = (1.1 * fastest.growth() / 50.0).ceil() * 50.0;
-    Some(
-        Problem::warning("search.growth", what)
-            .hint(format!("search growth rates up to {to:.0} 1/s")),
-    )
+/// Modes that grow outside the window.
+pub fn of_growth_outside(window: &Window, outside: &Outside) -> Vec<Problem> {
+    let fastest = |modes: &[Mode]| {
+        let by_growth = |a: &&Mode, b: &&Mode| a.growth().total_cmp(&b.growth());
+        modes.iter().max_by(by_growth).copied()
+    };
+    let mut found = Vec::new();
+    if let Some(m) = fastest(&outside.faster) {
+        let what = format!(
+            "growth faster than the window's upper edge of {:.0} 1/s: {:.1} 1/s at {:.1} Hz, not in the list",
+            window.growth.1,
+            m.growth(),
+            m.frequency()
+        );
+        let to = (1.1 * m.growth() / 50.0).ceil() * 50.0;
+        let hint = format!("search growth rates up to {to:.0} 1/s");
+        found.push(Problem::warning("search.growth", what).hint(hint));
+    }
+    if let Some(m) = fastest(&outside.slower) {
+        let what = format!(
+            "growth below the window's lowest frequency of {:.0} Hz: {:.1} 1/s at {:.1} Hz, not in the list",
+            window.frequency.0,
+            m.growth(),
+            m.frequency()
+        );
+        let hint = "search frequencies from 0 Hz";
+        found.push(Problem::warning("search.frequency", what).hint(hint));
+    }
+    found
 }
 
 /// What qualifies the modes of a list: growth so fast that a response is taken far from where it was

@@ -5,6 +5,7 @@
 
 pub mod check;
 pub mod document;
+mod explain;
 pub mod figure;
 pub mod flow;
 pub mod map;

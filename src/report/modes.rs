@@ -3,11 +3,13 @@
 use serde::Serialize;
 
 use super::document::WindowFields;
+use super::explain;
 use super::shapes::{self, ShapeFields};
 use super::table::{Lean, Table};
-use super::{Document, Heading, OUTSIDE, closing, counted, csv_of, window_text};
+use super::{Document, Heading, closing, counted, csv_of, window_text};
+use crate::modes::explain::Explained;
 use crate::modes::shapes::Shape;
-use crate::modes::{Mode, ModeList, Tendency, doubt_in_words};
+use crate::modes::{Mode, ModeList, Outside, Tendency, doubt_in_words};
 use crate::network::Network;
 use crate::numerics::count::Effort;
 use crate::problems::Problem;
@@ -21,10 +23,14 @@ pub struct Modes<'a> {
     pub network: &'a Network,
     /// The list.
     pub list: &'a ModeList,
-    /// The shape of each mode, in the order of the list; absent where it did not settle or holds no pressure.
-    pub shapes: &'a [Option<Shape>],
+    /// What grows outside its window.
+    pub outside: &'a Outside,
+    /// What explains each mode, in the order of the list.
+    pub explained: &'a [Explained],
     /// Whether the shapes themselves are told, and not only their residuals.
     pub with_shapes: bool,
+    /// Whether people are told what explains each mode.
+    pub with_explanation: bool,
     /// What qualifies it.
     pub warnings: &'a [Problem],
 }
@@ -37,6 +43,7 @@ struct Row {
     error_bound_per_s: f64,
     cycle_increment: Option<f64>,
     damping_ratio: Option<f64>,
+    half_power_width_hz: Option<f64>,
     multiplicity: u8,
     tendency: &'static str,
     residual: Option<f64>,
@@ -46,6 +53,8 @@ struct Row {
 struct Entry<'a> {
     #[serde(flatten)]
     row: Row,
+    #[serde(flatten)]
+    explained: Option<explain::Fields<'a>>,
     #[serde(skip_serializing_if = "Option::is_none")]
     shape: Option<ShapeFields<'a>>,
 }
@@ -80,7 +89,28 @@ struct Body<'a> {
     window: WindowFields,
     modes: Vec<Entry<'a>>,
     effort: EffortFields,
-    outside_window: &'static str,
+    growth_excluded_beyond: bool,
+    growth_not_excluded_because: Option<&'a str>,
+    growth_searched_to_per_s: f64,
+    outside_window: Vec<OutsideRow>,
+}
+
+/// A mode outside the window, in SI.
+#[derive(Clone, Debug, Serialize)]
+struct OutsideRow {
+    frequency_hz: f64,
+    growth_per_s: f64,
+    error_bound_per_s: f64,
+}
+
+impl From<&Mode> for OutsideRow {
+    fn from(mode: &Mode) -> Self {
+        OutsideRow {
+            frequency_hz: mode.frequency(),
+            growth_per_s: mode.growth(),
+            error_bound_per_s: mode.error_bound,
+        }
+    }
 }
 
 fn tendency(mode: &Mode) -> &'static str {
@@ -93,7 +123,7 @@ fn tendency(mode: &Mode) -> &'static str {
 
 impl Modes<'_> {
     fn shape(&self, index: usize) -> Option<&Shape> {
-        self.shapes.get(index)?.as_ref()
+        self.explained.get(index)?.shape.as_ref()
     }
 
     fn rows(&self) -> impl Iterator<Item = Row> {
@@ -103,6 +133,7 @@ impl Modes<'_> {
             error_bound_per_s: mode.error_bound,
             cycle_increment: mode.cycle_increment(),
             damping_ratio: mode.damping_ratio(),
+            half_power_width_hz: mode.half_power_width(),
             multiplicity: mode.multiplicity,
             tendency: tendency(mode),
             residual: self.shape(i).map(|s| s.residual).filter(|r| r.is_finite()),
@@ -123,6 +154,7 @@ impl Modes<'_> {
         let told = |i: usize| self.shape(i).filter(|_| self.with_shapes);
         let entry = |(i, row)| Entry {
             row,
+            explained: (self.explained.get(i)).map(|e| explain::Fields::new(self.network, e)),
             shape: told(i).map(|s| ShapeFields::new(self.network, s)),
         };
         let body = Body {
@@ -138,7 +170,13 @@ impl Modes<'_> {
             window: (&self.list.window).into(),
             modes: self.rows().enumerate().map(entry).collect(),
             effort: (&self.list.effort).into(),
-            outside_window: OUTSIDE,
+            growth_excluded_beyond: self.outside.excluded(),
+            growth_not_excluded_because: self.outside.reason.as_deref(),
+            growth_searched_to_per_s: self.outside.searched_to,
+            outside_window: (self.outside.slower.iter())
+                .chain(&self.outside.faster)
+                .map(Into::into)
+                .collect(),
         };
         Document::new("stillflame/modes", &self.heading, body, self.warnings).to_json()
     }
@@ -156,7 +194,7 @@ impl Modes<'_> {
     /// # Errors
     /// Where a row cannot be written.
     pub fn shapes_csv(&self) -> std::io::Result<Vec<u8>> {
-        csv_of(shapes::csv_rows(self.network, self.list, self.shapes))
+        csv_of(shapes::csv_rows(self.network, self.list, self.explained))
     }
 
     /// For people.
@@ -171,6 +209,11 @@ impl Modes<'_> {
             text.push('\n');
         }
         text.push_str(&self.verdict());
+        if self.with_explanation {
+            for (i, (mode, told)) in self.list.modes.iter().zip(self.explained).enumerate() {
+                text.push_str(&explain::text(self.network, i, mode, told));
+            }
+        }
         if self.with_shapes {
             for (i, mode) in self.list.modes.iter().enumerate() {
                 text.push_str(&shapes::text(self.network, i, mode, self.shape(i)));
@@ -182,7 +225,7 @@ impl Modes<'_> {
 
     fn table(&self) -> String {
         use Lean::{Left, Right};
-        let mut table = Table::new(&[Right, Right, Right, Left, Right, Right, Right, Right, Right]);
+        let mut table = Table::new(&[Right, Right, Right, Left, Right, Right, Right, Right, Left]);
         table.heading(&[
             "mode",
             "frequency",
@@ -192,7 +235,7 @@ impl Modes<'_> {
             "cycle",
             "damping",
             "multi-",
-            "residual",
+            "label",
         ]);
         table.heading(&[
             "",
@@ -219,8 +262,9 @@ impl Modes<'_> {
                 some(row.cycle_increment, 4),
                 some(row.damping_ratio, 4),
                 format!("{}", row.multiplicity),
-                row.residual
-                    .map_or("none".to_owned(), |r| format!("{r:.0e}")),
+                (self.explained.get(i))
+                    .map_or("", |e| e.label(self.network))
+                    .to_owned(),
             ]);
         }
         table.text()
@@ -267,10 +311,21 @@ impl Modes<'_> {
             ),
             (n, None) => format!("{} grow.\n", counted(n, "mode")),
         });
-        text.push_str(OUTSIDE);
+        let top = list.window.frequency.1;
+        text.push_str(&match &self.outside.reason {
+            None => format!("Growth outside the window is excluded up to {top:.0} Hz, by proof.\n"),
+            Some(reason) if self.outside.fastest().is_some() || !self.outside.complete => {
+                format!("Growth outside the window is NOT EXCLUDED: {reason}.\n")
+            }
+            Some(reason) => format!(
+                "No growth outside the window up to {top:.0} Hz and {:.0} 1/s; faster growth is NOT EXCLUDED: \
+                 {reason}.\n",
+                self.outside.searched_to
+            ),
+        });
         let e = &list.effort;
         text.push_str(&format!(
-            "\nEffort: {} evaluations, {} bounds, {} refinements, {} retries, {} fallbacks.\n",
+            "Effort: {} evaluations, {} bounds, {} refinements, {} retries, {} fallbacks.\n",
             e.evaluations, e.bounds, e.refinements, e.retries, e.fallbacks
         ));
         text

@@ -4,6 +4,7 @@ use num_complex::Complex64;
 use serde::Serialize;
 
 use super::table::{Lean, Table};
+use crate::modes::explain::Explained;
 use crate::modes::shapes::{Sample, Shape};
 use crate::modes::{Mode, ModeList};
 use crate::network::{ElementId, Network};
@@ -103,11 +104,11 @@ pub(super) struct CsvRow<'a> {
 pub(super) fn csv_rows<'a>(
     network: &'a Network,
     list: &ModeList,
-    shapes: &[Option<Shape>],
+    explained: &[Explained],
 ) -> Vec<CsvRow<'a>> {
     let mut rows = Vec::new();
-    for (i, (mode, shape)) in list.modes.iter().zip(shapes).enumerate() {
-        let Some(shape) = shape else { continue };
+    for (i, (mode, told)) in list.modes.iter().zip(explained).enumerate() {
+        let Some(shape) = &told.shape else { continue };
         let places = stations(network, shape);
         for place in places.into_iter().chain(along(network, shape)) {
             rows.push(CsvRow {

@@ -47,29 +47,31 @@ pub enum Law<T> {
     },
 }
 
-impl<T: Copy> Law<T> {
-    /// The same law with each number replaced by `f` of it.
-    pub fn map<U>(&self, f: impl Fn(T) -> U) -> Law<U> {
+impl<T> Law<T> {
+    /// The same law in another number type.
+    pub fn map<U>(&self, f: impl Fn(&T) -> U) -> Law<U> {
         match self {
-            Law::Delays(all) => {
-                let part = |d: &Delayed<T>| Delayed {
-                    weight: f(d.weight),
-                    delay: f(d.delay),
-                    spread: f(d.spread),
-                };
-                Law::Delays(all.iter().map(part).collect())
-            }
+            Law::Delays(delays) => Law::Delays(
+                delays
+                    .iter()
+                    .map(|d| Delayed {
+                        weight: f(&d.weight),
+                        delay: f(&d.delay),
+                        spread: f(&d.spread),
+                    })
+                    .collect(),
+            ),
             Law::Polynomial {
                 coefficients,
                 delay,
             } => Law::Polynomial {
-                coefficients: coefficients.map(&f),
-                delay: f(*delay),
+                coefficients: coefficients.each_ref().map(&f),
+                delay: f(delay),
             },
             Law::Complex { re, im, delay } => Law::Complex {
-                re: f(*re),
-                im: f(*im),
-                delay: f(*delay),
+                re: f(re),
+                im: f(im),
+                delay: f(delay),
             },
         }
     }

@@ -6,4 +6,5 @@ pub mod exterior;
 pub mod front;
 pub mod law;
 pub mod primitive;
+pub mod tail;
 pub mod tape;

@@ -14,6 +14,7 @@
 //! what they sense may lie at any plane.
 
 use super::law::Law;
+use crate::numerics::dual::Real;
 
 /// Coefficients of the three unknowns at a plane.
 pub type Row<T> = [T; 3];
@@ -102,9 +103,9 @@ impl<T: Copy> Chain<T> {
     pub fn map<U>(&self, f: impl Fn(T) -> U + Copy) -> Chain<U> {
         let row = |r: &Row<T>| r.map(f);
         let block = |b: &Block<T>| b.map(|r| r.map(f));
-        let signal = |(law, sense): &(Law<T>, Row<T>)| (law.map(f), row(sense));
+        let signal = |(law, sense): &(Law<T>, Row<T>)| (law.map(|x| f(*x)), row(sense));
         let term = |t: &Term<T>| Term {
-            law: t.law.map(f),
+            law: t.law.map(|x| f(*x)),
             sense: row(&t.sense),
             at: t.at,
         };
@@ -112,7 +113,7 @@ impl<T: Copy> Chain<T> {
             Step::Travel(t) => Step::Travel(Travel {
                 downstream: f(t.downstream),
                 upstream: f(t.upstream),
-                entropy: t.entropy.as_ref().map(|law| law.map(f)),
+                entropy: t.entropy.as_ref().map(|law| law.map(|x| f(*x))),
             }),
             Step::Joint(j) => Step::Joint(Joint {
                 up: block(&j.up),
@@ -139,5 +140,12 @@ impl<T> Chain<T> {
     /// Number of planes.
     pub fn planes(&self) -> usize {
         self.steps.len() + 1
+    }
+}
+
+impl Chain<f64> {
+    /// The same chain in another number type, as constants.
+    pub fn lift<T: Real>(&self) -> Chain<T> {
+        self.map(T::from)
     }
 }

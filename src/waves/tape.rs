@@ -51,7 +51,7 @@ pub struct Tape<T> {
 }
 
 /// Arithmetic the tape is run in.
-trait Arithmetic<T> {
+pub(super) trait Arithmetic<T> {
     type Element: Copy;
     fn zero(&self) -> Self::Element;
     fn one(&self) -> Self::Element;
@@ -150,7 +150,7 @@ impl<T: Copy> Tape<T> {
                 constant: entries(constant),
                 lawful: lawful
                     .iter()
-                    .map(|(law, b)| (law.map(f), entries(b)))
+                    .map(|(law, b)| (law.map(|x| f(*x)), entries(b)))
                     .collect(),
             },
         };
@@ -164,7 +164,7 @@ impl<T: Copy> Tape<T> {
 }
 
 impl<T: Real> Tape<T> {
-    fn run<A: Arithmetic<T>>(&self, arithmetic: &A) -> A::Element {
+    pub(super) fn run<A: Arithmetic<T>>(&self, arithmetic: &A) -> A::Element {
         match self.width {
             0..=4 => self.run_in::<A, 4>(arithmetic),
             5..=16 => self.run_in::<A, 16>(arithmetic),
@@ -210,6 +210,22 @@ impl<T: Real> Tape<T> {
             }
         }
         v[0]
+    }
+
+    /// The delays (s) of all scalings.
+    pub(super) fn scales(&self) -> impl Iterator<Item = T> {
+        self.ops.iter().filter_map(|op| match op {
+            Op::Scale { delay, .. } => Some(*delay),
+            Op::Map { .. } => None,
+        })
+    }
+
+    /// The laws of each map.
+    pub(super) fn laws(&self) -> impl Iterator<Item = impl Iterator<Item = &Law<T>>> {
+        self.ops.iter().filter_map(|op| match op {
+            Op::Scale { .. } => None,
+            Op::Map { lawful, .. } => Some(lawful.iter().map(|(law, _)| law)),
+        })
     }
 
     /// Taylor coefficients `D^(k)/k!` at `s`, orders 0 to `N - 1`.

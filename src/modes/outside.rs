@@ -1,0 +1,221 @@
+//! What grows outside a window, and whether that is all.
+//!
+//! In the band of frequency from zero to the window's top, growth rates from the window's upper edge to one
+//! beyond which nothing lies ([`tail`]) are searched like any window; below the window's lowest frequency
+//! those above zero are searched as well, on the real axis too.
+
+use std::f64::consts::TAU;
+
+use super::{Mode, Solved, Tendency, Window, doubt_in_words, find};
+use crate::numerics::zeros::{Doubt, Scan};
+use crate::waves::tail::{self, Unbounded};
+
+/// Growth outside a window.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Outside {
+    /// Modes in the window's band of frequency that grow faster than its upper edge, by increasing
+    /// frequency.
+    pub faster: Vec<Mode>,
+    /// Modes that grow below the window's lowest frequency, those that do not oscillate among them.
+    pub slower: Vec<Mode>,
+    /// Growth rate (1/s) up to which was searched.
+    pub searched_to: f64,
+    /// Whether the search up to there is proved complete.
+    pub complete: bool,
+    /// Why it is not proved that nothing in the band lies right of the window and nothing below it
+    /// grows; `None` where it is proved.
+    pub reason: Option<String>,
+}
+
+impl Outside {
+    /// Whether growth outside the window, up to its highest frequency, is excluded.
+    pub fn excluded(&self) -> bool {
+        self.reason.is_none()
+    }
+
+    /// The fastest of all.
+    pub fn fastest(&self) -> Option<&Mode> {
+        let all = self.faster.iter().chain(&self.slower);
+        all.max_by(|a, b| a.growth().total_cmp(&b.growth()))
+    }
+}
+
+/// Growth rate (1/s) up to which the proof is sought.
+const LIMIT: f64 = 1e6;
+
+/// Where there is no such proof, how far to the right of a window is searched at least, over its height.
+const REACH: f64 = 3.0;
+
+/// Growth rate (1/s) up to which is searched where a spread delay still falls.
+const FAR: f64 = 2e4;
+
+/// Looks outside a window. `start` is a growth rate at which the proof is tried first.
+pub fn outside(solved: &Solved, window: Window, start: f64) -> Outside {
+    let tape = &solved.acoustics.characteristic.tape;
+    let (low, high) = window.growth;
+    let from = high.max(start);
+    let clear = tail::clear_beyond(tape, from, TAU * window.frequency.1, LIMIT);
+    let mut reason = clear.err().map(in_words);
+    let strip = high + REACH * (high - low);
+    let searched_to = match clear {
+        Ok(growth) => growth,
+        Err(Some(Unbounded::Spread(turn))) => turn.min(FAR).max(strip),
+        Err(_) => strip,
+    };
+    let mut seen = Vec::new();
+    let mut complete = true;
+    let mut look = |growth: (f64, f64), frequency: (f64, f64)| {
+        if growth.1 <= growth.0 || frequency.1 <= frequency.0 {
+            return;
+        }
+        let list = find(solved, Window { frequency, growth }, Scan::UntilCounted);
+        // A mode on an edge is listed, and judged by its own growth rate.
+        let mut doubts = list.doubts.iter();
+        if let Some(doubt) = doubts.find(|d| !matches!(d, Doubt::OnEdge { .. })) {
+            complete = false;
+            reason.get_or_insert(doubt_in_words(doubt).0);
+        }
+        seen.extend(list.modes);
+    };
+    look((high, searched_to), (0.0, window.frequency.1));
+    look((0.0, high), (0.0, window.frequency.0));
+    let (faster, slower): (Vec<Mode>, Vec<Mode>) = seen
+        .into_iter()
+        .partition(|m| m.growth() > high && m.frequency() >= window.frequency.0);
+    let slower: Vec<Mode> = slower
+        .into_iter()
+        .filter(|m| m.tendency() == Tendency::Grows && m.frequency() < window.frequency.0)
+        .collect();
+    if let Some(found) = found_in_words(&faster, &slower) {
+        reason = Some(found);
+    }
+    Outside {
+        faster,
+        slower,
+        searched_to,
+        complete,
+        reason,
+    }
+}
+
+fn found_in_words(faster: &[Mode], slower: &[Mode]) -> Option<String> {
+    let most = |modes: &[Mode]| {
+        let by_growth = |a: &&Mode, b: &&Mode| a.growth().total_cmp(&b.growth());
+        modes.iter().max_by(by_growth).copied()
+    };
+    match (most(faster), most(slower)) {
+        (Some(m), _) => Some(format!(
+            "a mode lies right of the window: {:+.1} 1/s at {:.1} Hz",
+            m.growth(),
+            m.frequency()
+        )),
+        (None, Some(m)) => Some(format!(
+            "a mode grows below the window: {:+.1} 1/s at {:.1} Hz",
+            m.growth(),
+            m.frequency()
+        )),
+        (None, None) => None,
+    }
+}
+
+fn in_words(reason: Option<Unbounded>) -> String {
+    match reason {
+        Some(Unbounded::Spread(_)) => {
+            "a Gaussian response has a part ahead of its cause, which takes over far to the right"
+        }
+        Some(Unbounded::Negative) => {
+            "a flame follows a station that its own sound reaches ahead of its delay"
+        }
+        Some(Unbounded::Degree) => "more storage terms than the proof covers",
+        Some(Unbounded::Vanishes) => "the ends leave nothing without delay to compare with",
+        None => "no growth rate was found that the delays cannot exceed",
+    }
+    .to_owned()
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::modes::ModeList;
+    use crate::{input, modes};
+
+    /// A flame between anechoic ends in still gas: `1 + sqrt(6) + (6 - 1) n exp(-s tau) ...`; its intrinsic
+    /// modes have growth rate `ln(n (T2/T1 - 1)/(1 + sqrt(T2/T1)))/tau` (`c1 rho1 = sqrt(T2/T1) c2 rho2`).
+    fn intrinsic(n: f64, tau_ms: f64, more: &str) -> String {
+        format!(
+            r#"
+            title = "Flame between anechoic ends (invented)"
+            search = {{ frequency = "20 to 800 Hz", growth = "-300 to 300 1/s" }}
+            feed = {{ gas = {{ gamma = 1.4, gas_constant = "287 J/(kg K)" }}, mass_flow = "0 kg/s", temperature = "300 K", pressure = "1 bar", end = "anechoic" }}
+            exit = {{ end = "anechoic" }}
+            [[element]]
+            name = "a"
+            kind = "duct"
+            length = "0.2 m"
+            diameter = "80 mm"
+            [[element]]
+            name = "f"
+            kind = "flame"
+            burnt_temperature = "1800 K"
+            response = {{ {more} interaction_index = {n}, delay = "{tau_ms} ms" }}
+            [[element]]
+            name = "b"
+            kind = "duct"
+            length = "0.2 m"
+            diameter = "80 mm"
+            "#
+        )
+    }
+
+    fn ask(toml: &str) -> (ModeList, Outside) {
+        let network = input::parse("t.toml", toml, &[]).unwrap().network;
+        let solved = modes::solve(&network).unwrap();
+        let window = Window::of(&network, &solved.mean).unwrap();
+        let list = find(&solved, window, Scan::Whole);
+        (list, outside(&solved, window, 0.0))
+    }
+
+    #[test]
+    fn an_intrinsic_mode_beyond_the_window_is_found() {
+        let (list, outside) = ask(&intrinsic(2.0, 1.0, r#"kind = "n-tau","#));
+        assert!(list.complete() && list.modes.is_empty());
+        // Impedances: rho c falls by sqrt(6) across the flame.
+        let growth = (2.0 * 5.0 / (1.0 + 6f64.sqrt())).ln() / 1e-3;
+        assert!((growth - 1064.0).abs() < 1.0);
+        let m = outside.fastest().unwrap();
+        assert!((m.growth() - growth).abs() < 1e-6 && (m.frequency() - 500.0).abs() < 1e-6);
+        assert!(!outside.excluded());
+    }
+
+    #[test]
+    fn growth_is_excluded_where_it_is_proved() {
+        let (list, outside) = ask(&intrinsic(0.5, 1.0, r#"kind = "n-tau","#));
+        assert!(list.complete());
+        assert_eq!(
+            (outside.excluded(), outside.faster.len()),
+            (true, 0),
+            "{outside:?}"
+        );
+    }
+
+    #[test]
+    fn a_spread_delay_leaves_growth_open() {
+        let (_, outside) = ask(&intrinsic(
+            0.5,
+            1.0,
+            r#"kind = "gaussian", spread = "0.2 ms","#,
+        ));
+        assert!(outside.reason.unwrap().contains("Gaussian"));
+    }
+
+    #[test]
+    fn a_mode_that_grows_without_oscillating_is_found_below_the_window() {
+        // n (T2/T1 - 1) = -10: the real root ln(10/(1 + sqrt 6))/tau.
+        let (list, outside) = ask(&intrinsic(-2.0, 1.0, r#"kind = "n-tau","#));
+        assert!(list.complete());
+        assert_eq!(outside.slower.len(), 1);
+        let m = outside.slower[0];
+        assert!((m.growth() - 1064.0).abs() < 1.0 && m.frequency() == 0.0);
+        assert!(!outside.excluded());
+    }
+}
