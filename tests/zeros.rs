@@ -131,6 +131,19 @@ proptest! {
     }
 
     #[test]
+    fn a_zero_on_the_axis_is_listed_without_symmetry_too(
+        re in -500.0..500.0f64, off in prop_oneof![Just(0.0), -1e-18..1e-18f64], third in zero(),
+    ) {
+        prop_assume!(third.im > 0.0 && clear_of_edges(third));
+        let f = Polynomial::with(&[c(re, off), c(re, -40.0), third]);
+        let found = zeros::search(&f, &WINDOW, Scan::Whole);
+        prop_assert!(found.complete(), "{:?}", found.doubts);
+        prop_assert_eq!(found.expected, Some(1 + i64::from(inside(&third))));
+        let lowest = &found.zeros[0];
+        prop_assert!(lowest.at.im >= 0.0 && (lowest.at - c(re, off)).norm() <= lowest.error + 1e-10);
+    }
+
+    #[test]
     fn zeros_of_one_delay_match_their_closed_form(
         epsilon in 0.5..3.0f64, n in 0.3..6.0f64, tau in 0.0005..0.01f64,
     ) {

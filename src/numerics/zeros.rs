@@ -188,10 +188,12 @@ pub fn certify<F: Analytic + ?Sized>(
     let mut zeros = Vec::new();
     let mut weight = 0;
     for zero in ledger.zeros() {
-        let on_axis = symmetric && (zero.real || zero.at.im <= zero.error);
+        // The axis is no edge of a symmetric window. Where a window without symmetry begins at it, a
+        // zero that cannot be told from it is in.
+        let near_axis = zero.real || zero.at.im.abs() <= zero.error;
+        let on_axis = near_axis && (symmetric || window.omega.0 == 0.0);
         let mut seen = *zero;
         if on_axis {
-            // The axis is no edge of a symmetric window.
             seen.at.im = zero.at.im.max(zero.error);
         }
         if padded.holds(seen.at, zero.error) != Some(false) {
@@ -205,7 +207,7 @@ pub fn certify<F: Analytic + ?Sized>(
             continue;
         }
         match edges.holds(seen.at, zero.error) {
-            Some(true) => zeros.push(*zero),
+            Some(true) => zeros.push(on_or_above(zero, on_axis)),
             Some(false) => {}
             None => {
                 zeros.push(*zero);
@@ -249,6 +251,16 @@ pub fn certify<F: Analytic + ?Sized>(
         met: ledger.zeros().iter().map(|z| z.at).collect(),
         doubts,
         effort,
+    }
+}
+
+/// A zero on the axis as one not below it; its error covers the way it was moved.
+fn on_or_above(zero: &Zero, on_axis: bool) -> Zero {
+    let below = if on_axis { (-zero.at.im).max(0.0) } else { 0.0 };
+    Zero {
+        at: Complex64::new(zero.at.re, zero.at.im + below),
+        error: zero.error + below,
+        ..*zero
     }
 }
 

@@ -165,6 +165,40 @@ fn dot<T: Real, A: Arithmetic<T>>(arithmetic: &A, row: &[(u8, T)], v: &[A::Eleme
     row.iter().fold(arithmetic.zero(), add)
 }
 
+impl<T: Copy> Sparse<T> {
+    fn map<U>(&self, f: impl Fn(T) -> U) -> Sparse<U> {
+        Sparse {
+            ends: self.ends.clone(),
+            entries: self.entries.iter().map(|&(j, x)| (j, f(x))).collect(),
+        }
+    }
+}
+
+impl<T: Copy> Tape<T> {
+    /// The same program with each number replaced by `f` of it.
+    pub fn map<U>(&self, f: impl Fn(T) -> U + Copy) -> Tape<U> {
+        let op = |op: &Op<T>| match op {
+            Op::Scale { delay, slots } => Op::Scale {
+                delay: f(*delay),
+                slots: slots.clone(),
+            },
+            Op::Map { constant, lawful } => Op::Map {
+                constant: constant.map(f),
+                lawful: lawful
+                    .iter()
+                    .map(|(law, b)| (law.map(|x| f(*x)), b.map(f)))
+                    .collect(),
+            },
+        };
+        Tape {
+            ops: self.ops.iter().map(op).collect(),
+            width: self.width,
+            rounding: self.rounding,
+            symmetric: self.symmetric,
+        }
+    }
+}
+
 impl<T: Real> Tape<T> {
     pub(super) fn run<A: Arithmetic<T>>(&self, arithmetic: &A) -> A::Element {
         match self.width {
