@@ -234,10 +234,6 @@ fn labels(
     taken: &mut Vec<Rect>,
 ) {
     let edge = figure.shade.as_ref().map(|s| y.at(s.from));
-    let across = (plot.width() / 3.0) as usize;
-    let neutral = edge
-        .into_iter()
-        .flat_map(|at| (0..=across).map(move |k| (plot.left + 3.0 * k as f64, at)));
     let crowd: Vec<Point> = trails
         .iter()
         .flat_map(|t| &t.runs)
@@ -246,18 +242,21 @@ fn labels(
             let n = (line.total() / 3.0).floor() as usize;
             (0..=n).map(|k| line.at(k as f64 * 3.0)).collect::<Vec<_>>()
         })
-        .chain(neutral)
         .collect();
     for spot in figure.spots.iter().filter(|s| !s.label.is_empty()) {
         let label = tidy(&spot.label);
         let size = (width(&label, Weight::Regular, LABEL_SIZE), LABEL_SIZE);
+        let struck = |r: Rect| edge.is_some_and(|at| r.top < at && at < r.bottom);
         let others = |r: Rect| {
+            if struck(r) {
+                return usize::MAX;
+            }
             let covered = taken.iter().filter(|t| t.overlaps(r)).count();
             20 * covered + crowd.iter().filter(|p| r.contains(**p)).count()
         };
         let at = (x.at(spot.x), y.at(spot.y));
         let place = beside(at, size, 8.0, plot.grown(-3.0), &others);
-        if taken.iter().any(|t| t.overlaps(place)) {
+        if struck(place) || taken.iter().any(|t| t.overlaps(place)) {
             // The value stands in the table; a label over another is worse than none.
             continue;
         }

@@ -6,7 +6,8 @@ mod words;
 use serde::Serialize;
 
 use super::document::WindowFields;
-use super::{Document, Heading, OUTSIDE};
+use super::map::growth_outside;
+use super::{Document, Heading};
 use crate::modes::ModeList;
 use crate::network::Network;
 use crate::problems::Problem;
@@ -102,12 +103,13 @@ struct Body<'a> {
     events: Vec<EventFields>,
     branches: Vec<BranchFields>,
     unstable: Vec<(f64, f64)>,
-    growth_beyond_window_per_s: Vec<Option<f64>>,
+    growth_outside_window_per_s: Vec<Option<f64>>,
     design_point: Design,
     counts: Counts,
     evaluations: usize,
     window: WindowFields,
-    outside_window: &'static str,
+    growth_excluded_beyond: bool,
+    growth_outside: String,
 }
 
 /// How an event is called in JSON.
@@ -163,6 +165,27 @@ impl<'a> SweepReport<'a> {
         self.sweep.path.design(self.network)
     }
 
+    /// Points where a mode grows outside the window, those where more is not excluded, and the least
+    /// growth rate up to which these were searched.
+    fn outside(&self) -> (usize, usize, Option<f64>) {
+        let points = || self.sweep.points.iter().map(|p| p.outside);
+        let open = || points().filter(|o| !o.excluded);
+        (
+            points().filter(|o| o.fastest.is_some()).count(),
+            open().count(),
+            open().map(|o| o.searched_to).reduce(f64::min),
+        )
+    }
+
+    /// What the sweep says of growth outside its window, in a sentence.
+    fn growth_outside(&self) -> String {
+        growth_outside(
+            &self.sweep.window,
+            self.outside(),
+            "is told in the warnings",
+        )
+    }
+
     /// The parameter at a position.
     fn value(&self, u: f64) -> f64 {
         self.sweep.path.value(u)
@@ -182,6 +205,7 @@ impl<'a> SweepReport<'a> {
         let (parameter, dimension) = self.parameter();
         let (complete, not_certified, failed) = sweep.tally();
         let leading = self.design.leading();
+        let (outside, open, _) = self.outside();
         let body = Body {
             finding: self.finding(),
             parameter,
@@ -207,10 +231,10 @@ impl<'a> SweepReport<'a> {
                 .into_iter()
                 .map(|(a, b)| (self.value(a), self.value(b)))
                 .collect(),
-            growth_beyond_window_per_s: sweep
+            growth_outside_window_per_s: sweep
                 .points
                 .iter()
-                .map(|p| p.beyond.map(|m| m.growth()))
+                .map(|p| p.outside.fastest.map(|m| m.growth()))
                 .collect(),
             design_point: Design {
                 value: self.design_at().map(|u| self.value(u)),
@@ -227,7 +251,8 @@ impl<'a> SweepReport<'a> {
             },
             evaluations: sweep.effort.evaluations,
             window: (&sweep.window).into(),
-            outside_window: OUTSIDE,
+            growth_excluded_beyond: outside == 0 && open == 0,
+            growth_outside: self.growth_outside(),
         };
         Document::new("stillflame/sweep", &self.heading, body, self.warnings).to_json()
     }

@@ -5,7 +5,7 @@ use crate::elements::Kind;
 use crate::elements::ends::{Exit, ExitEnd};
 use crate::knobs::KnobId;
 use crate::meanflow::{self, MeanFlow};
-use crate::modes::{Window, validity};
+use crate::modes::{Mode, Window, validity};
 use crate::network::{Network, areas, values};
 use crate::problems::Problem;
 use crate::units::{Dimension, write_rounded};
@@ -106,7 +106,12 @@ pub fn warnings(
         corners(network, across, up)
     };
     assumptions(&mut found, known, &map.window, looked);
-    found.extend(beyond(network, map));
+    let place = |(x, y): (f64, f64)| place(network, (across.knob, x), (up.knob, y));
+    let grows = map
+        .placed()
+        .filter_map(|(x, y, p)| Some(((x, y), p.outside()?)));
+    let hint = "the figure shows those growth rates; the lists and largest_growth_per_s keep to the window";
+    found.extend(outside(grows, (map.points.len(), &map.window), place, hint));
     let points = map.placed().map(|(x, y, point)| {
         let answer = match point {
             Point::Certified(_) => Answer::Certified,
@@ -115,7 +120,6 @@ pub fn warnings(
         };
         (answer, (x, y))
     });
-    let place = |(x, y)| place(network, (across.knob, x), (up.knob, y));
     found.extend(unanswered(points, place));
     found
 }
@@ -191,23 +195,37 @@ pub(super) fn moving(
     found
 }
 
-/// Points where a mode has left the window by growing.
-fn beyond(network: &Network, map: &Map) -> Option<Problem> {
-    let tally = map.tally();
-    let (x, y, fastest) = tally.greatest.filter(|_| tally.beyond > 0)?;
+/// Points, of so many, where a mode grows outside the window.
+pub(super) fn outside<P>(
+    grows: impl Iterator<Item = (P, Mode)>,
+    (total, window): (usize, &Window),
+    place: impl Fn(P) -> String,
+    hint: &str,
+) -> Option<Problem> {
+    let mut count = 0;
+    let mut fastest: Option<(P, Mode)> = None;
+    for (at, mode) in grows {
+        count += 1;
+        if fastest
+            .as_ref()
+            .is_none_or(|(_, m)| m.growth() < mode.growth())
+        {
+            fastest = Some((at, mode));
+        }
+    }
+    let (at, fastest) = fastest?;
     let what = format!(
-        "at {} of {} points a mode grows faster than the window's upper edge of {:.0} 1/s; the fastest, at \
-         {}: {:.0} 1/s at {:.1} Hz",
-        tally.beyond,
-        tally.points,
-        map.window.growth.1,
-        place(network, (map.across.knob, x), (map.up.knob, y)),
+        "at {count} of {total} points a mode grows outside the window; the fastest, at {}: {:.0} 1/s at {:.1} Hz",
+        place(at),
         fastest.growth(),
         fastest.frequency()
     );
-    Some(Problem::warning("search.growth", what).hint(
-        "the figure shows those growth rates; the lists and largest_growth_per_s keep to the window",
-    ))
+    let subject = if fastest.growth() > window.growth.1 {
+        "search.growth"
+    } else {
+        "search.frequency"
+    };
+    Some(Problem::warning(subject, what).hint(hint))
 }
 
 /// What is known of a point.

@@ -20,7 +20,7 @@ use num_complex::Complex64;
 use rayon::prelude::*;
 
 use crate::meanflow::MeanFlow;
-use crate::modes::{Mode, Tendency, Window};
+use crate::modes::{self, Mode, Tendency, Window};
 use crate::network::Network;
 use crate::numerics::count::Effort;
 use crate::problems::Problem;
@@ -30,8 +30,9 @@ pub use follow::Edge;
 use sample::{Ground, Sample, Verdict};
 use weave::Weaver;
 
-/// Modes closer than this share of the window's diagonal count as met.
-const MERGE: f64 = 1e-7;
+/// Modes closer than this share of the largest `|s|` in the window count as met. Two that close are known to
+/// about the square root of the unit roundoff, 1e-8.
+const MERGE: f64 = 3e-7;
 
 /// What happens to a branch.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -122,6 +123,28 @@ pub enum State {
     Failed(Box<Problem>),
 }
 
+/// Growth outside the window at a point, up to its highest frequency.
+#[derive(Clone, Copy, Debug, Default, PartialEq)]
+pub struct Outside {
+    /// The fastest mode that grows there.
+    pub fastest: Option<Mode>,
+    /// Whether further growth is excluded, by proof.
+    pub excluded: bool,
+    /// Growth rate (1/s) up to which was searched.
+    pub searched_to: f64,
+}
+
+impl Outside {
+    fn of(found: &modes::Outside) -> Self {
+        let grows = found.fastest().filter(|m| m.tendency() == Tendency::Grows);
+        Outside {
+            fastest: grows.copied(),
+            excluded: found.rest_excluded(),
+            searched_to: found.searched_to,
+        }
+    }
+}
+
 /// A reported point.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Point {
@@ -131,8 +154,8 @@ pub struct Point {
     pub state: State,
     /// The modes by increasing frequency, each with the index of its branch where it could be told.
     pub modes: Vec<(Option<usize>, Mode)>,
-    /// Of modes that grow faster than the window's upper edge the fastest.
-    pub beyond: Option<Mode>,
+    /// What grows outside the window there.
+    pub outside: Outside,
     /// Work done on the list.
     pub effort: Effort,
 }
@@ -169,15 +192,14 @@ pub fn sweep(
     watch: impl Fn() -> ControlFlow<()> + Sync,
 ) -> Option<Sweep> {
     let moves = path.knobs.iter().any(|(k, _)| moves_mean_flow(network, *k));
-    let rectangle = window.rectangle();
-    let diagonal =
-        (rectangle.growth.1 - rectangle.growth.0).hypot(rectangle.omega.1 - rectangle.omega.0);
+    let r = window.rectangle();
+    let largest = r.growth.0.abs().max(r.growth.1.abs()).hypot(r.omega.1);
     let ground = Ground {
         network,
         path,
         held: (!moves).then_some(mean),
         window,
-        merge: MERGE * diagonal,
+        merge: MERGE * largest,
     };
     let samples: Option<Vec<Sample>> = (0..path.points)
         .into_par_iter()
@@ -262,9 +284,10 @@ fn tell_meetings_once(events: &mut Vec<Event>) {
             kept.push(event);
             continue;
         };
-        let same = kept.iter_mut().rev().find(|e| {
-            rank(e.kind).is_some() && event.u - e.u <= SAME && set(e) == set(&event)
-        });
+        let same = kept
+            .iter_mut()
+            .rev()
+            .find(|e| rank(e.kind).is_some() && event.u - e.u <= SAME && set(e) == set(&event));
         match same {
             Some(told) if rank(told.kind) > Some(this) => *told = event,
             Some(_) => {}
@@ -337,7 +360,7 @@ fn point(sample: Sample, on: &[Vec<usize>], branches: &[Branch]) -> Point {
             Verdict::Failed(problem) => State::Failed(problem),
         },
         modes,
-        beyond: sample.beyond,
+        outside: sample.outside,
         effort: sample.effort,
     }
 }

@@ -265,7 +265,10 @@ fn an_oscillating_mode_becomes_two_real_ones_and_back() {
             assert_eq!(event.branches.len(), 2);
             assert!(event.s.im == 0.0);
             let unexplained = |k: &Kind| {
-                matches!(k, Kind::Lost | Kind::Found | Kind::ExceptionalPoint | Kind::Crossing)
+                matches!(
+                    k,
+                    Kind::Lost | Kind::Found | Kind::ExceptionalPoint | Kind::Crossing
+                )
             };
             assert!(
                 !found.events.iter().any(|e| unexplained(&e.kind)),

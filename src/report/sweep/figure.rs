@@ -10,7 +10,7 @@ use crate::draw::{
 };
 use crate::report::figure::{engineers_unit, label};
 use crate::report::map::rate;
-use crate::report::{CAUTION, OUTSIDE, window_text};
+use crate::report::{CAUTION, window_text};
 use crate::studies::path::{Parameter, Spacing};
 use crate::studies::sweep::{Branch, Kind, Place, State};
 
@@ -57,8 +57,9 @@ impl SweepReport<'_> {
 
     fn footnote(&self) -> String {
         format!(
-            "Modes in {}. {OUTSIDE} {CAUTION}",
-            window_text(&self.sweep.window)
+            "Modes in {}. {} {CAUTION}",
+            window_text(&self.sweep.window),
+            self.growth_outside()
         )
     }
 

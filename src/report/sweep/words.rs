@@ -5,7 +5,7 @@ use crate::draw::text::fixed;
 use crate::modes::Tendency;
 use crate::report::map::{percent, rate};
 use crate::report::table::{Lean, Table};
-use crate::report::{OUTSIDE, closing, counted, window_text};
+use crate::report::{closing, counted, window_text};
 use crate::studies::path::{Parameter, Spacing};
 use crate::studies::sweep::{Event, Kind};
 use crate::units::{Dimension, write_rounded};
@@ -153,7 +153,11 @@ impl SweepReport<'_> {
         if !sweep.events.is_empty() {
             text.push_str(&format!("\n{}", self.event_table()));
         }
-        text.push_str(&format!("\n{}{OUTSIDE}\n", self.design_words()));
+        text.push_str(&format!(
+            "\n{}{}\n",
+            self.design_words(),
+            self.growth_outside()
+        ));
         text.push_str(&closing(self.warnings));
         text
     }

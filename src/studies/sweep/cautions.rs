@@ -5,7 +5,9 @@ use crate::knobs::KnobId;
 use crate::meanflow::MeanFlow;
 use crate::network::Network;
 use crate::problems::Problem;
-use crate::studies::cautions::{Answer, assumptions, moving, refused, setting, unanswered};
+use crate::studies::cautions::{
+    Answer, assumptions, moving, outside, refused, setting, unanswered,
+};
 use crate::studies::path::{Parameter, Path};
 use crate::units::{Dimension, write_rounded};
 
@@ -48,7 +50,16 @@ pub fn warnings(
     let mut found = moving(network, mean, &knobs, "the sweep", "vary it as well");
     let looked = places(network, path, 25);
     assumptions(&mut found, known, &sweep.window, looked);
-    found.extend(beyond(network, sweep));
+    let grows = sweep.points.iter();
+    let grows = grows.filter_map(|p| Some((p.u, p.outside.fastest?)));
+    let hint = "branches end at the window's edge; search a larger window to follow it";
+    let place = |u| place(network, path, u);
+    found.extend(outside(
+        grows,
+        (sweep.points.len(), &sweep.window),
+        place,
+        hint,
+    ));
     let points = sweep.points.iter().map(|point| {
         let answer = match &point.state {
             State::Certified => Answer::Certified,
@@ -57,27 +68,6 @@ pub fn warnings(
         };
         (answer, point.u)
     });
-    found.extend(unanswered(points, |u| place(network, path, u)));
+    found.extend(unanswered(points, place));
     found
-}
-
-/// Points where a mode grows faster than the window's upper edge.
-fn beyond(network: &Network, sweep: &Sweep) -> Option<Problem> {
-    let beyond = || sweep.points.iter().filter_map(|p| Some((p.u, p.beyond?)));
-    let (u, fastest) = beyond().max_by(|a, b| a.1.growth().total_cmp(&b.1.growth()))?;
-    let what = format!(
-        "at {} of {} points a mode grows faster than the window's upper edge of {:.0} 1/s; the fastest, at \
-         {}: {:.0} 1/s at {:.1} Hz",
-        beyond().count(),
-        sweep.points.len(),
-        sweep.window.growth.1,
-        place(network, &sweep.path, u),
-        fastest.growth(),
-        fastest.frequency()
-    );
-    let hint = format!(
-        "branches end at the window's edge; search growth rates up to {:.0} 1/s to follow it",
-        (1.1 * fastest.growth() / 50.0).ceil() * 50.0
-    );
-    Some(Problem::warning("search.growth", what).hint(hint))
 }

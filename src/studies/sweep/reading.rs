@@ -68,18 +68,15 @@ impl Sweep {
             .filter(move |e| sign(e.kind) && branch.is_none_or(|b| e.branches.contains(&b)))
     }
 
-    /// Stretches over which some mode grows, in the window or beyond its upper edge, in order and apart.
-    /// Beyond the edge they are known from point to point.
+    /// Stretches over which some mode grows, in the window or outside, in order and apart. Outside they are
+    /// known from point to point.
     pub fn unstable(&self) -> Vec<(f64, f64)> {
         let mut all: Vec<(f64, f64)> = Vec::new();
         for (i, branch) in self.branches.iter().enumerate() {
             all.extend(branch.growing(self.neutral(Some(i))));
         }
         for (i, point) in self.points.iter().enumerate() {
-            if point
-                .beyond
-                .is_some_and(|m| m.tendency() == Tendency::Grows)
-            {
+            if point.outside.fastest.is_some() {
                 let u = |i: usize| self.points.get(i).map_or(point.u, |p| p.u);
                 all.push((u(i.saturating_sub(1)), u(i + 1)));
             }
@@ -95,14 +92,14 @@ impl Sweep {
         joined
     }
 
-    /// The mode of largest growth rate on any branch or beyond the window: its position, and its branch.
+    /// The mode of largest growth rate on any branch or outside the window: its position, and its branch.
     pub fn greatest(&self) -> Option<(f64, Option<usize>, Complex64)> {
         let branches = self.branches.iter().enumerate();
         let inside = branches.filter_map(|(i, b)| b.greatest().map(|p| (p.u, Some(i), p.s)));
         let beyond = self
             .points
             .iter()
-            .filter_map(|p| p.beyond.map(|m| (p.u, None, m.s)));
+            .filter_map(|p| p.outside.fastest.map(|m| (p.u, None, m.s)));
         inside
             .chain(beyond)
             .max_by(|a, b| a.2.re.total_cmp(&b.2.re))

@@ -8,6 +8,7 @@
 
 use num_complex::Complex64;
 
+use super::Outside;
 use crate::acoustics::{self, Acoustics};
 use crate::meanflow::{self, MeanFlow};
 use crate::modes::{self, Mode, Solved, Window};
@@ -70,8 +71,8 @@ pub(super) struct Sample {
     /// Whether modes come in conjugate pairs.
     pub symmetric: bool,
     pub effort: Effort,
-    /// Of modes that grow faster than the window's upper edge the fastest, where asked for.
-    pub beyond: Option<Mode>,
+    /// What grows outside the window, where asked for.
+    pub outside: Outside,
 }
 
 impl Sample {
@@ -216,7 +217,7 @@ impl Ground<'_> {
                     nodes: Vec::new(),
                     symmetric: false,
                     effort: Effort::default(),
-                    beyond: None,
+                    outside: Outside::default(),
                 };
             }
         };
@@ -237,16 +238,18 @@ impl Ground<'_> {
                 }
             }
         };
-        let beyond = reported
-            .then(|| modes::beyond(&live.solved, self.window))
-            .and_then(|list| list.leading().copied());
+        let outside = if reported {
+            Outside::of(&modes::outside(&live.solved, self.window))
+        } else {
+            Outside::default()
+        };
         Sample {
             u,
             verdict,
             nodes: self.nodes(&live, &found.zeros),
             symmetric: live.symmetric(),
             effort: found.effort,
-            beyond,
+            outside,
         }
     }
 

@@ -125,7 +125,7 @@ impl Step<'_> {
             return None;
         }
         let expected = node.predicted(h);
-        let near = self.merge * ABOUT_TO_MERGE;
+        let near = self.merge.max(node.error) * ABOUT_TO_MERGE;
         let reach = if self.last { f64::INFINITY } else { near };
         let mut by_distance: Vec<(f64, usize)> = (0..others.len())
             .filter(|i| free[*i])
