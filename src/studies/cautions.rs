@@ -164,7 +164,15 @@ pub(super) fn moving(
     if movers.is_empty() {
         return found;
     }
-    let by = movers.join(" and ");
+    let by = match movers.as_slice() {
+        [most @ .., one, other] => {
+            let mut names: Vec<&str> = most.to_vec();
+            let last = format!("{one} and {other}");
+            names.push(&last);
+            names.join(", ")
+        }
+        few => few.concat(),
+    };
     for (delay, _) in validity::delays(network) {
         if !knobs.contains(&delay) {
             let what =

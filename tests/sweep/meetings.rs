@@ -77,14 +77,19 @@ fn met(sweep: &Sweep) -> usize {
 
 /// A sweep of the delay, or of the gain, that passes the exceptional point at a relative distance.
 fn passing(vary: &str, distance: f64, points: usize) -> Sweep {
+    passing_between(vary, distance, points, (1.0, 1.0))
+}
+
+/// The same over a longer or shorter range on either side.
+fn passing_between(vary: &str, distance: f64, points: usize, (left, right): (f64, f64)) -> Sweep {
     let ep = &exact()["exceptional"];
     let (n0, t0) = (number(&ep["n"]), number(&ep["tau"]));
     let (range, fixed) = if vary == "flame.delay" {
         let set = format!("flame.interaction_index = {}", n0 * (1.0 + distance));
-        ((0.93 * t0, 1.06 * t0), set)
+        (((1.0 - 0.07 * left) * t0, (1.0 + 0.06 * right) * t0), set)
     } else {
         let set = format!("flame.delay = {} s", t0 * (1.0 + distance));
-        ((0.8 * n0, 1.3 * n0), set)
+        (((1.0 - 0.2 * left) * n0, (1.0 + 0.3 * right) * n0), set)
     };
     let tube = network(TUBE, &[fixed]);
     sweep(
@@ -153,8 +158,12 @@ fn through_an_exceptional_point_the_sweep_says_so() {
         ("flame.delay", &ep["tau"]),
         ("flame.interaction_index", &ep["n"]),
     ] {
-        for points in [21, 60, 141] {
-            let found = passing(vary, 0.0, points);
+        let reaches = [(1.0, 1.0), (0.317, 0.881), (0.909, 0.473), (0.7, 0.111)];
+        for (points, reach) in [21, 60, 141]
+            .into_iter()
+            .flat_map(|n| reaches.map(|r| (n, r)))
+        {
+            let found = passing_between(vary, 0.0, points, reach);
             check(&found);
             assert_eq!(met(&found), 1, "{vary} {points}: {:#?}", found.events);
             let event = found
@@ -206,7 +215,14 @@ fn branches_that_cross_go_on_as_they_came() {
         frequency: (330.0, 350.0),
         growth: (-100.0, 100.0),
     };
-    for (low, high, points) in [(3.9, 4.1, 21), (3.9, 4.1, 20), (3.95, 4.07, 8)] {
+    for (low, high, points) in [
+        (3.9, 4.1, 21),
+        (3.9, 4.1, 20),
+        (3.95, 4.07, 8),
+        (3.913, 4.0317, 33),
+        (3.9771, 4.09, 141),
+        (3.99, 4.1003, 4),
+    ] {
         let along = path(&tube, &[("flame.interaction_index", low, high)], points);
         let found = sweep(&tube, &along, window);
         check(&found);

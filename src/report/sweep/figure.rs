@@ -49,7 +49,8 @@ impl SweepReport<'_> {
         let certified = match (not_certified, failed) {
             (0, 0) => "every list proved complete".to_owned(),
             (n, 0) => format!("{n} not certified"),
-            (n, f) => format!("{n} not certified, {f} without mean flow"),
+            (0, f) => format!("{f} without an answer"),
+            (n, f) => format!("{n} not certified, {f} without an answer"),
         };
         let total = complete + not_certified + failed;
         format!("{}; {total} networks, {certified}", self.heading.title)
@@ -161,7 +162,7 @@ impl SweepReport<'_> {
             certified: at.iter().map(|u| !uncertain(*u)).collect(),
             uncertified: match sweep.tally().2 {
                 0 => "not certified".to_owned(),
-                _ => "not certified, or no mean flow".to_owned(),
+                _ => "not certified, or without an answer".to_owned(),
             },
             mark: self.design_at().map(|u| (scaled(u), self.design_label(u))),
             panels: vec![

@@ -153,10 +153,9 @@ impl<'a> Weaver<'a> {
         for [i, j] in &link.meetings {
             self.unresolved(left, [&link.ties[*i], &link.ties[*j]], right);
         }
-        let u = 0.5 * (left.u + right.u);
         for &node in &link.lost {
             let branches = std::mem::take(&mut self.on[node]);
-            self.tell(Kind::Lost, u, left.nodes[node].at, &branches);
+            self.tell(Kind::Lost, left.u, left.nodes[node].at, &branches);
         }
         for passage in &link.leaving {
             self.leave(left, passage, right);
@@ -170,7 +169,7 @@ impl<'a> Weaver<'a> {
             if found.two {
                 self.merge(born.clone(), right.u, found, None);
             }
-            self.tell(Kind::Found, u, found.at, &born);
+            self.tell(Kind::Found, right.u, found.at, &born);
             on[node] = born;
         }
         for (branches, node) in on.iter().zip(&right.nodes) {
