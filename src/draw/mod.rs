@@ -24,6 +24,7 @@ mod frame;
 mod label;
 pub mod lines;
 pub mod map;
+pub mod patches;
 mod raster;
 mod region;
 mod sheet;

@@ -2,3 +2,4 @@
 
 pub mod cautions;
 pub mod map;
+pub mod regions;
