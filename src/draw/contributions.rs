@@ -33,6 +33,8 @@ pub struct Contributions {
     pub sum: String,
     /// The quantity of the second bars.
     pub share: Axis,
+    /// What all shares add up to, the end of their axis.
+    pub whole: f64,
 }
 
 const ROW: f64 = 17.0;
@@ -44,6 +46,8 @@ const VALUE: f64 = 48.0;
 const SHARE: f64 = 150.0;
 const GAP: f64 = 30.0;
 const LONGEST: f64 = 130.0;
+/// Part of the longest bar that can be seen.
+const SEEN: f64 = 2e-3;
 
 /// Fills of the classes: they differ in hue, in lightness and in pattern.
 fn fill(class: usize) -> String {
@@ -136,14 +140,9 @@ impl Contributions {
         let span = spanned(low, high, plot);
         let ticks = span.ticks(64.0);
         frame::grid(svg, plot, &ticks, &[], 0.11);
-        let widest_share = self.rows.iter().map(|r| r.share).fold(0.0, f64::max);
         let share_span = Span::new(
             0.0,
-            if widest_share > 0.0 {
-                widest_share
-            } else {
-                1.0
-            },
+            self.whole,
             super::Scale::Linear,
             shares.left,
             shares.right - 34.0,
@@ -231,21 +230,23 @@ impl Contributions {
         };
         svg.text(&word((plot.left, caption), &left));
         svg.text(&word((plot.right, caption), &right).anchor(Anchor::End));
+        let sides = self.rows.iter().map(Self::reach);
+        let largest = sides.fold(0.0_f64, |m, (a, b)| m.max(-a).max(b));
         let used = |class: usize| {
             let mut rows = self.rows.iter();
-            rows.any(|r| r.values.get(class).is_some_and(|v| *v != 0.0))
+            rows.any(|r| {
+                r.values
+                    .get(class)
+                    .is_some_and(|v| v.abs() > SEEN * largest)
+            })
         };
         let classes = self.classes.iter().enumerate().filter(|(k, _)| used(*k));
-        let mut entries: Vec<Entry> = classes
+        let entries: Vec<Entry> = classes
             .map(|(k, label)| Entry {
                 swatch: Swatch::Patch(vec![style(k)]),
                 label: label.clone(),
             })
             .collect();
-        entries.push(Entry {
-            swatch: Swatch::Patch(vec![format!("fill=\"{INK}\"")]),
-            label: self.sum.clone(),
-        });
         frame::legend(svg, &entries, plot.left, below, right_room(plot))
     }
 }
@@ -284,6 +285,9 @@ fn value(svg: &mut Svg, net: f64, (low, high): (f64, f64), largest: f64, span: &
         false => (span.at(high) + 5.0, Anchor::Start),
     };
     let text = signed(net, largest);
+    if text == "0" {
+        return;
+    }
     svg.text(&Text::new((at, y + 0.36 * VALUE_SIZE), &text, VALUE_SIZE).anchor(anchor));
 }
 
@@ -296,7 +300,7 @@ fn share(svg: &mut Svg, value: f64, span: &Span, y: f64) {
     let text = match value {
         v if v >= 9.95 => fixed(v, 0),
         v if v >= 0.05 => fixed(v, 1),
-        _ => "0".to_owned(),
+        _ => return,
     };
     let at = (body.right + 5.0, y + 0.36 * VALUE_SIZE);
     svg.text(&Text::new(at, &text, VALUE_SIZE));

@@ -115,7 +115,7 @@ pub fn render(figure: &ProfileFigure) -> Result<String, DrawError> {
         frame::grid(&mut svg, r, &x_ticks, &ticks, 0.11);
         planes(&mut svg, figure, r, &x);
         for curve in &panel.curves {
-            draw_curve(&mut svg, curve, &x, &scale);
+            draw_curve(&mut svg, curve, figure, &x, &scale);
         }
         frame::y_axis(&mut svg, r, &panel.y, &ticks);
         y = r.bottom + GAP;
@@ -221,9 +221,10 @@ fn y_scale(panel: &ProfilePanel, top: f64) -> (Span, Vec<Tick>) {
     (span, ticks)
 }
 
+/// Flames are a band, not a line: none of the curves looks like it.
 fn flame_line() -> String {
     format!(
-        "fill=\"none\" stroke=\"{}\" stroke-width=\"1.3\" stroke-dasharray=\"6 2.5\"",
+        "fill=\"none\" stroke=\"{}\" stroke-width=\"5\" stroke-opacity=\".3\"",
         flame_colour()
     )
 }
@@ -235,7 +236,7 @@ fn plane_line() -> String {
     )
 }
 
-/// Lines across a panel where something stands in the chain; one line for each place.
+/// Lines across a panel where something stands in the chain; one for each place.
 fn planes(svg: &mut Svg, figure: &ProfileFigure, r: Rect, x: &Span) {
     let all = &figure.chain.planes;
     let flame_at = |at: f64| {
@@ -258,8 +259,10 @@ fn planes(svg: &mut Svg, figure: &ProfileFigure, r: Rect, x: &Span) {
     }
 }
 
-/// Draws the runs of a curve; a run of one point is a dot, and so are the ends at a jump.
-fn draw_curve(svg: &mut Svg, curve: &Curve, x: &Span, y: &Span) {
+/// Draws the runs of a curve; a run of one point is a dot, and so are the ends at a jump over a plane.
+fn draw_curve(svg: &mut Svg, curve: &Curve, figure: &ProfileFigure, x: &Span, y: &Span) {
+    let planes = &figure.chain.planes;
+    let at_plane = |px: f64| planes.iter().any(|p| (x.at(p.at) - px).abs() < 0.05);
     let runs: Vec<Vec<Point>> = curve
         .runs
         .iter()
@@ -277,7 +280,8 @@ fn draw_curve(svg: &mut Svg, curve: &Curve, x: &Span, y: &Span) {
     for pair in runs.windows(2) {
         let [before, behind] = pair else { continue };
         if let (Some(&a), Some(&b)) = (before.last(), behind.first())
-            && (a.0 - b.0).abs() < 0.5
+            && (a.0 - b.0).abs() < 0.05
+            && at_plane(a.0)
             && (a.1 - b.1).abs() > JUMP
         {
             dot(a);

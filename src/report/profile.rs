@@ -19,7 +19,7 @@ use crate::modes::{Mode, Tendency};
 use crate::network::{ElementId, Network, StationId, areas};
 use crate::units::{Dimension, write_rounded};
 
-/// Steps between two samples of a shape, along the straight line between their complex amplitudes, so
+/// Steps between two samples of a shape, along the cubic through the complex amplitudes of four of them, so
 /// that a phase that turns quickly beside a node is followed.
 const BETWEEN: usize = 8;
 /// A phase that turns farther than this within one step jumps (degrees).
@@ -30,7 +30,9 @@ const EDGE: f64 = 180.5;
 /// Below this part of the largest, an amplitude has no phase worth telling.
 const SILENT: f64 = 1e-9;
 /// Below this part of the largest, a bar is left out.
-const TELLING: f64 = 2e-3;
+const TELLING: f64 = 0.01;
+/// A driver of a decaying mode weaker than this part of its strongest damper is not named in the title.
+const NOTEWORTHY: f64 = 0.2;
 
 impl Modes<'_> {
     /// The figure of each mode whose shape settled, with the number of the mode, from one.
@@ -63,6 +65,10 @@ impl Modes<'_> {
         } else {
             "list NOT PROVED COMPLETE"
         };
+        let label = match told.label(network) {
+            "unclear" => "of unclear nature".to_owned(),
+            label => format!("{label} mode"),
+        };
         let multiplicity = match mode.multiplicity {
             1 => String::new(),
             n => format!(
@@ -71,11 +77,11 @@ impl Modes<'_> {
             ),
         };
         let subtitle = format!(
-            "{}. Mode {} of {}{multiplicity}, {}; {list}. Amplitudes for a largest pressure amplitude of 1 Pa.",
+            "{}. Mode {} of {}{multiplicity}, {}; {list}. Amplitudes for a pressure peak of 1\u{a0}Pa.",
             self.heading.title.trim_end_matches('.'),
             i + 1,
             self.list.modes.len(),
-            told.label(network),
+            label,
         );
         ProfileFigure {
             title: finding(network, mode, told),
@@ -126,6 +132,8 @@ fn finding(network: &Network, mode: &Mode, told: &Explained) -> String {
     let (driver, damper) = (strongest(1.0), strongest(-1.0));
     // What is smaller than the rest of the balance by far is not what drives or damps.
     let worth = |p: &&Part| p.growth().abs() > 1e-6 * mode.s.norm();
+    let most = damper.map_or(0.0, |p| p.growth().abs());
+    let driver = driver.filter(|p| grows || p.growth() > NOTEWORTHY * most);
     let driver = driver.filter(worth).map(|p| name(network, p.element));
     let damper = damper.filter(worth).map(|p| name(network, p.element));
     let words = match (grows, driver, damper) {
@@ -252,20 +260,37 @@ fn stretches(network: &Network, shape: &Shape) -> Vec<Vec<Sample>> {
     all
 }
 
-/// A stretch as places (m) with amplitudes, finer than its samples.
+/// A stretch as places (m) with amplitudes, finer than its samples, which lie evenly.
 fn finer(stretch: &[Sample], of: fn(&Sample) -> Complex64) -> Vec<(f64, Complex64)> {
     let mut all: Vec<(f64, Complex64)> = Vec::new();
-    for pair in stretch.windows(2) {
+    for (i, pair) in stretch.windows(2).enumerate() {
         let [a, b] = pair else { continue };
+        let from = i.saturating_sub(1).min(stretch.len().saturating_sub(4));
+        let near = stretch.get(from..from + 4);
         let step = |k: usize| {
             let t = k as f64 / BETWEEN as f64;
             let place = a.position + t * (b.position - a.position);
-            (place, of(a) + (of(b) - of(a)) * t)
+            let amplitude = match near {
+                Some([c0, c1, c2, c3]) => {
+                    cubic([of(c0), of(c1), of(c2), of(c3)], t + (i - from) as f64)
+                }
+                _ => of(a) + (of(b) - of(a)) * t,
+            };
+            (place, amplitude)
         };
         all.extend((0..BETWEEN).map(step));
     }
     all.extend(stretch.last().map(|s| (s.position, of(s))));
     all
+}
+
+/// The cubic with values `c` at 0, 1, 2, 3 (Lagrange).
+fn cubic(c: [Complex64; 4], t: f64) -> Complex64 {
+    let (t1, t2, t3) = (t - 1.0, t - 2.0, t - 3.0);
+    c[0] * (-t1 * t2 * t3 / 6.0)
+        + c[1] * (t * t2 * t3 / 2.0)
+        + c[2] * (-t * t1 * t3 / 2.0)
+        + c[3] * (t * t1 * t2 / 6.0)
 }
 
 fn panels(network: &Network, shape: &Shape, size: f64) -> Vec<ProfilePanel> {
@@ -292,12 +317,12 @@ fn panels(network: &Network, shape: &Shape, size: f64) -> Vec<ProfilePanel> {
     let quarter = |k: i32| f64::from(90 * k);
     vec![
         ProfilePanel {
-            y: Axis::new("|p\u{2032}|", "Pa"),
+            y: Axis::new("Pressure |p\u{2032}|", "Pa"),
             fixed: Some(((0.0, 1.08), vec![0.0, 0.5, 1.0])),
             curves: vec![curve(0, amplitude(&pressure, 1.0))],
         },
         ProfilePanel {
-            y: Axis::new("|u\u{2032}|", "mm/s"),
+            y: Axis::new("Velocity |u\u{2032}|", "mm/s"),
             fixed: None,
             curves: vec![curve(1, amplitude(&velocity, 1e3))],
         },
@@ -353,7 +378,10 @@ fn bars(network: &Network, budget: &Budget) -> Contributions {
     let reach = |p: &Part| p.flow.abs().max(p.entropy.abs()).max(p.heat.abs());
     let largest = budget.parts.iter().map(reach).fold(0.0, f64::max);
     let telling = |p: &&Part| reach(p) > TELLING * largest || p.energy > TELLING;
-    let (told, rest): (Vec<&Part>, Vec<&Part>) = budget.parts.iter().partition(telling);
+    let (mut told, mut rest): (Vec<&Part>, Vec<&Part>) = budget.parts.iter().partition(telling);
+    if rest.len() == 1 {
+        (told, rest) = (budget.parts.iter().collect(), Vec::new());
+    }
     // What is left of a balance by rounding is no part of it.
     let clean = |x: f64| if x.abs() > 1e-9 * largest { x } else { 0.0 };
     let row = |name: String, parts: &[&Part]| {
@@ -368,10 +396,10 @@ fn bars(network: &Network, budget: &Budget) -> Contributions {
         .iter()
         .map(|p| row(name(network, p.element).to_owned(), &[p]))
         .collect();
-    match rest.as_slice() {
-        [] => {}
-        [one] => rows.push(row(name(network, one.element).to_owned(), &[one])),
-        many => rows.push(row(format!("{} others", many.len()), many)),
+    // Where the rest adds nothing there is nothing to draw.
+    let seen = |p: &&Part| clean(p.growth()) != 0.0 || p.energy > 1e-9;
+    if rest.iter().any(seen) {
+        rows.push(row(format!("{} others", rest.len()), &rest));
     }
     Contributions {
         axis: Axis::new("Part of the growth rate", "1/s"),
@@ -384,5 +412,6 @@ fn bars(network: &Network, budget: &Budget) -> Contributions {
         rows,
         sum: "growth rate".into(),
         share: Axis::new("Acoustic energy", "%"),
+        whole: 100.0,
     }
 }
