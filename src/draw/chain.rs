@@ -113,6 +113,8 @@ const SHIFT: f64 = 7.0;
 /// How far symbols stand out above the passages (px).
 const CROWN: f64 = 9.0;
 const NOTE_SIZE: f64 = 9.5;
+/// Fill of passages that are not tinted.
+pub(super) const PLAIN: &str = "#eef0f3";
 
 impl Chain {
     /// First and last place.
@@ -201,7 +203,7 @@ impl Chain {
                 top: middle - half,
                 bottom: middle + half,
             };
-            let fill = if p.tinted { tint() } else { "#eef0f3".into() };
+            let fill = if p.tinted { tint() } else { PLAIN.into() };
             svg.path(&body.path(), &format!("fill=\"{fill}\""));
         }
         for side in [-1.0, 1.0] {

@@ -50,7 +50,7 @@ const LONGEST: f64 = 130.0;
 const SEEN: f64 = 2e-3;
 
 /// Fills of the classes: they differ in hue, in lightness and in pattern.
-fn fill(class: usize) -> String {
+pub(super) fn fill(class: usize) -> String {
     match class {
         0 => hex(diverging(0.8)),
         1 => hex(diverging(-0.75)),

@@ -33,6 +33,8 @@ pub mod profile;
 mod raster;
 mod region;
 mod sheet;
+#[cfg(test)]
+mod sight;
 mod style;
 mod svg;
 pub mod text;
