@@ -5,6 +5,7 @@
 
 use super::axis::Span;
 use super::colour::{diverging, hex};
+use super::frame::MARGIN;
 use super::names::{self, Name};
 use super::svg::{Anchor, GREY, INK, Point, Rect, Svg, Text, closed_path, open_path, px};
 use super::text::{Weight, tidy, width};
@@ -122,6 +123,12 @@ impl Chain {
         let first = self.passages.first().map_or(0.0, |p| p.from);
         let last = self.passages.last().map_or(1.0, |p| p.to);
         (first, last)
+    }
+
+    /// Space that the bar of the greatest width needs left of the plot.
+    pub(super) fn left_space(&self) -> f64 {
+        let words = width(&tidy(&self.widest), Weight::Regular, NOTE_SIZE);
+        MARGIN + words + 30.0
     }
 
     pub(super) fn stretch(&self, x: &Span) -> Stretch {

@@ -15,8 +15,8 @@ pub(super) const SIZE: f64 = 10.0;
 const LONGEST: f64 = 120.0;
 /// Farthest that a level name may stand from what it names before all names are turned (px).
 const FARTHEST: f64 = 42.0;
-/// Turn of names that do not fit side by side (degrees).
-const TURN: f64 = -52.0;
+/// Turns of names that do not fit side by side, from the most readable to the narrowest (degrees).
+const TURNS: [f64; 3] = [-52.0, -68.0, -90.0];
 /// Height of the leaders between names and drawing (px).
 const LEADER: f64 = 16.0;
 
@@ -31,7 +31,8 @@ pub(super) struct Name {
 pub(super) struct Row {
     names: Vec<Name>,
     places: Vec<f64>,
-    turned: bool,
+    /// Degrees.
+    turn: f64,
     /// Height that names and leaders need above the drawing (px).
     pub height: f64,
 }
@@ -73,12 +74,22 @@ impl Row {
             return Row {
                 names,
                 places: level,
-                turned: false,
+                turn: 0.0,
                 height,
             };
         }
-        let (sin, cos) = TURN.to_radians().sin_cos();
-        let distance = 1.15 * SIZE / sin.abs();
+        // The bottoms of turned names must be this far apart along the drawing.
+        let distance = |turn: f64| 1.15 * SIZE / turn.to_radians().sin().abs();
+        let room = right - SIZE - left;
+        let fitting = TURNS
+            .into_iter()
+            .find(|&t| distance(t) * names.len() as f64 <= room);
+        let Some(turn) = fitting else {
+            let most = (room / distance(-90.0)).max(1.0) as usize;
+            return Row::new(thinned(names, most), left);
+        };
+        let (sin, cos) = turn.to_radians().sin_cos();
+        let distance = distance(turn);
         let low = vec![left; names.len()];
         let high: Vec<f64> = sizes.iter().map(|w| right - w * cos - SIZE).collect();
         let places = spread(&wanted, &gaps(&|_| distance / 2.0), &low, &high);
@@ -86,7 +97,7 @@ impl Row {
         Row {
             names,
             places,
-            turned: true,
+            turn,
             height: longest * sin.abs() + SIZE * cos + LEADER,
         }
     }
@@ -107,17 +118,25 @@ impl Row {
         svg.path(&leaders, thin);
         for (name, &x) in self.names.iter().zip(&self.places) {
             let text = Text::new((x, foot), &name.text, SIZE).fill(GREY);
-            if self.turned {
+            if self.turn != 0.0 {
                 let shifted = (x + 0.5 * CAP_HEIGHT * SIZE, foot - 1.0);
                 svg.text(&Text {
                     at: shifted,
-                    ..text.turn(TURN)
+                    ..text.turn(self.turn)
                 });
             } else {
                 svg.text(&text.anchor(Anchor::Middle));
             }
         }
     }
+}
+
+/// `most` names of more, evenly chosen; the others stay without a name.
+fn thinned(names: Vec<Name>, most: usize) -> Vec<Name> {
+    let all = names.len();
+    let kept = |i: &usize| i * most / all != (i + 1) * most / all;
+    let names = names.into_iter().enumerate();
+    names.filter(|(i, _)| kept(i)).map(|(_, n)| n).collect()
 }
 
 /// Places nearest to the wanted ones, in order, at least the gaps apart, within the bounds as far

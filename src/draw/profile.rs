@@ -85,7 +85,7 @@ pub fn render(figure: &ProfileFigure) -> Result<String, DrawError> {
         .panels
         .iter()
         .map(|p| frame::left_space(&y_scale(p, 0.0).1))
-        .fold(70.0, f64::max);
+        .fold(figure.chain.left_space(), f64::max);
     let (x0, x1) = figure.chain.extent();
     let x = Span::new(x0, x1, figure.x.scale, left, right);
     let stretch = figure.chain.stretch(&x);
