@@ -217,7 +217,7 @@ fn y_scale(panel: &ProfilePanel, top: f64) -> (Span, Vec<Tick>) {
     let (low, high) = points.fold((0.0_f64, 0.0_f64), |(a, b), p| (a.min(p.1), b.max(p.1)));
     let high = if high > low { high } else { 1.0 };
     let span = Span::new(low, high + 0.06 * (high - low), Scale::Linear, bottom, top);
-    let ticks = span.ticks(30.0);
+    let ticks = span.ticks(22.0);
     (span, ticks)
 }
 

@@ -77,7 +77,7 @@ impl Modes<'_> {
             ),
         };
         let subtitle = format!(
-            "{}. Mode {} of {}{multiplicity}, {}; {list}. Amplitudes for a pressure peak of 1\u{a0}Pa.",
+            "{}. Mode {} of {}{multiplicity}, {}; {list}; pressure peak 1\u{a0}Pa.",
             self.heading.title.trim_end_matches('.'),
             i + 1,
             self.list.modes.len(),
