@@ -22,6 +22,8 @@ pub enum Range {
     Positive,
     /// Zero or greater.
     NotNegative,
+    /// A Mach number: zero or greater and less than one.
+    Subsonic,
     /// Greater than the bound.
     Above(f64),
 }
@@ -34,6 +36,7 @@ impl Range {
                 Range::Any => true,
                 Range::Positive => x > 0.0,
                 Range::NotNegative => x >= 0.0,
+                Range::Subsonic => (0.0..1.0).contains(&x),
                 Range::Above(bound) => x > bound,
             }
     }

@@ -26,7 +26,7 @@ pub struct Place {
     pub column: usize,
     /// Length of the marked text in characters, at least one.
     pub width: usize,
-    /// The whole line the place is in, without its line end.
+    /// The whole line the place is in, without its line end; empty where the place is a source as a whole.
     pub text: String,
 }
 
@@ -133,17 +133,25 @@ impl From<Problem> for Problems {
 }
 
 /// The candidate a mistyped word most likely stands for, if any is near: the same but for case, or
-/// within a third of its length in edits (optimal string alignment).
+/// within a third of its length in edits (optimal string alignment), or else the only one that holds
+/// it whole, as `mass_flow` holds `flow`.
 pub fn nearest<'a>(word: &str, candidates: impl IntoIterator<Item = &'a str>) -> Option<&'a str> {
     let lower = word.to_lowercase();
     let length = word.chars().count();
-    candidates
-        .into_iter()
-        .map(|c| (strsim::osa_distance(&lower, &c.to_lowercase()), c))
+    let candidates: Vec<&str> = candidates.into_iter().collect();
+    let near = candidates
+        .iter()
+        .map(|c| (strsim::osa_distance(&lower, &c.to_lowercase()), *c))
         .filter(|(edits, c)| *edits <= length.max(c.chars().count()).div_ceil(3).min(3))
         .filter(|(edits, c)| *edits < length.min(c.chars().count()) || *edits == 0)
         .min_by_key(|(edits, _)| *edits)
-        .map(|(_, c)| c)
+        .map(|(_, c)| c);
+    let holds = |c: &&str| {
+        let c = c.to_lowercase();
+        length > 3 && c.contains(&lower) || length == 3 && c.starts_with(&lower)
+    };
+    let mut holders = candidates.iter().copied().filter(holds);
+    near.or_else(|| holders.next().filter(|_| holders.next().is_none()))
 }
 
 /// `a, b or c`, for a sentence.

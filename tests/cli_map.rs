@@ -222,7 +222,7 @@ fn growth_that_leaves_the_window_does_not_look_calm() {
     let up = "main_flame.interaction_index = 1.8 to 2";
     let all = arguments("main_flame.delay = 1 ms to 1.4 ms", up, "5x3");
     let (value, _) = json("map", &network("swirl_rig"), &all);
-    let beyond = rows(&value, "growth_beyond_window_per_s");
+    let beyond = rows(&value, "growth_outside_window_per_s");
     let window = rows(&value, "largest_growth_per_s");
     let fastest = beyond
         .iter()
@@ -234,7 +234,7 @@ fn growth_that_leaves_the_window_does_not_look_calm() {
     assert!(
         value["warnings"]
             .to_string()
-            .contains("faster than the window's upper edge")
+            .contains("a mode grows outside the window")
     );
     assert!(value["finding"].as_str().unwrap().contains("100 %"));
 }

@@ -1,6 +1,10 @@
 //! What explains a mode: its growth budget adds up, its margins make it neutral, its nature is told.
 
+mod common;
+
 use std::path::{Path, PathBuf};
+
+use rayon::prelude::*;
 
 use stillflame::elements::Kind;
 use stillflame::flame::ResponseLaw;
@@ -9,6 +13,8 @@ use stillflame::modes::budget::budget;
 use stillflame::modes::margins::{Nature, margins, nature};
 use stillflame::modes::{self, Mode, Scan, Solved, Window};
 use stillflame::network::Network;
+
+use common::random::{Stream, Wish, draw};
 
 fn networks() -> Vec<PathBuf> {
     let folder = Path::new(env!("CARGO_MANIFEST_DIR")).join("networks");
@@ -65,6 +71,59 @@ fn budgets_add_up_to_the_growth_rate() {
             let energy: f64 = budget.parts.iter().map(|p| p.energy).sum();
             assert!((energy - 1.0).abs() < 1e-12);
         }
+    }
+}
+
+/// 500 random networks with flow: the parts, each from its own formula, add up to 1e-8 of the eigenvalue.
+#[test]
+fn budgets_of_random_networks_add_up() {
+    let wish = Wish {
+        stream: Stream::Flowing,
+        ..Wish::default()
+    };
+    let worst: Vec<(usize, f64)> = (0..500u64)
+        .into_par_iter()
+        .map(|seed| {
+            let drawn = draw(8_000_000 + seed, &wish);
+            let solved = &drawn.solved;
+            let window = Window {
+                frequency: (0.0, 1000.0),
+                growth: (-600.0, 600.0),
+            };
+            let list = modes::find(solved, window, Scan::UntilCounted);
+            let told = list.modes.iter().filter_map(|mode| {
+                let budget = budget(&drawn.network, solved, mode)?;
+                let scale = 1e-8 * mode.s.norm().max(1.0) + mode.error_bound;
+                let off = (budget.growth() - mode.growth()).abs() / scale;
+                assert!(off < 1.0, "{off} {mode:?}\n{}", drawn.rig);
+                Some(off)
+            });
+            told.fold((0, 0.0), |(n, worst), off| (n + 1, off.max(worst)))
+        })
+        .collect();
+    let modes: usize = worst.iter().map(|w| w.0).sum();
+    let most = worst.iter().map(|w| w.1).fold(0.0, f64::max);
+    println!("{modes} modes, worst {most:.1e} of what is allowed");
+    assert!(modes > 3000);
+}
+
+/// In still gas the share of heat has the sign of the Rayleigh integral, `Re(p'^* Q')` at the flame, and its
+/// value `(gamma-1)/(gamma p) Re(p'^* Q')/(4 E)`.
+#[test]
+fn the_share_of_heat_is_the_rayleigh_integral() {
+    let path = Path::new(env!("CARGO_MANIFEST_DIR")).join("networks/flame_in_tube.toml");
+    let network = input::read(&path, &[]).unwrap().network;
+    let (solved, modes) = solved(&network);
+    let flame = network.layout.element("main_flame").unwrap();
+    let inlet = network.layout.inlet(flame).unwrap().0;
+    for mode in modes {
+        let budget = budget(&network, &solved, &mode).unwrap();
+        let shape = modes::shapes::along(&network, &solved, &mode).unwrap();
+        let (up, down) = (shape.stations[inlet], shape.stations[inlet + 1]);
+        // Volume flow made at the flame, in phase with pressure.
+        let rayleigh = (up.pressure.conj() * (down.velocity - up.velocity)).re;
+        let heat = budget.parts[flame.0].heat;
+        assert!(heat * rayleigh > 0.0, "{heat} {rayleigh}");
     }
 }
 

@@ -8,6 +8,7 @@ use num_complex::Complex64;
 use proptest::prelude::*;
 use stillflame::numerics::analytic::{Analytic, Region, Rounding, TAYLOR};
 use stillflame::numerics::count::{CountError, Effort, Rectangle, Walker};
+use stillflame::numerics::isolate::Zero;
 use stillflame::numerics::ledger::{Entry, Ledger};
 use stillflame::numerics::zeros::{self, Doubt, Scan};
 
@@ -58,6 +59,31 @@ proptest! {
     }
 
     #[test]
+    fn where_a_search_starts_does_not_change_what_it_finds(
+        zeros in prop::collection::vec(zero(), 1..5),
+        astray in prop::collection::vec((-900.0..900.0f64, -100.0..7500.0f64), 0..4),
+        known in 0..5usize,
+    ) {
+        prop_assume!(zeros.iter().all(|z| clear_of_edges(*z)));
+        let f = Polynomial::symmetric(&zeros);
+        let from_grid = zeros::search(&f, &WINDOW, Scan::UntilCounted);
+        // Some of the zeros, some of them twice, among points that are none.
+        let starts: Vec<_> = astray
+            .into_iter()
+            .map(|(re, im)| c(re, im))
+            .chain(from_grid.met.iter().copied().take(known))
+            .chain(from_grid.met.iter().copied().take(1))
+            .collect();
+        let found = zeros::search_from(&f, &WINDOW, Scan::UntilCounted, &starts);
+        prop_assert!(found.complete(), "{:?}", found.doubts);
+        prop_assert_eq!(found.expected, from_grid.expected);
+        for z in &from_grid.zeros {
+            let same = |k: &Zero| (k.at - z.at).norm() <= k.error + z.error;
+            prop_assert!(found.zeros.iter().any(same), "{z:?} not in {:?}", found.zeros);
+        }
+    }
+
+    #[test]
     fn every_zero_is_found_without_symmetry(zeros in prop::collection::vec(zero(), 1..5)) {
         let window = Rectangle { growth: (-600.0, 600.0), omega: (300.0, 6000.0) };
         prop_assume!(zeros.iter().all(|z| clear_of_edges(*z) && (z.im - 300.0).abs() > 1e-3));
@@ -102,6 +128,19 @@ proptest! {
             let named = found.doubts.iter().any(|d| matches!(d, Doubt::OnEdge { .. }));
             prop_assert!(named, "{:?}", found.doubts);
         }
+    }
+
+    #[test]
+    fn a_zero_on_the_axis_is_listed_without_symmetry_too(
+        re in -500.0..500.0f64, off in prop_oneof![Just(0.0), -1e-18..1e-18f64], third in zero(),
+    ) {
+        prop_assume!(third.im > 0.0 && clear_of_edges(third));
+        let f = Polynomial::with(&[c(re, off), c(re, -40.0), third]);
+        let found = zeros::search(&f, &WINDOW, Scan::Whole);
+        prop_assert!(found.complete(), "{:?}", found.doubts);
+        prop_assert_eq!(found.expected, Some(1 + i64::from(inside(&third))));
+        let lowest = &found.zeros[0];
+        prop_assert!(lowest.at.im >= 0.0 && (lowest.at - c(re, off)).norm() <= lowest.error + 1e-10);
     }
 
     #[test]

@@ -92,6 +92,7 @@ fn range(spec: &KnobSpec) -> String {
         Range::Any => "any".to_owned(),
         Range::Positive => "above zero".to_owned(),
         Range::NotNegative => "zero or more".to_owned(),
+        Range::Subsonic => "zero or more, below 1".to_owned(),
         Range::Above(bound) => format!("above {}", write(bound, spec.dimension)),
     }
 }

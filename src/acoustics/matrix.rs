@@ -82,6 +82,27 @@ pub struct NullVector {
     pub residual: f64,
 }
 
+/// Four steps of inverse iteration on a matrix whose diagonal is shifted by numbers of modulus `shift`,
+/// from and to a vector of unit largest entry.
+fn inverse_iteration(a: &DMatrix<Complex64>, shift: f64) -> Option<DVector<Complex64>> {
+    let spread = |size: f64| {
+        DVector::from_fn(a.nrows(), |i, _| {
+            Complex64::from_polar(size, 2.4 * i as f64)
+        })
+    };
+    let lu = (a + DMatrix::from_diagonal(&spread(shift))).lu();
+    let mut x = spread(1.0);
+    for _ in 0..4 {
+        x = lu.solve(&x)?;
+        let size = x.iter().map(|z| z.norm()).fold(0.0, f64::max);
+        if !(size.is_finite() && size > 0.0) {
+            return None;
+        }
+        x /= Complex64::new(size, 0.0);
+    }
+    Some(x)
+}
+
 /// The null vector at `s` by inverse iteration on an LU factorisation; `None` where the iteration
 /// does not settle on finite numbers.
 pub fn null_vector(chain: &Chain<f64>, s: Complex64) -> Option<NullVector> {
@@ -95,18 +116,10 @@ pub fn null_vector(chain: &Chain<f64>, s: Complex64) -> Option<NullVector> {
     }
     let n = a.nrows();
     // A matrix singular to the last bit has no LU solve; a shift at rounding level does not move the
-    // vector.
-    let shifted = &a + DMatrix::identity(n, n) * Complex64::new(f64::EPSILON, 0.0);
-    let lu = shifted.lu();
-    let mut x = DVector::from_fn(n, |i, _| Complex64::from_polar(1.0, 2.4 * i as f64));
-    for _ in 0..4 {
-        x = lu.solve(&x)?;
-        let size = x.iter().map(|z| z.norm()).fold(0.0, f64::max);
-        if !(size.is_finite() && size > 0.0) {
-            return None;
-        }
-        x /= Complex64::new(size, 0.0);
-    }
+    // vector. One that leaves a pivot at zero gives way to another.
+    let x = [1.0, 3.0, 9.0, 27.0]
+        .into_iter()
+        .find_map(|times| inverse_iteration(&a, times * f64::EPSILON))?;
     let residual = (&a * &x).iter().map(|z| z.norm()).fold(0.0, f64::max);
     let planes = n / 3;
     // Phase: real where the pressure amplitude is largest.

@@ -52,7 +52,7 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
     let solved = case.solve()?;
     let window = case.window(&solved.mean)?;
     let design = modes::find(&solved, window, Scan::Whole);
-    let design_beyond = modes::beyond(&solved, window);
+    let design_outside = modes::outside(&solved, window);
 
     let bar = bar(across.points * up.points);
     let watch = || {
@@ -81,7 +81,7 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
         network,
         map: &map,
         design: &design,
-        design_beyond: &design_beyond,
+        design_outside: &design_outside,
         warnings: &warnings,
     };
     let svg = report.svg().map_err(|e| {

@@ -54,7 +54,7 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
     let mut more = solved.mean.warnings.clone();
     more.extend(validity::of_window(&case.network, &solved.mean, &window));
     more.extend(validity::of_modes(&case.network, &list));
-    let outside = modes::outside(&solved, window, 0.0);
+    let outside = modes::outside(&solved, window);
     more.extend(validity::of_growth_outside(&window, &outside));
     more.extend(modes::doubts_as_warnings(&list));
     if arguments.shapes {

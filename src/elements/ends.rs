@@ -199,10 +199,10 @@ enum Coefficient<T> {
 }
 
 impl Reflection {
-    /// The coefficient; real where its phase is zero or half a turn.
+    /// The coefficient; real where its phase is zero or half a turn, or where nothing is reflected.
     fn value<T: Real>(&self, values: &Values<T>) -> Coefficient<T> {
         let (modulus, phase) = (values[self.coefficient], values[self.phase]);
-        if phase.is_exactly_zero() {
+        if phase.is_exactly_zero() || modulus.is_exactly_zero() {
             Coefficient::Real(modulus)
         } else if (phase - PI).is_exactly_zero() {
             Coefficient::Real(-modulus)
@@ -234,7 +234,7 @@ pub const FEED_KNOBS: &[KnobSpec] = &[
     KnobSpec {
         key: "mach",
         dimension: Dimension::Number,
-        range: Range::NotNegative,
+        range: Range::Subsonic,
         default: None,
         doc: "Mach number at the first station, instead of the mass flow",
     },

@@ -11,7 +11,10 @@ use crate::elements::{Element, GasChoice, Kind, Section, duct};
 use crate::knobs::Values;
 use crate::network::{ElementId, Layout, Link, Network, Search, areas, values};
 use crate::problems::Problem;
-use crate::units::{self, Dimension};
+use crate::units::{self, Dimension, QuantityError};
+
+/// Most elements of a network.
+const MOST_ELEMENTS: usize = 10_000;
 
 /// Names an element may not have: they name something else.
 const RESERVED: &[&str] = &["feed", "exit", "search", "title", "element"];
@@ -27,8 +30,16 @@ pub(super) fn network(reader: &mut Reader, root: &Table) -> Network<f64> {
     };
     let exit_table = sub_table(reader, &mut fields, "exit", "[exit]");
     let feed_table = sub_table(reader, &mut fields, "feed", "[feed]");
+    // Of an exit that cannot be read it is not known whether it has a throat.
+    let mut throat_stated = None;
     let exit = match exit_table {
-        Found::Table(t) => ends::exit(reader, t),
+        Found::Table(t) => {
+            let (exit, readable) = ends::exit(reader, t);
+            if readable {
+                throat_stated = Some(matches!(exit.end, ExitEnd::Choked { throat: Some(_) }));
+            }
+            exit
+        }
         Found::Wrong => Exit {
             end: ExitEnd::Closed,
         },
@@ -43,7 +54,6 @@ pub(super) fn network(reader: &mut Reader, root: &Table) -> Network<f64> {
             }
         }
     };
-    let throat_stated = matches!(exit.end, ExitEnd::Choked { throat: Some(_) });
     let feed = match feed_table {
         Found::Table(t) => ends::feed(reader, t, throat_stated),
         Found::Wrong => unread_feed(reader),
@@ -85,7 +95,10 @@ fn assemble(
         })
         .collect();
     references::check(reader, &elements);
-    let (sections, unsized_stretches) = areas::assign(&elements, &links);
+    let (sections, unsized_stretches) = areas::assign(&elements, &links, |section| {
+        let (Section::Diameter(k) | Section::Area(k)) = section;
+        reader.is_named(k)
+    });
     // An empty list has been complained of already.
     for problem in unsized_stretches.into_iter().filter(|_| !empty) {
         reader.report_subject(problem);
@@ -150,6 +163,7 @@ pub(super) fn sub_table<'d>(
             reader.sources.name(&fields.subject(key), mark);
             Found::Table(table)
         }
+        Value::Unread => Found::Wrong,
         other => {
             let what = format!("a table belongs here, and this is {}", other.noun());
             let hint = format!("write it as {header}");
@@ -176,12 +190,32 @@ fn window(
     key: &'static str,
     dimension: Dimension,
 ) -> Option<(f64, f64)> {
-    let (text, mark) = fields.text(reader, key)?;
+    let example = match dimension {
+        Dimension::Frequency => "20 to 800 Hz",
+        _ => "-300 to 300 1/s",
+    };
     let fail = |what: String| Problem::error(format!("search.{key}"), what);
+    if let Some(Entry { node, .. }) = fields.entry(reader, key)
+        && !matches!(node.value, Value::Text(_) | Value::Unread)
+    {
+        let what = format!("a window belongs here, and this is {}", node.value.noun());
+        let hint = format!("write it like {key} = \"{example}\"");
+        reader.report(&node.mark, fail(what).hint(hint));
+        return None;
+    }
+    let (text, mark) = fields.text(reader, key)?;
     let (low, high) = match units::parse_span(text, dimension) {
         Ok(span) => span,
         Err(e) => {
-            reader.report(mark, fail(e.to_string()).hint(e.hint()));
+            let hint = match e {
+                QuantityError::NotASpan { .. }
+                | QuantityError::NotFinite { .. }
+                | QuantityError::Empty { .. } => {
+                    format!("write it like {key} = \"{example}\"")
+                }
+                _ => e.hint(),
+            };
+            reader.report(mark, fail(e.to_string()).hint(hint));
             return None;
         }
     };
@@ -221,9 +255,21 @@ fn element_list(reader: &mut Reader, fields: &mut Fields<'_>) -> Option<Vec<Elem
             );
             return None;
         }
+        Value::List(items) if items.len() > MOST_ELEMENTS => {
+            let what = format!(
+                "the list has {} elements, more than the {MOST_ELEMENTS} a network may have",
+                items.len()
+            );
+            reader.report(
+                mark,
+                Problem::error("element", what).hint("is this the right file?"),
+            );
+            return None;
+        }
         Value::List(items) => items,
+        Value::Unread => return None,
         other => {
-            reader.report(&node.mark, wrong(other.noun()));
+            reader.report(mark, wrong(other.noun()));
             return None;
         }
     };
@@ -236,6 +282,10 @@ fn element_list(reader: &mut Reader, fields: &mut Fields<'_>) -> Option<Vec<Elem
                 &item.mark,
                 Problem::error(format!("element.{}", i + 1), what).hint(hint),
             );
+            found.push(Element {
+                name: format!("element.{}", i + 1),
+                kind: unread_element(reader),
+            });
             continue;
         };
         let name = element_name(reader, table, item, i + 1, &mut seen);
@@ -253,11 +303,12 @@ fn element_name<'d>(
     seen: &mut BTreeMap<&'d str, Mark>,
 ) -> String {
     let stand_in = format!("element.{number}");
+    let subject = format!("{stand_in}.name");
     let Some(entry) = table.get("name") else {
         reader.sources.name(&stand_in, &item.mark);
         reader.report(
             &item.mark,
-            Problem::error(stand_in.as_str(), format!("element {number} needs a name"))
+            Problem::error(subject.as_str(), format!("element {number} needs a name"))
                 .hint("give it one of its own: name = \"chamber\", say"),
         );
         return stand_in;
@@ -273,20 +324,20 @@ fn element_name<'d>(
         && letters.all(|c| c.is_ascii_alphanumeric() || c == '_' || c == '-');
     let problem = if !well_formed {
         Problem::error(
-            stand_in.as_str(),
+            subject.as_str(),
             format!("`{}` cannot be a name", shown(name)),
         )
         .hint("a name is letters, digits, _ and -, and begins with a letter")
     } else if RESERVED.contains(&name.as_str()) {
         Problem::error(
-            stand_in.as_str(),
+            subject.as_str(),
             format!("`{name}` names another part of the file"),
         )
         .hint("give the element another name")
     } else if let Some(first) = seen.get(name.as_str()) {
         let line = reader.sources.place_of(first).map_or(0, |p| p.line);
-        let what = format!("`{name}` is the name of the element on line {line} already");
-        Problem::error(stand_in.as_str(), what).hint("each element needs a name of its own")
+        let what = format!("`{name}` names the element on line {line} already");
+        Problem::error(subject.as_str(), what).hint("each element needs a name of its own")
     } else {
         seen.insert(name, mark.clone());
         reader.sources.name(name, mark);

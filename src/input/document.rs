@@ -48,6 +48,8 @@ pub(super) enum Value {
     Date,
     List(Vec<Node>),
     Table(Table),
+    /// What a broken line states, which has been told: nothing more is said of it.
+    Unread,
 }
 
 impl Value {
@@ -60,6 +62,7 @@ impl Value {
             Value::Date => "a date",
             Value::List(_) => "a list",
             Value::Table(_) => "a table",
+            Value::Unread => "a broken line",
         }
     }
 }
@@ -93,6 +96,49 @@ impl Table {
             Some(old) => *old = entry,
             None => self.entries.push(entry),
         }
+    }
+
+    /// The dotted name of the entry whose key stands at a place of the file. An element goes by its
+    /// own name, or by its number where it has none.
+    pub fn name_at(&self, start: usize) -> Option<String> {
+        self.entries.iter().find_map(|entry| {
+            if entry.mark == Mark::new(FILE, start..entry.mark.end) {
+                return Some(entry.key.clone());
+            }
+            match &entry.node.value {
+                Value::Table(t) => Some(format!("{}.{}", entry.key, t.name_at(start)?)),
+                Value::List(items) => items.iter().enumerate().find_map(|(i, item)| {
+                    let Value::Table(t) = &item.value else {
+                        return None;
+                    };
+                    let rest = t.name_at(start)?;
+                    Some(match t.get("name").map(|e| &e.node.value) {
+                        Some(Value::Text(name)) if entry.key == "element" => {
+                            format!("{name}.{rest}")
+                        }
+                        _ => format!("{}.{}.{rest}", entry.key, i + 1),
+                    })
+                }),
+                _ => None,
+            }
+        })
+    }
+
+    /// Where the last statement of a key before a place of the file stands.
+    pub fn latest_before(&self, key: &str, before: usize) -> Option<&Mark> {
+        let here = self.get(key).map(|e| &e.mark).filter(|m| m.start < before);
+        let inner = self.entries.iter().filter_map(|e| match &e.node.value {
+            Value::Table(t) => t.latest_before(key, before),
+            Value::List(items) => items
+                .iter()
+                .filter_map(|n| match &n.value {
+                    Value::Table(t) => t.latest_before(key, before),
+                    _ => None,
+                })
+                .max(),
+            _ => None,
+        });
+        inner.chain(here).max()
     }
 
     /// The table under a key, made empty where the key is absent; `None` where something else

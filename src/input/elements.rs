@@ -135,6 +135,10 @@ fn flame(reader: &mut Reader, fields: &mut Fields<'_>) -> Flame {
     }
     let burnt_gas = gas(reader, fields, "burnt_gas");
     let responses = responses(reader, fields);
+    fields.kept_in(
+        "response",
+        RESPONSES.iter().map(|s| s.key).chain(["reference"]),
+    );
     Flame {
         burnt_temperature,
         burnt_gas,
@@ -162,6 +166,7 @@ fn responses(reader: &mut Reader, fields: &mut Fields<'_>) -> Vec<Response> {
             return Vec::new();
         }
         Value::List(items) => items.iter().collect(),
+        Value::Unread => return Vec::new(),
         other => {
             let what = format!("a response belongs here, and this is {}", other.noun());
             reader.report(&node.mark, Problem::error(subject, what).hint(form));

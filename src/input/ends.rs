@@ -24,7 +24,7 @@ enum End {
     Reflection,
 }
 
-pub(super) fn feed(reader: &mut Reader, table: &Table, throat_stated: bool) -> Feed {
+pub(super) fn feed(reader: &mut Reader, table: &Table, throat_stated: Option<bool>) -> Feed {
     let mut fields = Fields::new(table, "feed", "a feed");
     if !fields.states("gas") {
         let problem = Problem::error("feed.gas", "a feed needs `gas`");
@@ -84,13 +84,24 @@ fn balance_of_statements(
     fields: &mut Fields<'_>,
     flow: Option<&str>,
     pressure: bool,
-    throat: bool,
+    throat: Option<bool>,
 ) {
     const FLOW: &[&str] = &["mass_flow", "velocity", "mach"];
     const EITHER: &[&str] = &["mass_flow", "velocity", "mach", "pressure"];
     let (keys, subject, what, hint) = match (flow, pressure, throat) {
-        (Some(_), true, false) | (Some(_), false, true) | (None, true, true) => return,
-        (Some(flow), true, true) => {
+        (Some(_), true, Some(false) | None)
+        | (None, true, Some(true) | None)
+        | (Some("mass_flow"), false, Some(true))
+        | (Some(_), false, None) => return,
+        (Some(flow), false, Some(true)) => {
+            let what = format!(
+                "`{flow}` cannot stand beside the exit's throat, which alone fixes every Mach number and so leaves the pressure open"
+            );
+            let p = Problem::error(format!("feed.{flow}"), what);
+            reader.report_subject(p.hint("give `mass_flow` or `pressure` in its place"));
+            return;
+        }
+        (Some(flow), true, Some(true)) => {
             let what = format!(
                 "`{flow}`, `pressure` and the exit's throat are all given, and two of them say the third"
             );
@@ -98,25 +109,25 @@ fn balance_of_statements(
             reader.report_subject(Problem::error(format!("feed.{flow}"), what).hint(hint));
             return;
         }
-        (None, true, false) => (
+        (None, true, Some(false)) => (
             FLOW,
             "feed",
             "a feed needs its flow",
             "give `mass_flow`, `velocity` or `mach`, zero for still gas, or the throat of a choked exit",
         ),
-        (Some(_), false, false) => (
+        (Some(_), false, Some(false)) => (
             &["pressure"][..],
             "feed.pressure",
             "a feed needs `pressure`",
             "write pressure = \"101325 Pa\", say, or give the throat of a choked exit",
         ),
-        (None, false, true) => (
+        (None, false, Some(true)) => (
             EITHER,
             "feed",
-            "a throat alone does not say the flow: a feed needs `pressure` or its flow",
-            "give `pressure`, or `mass_flow`, `velocity` or `mach`",
+            "a throat alone does not say the flow: a feed needs `pressure` or `mass_flow`",
+            "give `pressure`, or `mass_flow`",
         ),
-        (None, false, false) => (
+        (None, false, Some(false) | None) => (
             EITHER,
             "feed",
             "a feed needs `pressure` and its flow",
@@ -126,7 +137,8 @@ fn balance_of_statements(
     fields.missing(keys, Problem::error(subject, what).hint(hint));
 }
 
-pub(super) fn exit(reader: &mut Reader, table: &Table) -> Exit {
+/// The exit, and whether its condition could be read.
+pub(super) fn exit(reader: &mut Reader, table: &Table) -> (Exit, bool) {
     let mut fields = Fields::new(table, "exit", "an exit");
     let end = fields.required_choice(
         reader,
@@ -151,6 +163,7 @@ pub(super) fn exit(reader: &mut Reader, table: &Table) -> Exit {
     };
     let reflection = reflection(reader, &mut fields, EXIT_KNOBS, end);
     fields.finish(reader);
+    let readable = end.is_some();
     let end = match (end, reflection) {
         (Some(End::Open), _) => ExitEnd::Open,
         (Some(End::Anechoic), _) => ExitEnd::Anechoic,
@@ -158,7 +171,7 @@ pub(super) fn exit(reader: &mut Reader, table: &Table) -> Exit {
         (_, Some(r)) => ExitEnd::Reflection(r),
         (Some(End::Closed | End::Reservoir | End::Reflection) | None, None) => ExitEnd::Closed,
     };
-    Exit { end }
+    (Exit { end }, readable)
 }
 
 /// The numbers of `end = "reflection"`; of an end that could not be read nothing is asked.
@@ -202,6 +215,9 @@ pub(super) fn gas(
         && !matches!(node.value, Value::Table(_))
     {
         let Value::Text(name) = &node.value else {
+            if matches!(node.value, Value::Unread) {
+                return None;
+            }
             let what = format!("a gas belongs here, and this is {}", node.value.noun());
             reader.report(&node.mark, Problem::error(subject, what).hint(forms));
             return None;

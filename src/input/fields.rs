@@ -1,5 +1,7 @@
 //! Reading one table of the document: every key asked for is known, whatever is left is a mistake.
 
+mod leftovers;
+
 use super::document::{Entry, Mark, Node, Table, Value};
 use super::sources::SourceMap;
 use crate::elements::Section;
@@ -17,6 +19,8 @@ pub(super) struct Reader {
     pub knobs: Vec<Knob>,
     pub values: Vec<f64>,
     pub references: Vec<Pending>,
+    /// Keys of the whole file that stand in one of its tables.
+    pub strays: Vec<String>,
 }
 
 /// A reference to be looked up once every element is known.
@@ -62,6 +66,13 @@ impl Reader {
         KnobId(self.values.len() - 1)
     }
 
+    /// Whether a knob has a name, and does not stand for a number of something that is missing.
+    pub fn is_named(&self, knob: KnobId) -> bool {
+        self.knobs
+            .get(knob.0)
+            .is_some_and(|k| !k.spec.key.is_empty())
+    }
+
     /// A number that could not be read.
     pub fn unread(&mut self) -> KnobId {
         self.knob("", &UNREAD, f64::NAN)
@@ -82,6 +93,8 @@ pub(super) struct Fields<'d> {
     what: String,
     offered: Vec<&'static str>,
     misplaced: Vec<Misplaced>,
+    /// Keys of a table under this one, with the key of that table.
+    kept: Vec<(&'static str, &'static str)>,
     missing: Vec<Missing>,
 }
 
@@ -112,6 +125,7 @@ impl<'d> Fields<'d> {
             what: what.to_owned(),
             offered: Vec::new(),
             misplaced: Vec::new(),
+            kept: Vec::new(),
             missing: Vec::new(),
         }
     }
@@ -166,6 +180,11 @@ impl<'d> Fields<'d> {
         self.table.get(key).is_some()
     }
 
+    /// Declares keys that belong into a table under this one.
+    pub fn kept_in(&mut self, holder: &'static str, keys: impl Iterator<Item = &'static str>) {
+        self.kept.extend(keys.map(|key| (key, holder)));
+    }
+
     /// Declares keys that have no meaning beside what `selector` says.
     pub fn misplaced(&mut self, selector: &str, keys: &[&'static str], why: &str) {
         let overridden = self
@@ -184,9 +203,14 @@ impl<'d> Fields<'d> {
         let Entry { node, .. } = self.entry(reader, key)?;
         match &node.value {
             Value::Text(text) => Some((text, &node.mark)),
+            Value::Unread => None,
             other => {
                 let what = format!("text belongs here, and this is {}", other.noun());
-                let hint = format!("write it in quotes: {key} = \"...\"");
+                let hint = if matches!(key, "name" | "title") {
+                    format!("write it in quotes: {key} = \"...\"")
+                } else {
+                    format!("write a word in quotes: {key} = \"...\"")
+                };
                 reader.report(
                     &node.mark,
                     Problem::error(self.subject(key), what).hint(hint),
@@ -355,6 +379,7 @@ impl<'d> Fields<'d> {
                 }
                 Err(e) => fail(e.to_string()).hint(e.hint()),
             },
+            (Value::Unread, _) => return None,
             (Value::Number(text), _) => {
                 let hint = format!("write it like {key} = {}", quoted(*dimension));
                 match units::parse_number(text) {
@@ -362,12 +387,18 @@ impl<'d> Fields<'d> {
                     Err(e) => fail(e.to_string()).hint(hint),
                     Ok(_) => {
                         let unit = dimension.example().split_once(' ').map_or("", |(_, u)| u);
+                        // On the command line a quantity needs no quotes.
+                        let (how, quote) = match node.mark.is_override() {
+                            true => ("", ""),
+                            false => (", in quotes", "\""),
+                        };
                         fail(format!(
                             "`{text}` has no unit, and {} needs one",
                             dimension.noun()
                         ))
                         .hint(format!(
-                            "say in which unit, in quotes, such as {key} = \"{text} {unit}\""
+                            "say in which unit{how}, such as {key} = {quote}{text} {unit}{quote}; it may be {}",
+                            listed(dimension.unit_names())
                         ))
                     }
                 }
@@ -381,54 +412,6 @@ impl<'d> Fields<'d> {
         };
         reader.report(&node.mark, problem);
         None
-    }
-
-    /// Reports what is missing from a table whose other keys cannot be judged.
-    pub fn abandon(self, reader: &mut Reader) {
-        for Missing { problem, .. } in self.missing {
-            match &self.home {
-                Some(mark) => reader.report(mark, problem),
-                None => reader.report_subject(problem),
-            }
-        }
-    }
-
-    /// Reports every key that was not asked for, and what is missing.
-    pub fn finish(mut self, reader: &mut Reader) {
-        for entry in &self.table.entries {
-            let key = entry.key.as_str();
-            if self.offered.contains(&key) {
-                continue;
-            }
-            let subject = self.subject(key);
-            if let Some(m) = self.misplaced.iter().find(|m| m.key == key) {
-                // The file said so before the override did; the file is not wrong.
-                let p = if m.overridden && !entry.mark.is_override() {
-                    Problem::warning(subject, format!("is left out, as {}", m.why))
-                } else {
-                    Problem::error(subject, format!("`{key}` has no meaning here: {}", m.why))
-                        .hint(format!("remove `{key}`"))
-                };
-                reader.report(&entry.mark, p);
-                continue;
-            }
-            let legal = || {
-                let misplaced = self.misplaced.iter().map(|m| m.key);
-                self.offered.iter().copied().chain(misplaced)
-            };
-            let what = format!("{} has no key `{}`", self.what, shown(key));
-            // A key already stated is hardly the one meant.
-            let unstated = legal().filter(|k| !self.states(k));
-            let meant = nearest(key, unstated).or_else(|| nearest(key, legal()));
-            let hint = match meant {
-                Some(meant) => format!("did you mean `{meant}`?"),
-                None => format!("its keys are {}", listed(self.offered.iter())),
-            };
-            self.missing
-                .retain(|m| !m.keys.iter().any(|k| Some(*k) == meant));
-            reader.report(&entry.mark, Problem::error(subject, what).hint(hint));
-        }
-        self.abandon(reader);
     }
 }
 

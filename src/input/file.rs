@@ -7,8 +7,8 @@ use std::path::Path;
 use super::sources::place;
 use crate::problems::{Problem, Problems, nearest};
 
-/// Largest file read (bytes); a network of a thousand elements takes a twentieth of it.
-pub const LARGEST_FILE: u64 = 4 << 20;
+/// Largest file read (bytes); a network of a thousand elements takes an eighth of it.
+pub const LARGEST_FILE: u64 = 1 << 20;
 
 /// The text of a file.
 pub(super) fn text(path: &Path) -> Result<String, Problems> {
@@ -26,7 +26,7 @@ pub(super) fn text(path: &Path) -> Result<String, Problems> {
                 .take(LARGEST_FILE + 1)
                 .read_to_end(&mut bytes)?;
         }
-        Ok((meta.len().max(bytes.len() as u64), bytes))
+        Ok((meta.len(), bytes))
     };
     let (length, bytes) = open().map_err(|e| match e.kind() {
         ErrorKind::NotFound => missing(path, fail("there is no such file".to_owned())),
@@ -35,14 +35,18 @@ pub(super) fn text(path: &Path) -> Result<String, Problems> {
         }
         ErrorKind::PermissionDenied => fail("reading this file is not permitted".to_owned())
             .hint("ask its owner, or copy it where you may read it"),
+        ErrorKind::NotADirectory => fail("there is no such file".to_owned())
+            .hint("a part of its path is a file, not a directory"),
         _ => fail(format!("cannot be read: {e}")),
     })?;
-    if length > LARGEST_FILE {
-        let what = format!(
-            "the file is {:.1} MiB, larger than the {} MiB a network file may be",
-            length as f64 / f64::from(1 << 20),
-            LARGEST_FILE >> 20
-        );
+    if length > LARGEST_FILE || bytes.len() as u64 > LARGEST_FILE {
+        let most = LARGEST_FILE >> 20;
+        let what = if length > LARGEST_FILE {
+            let size = length as f64 / f64::from(1 << 20);
+            format!("the file is {size:.1} MiB, larger than the {most} MiB a network file may be")
+        } else {
+            format!("more than {most} MiB come from it, larger than a network file may be")
+        };
         return Err(fail(what)
             .hint("a network file is a few kilobytes of text")
             .into());

@@ -14,17 +14,15 @@ mod overrides;
 mod references;
 mod remarks;
 mod sources;
+mod syntax;
 
 use std::path::Path;
-
-use toml::de::DeTable;
 
 pub use file::LARGEST_FILE;
 pub use sources::SourceMap;
 
 use crate::network::Network;
 use crate::problems::{Problem, Problems, Severity};
-use document::{FILE, Mark};
 use fields::Reader;
 
 /// A network read without errors.
@@ -58,24 +56,15 @@ pub fn parse(name: &str, text: &str, overrides: &[String]) -> Result<Loaded, Pro
         sources: SourceMap::new(name, text, overrides),
         ..Reader::default()
     };
-    let (parsed, errors) = DeTable::parse_recoverable(text);
-    // A document with a key given twice is whole otherwise; any other is too damaged to judge.
-    let mut whole = true;
-    for error in &errors {
-        whole &= error.message().contains("duplicate key");
-        reader.report(&syntax_mark(text, error), syntax_problem(error));
-    }
-    if !whole {
+    let Some(mut root) = syntax::document(&mut reader, text) else {
         return Err(Problems(ordered(reader).0));
-    }
-    let mut root = document::table(parsed.get_ref(), FILE);
-    if errors.is_empty() && root.entries.is_empty() {
-        let mark = Mark::new(FILE, 0..0);
-        reader.report(
-            &mark,
+    };
+    if reader.problems.is_empty() && root.entries.is_empty() {
+        reader.problems.push((
+            None,
             Problem::error(name, "the file is empty: it states nothing")
                 .hint("a network has a title, [feed], [[element]]s and [exit]"),
-        );
+        ));
         return Err(Problems(ordered(reader).0));
     }
     overrides::lay_all(&mut reader, &mut root, overrides);
@@ -118,17 +107,4 @@ fn ordered(reader: Reader) -> (Vec<Problem>, SourceMap) {
         })
         .collect();
     (problems, sources)
-}
-
-fn syntax_mark(text: &str, error: &toml::de::Error) -> Mark {
-    Mark::new(FILE, error.span().unwrap_or(text.len()..text.len()))
-}
-
-fn syntax_problem(error: &toml::de::Error) -> Problem {
-    let problem = Problem::error("TOML", error.message());
-    if error.message().contains("duplicate key") {
-        problem.hint("keep one of the two")
-    } else {
-        problem.hint("lines are KEY = VALUE, and a value with a unit stands in quotes")
-    }
 }

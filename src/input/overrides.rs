@@ -6,7 +6,7 @@ use toml::de::DeValue;
 use super::document::{self, Entry, Mark, Node, Table, Value};
 use super::fields::{Reader, shown};
 use crate::flame;
-use crate::problems::{Problem, nearest};
+use crate::problems::{Problem, listed, nearest};
 
 /// Keys that say the same thing: stating one by override takes back the others of the file.
 const ALTERNATIVES: &[&[&str]] = &[
@@ -36,7 +36,10 @@ fn read<'t>(reader: &mut Reader, text: &'t str, source: usize) -> Option<(Vec<St
     let whole = Mark::new(source, 0..text.len());
     let form = "write NAME = VALUE, such as chamber.length = 0.9 m";
     let Some((left, right)) = text.split_once('=') else {
-        let what = format!("`{}` sets nothing", shown(text));
+        let what = match text.trim() {
+            "" => "nothing is set".to_owned(),
+            text => format!("`{}` sets nothing: it has no `=`", shown(text)),
+        };
         reader.report(&whole, Problem::error("--set", what).hint(form));
         return None;
     };
@@ -50,7 +53,10 @@ fn read<'t>(reader: &mut Reader, text: &'t str, source: usize) -> Option<(Vec<St
     }
     let name = path.iter().map(|(p, _)| *p).collect::<Vec<_>>().join(".");
     if path.iter().any(|(p, _)| p.is_empty()) {
-        let what = format!("`{}` is no name of a number or word", shown(left.trim()));
+        let what = match left.trim() {
+            "" => "no name stands before the `=`".to_owned(),
+            name => format!("`{}` is no name of a number or word", shown(name)),
+        };
         reader.report(&whole, Problem::error("--set", what).hint(form));
         return None;
     }
@@ -127,10 +133,7 @@ fn lay(root: &mut Table, path: &[Step<'_>], node: Node) -> Laid {
     let fail =
         |what: String, hint: String| Err((mark.clone(), Problem::error(*first, what).hint(hint)));
     match *first {
-        "title" if rest.is_empty() => {
-            put(root, first, mark, node);
-            Ok(())
-        }
+        "title" if rest.is_empty() => put(root, first, first, mark, node),
         "feed" | "exit" | "search" => match root.table_at(first, mark) {
             Some(table) => descend(table, first, rest, mark, node),
             // No table in the file: that is told when the file is read.
@@ -162,7 +165,21 @@ fn lay(root: &mut Table, path: &[Step<'_>], node: Node) -> Laid {
                     let all = known.chain(["feed", "exit", "search", "title"]);
                     let hint = match nearest(first, all) {
                         Some(meant) => format!("did you mean `{meant}`?"),
-                        None => "name an element, feed, exit or search".to_owned(),
+                        None if rest.is_empty() => {
+                            format!(
+                                "say whose it is, as in {}.{first}",
+                                names.last().map_or("feed", String::as_str)
+                            )
+                        }
+                        None => format!(
+                            "name one of {}",
+                            listed(
+                                names
+                                    .iter()
+                                    .map(String::as_str)
+                                    .chain(["feed", "exit", "search"])
+                            )
+                        ),
                     };
                     fail(format!("nothing is named `{}`", shown(first)), hint)
                 }
@@ -245,7 +262,10 @@ fn in_response(
         Some(_) => Ok(()),
         None => fail(
             format!("`{name}` has no response {index}"),
-            format!("its responses are numbered 1 to {count}"),
+            match count {
+                1 => format!("it has one response: leave the number out, as in {name}.delay"),
+                _ => format!("its responses are numbered 1 to {count}"),
+            },
         ),
     }
 }
@@ -267,12 +287,10 @@ fn descend(
             )
             .hint(format!("write {holder}.KEY = VALUE")),
         )),
-        [(key, mark)] => {
-            put(table, key, mark, node);
-            Ok(())
-        }
+        [(key, mark)] => put(table, &format!("{holder}.{key}"), key, mark, node),
         [(key, mark), deeper @ ..] => {
             let name = format!("{holder}.{key}");
+            let gas = key.ends_with("gas");
             match table.table_at(key, mark) {
                 Some(inner) => descend(inner, &name, deeper, mark, node),
                 None => Err((
@@ -281,7 +299,11 @@ fn descend(
                         name.as_str(),
                         format!("`{name}` is no table in the file, so it has no keys"),
                     )
-                    .hint(format!("set all of it: {name} = {{ KEY = VALUE, ... }}")),
+                    .hint(if gas {
+                        format!("set all of it: {name} = {{ gamma = 1.4, gas_constant = \"287 J/(kg K)\" }}")
+                    } else {
+                        format!("write {name} = VALUE")
+                    }),
                 )),
             }
         }
@@ -289,7 +311,12 @@ fn descend(
 }
 
 /// Sets a key and takes back what the file said of the same thing by another key.
-fn put(table: &mut Table, key: &str, mark: &Mark, node: Node) {
+fn put(table: &mut Table, name: &str, key: &str, mark: &Mark, node: Node) -> Laid {
+    if table.get(key).is_some_and(|e| e.mark.is_override()) {
+        let what = format!("`{name}` is set twice");
+        let p = Problem::error(name, what).hint("keep one of the two");
+        return Err((mark.clone(), p));
+    }
     if let Some(group) = ALTERNATIVES.iter().find(|g| g.contains(&key)) {
         table
             .entries
@@ -300,4 +327,5 @@ fn put(table: &mut Table, key: &str, mark: &Mark, node: Node) {
         mark: mark.clone(),
         node,
     });
+    Ok(())
 }

@@ -53,9 +53,17 @@ fn judge(pending: &Pending, elements: &[Element]) -> Option<Problem> {
         Reference::OutletOf(name) => (name, true),
     };
     let Some(at) = position(name) else {
-        let problem = fail(format!("nothing is named `{}`", shown(name)));
-        let names = elements.iter().map(|e| e.name.as_str());
-        return Some(match nearest(name, names) {
+        let names = || elements.iter().map(|e| e.name.as_str());
+        let meant = nearest(name, names());
+        // It may well mean an element whose own name could not be used, which has been told.
+        if meant.is_none() && names().any(|n| n.starts_with("element.")) {
+            return None;
+        }
+        let problem = fail(match name.as_str() {
+            "" => "no station is named".to_owned(),
+            _ => format!("nothing is named `{}`", shown(name)),
+        });
+        return Some(match meant {
             Some(meant) => problem.hint(format!("did you mean `{meant}`?")),
             None => problem.hint(
                 "name an element, NAME.in or NAME.out; without reference it is the flame's inlet",

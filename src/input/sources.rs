@@ -13,6 +13,8 @@ const OVERRIDE: &str = "--set";
 pub struct SourceMap {
     /// The file, then each override.
     texts: Vec<(String, String)>,
+    /// Where each line of each text begins, so that a place is found without reading from the top.
+    lines: Vec<Vec<usize>>,
     names: BTreeMap<String, Mark>,
 }
 
@@ -20,8 +22,10 @@ impl SourceMap {
     pub(super) fn new(file: &str, text: &str, overrides: &[String]) -> Self {
         let mut texts = vec![(file.to_owned(), text.to_owned())];
         texts.extend(overrides.iter().map(|o| (OVERRIDE.to_owned(), o.clone())));
+        let lines = texts.iter().map(|(_, text)| line_starts(text)).collect();
         SourceMap {
             texts,
+            lines,
             names: BTreeMap::new(),
         }
     }
@@ -42,9 +46,15 @@ impl SourceMap {
     /// Gives a problem without a place the place of its subject, or the file's first line.
     pub fn locate(&self, problem: &mut Problem) {
         if problem.place.is_none() {
-            let top = Mark::new(FILE, 0..0);
-            let mark = self.mark(&problem.subject).unwrap_or(&top);
-            problem.place = self.place_of(mark).map(Box::new);
+            problem.place = match self.mark(&problem.subject) {
+                Some(mark) => self.place_of(mark),
+                // The file as a whole, hence no words of its first line.
+                None => self.place_of(&Mark::new(FILE, 0..0)).map(|top| Place {
+                    text: String::new(),
+                    ..top
+                }),
+            }
+            .map(Box::new);
         }
     }
 
@@ -60,16 +70,30 @@ impl SourceMap {
 
     pub(super) fn place_of(&self, mark: &Mark) -> Option<Place> {
         let (source, text) = self.texts.get(mark.source)?;
-        Some(place(source, text, mark.start, mark.end))
+        let lines = self.lines.get(mark.source)?;
+        Some(place_in(source, text, lines, mark.start, mark.end))
     }
+}
+
+fn line_starts(text: &str) -> Vec<usize> {
+    let ends = text.match_indices('\n').map(|(i, _)| i + 1);
+    std::iter::once(0).chain(ends).collect()
 }
 
 /// The place of a stretch of bytes; a stretch over several lines is marked to the end of its first.
 pub(super) fn place(source: &str, text: &str, start: usize, end: usize) -> Place {
+    place_in(source, text, &line_starts(text), start, end)
+}
+
+fn place_in(source: &str, text: &str, lines: &[usize], start: usize, end: usize) -> Place {
     let start = floor_boundary(text, start);
     let end = floor_boundary(text, end).max(start);
-    let before = text.get(..start).unwrap_or_default();
-    let line_start = before.rfind('\n').map_or(0, |i| i + 1);
+    let line_number = lines.partition_point(|s| *s <= start);
+    let line_start = line_number
+        .checked_sub(1)
+        .and_then(|i| lines.get(i))
+        .copied()
+        .unwrap_or_default();
     let rest = text.get(line_start..).unwrap_or_default();
     let line = rest.split('\n').next().unwrap_or_default();
     let line = line.strip_suffix('\r').unwrap_or(line);
@@ -79,8 +103,13 @@ pub(super) fn place(source: &str, text: &str, start: usize, end: usize) -> Place
         .unwrap_or_default();
     Place {
         source: source.to_owned(),
-        line: before.bytes().filter(|b| *b == b'\n').count() + 1,
-        column: before.get(line_start..).unwrap_or_default().chars().count() + 1,
+        line: line_number,
+        column: text
+            .get(line_start..start)
+            .unwrap_or_default()
+            .chars()
+            .count()
+            + 1,
         width: marked.chars().count().max(1),
         text: line.to_owned(),
     }

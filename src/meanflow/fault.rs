@@ -63,11 +63,14 @@ impl Fault {
                 .get(e.0)
                 .map_or("network", |e| e.name.as_str())
         };
+        let mach_number = |m| figure(m, 3);
+        let flow_rate = |m| figure(m, 4);
+        let kelvin = |t| figure(t, 1);
         let less = "less flow, more pressure or wider passages would keep it subsonic";
         match self {
             Fault::SupersonicFeed { mach } => Problem::error(
                 flow.and_then(|k| layout.knobs.get(k.0)).map_or("feed", |k| k.name.as_str()),
-                format!("flow beyond Mach 1 in `feed`: Mach {mach:.3} at the first station"),
+                format!("flow beyond Mach 1 in `feed`: Mach {} at the first station", mach_number(mach)),
             )
             .hint("only subsonic flow is described; state less flow or a higher pressure"),
             Fault::Choked {
@@ -78,9 +81,11 @@ impl Fault {
             } => Problem::error(
                 name(element),
                 format!(
-                    "flow beyond Mach 1 in `{}`: {mass_flow:.4} kg/s arrive at Mach {mach:.3}, at \
-                     most {most:.4} kg/s can leave it",
-                    name(element)
+                    "flow beyond Mach 1 in `{}`: {} kg/s arrive at Mach {}, at most {} kg/s can leave it",
+                    name(element),
+                    flow_rate(mass_flow),
+                    mach_number(mach),
+                    flow_rate(most)
                 ),
             )
             .hint(less),
@@ -91,9 +96,10 @@ impl Fault {
             } => Problem::error(
                 name(element),
                 format!(
-                    "flow beyond Mach 1 in `{}`: {mass_flow:.4} kg/s arrive, its open area passes at \
-                     most {most:.4} kg/s",
-                    name(element)
+                    "flow beyond Mach 1 in `{}`: {} kg/s arrive, its open area passes at most {} kg/s",
+                    name(element),
+                    flow_rate(mass_flow),
+                    flow_rate(most)
                 ),
             )
             .hint(less),
@@ -105,10 +111,12 @@ impl Fault {
             } => Problem::error(
                 name(element),
                 format!(
-                    "flow beyond Mach 1 in `{}`: heated from Mach {mach:.3} in a constant area, the \
-                     static temperature cannot exceed {hottest:.1} K and {asked:.1} K is stated \
-                     (thermal choking)",
-                    name(element)
+                    "flow beyond Mach 1 in `{}`: heated from Mach {} in a constant area, the static \
+                     temperature cannot exceed {} K and {} K is stated (thermal choking)",
+                    name(element),
+                    mach_number(mach),
+                    kelvin(hottest),
+                    kelvin(asked)
                 ),
             )
             .hint("a lower burnt temperature, less flow or a wider passage would keep it subsonic"),
@@ -145,5 +153,14 @@ impl Fault {
             )
             .hint("check the numbers of this element and of the feed for extreme values"),
         }
+    }
+}
+
+/// A number for a sentence, to so many places unless it is far from one.
+fn figure(x: f64, places: usize) -> String {
+    if x == 0.0 || (1e-3..1e6).contains(&x.abs()) {
+        format!("{x:.places$}")
+    } else {
+        format!("{x:.places$e}")
     }
 }

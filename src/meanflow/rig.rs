@@ -179,7 +179,7 @@ impl Rig {
                 to: ElementId(i),
             })
             .collect::<Vec<_>>();
-        let (sections, _) = areas::assign(&self.elements, &links);
+        let (sections, _) = areas::assign(&self.elements, &links, |_| true);
         let layout = Layout {
             title: "test chain".to_owned(),
             elements: self.elements,

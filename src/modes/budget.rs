@@ -71,7 +71,11 @@ impl Budget {
 
 type Waves = Vector3<Complex64>;
 
-/// The budget of a mode; `None` where its shape does not settle or holds no acoustic energy.
+/// A mode whose energy, over one radian, is below this part of the power that passes has no budget: a flame at a
+/// pressure node that answers to its own inlet has modes of velocity at that station alone.
+const TELLING: f64 = 1e-7;
+
+/// The budget of a mode; `None` where its shape does not settle or holds next to no acoustic energy.
 pub fn budget(network: &Network, solved: &Solved, mode: &Mode) -> Option<Budget> {
     let null = shape(solved, mode)?;
     let waves: Vec<Waves> = null.waves.iter().map(|w| Vector3::from(*w)).collect();
@@ -103,7 +107,13 @@ pub fn budget(network: &Network, solved: &Solved, mode: &Mode) -> Option<Budget>
     }
     powers.push(ended(&chain.end, mode.s, states.last()?, waves.last()?)?);
     let energy: f64 = powers.iter().map(|p| p.energy).sum();
-    if !(energy.is_finite() && energy > 0.0) {
+    // Powers are known to rounding of the largest that passes either way at a station.
+    let passing = waves.iter().zip(states).map(|(w, state)| {
+        let both = w[0].norm_sqr() + w[1].norm_sqr();
+        state.area * both / (2.0 * state.density() * state.sound_speed())
+    });
+    let passing = passing.fold(0.0, f64::max);
+    if !(energy.is_finite() && energy * mode.s.norm() > TELLING * passing) {
         return None;
     }
     let parts = powers

@@ -18,7 +18,7 @@ pub use crate::numerics::zeros::Scan;
 use crate::numerics::zeros::{self, Doubt};
 use crate::problems::{Problem, Problems};
 
-pub use outside::{Outside, outside};
+pub use outside::{Outside, outside, outside_from};
 pub use window::{Window, cut_on};
 
 /// One mode: `p'(x, t) = Re[p(x) exp(s t)]`.
@@ -89,6 +89,9 @@ pub struct ModeList {
     pub modes: Vec<Mode>,
     /// Number of modes in the window by the argument principle; absent where no count was reached.
     pub expected: Option<usize>,
+    /// Every zero met, those just outside the window among them: where to start for a network much like
+    /// this one.
+    pub met: Vec<Complex64>,
     /// Why the list is not proved complete; empty when it is.
     pub doubts: Vec<Doubt>,
     /// Work done.
@@ -130,8 +133,18 @@ pub fn solve(network: &Network) -> Result<Solved, Problems> {
 
 /// Finds every mode in a window.
 pub fn find(solved: &Solved, window: Window, scan: Scan) -> ModeList {
-    let tape = &solved.acoustics.characteristic.tape;
-    let found = zeros::search(tape, &window.rectangle(), scan);
+    find_from(&solved.acoustics, window, scan, &[])
+}
+
+/// The same, trying first where zeros are to be expected: those met in a network much like this one.
+pub fn find_from(
+    acoustics: &Acoustics<f64>,
+    window: Window,
+    scan: Scan,
+    starts: &[Complex64],
+) -> ModeList {
+    let tape = &acoustics.characteristic.tape;
+    let found = zeros::search_from(tape, &window.rectangle(), scan, starts);
     let modes = found
         .zeros
         .iter()
@@ -145,23 +158,10 @@ pub fn find(solved: &Solved, window: Window, scan: Scan) -> ModeList {
         window,
         modes,
         expected: found.expected.and_then(|n| usize::try_from(n).ok()),
+        met: found.met,
         doubts: found.doubts,
         effort: found.effort,
     }
-}
-
-/// How far to the right of a window [`beyond`] looks, over the window's height in growth rate.
-const REACH: f64 = 3.0;
-
-/// Modes in the window's band of frequency that grow faster than its upper edge, in a strip three times
-/// as high as the window. Faster growth still is not excluded.
-pub fn beyond(solved: &Solved, window: Window) -> ModeList {
-    let (low, high) = window.growth;
-    let strip = Window {
-        growth: (high, high + REACH * (high - low)),
-        ..window
-    };
-    find(solved, strip, Scan::UntilCounted)
 }
 
 /// The shape of a mode with its residual in the global matrix.

@@ -6,7 +6,10 @@
 
 use std::f64::consts::TAU;
 
-use super::{Mode, Solved, Tendency, Window, doubt_in_words, find};
+use num_complex::Complex64;
+
+use super::{Mode, Solved, Tendency, Window, doubt_in_words, find_from};
+use crate::acoustics::Acoustics;
 use crate::numerics::zeros::{Doubt, Scan};
 use crate::waves::tail::{self, Unbounded};
 
@@ -22,15 +25,24 @@ pub struct Outside {
     pub searched_to: f64,
     /// Whether the search up to there is proved complete.
     pub complete: bool,
+    /// Whether it is proved that nothing lies beyond.
+    pub proved: bool,
     /// Why it is not proved that nothing in the band lies right of the window and nothing below it
     /// grows; `None` where it is proved.
     pub reason: Option<String>,
+    /// Every zero met on the way, for the next search nearby.
+    pub met: Vec<Complex64>,
 }
 
 impl Outside {
     /// Whether growth outside the window, up to its highest frequency, is excluded.
     pub fn excluded(&self) -> bool {
         self.reason.is_none()
+    }
+
+    /// Whether growth beside the modes found outside is excluded.
+    pub fn rest_excluded(&self) -> bool {
+        self.complete && self.proved
     }
 
     /// The fastest of all.
@@ -49,9 +61,20 @@ const REACH: f64 = 3.0;
 /// Growth rate (1/s) up to which is searched where a spread delay still falls.
 const FAR: f64 = 2e4;
 
-/// Looks outside a window. `start` is a growth rate at which the proof is tried first.
-pub fn outside(solved: &Solved, window: Window, start: f64) -> Outside {
-    let tape = &solved.acoustics.characteristic.tape;
+/// Looks outside a window.
+pub fn outside(solved: &Solved, window: Window) -> Outside {
+    outside_from(&solved.acoustics, window, window.growth.1, &[])
+}
+
+/// The same, trying the proof first at a growth rate `start`, and `starts` for zeros: what a network much
+/// like this one had.
+pub fn outside_from(
+    acoustics: &Acoustics<f64>,
+    window: Window,
+    start: f64,
+    starts: &[Complex64],
+) -> Outside {
+    let tape = &acoustics.characteristic.tape;
     let (low, high) = window.growth;
     let from = high.max(start);
     let clear = tail::clear_beyond(tape, from, TAU * window.frequency.1, LIMIT);
@@ -63,12 +86,14 @@ pub fn outside(solved: &Solved, window: Window, start: f64) -> Outside {
         Err(_) => strip,
     };
     let mut seen = Vec::new();
+    let mut met = Vec::new();
     let mut complete = true;
     let mut look = |growth: (f64, f64), frequency: (f64, f64)| {
         if growth.1 <= growth.0 || frequency.1 <= frequency.0 {
             return;
         }
-        let list = find(solved, Window { frequency, growth }, Scan::UntilCounted);
+        let part = Window { frequency, growth };
+        let list = find_from(acoustics, part, Scan::UntilCounted, starts);
         // A mode on an edge is listed, and judged by its own growth rate.
         let mut doubts = list.doubts.iter();
         if let Some(doubt) = doubts.find(|d| !matches!(d, Doubt::OnEdge { .. })) {
@@ -76,6 +101,7 @@ pub fn outside(solved: &Solved, window: Window, start: f64) -> Outside {
             reason.get_or_insert(doubt_in_words(doubt).0);
         }
         seen.extend(list.modes);
+        met.extend(list.met);
     };
     look((high, searched_to), (0.0, window.frequency.1));
     look((0.0, high), (0.0, window.frequency.0));
@@ -94,7 +120,9 @@ pub fn outside(solved: &Solved, window: Window, start: f64) -> Outside {
         slower,
         searched_to,
         complete,
+        proved: clear.is_ok(),
         reason,
+        met,
     }
 }
 
@@ -136,7 +164,7 @@ fn in_words(reason: Option<Unbounded>) -> String {
 #[cfg(test)]
 mod tests {
     use super::*;
-    use crate::modes::ModeList;
+    use crate::modes::{ModeList, find};
     use crate::{input, modes};
 
     /// A flame between anechoic ends in still gas: `1 + sqrt(6) + (6 - 1) n exp(-s tau) ...`; its intrinsic
@@ -172,7 +200,7 @@ mod tests {
         let solved = modes::solve(&network).unwrap();
         let window = Window::of(&network, &solved.mean).unwrap();
         let list = find(&solved, window, Scan::Whole);
-        (list, outside(&solved, window, 0.0))
+        (list, outside(&solved, window))
     }
 
     #[test]

@@ -46,8 +46,12 @@ const PER_RADIAN: f64 = 6.0;
 const FEWEST: usize = 17;
 const MOST: usize = 401;
 
-/// The shape of a mode; `None` where the null vector of the global matrix does not settle or is not
-/// finite.
+/// Pressure over the largest wave below which it is rounding. A flame at a pressure node that answers to
+/// its own inlet has modes of velocity alone.
+const LOST: f64 = 1e-9;
+
+/// The shape of a mode; `None` where the null vector of the global matrix does not settle, is not
+/// finite or holds no pressure.
 pub fn along(network: &Network, solved: &Solved, mode: &Mode) -> Option<Shape> {
     let null = shape(solved, mode)?;
     let s = mode.s;
@@ -78,7 +82,8 @@ pub fn along(network: &Network, solved: &Solved, mode: &Mode) -> Option<Shape> {
         .chain(&along)
         .map(|a| a.pressure)
         .max_by(|a, b| a.norm().total_cmp(&b.norm()))?;
-    if !(peak.norm() > 0.0 && peak.is_finite()) {
+    let waves = null.waves.iter().flatten().map(|w| w.norm());
+    if !(peak.norm() > LOST * waves.fold(0.0, f64::max) && peak.is_finite()) {
         return None;
     }
     for a in stations.iter_mut().chain(&mut along) {

@@ -51,12 +51,13 @@ pub(crate) fn check(network: &Network<f64>, sections: &[Option<Section>]) -> Vec
     for stretch in stretches(&layout.elements, &layout.links) {
         adjoining(network, &stretch, &mut problems);
     }
+    let mut misfits: Vec<Misfit<'_>> = Vec::new();
     for (id, element) in network.elements() {
         let (before, after) = (area(layout.inlet(id)), area(layout.outlet(id)));
         match &element.kind {
             Kind::Contraction(_) | Kind::Expansion(_) => {
                 if let (Some(before), Some(after)) = (before, after) {
-                    problems.extend(area_change(network, element, before, after));
+                    misfits.extend(misfit(element, before, after));
                 }
             }
             Kind::Exit(exit) => {
@@ -88,12 +89,29 @@ pub(crate) fn check(network: &Network<f64>, sections: &[Option<Section>]) -> Vec
             | Kind::Plenum(_) => {}
         }
     }
+    let mut left = misfits.as_slice();
+    while let [first, rest @ ..] = left {
+        // Two that share the area between them are one mistake: that area.
+        if let [second, rest @ ..] = rest
+            && second.before.0 == first.after.0
+        {
+            problems.push(between_misfits(network, first, second));
+            left = rest;
+        } else {
+            problems.push(first.problem(network));
+            left = rest;
+        }
+    }
     problems
 }
 
 /// Which duct's section each station takes; a station of a stretch without a duct has none, which
-/// is a problem.
-pub(crate) fn assign(elements: &[Element], links: &[Link]) -> (Vec<Option<Section>>, Vec<Problem>) {
+/// is a problem. Of a stretch with a duct whose section is not `known` nothing is said.
+pub(crate) fn assign(
+    elements: &[Element],
+    links: &[Link],
+    known: impl Fn(Section) -> bool,
+) -> (Vec<Option<Section>>, Vec<Problem>) {
     let mut sections = vec![None; links.len()];
     let mut problems = Vec::new();
     if !elements.iter().any(|e| matches!(e.kind, Kind::Duct(_))) {
@@ -106,10 +124,16 @@ pub(crate) fn assign(elements: &[Element], links: &[Link]) -> (Vec<Option<Sectio
         return (sections, problems);
     }
     for stretch in stretches(elements, links) {
-        let section = stretch
-            .ducts
-            .iter()
-            .find_map(|d| duct_section(elements, *d));
+        let stated = || {
+            stretch
+                .ducts
+                .iter()
+                .filter_map(|d| duct_section(elements, *d))
+        };
+        if stated().any(|s| !known(s)) {
+            continue;
+        }
+        let section = stated().next();
         for station in &stretch.stations {
             if let Some(s) = sections.get_mut(station.0) {
                 *s = section;
@@ -243,37 +267,79 @@ fn between(elements: &[Element], a: ElementId, b: ElementId) -> Vec<String> {
         .collect()
 }
 
-fn area_change(
-    network: &Network<f64>,
-    element: &Element,
+/// An area change that does not go the way its kind says.
+struct Misfit<'a> {
+    element: &'a Element,
+    kind: &'static str,
     before: (Section, f64),
     after: (Section, f64),
-) -> Option<Problem> {
+}
+
+fn misfit<'a>(
+    element: &'a Element,
+    before: (Section, f64),
+    after: (Section, f64),
+) -> Option<Misfit<'a>> {
     let narrows = matches!(element.kind, Kind::Contraction(_));
-    let (kind, other, verb) = if narrows {
-        ("contraction", "expansion", "narrows")
-    } else {
-        ("expansion", "contraction", "widens")
-    };
-    let from_to = format!(
-        "from {} to {}",
-        told(network, before.0, before.1),
-        told(network, after.0, after.1)
+    let fits = !agree(before.1, after.1) && (after.1 < before.1) == narrows;
+    (!fits).then_some(Misfit {
+        element,
+        kind: if narrows { "contraction" } else { "expansion" },
+        before,
+        after,
+    })
+}
+
+impl Misfit<'_> {
+    fn narrows(&self) -> bool {
+        matches!(self.element.kind, Kind::Contraction(_))
+    }
+
+    /// What it does and should not.
+    fn does(&self) -> &'static str {
+        if agree(self.before.1, self.after.1) {
+            "leaves the area as it is"
+        } else if self.narrows() {
+            "widens"
+        } else {
+            "narrows"
+        }
+    }
+
+    fn problem(&self, network: &Network<f64>) -> Problem {
+        let what = format!(
+            "this {} {}: it goes from {} to {}",
+            self.kind,
+            self.does(),
+            told(network, self.before.0, self.before.1),
+            told(network, self.after.0, self.after.1)
+        );
+        let hint = match (agree(self.before.1, self.after.1), self.narrows()) {
+            (true, true) => "a contraction narrows: remove it, or correct a neighbour's area",
+            (true, false) => "an expansion widens: remove it, or correct a neighbour's area",
+            (false, true) => "make it kind = \"expansion\", or correct a neighbour's area",
+            (false, false) => "make it kind = \"contraction\", or correct a neighbour's area",
+        };
+        Problem::error(&self.element.name, what).hint(hint)
+    }
+}
+
+/// The area between two area changes fits neither of them.
+fn between_misfits(network: &Network<f64>, first: &Misfit<'_>, second: &Misfit<'_>) -> Problem {
+    let area = |(section, area)| told(network, section, area);
+    let told_of = |m: &Misfit<'_>| format!("the {} `{}`", m.kind, m.element.name);
+    let what = format!(
+        "this area, {}, fits neither neighbour: {} from {} {}, {} to {} {}",
+        area(first.after),
+        told_of(first),
+        area(first.before),
+        first.does(),
+        told_of(second),
+        area(second.after),
+        second.does(),
     );
-    if agree(before.1, after.1) {
-        let what = format!("this {kind} leaves the area as it is: it goes {from_to}");
-        return Some(Problem::error(&element.name, what).hint(format!(
-            "a {kind} {verb}: remove it, or correct a neighbour's area"
-        )));
-    }
-    if (after.1 < before.1) == narrows {
-        return None;
-    }
-    let opposite = if narrows { "widens" } else { "narrows" };
-    let what = format!("this {kind} {opposite}: it goes {from_to}");
-    Some(Problem::error(&element.name, what).hint(format!(
-        "make it kind = \"{other}\", or correct a neighbour's area"
-    )))
+    Problem::error(knob_name(&network.layout, first.after.0), what)
+        .hint("correct this area, or the kinds of both neighbours")
 }
 
 fn unsized_stretch(elements: &[Element], links: &[Link], stretch: &Stretch) -> Option<Problem> {

@@ -30,6 +30,9 @@ pub(crate) fn out_of_range(name: &str, spec: &KnobSpec, value: f64) -> Option<Pr
         Range::Any => "be finite".to_owned(),
         Range::Positive => "be greater than zero".to_owned(),
         Range::NotNegative => "not be negative".to_owned(),
+        Range::Subsonic => {
+            "be zero or more and less than 1: only subsonic flow is described".to_owned()
+        }
         Range::Above(bound) => format!("be greater than {}", number(bound)),
     };
     let key = spec.key;
@@ -45,16 +48,26 @@ pub(crate) fn choked_without_flow(network: &Network<f64>) -> Vec<Problem> {
         return problems;
     };
     let flow = layout.knobs.get(still.0).map_or("feed", |k| &k.name);
-    for element in &layout.elements {
-        let choked = match &element.kind {
+    let choked: Vec<&str> = layout
+        .elements
+        .iter()
+        .filter(|element| match &element.kind {
             Kind::Feed(feed) => feed.end == FeedEnd::Choked,
             Kind::Exit(exit) => matches!(exit.end, ExitEnd::Choked { .. }),
             _ => false,
-        };
-        if choked {
+        })
+        .map(|element| element.name.as_str())
+        .collect();
+    let hint = "state a flow, or end = \"closed\" for still gas behind a shut valve";
+    match *choked.as_slice() {
+        [] => {}
+        [one] => {
             let what = format!("this end is choked, but nothing flows: `{flow}` is zero");
-            let hint = "state a flow, or end = \"closed\" for still gas behind a shut valve";
-            problems.push(Problem::error(format!("{}.end", element.name), what).hint(hint));
+            problems.push(Problem::error(format!("{one}.end"), what).hint(hint));
+        }
+        [_, ..] => {
+            let what = format!("nothing flows: `{flow}` is zero, but both ends are choked");
+            problems.push(Problem::error(flow, what).hint(hint));
         }
     }
     problems

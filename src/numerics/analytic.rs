@@ -52,12 +52,9 @@ pub struct Rounding {
 }
 
 impl Rounding {
-    /// Bound of the rounding error of the `order`-th Taylor coefficient (0 or 1).
+    /// Bound of the rounding error of the `order`-th Taylor coefficient (0 to 3).
     pub fn floor(&self, bounds: &[f64; TAYLOR], modulus: f64, order: usize) -> f64 {
-        let (b, next) = match order {
-            0 => (bounds[0], bounds[1]),
-            _ => (bounds[1], 2.0 * bounds[2]),
-        };
+        let (b, next) = (bounds[order], (order + 1) as f64 * bounds[order + 1]);
         0.5 * f64::EPSILON * (self.values * b + self.arguments * modulus * next)
     }
 }

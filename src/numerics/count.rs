@@ -90,6 +90,8 @@ struct Sample {
     s: Complex64,
     value: Complex64,
     slope: Complex64,
+    /// Moduli of the three, which every segment that ends here asks for.
+    moduli: [f64; 3],
 }
 
 /// Most halvings of one segment before a zero is taken to lie on it.
@@ -168,7 +170,12 @@ impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
         if !(value.is_finite() && slope.is_finite()) {
             return Err(CountError::Overflow { at: s });
         }
-        Ok(Sample { s, value, slope })
+        Ok(Sample {
+            s,
+            value,
+            slope,
+            moduli: [s.norm(), value.norm(), slope.norm()],
+        })
     }
 
     /// Bounds for a segment; its region is widened in steps, so that neighbours share an evaluation.
@@ -227,19 +234,18 @@ impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
     ) -> Result<i64, CountError> {
         let h = (b.s - a.s).norm();
         let along = (b.s - a.s) / h;
-        let modulus = a.s.norm().max(b.s.norm());
+        let ([sa, va, _], [sb, vb, _]) = (a.moduli, b.moduli);
+        let modulus = sa.max(sb);
         let floor = self.rounding.floor(bounds, modulus, 0);
         let slope_floor = self.rounding.floor(bounds, modulus, 1);
         for p in [&a, &b] {
-            let excess =
-                p.value.norm() > bounds[0] + floor || p.slope.norm() > bounds[1] + slope_floor;
-            if excess {
+            let [_, value, slope] = p.moduli;
+            if value > bounds[0] + floor || slope > bounds[1] + slope_floor {
                 return Err(CountError::BoundContradicted { at: p.s });
             }
         }
         let remainder = bounds[4] * h.powi(4) / 16.0;
         let noise = floor + slope_floor * h / 3.0;
-        let (va, vb) = (a.value.norm(), b.value.norm());
         if va > floor && vb > floor {
             let control = [
                 a.value,

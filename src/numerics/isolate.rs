@@ -3,8 +3,9 @@
 //! With `f(z + h) = c_0 + c_1 h + R`, `|R| <= B_2 r^2` on `|h| <= r`, Rouche's theorem against the linear
 //! part gives exactly one zero in the disc of radius `r` when `|c_1| r > |c_0| + B_2 r^2`: for every `r`
 //! between the roots `r-` and `r+` of that quadratic. `r-` bounds the error of `z`; the disc of radius
-//! `r+` holds no other zero. Likewise against the quadratic part, with `|R| <= B_3 r^3`: exactly two zeros
-//! when `|c_2| r^2 > |c_0| + |c_1| r + B_3 r^3`. The computed `c_k` are widened by the rounding floor.
+//! `r+` holds no other zero. Where `B_2` is too far above `|c_2|` for that, `|R| <= |c_2| r^2 + |c_3| r^3 + B_4 r^4`.
+//! Likewise against the quadratic part: exactly two zeros when
+//! `|c_2| r^2 > |c_0| + |c_1| r + |c_3| r^3 + B_4 r^4`. The computed `c_k` are widened by the rounding floor.
 
 use num_complex::Complex64;
 
@@ -27,9 +28,13 @@ pub struct Zero {
     pub settled: bool,
 }
 
-/// The scale on which a function varies at `z`: `B_0/B_1`, the reciprocal of an effective delay.
+/// The scale on which a function varies between the real axis and `z`: `B_0/B_1`, the reciprocal of an
+/// effective delay.
 pub fn scale<F: Analytic + ?Sized>(f: &F, z: Complex64) -> f64 {
-    let b = f.bound(&Region::disc(z, 0.0));
+    let b = f.bound(&Region {
+        omega: 0.0,
+        ..Region::disc(z, 0.0)
+    });
     b[0] / b[1].max(f64::MIN_POSITIVE)
 }
 
@@ -61,7 +66,7 @@ pub fn newton<F: Analytic + ?Sized>(
         if settled {
             return Some(z);
         }
-        if (z - start).norm() > reach {
+        if (z - start).norm_sqr() > reach * reach {
             return None;
         }
         last = size;
@@ -72,7 +77,8 @@ pub fn newton<F: Analytic + ?Sized>(
 /// Proves one zero near `z`, which Newton has reached, in a disc no larger than `reach`.
 pub fn simple<F: Analytic + ?Sized>(f: &F, z: Complex64, reach: f64) -> Option<Zero> {
     let rounding = f.rounding();
-    let mut reach = reach;
+    let (value, slope) = f.value_and_slope(z);
+    let (widest, mut reach) = (reach, reach);
     let mut best: Option<(f64, f64)> = None;
     let mut settled = false;
     // A smaller disc has a smaller bound; the widest proof wins.
@@ -82,7 +88,6 @@ pub fn simple<F: Analytic + ?Sized>(f: &F, z: Complex64, reach: f64) -> Option<Z
         }
         let bounds = f.bound(&Region::disc(z, reach));
         let floor = |order| rounding.floor(&bounds, z.norm(), order);
-        let (value, slope) = f.value_and_slope(z);
         let (e, a) = (value.norm() + floor(0), slope.norm() - floor(1));
         let root = a * a - 4.0 * bounds[2] * e;
         if a > 0.0 && root > 0.0 {
@@ -104,6 +109,11 @@ pub fn simple<F: Analytic + ?Sized>(f: &F, z: Complex64, reach: f64) -> Option<Z
             }
         }
         reach *= 0.25;
+    }
+    if best.is_none() {
+        best = outweighed(f, z, widest, 1);
+        let here = f.bound(&Region::disc(z, 0.0));
+        settled = value.norm() <= 2.0 * rounding.floor(&here, z.norm(), 0);
     }
     let (error, radius) = best?;
     Some(Zero {
@@ -141,7 +151,15 @@ pub fn pair<F: Analytic + ?Sized>(
         }
     }
     let [c0, c1, c2, _] = f.taylor(z);
-    let both = two_zeros(f, z, reach, [c0, c1, c2])?;
+    let (error, radius) = outweighed(f, z, reach, 2)?;
+    let both = Zero {
+        at: z,
+        error,
+        radius,
+        multiplicity: 2,
+        real: false,
+        settled: true,
+    };
     let root = (c1 * c1 - c0 * c2 * 4.0).sqrt();
     let mut halves = Vec::new();
     for sign in [1.0, -1.0] {
@@ -162,25 +180,28 @@ pub fn pair<F: Analytic + ?Sized>(
     Some(vec![both])
 }
 
-fn two_zeros<F: Analytic + ?Sized>(
+/// Least and greatest radius found of a disc about `z` that holds as many zeros as the `order` says:
+/// `|c_order| r^order` outweighs the other coefficients to the third and `B_4 r^4`. The coefficients
+/// themselves may be far below their bounds.
+fn outweighed<F: Analytic + ?Sized>(
     f: &F,
     z: Complex64,
     reach: f64,
-    c: [Complex64; 3],
-) -> Option<Zero> {
-    let rounding = f.rounding();
+    order: usize,
+) -> Option<(f64, f64)> {
+    let (rounding, here) = (f.rounding(), f.bound(&Region::disc(z, 0.0)));
+    let sizes = f.taylor(z).map(|c| c.norm());
+    let floor = |k| rounding.floor(&here, z.norm(), k);
+    let most: [f64; 4] = std::array::from_fn(|k| sizes[k] + floor(k));
     let mut r = reach;
     let (mut least, mut greatest) = (None, None);
     while r > 1e-12 * (reach + z.norm()) {
-        let b = f.bound(&Region::disc(z, r));
-        let floor = |order| rounding.floor(&b, z.norm(), order);
-        // The floor of the second coefficient: one order up again, taken from the same analysis.
-        let second = 0.5
-            * f64::EPSILON
-            * (rounding.values * b[2] + 3.0 * rounding.arguments * z.norm() * b[3]);
-        let least_quadratic = (c[2].norm() - second) * r * r;
-        let rest = c[0].norm() + floor(0) + (c[1].norm() + floor(1)) * r + b[3] * r.powi(3);
-        if least_quadratic > rest {
+        let powers = [1.0, r, r * r, r * r * r];
+        let terms = most.iter().zip(powers).map(|(c, p)| c * p);
+        let others = terms.enumerate().filter(|(k, _)| *k != order);
+        let rest =
+            others.map(|(_, t)| t).sum::<f64>() + f.bound(&Region::disc(z, r))[4] * r.powi(4);
+        if (sizes[order] - floor(order)) * powers[order] > rest {
             greatest = greatest.or(Some(r));
             least = Some(r);
         } else if least.is_some() {
@@ -188,13 +209,5 @@ fn two_zeros<F: Analytic + ?Sized>(
         }
         r *= 0.8;
     }
-    let (error, radius) = (least?, greatest?);
-    Some(Zero {
-        at: z,
-        error,
-        radius,
-        multiplicity: 2,
-        real: false,
-        settled: true,
-    })
+    Some((least?, greatest?))
 }

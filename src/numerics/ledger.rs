@@ -49,7 +49,8 @@ impl<'f, F: Analytic + ?Sized> Ledger<'f, F> {
 
     /// Whether a listed disc holds `z`, which would then converge to the zero in it.
     pub fn covers(&self, z: Complex64) -> bool {
-        self.zeros.iter().any(|k| (k.at - z).norm() < k.radius)
+        let holds = |k: &Zero| (k.at - z).norm_sqr() < k.radius * k.radius;
+        self.zeros.iter().any(holds)
     }
 
     /// Offers a point that Newton has reached.

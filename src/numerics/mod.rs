@@ -3,6 +3,7 @@
 pub mod analytic;
 pub mod count;
 pub mod dual;
+pub mod fine;
 pub mod isolate;
 pub mod ledger;
 pub mod zeros;

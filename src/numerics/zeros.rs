@@ -4,7 +4,8 @@
 //!    edge asks for another pad.
 //! 2. Newton from a staggered grid of pitch `1.6 B_0/B_1`, where the first step is short; each point
 //!    reached is proved ([`isolate`]) and entered ([`ledger`](super::ledger)), until the
-//!    weights add up to the count.
+//!    weights add up to the count. Zeros expected somewhere, as those of a function much like this one,
+//!    are tried before the grid.
 //! 3. Else Newton deflated by the zeros found, then subdivision with counts that must add up.
 //! 4. The zeros within the window asked for are the list; one whose error disc straddles its edge makes
 //!    the list incomplete and is named.
@@ -60,6 +61,9 @@ pub struct Search {
     pub zeros: Vec<Zero>,
     /// Number of zeros in the window, with multiplicity; absent where none could be counted.
     pub expected: Option<i64>,
+    /// Every zero met, those just outside the window among them: where to start for a function much
+    /// like this one.
+    pub met: Vec<Complex64>,
     /// Empty when the list is proved complete.
     pub doubts: Vec<Doubt>,
     /// Work done.
@@ -89,6 +93,17 @@ pub enum Scan {
 
 /// Finds every zero in the window.
 pub fn search<F: Analytic + ?Sized>(f: &F, window: &Rectangle, scan: Scan) -> Search {
+    search_from(f, window, scan, &[])
+}
+
+/// The same, with points near which zeros are to be expected. They are tried first and may spare the
+/// grid; what they cannot do is change the count that the list is held against.
+pub fn search_from<F: Analytic + ?Sized>(
+    f: &F,
+    window: &Rectangle,
+    scan: Scan,
+    starts: &[Complex64],
+) -> Search {
     let symmetric = f.is_symmetric();
     let mut walker = Walker::new(f);
     let mut counted = Err(CountError::Overflow {
@@ -112,6 +127,7 @@ pub fn search<F: Analytic + ?Sized>(f: &F, window: &Rectangle, scan: Scan) -> Se
             return Search {
                 zeros: Vec::new(),
                 expected: None,
+                met: Vec::new(),
                 doubts: vec![Doubt::NotCounted(e)],
                 effort: walker.effort,
             };
@@ -124,6 +140,7 @@ pub fn search<F: Analytic + ?Sized>(f: &F, window: &Rectangle, scan: Scan) -> Se
         symmetric,
         pitch: 1.6 * scale,
         scan,
+        starts,
     }
     .run(&mut ledger, &mut walker);
     walker.effort.evaluations += ledger.evaluations;
@@ -171,10 +188,12 @@ pub fn certify<F: Analytic + ?Sized>(
     let mut zeros = Vec::new();
     let mut weight = 0;
     for zero in ledger.zeros() {
-        let on_axis = symmetric && (zero.real || zero.at.im <= zero.error);
+        // The axis is no edge of a symmetric window. Where a window without symmetry begins at it, a
+        // zero that cannot be told from it is in.
+        let near_axis = zero.real || zero.at.im.abs() <= zero.error;
+        let on_axis = near_axis && (symmetric || window.omega.0 == 0.0);
         let mut seen = *zero;
         if on_axis {
-            // The axis is no edge of a symmetric window.
             seen.at.im = zero.at.im.max(zero.error);
         }
         if padded.holds(seen.at, zero.error) != Some(false) {
@@ -188,7 +207,7 @@ pub fn certify<F: Analytic + ?Sized>(
             continue;
         }
         match edges.holds(seen.at, zero.error) {
-            Some(true) => zeros.push(*zero),
+            Some(true) => zeros.push(on_or_above(zero, on_axis)),
             Some(false) => {}
             None => {
                 zeros.push(*zero);
@@ -229,8 +248,19 @@ pub fn certify<F: Analytic + ?Sized>(
     Search {
         zeros,
         expected: Some(expected),
+        met: ledger.zeros().iter().map(|z| z.at).collect(),
         doubts,
         effort,
+    }
+}
+
+/// A zero on the axis as one not below it; its error covers the way it was moved.
+fn on_or_above(zero: &Zero, on_axis: bool) -> Zero {
+    let below = if on_axis { (-zero.at.im).max(0.0) } else { 0.0 };
+    Zero {
+        at: Complex64::new(zero.at.re, zero.at.im + below),
+        error: zero.error + below,
+        ..*zero
     }
 }
 
@@ -241,17 +271,28 @@ struct Hunt<'a, F: ?Sized> {
     symmetric: bool,
     pitch: f64,
     scan: Scan,
+    starts: &'a [Complex64],
 }
 
 impl<F: Analytic + ?Sized> Hunt<'_, F> {
     fn run(&self, ledger: &mut Ledger<'_, F>, walker: &mut Walker<'_, F>) {
-        let pitch = self.pitch;
-        self.grid(ledger, walker, pitch);
+        for &start in self.starts {
+            if self.counted(ledger) {
+                return;
+            }
+            if self.padded.holds(start, self.pitch) != Some(false) {
+                self.approach(ledger, walker, start);
+            }
+        }
+        if self.counted(ledger) {
+            return;
+        }
+        self.grid(ledger, walker);
         if self.weight(ledger) >= self.count {
             return;
         }
         walker.effort.fallbacks += 1;
-        self.deflated(ledger, walker, 0.5 * pitch);
+        self.deflated(ledger, walker, 0.5 * self.pitch);
         if self.weight(ledger) >= self.count {
             return;
         }
@@ -279,6 +320,11 @@ impl<F: Analytic + ?Sized> Hunt<'_, F> {
             .sum()
     }
 
+    /// Whether nothing more is to be looked for.
+    fn counted(&self, ledger: &Ledger<'_, F>) -> bool {
+        self.scan == Scan::UntilCounted && self.weight(ledger) >= self.count
+    }
+
     /// Points of a staggered grid of the given pitch, at most some ten thousand.
     fn points(&self, pitch: f64) -> impl Iterator<Item = Complex64> {
         let (g, w) = (self.padded.growth, self.padded.omega);
@@ -296,30 +342,35 @@ impl<F: Analytic + ?Sized> Hunt<'_, F> {
         })
     }
 
-    fn grid(&self, ledger: &mut Ledger<'_, F>, walker: &mut Walker<'_, F>, pitch: f64) {
-        let until_counted = self.scan == Scan::UntilCounted;
-        if until_counted && self.count <= 0 {
-            return;
-        }
+    fn grid(&self, ledger: &mut Ledger<'_, F>, walker: &mut Walker<'_, F>) {
+        let pitch = self.pitch;
         for start in self.points(pitch) {
             walker.effort.evaluations += 1;
             let (value, slope) = self.f.value_and_slope(start);
             let step = value / slope;
-            if !step.is_finite() || step.norm() > 1.2 * pitch {
+            if !step.is_finite() || step.norm_sqr() > (1.2 * pitch).powi(2) {
                 continue;
             }
-            let guess = start - step;
-            if ledger.covers(guess) {
-                continue;
-            }
-            let evaluations = &mut walker.effort.evaluations;
-            if let Some(z) = isolate::newton(self.f, guess, 4.0 * pitch, evaluations)
-                && ledger.offer(z) == Entry::New
-                && until_counted
-                && self.weight(ledger) >= self.count
-            {
+            if self.approach(ledger, walker, start - step) == Entry::New && self.counted(ledger) {
                 return;
             }
+        }
+    }
+
+    /// Newton from a guess that no listed disc holds.
+    fn approach(
+        &self,
+        ledger: &mut Ledger<'_, F>,
+        walker: &mut Walker<'_, F>,
+        guess: Complex64,
+    ) -> Entry {
+        if ledger.covers(guess) {
+            return Entry::Known;
+        }
+        let evaluations = &mut walker.effort.evaluations;
+        match isolate::newton(self.f, guess, 4.0 * self.pitch, evaluations) {
+            Some(z) => ledger.offer(z),
+            None => Entry::Unproven,
         }
     }
 

@@ -1,7 +1,7 @@
 //! A stability map as a figure: units for its axes and words for its labels.
 
 use super::map::{MapReport, rate};
-use super::{CAUTION, OUTSIDE, window_text};
+use super::{CAUTION, window_text};
 use crate::draw::{Axis, DesignPoint, DrawError, IsoLines, Quantity, StabilityMap, Words, map};
 use crate::studies::map::{Axis as Values, Point};
 use crate::units::{self, Dimension, write_rounded};
@@ -67,13 +67,10 @@ impl MapReport<'_> {
             "{}; {} \u{d7} {} networks, {certified}",
             self.heading.title, self.map.across.points, self.map.up.points
         );
-        let beyond = match tally.beyond {
-            0 => "",
-            _ => ", faster growth found in that band included",
-        };
         let footnote = format!(
-            "Largest growth rate of the modes in {}{beyond}. {OUTSIDE} {CAUTION}",
-            window_text(&self.map.window)
+            "Largest growth rate of the modes in {}. {} {CAUTION}",
+            window_text(&self.map.window),
+            self.growth_outside()
         );
         let (design_x, design_y) = self.design_values();
         let design = match self.design_mode() {

@@ -3,9 +3,9 @@
 use serde::Serialize;
 
 use super::document::WindowFields;
-use super::{Document, Heading, OUTSIDE, closing, window_text};
+use super::{Document, Heading, closing, window_text};
 use crate::draw::text::fixed;
-use crate::modes::{Mode, ModeList, Tendency};
+use crate::modes::{Mode, ModeList, Outside, Tendency};
 use crate::network::Network;
 use crate::problems::Problem;
 use crate::studies::cautions::{place, setting};
@@ -23,8 +23,8 @@ pub struct MapReport<'a> {
     pub map: &'a Map,
     /// The modes as the file states the network: at the design point.
     pub design: &'a ModeList,
-    /// Those beyond the window's upper edge, there.
-    pub design_beyond: &'a ModeList,
+    /// What grows outside the window there.
+    pub design_outside: &'a Outside,
     /// What qualifies it.
     pub warnings: &'a [Problem],
 }
@@ -37,7 +37,7 @@ struct Design {
     complete: bool,
     growth_per_s: Option<f64>,
     frequency_hz: Option<f64>,
-    growth_beyond_window_per_s: Option<f64>,
+    growth_outside_window_per_s: Option<f64>,
 }
 
 #[derive(Clone, Debug, Serialize)]
@@ -47,7 +47,8 @@ struct Counts {
     not_certified: usize,
     failed: usize,
     growing: usize,
-    growing_beyond_window: usize,
+    growing_outside_window: usize,
+    growth_not_excluded: usize,
 }
 
 #[derive(Clone, Debug, Serialize)]
@@ -62,11 +63,12 @@ struct Body<'a> {
     largest_growth_per_s: Vec<Vec<Option<f64>>>,
     frequency_hz_there: Vec<Vec<Option<f64>>>,
     complete: Vec<Vec<bool>>,
-    growth_beyond_window_per_s: Vec<Vec<Option<f64>>>,
+    growth_outside_window_per_s: Vec<Vec<Option<f64>>>,
     points: Counts,
     design_point: Design,
     window: WindowFields,
-    outside_window: &'static str,
+    growth_excluded_beyond: bool,
+    growth_outside: String,
 }
 
 impl<'a> MapReport<'a> {
@@ -91,7 +93,28 @@ impl<'a> MapReport<'a> {
 
     /// The fastest mode known at the design point.
     pub(super) fn design_mode(&self) -> Option<&Mode> {
-        self.design_beyond.leading().or(self.design.leading())
+        let both = [self.design_outside.fastest(), self.design.leading()];
+        let known = both.into_iter().flatten();
+        known.max_by(|a, b| a.growth().total_cmp(&b.growth()))
+    }
+
+    /// What the map says of growth outside its window, in a sentence.
+    pub(super) fn growth_outside(&self) -> String {
+        let tally = self.map.tally();
+        let top = self.map.window.frequency.1;
+        match (tally.open, tally.searched_to) {
+            (0, _) if tally.outside == 0 => {
+                format!("Growth outside the window is excluded up to {top:.0} Hz, by proof.")
+            }
+            (0, _) => format!(
+                "Growth outside the window is shown as well; more of it up to {top:.0} Hz is excluded, by proof."
+            ),
+            (open, Some(to)) if to > self.map.window.growth.1 => format!(
+                "Growth outside the window was searched up to {top:.0} Hz and at least {to:.0} 1/s; beyond, \
+                 it is not excluded at {open} points."
+            ),
+            (open, _) => format!("Growth outside the window is not excluded at {open} points."),
+        }
     }
 
     /// Each row as what `f` makes of its points.
@@ -123,14 +146,15 @@ impl<'a> MapReport<'a> {
             largest_growth_per_s: self.rows(|p| p.leading().map(|m| m.growth())),
             frequency_hz_there: self.rows(|p| p.leading().map(|m| m.frequency())),
             complete: self.rows(Point::complete),
-            growth_beyond_window_per_s: self.rows(|p| p.beyond().map(|m| m.growth())),
+            growth_outside_window_per_s: self.rows(|p| p.outside().map(|m| m.growth())),
             points: Counts {
                 total: tally.points,
                 complete: tally.complete,
                 not_certified: tally.doubtful,
                 failed: tally.failed,
                 growing: tally.growing,
-                growing_beyond_window: tally.beyond,
+                growing_outside_window: tally.outside,
+                growth_not_excluded: tally.open,
             },
             design_point: Design {
                 across: x,
@@ -139,10 +163,11 @@ impl<'a> MapReport<'a> {
                 complete: self.design.complete(),
                 growth_per_s: leading.map(|m| m.growth()),
                 frequency_hz: leading.map(|m| m.frequency()),
-                growth_beyond_window_per_s: self.design_beyond.leading().map(|m| m.growth()),
+                growth_outside_window_per_s: self.design_outside.fastest().map(|m| m.growth()),
             },
             window: (&map.window).into(),
-            outside_window: OUTSIDE,
+            growth_excluded_beyond: tally.outside == 0 && tally.open == 0,
+            growth_outside: self.growth_outside(),
         };
         Document::new("stillflame/map", &self.heading, body, self.warnings).to_json()
     }
@@ -166,7 +191,7 @@ impl<'a> MapReport<'a> {
             "largest_growth_per_s",
             "frequency_hz_there",
             "error_bound_per_s",
-            "growth_beyond_window_per_s",
+            "growth_outside_window_per_s",
             "complete",
             "failed",
         ])?;
@@ -179,7 +204,7 @@ impl<'a> MapReport<'a> {
                 number(mode.map(|m| m.growth())),
                 number(mode.map(|m| m.frequency())),
                 number(mode.map(|m| m.error_bound)),
-                number(point.beyond().map(|m| m.growth())),
+                number(point.outside().map(|m| m.growth())),
                 point.complete().to_string(),
                 matches!(point, Point::Failed(_)).to_string(),
             ])?;
@@ -271,9 +296,10 @@ impl<'a> MapReport<'a> {
         }
         let (x, y) = self.design_values();
         text.push_str(&format!(
-            "Design point: {}, {}\n{OUTSIDE}\n",
+            "Design point: {}, {}\n{}\n",
             setting(self.network, (map.across.knob, x)),
-            setting(self.network, (map.up.knob, y))
+            setting(self.network, (map.up.knob, y)),
+            self.growth_outside()
         ));
         text.push_str(&closing(self.warnings));
         text

@@ -24,9 +24,6 @@ use crate::problems::Problem;
 pub const CAUTION: &str = "Predictions are for screening. Combustion oscillations break hardware and \
     hurt people: confirm by rig test, and follow local codes and licensed practice.";
 
-/// What a list in a window leaves open.
-pub const OUTSIDE: &str = "Growth outside the window is not excluded.";
-
 /// Name and title of the network a report is of.
 #[derive(Clone, Copy, Debug)]
 pub struct Heading<'a> {

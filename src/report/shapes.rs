@@ -132,7 +132,7 @@ pub(super) fn csv_rows<'a>(
 pub(super) fn text(network: &Network, index: usize, mode: &Mode, shape: Option<&Shape>) -> String {
     let title = format!("\nShape of mode {}, {:.3} Hz", index + 1, mode.frequency());
     let Some(shape) = shape else {
-        return format!("{title}: the null vector did not settle.\n");
+        return format!("{title}: the null vector did not settle, or holds no pressure.\n");
     };
     use Lean::{Left, Right};
     let mut table = Table::new(&[Left, Left, Right, Right, Right, Right, Right]);

@@ -5,7 +5,7 @@ use crate::elements::Kind;
 use crate::elements::ends::{Exit, ExitEnd};
 use crate::knobs::KnobId;
 use crate::meanflow::{self, MeanFlow};
-use crate::modes::validity;
+use crate::modes::{Mode, validity};
 use crate::network::{Network, areas, values};
 use crate::problems::Problem;
 use crate::units::{Dimension, write_rounded};
@@ -109,7 +109,7 @@ pub fn warnings(
         }
         add(&mut found, known, &place, more);
     }
-    found.extend(beyond(network, map));
+    found.extend(outside(network, map));
     found.extend(unanswered(network, map));
     found
 }
@@ -162,21 +162,33 @@ fn moving(network: &Network, mean: &MeanFlow<f64>, across: Axis, up: Axis) -> Ve
     found
 }
 
-/// Points where a mode has left the window by growing.
-fn beyond(network: &Network, map: &Map) -> Option<Problem> {
-    let tally = map.tally();
-    let (x, y, fastest) = tally.greatest.filter(|_| tally.beyond > 0)?;
+/// Points where a mode grows outside the window.
+fn outside(network: &Network, map: &Map) -> Option<Problem> {
+    let mut count = 0;
+    let mut fastest: Option<(f64, f64, Mode)> = None;
+    for (x, y, point) in map.placed() {
+        let Some(mode) = point.outside() else {
+            continue;
+        };
+        count += 1;
+        if fastest.is_none_or(|(_, _, m)| m.growth() < mode.growth()) {
+            fastest = Some((x, y, mode));
+        }
+    }
+    let (x, y, fastest) = fastest?;
     let what = format!(
-        "at {} of {} points a mode grows faster than the window's upper edge of {:.0} 1/s; the fastest, at \
-         {}: {:.0} 1/s at {:.1} Hz",
-        tally.beyond,
-        tally.points,
-        map.window.growth.1,
+        "at {count} of {} points a mode grows outside the window; the fastest, at {}: {:.0} 1/s at {:.1} Hz",
+        map.points.len(),
         place(network, (map.across.knob, x), (map.up.knob, y)),
         fastest.growth(),
         fastest.frequency()
     );
-    Some(Problem::warning("search.growth", what).hint(
+    let subject = if fastest.growth() > map.window.growth.1 {
+        "search.growth"
+    } else {
+        "search.frequency"
+    };
+    Some(Problem::warning(subject, what).hint(
         "the figure shows those growth rates; the lists and largest_growth_per_s keep to the window",
     ))
 }

@@ -1,10 +1,12 @@
 //! A stability map: the certified mode list at every point of a plane of two knobs.
 //!
-//! Values come from their index, `low + i (high - low)/(n - 1)`, and both ends are exact. Every point
-//! is computed on its own, so the answer does not depend on the number of threads.
+//! Values come from their index, `low + i (high - low)/(n - 1)`, and both ends are exact. Every point has
+//! its own count and its own proofs. A search starts at the zeros met at the point before in its stretch
+//! of a row; stretches are fixed, so the answer does not depend on the number of threads.
 
 use std::ops::ControlFlow;
 
+use num_complex::Complex64;
 use rayon::prelude::*;
 
 use crate::acoustics;
@@ -14,7 +16,7 @@ use crate::elements::ends::{ExitEnd, FeedEnd};
 use crate::flame::ResponseLaw;
 use crate::knobs::KnobId;
 use crate::meanflow::MeanFlow;
-use crate::modes::{self, Mode, Scan, Solved, Tendency, Window};
+use crate::modes::{self, Mode, Scan, Tendency, Window};
 use crate::network::Network;
 use crate::problems::{Problem, Problems};
 
@@ -58,8 +60,12 @@ impl Axis {
 pub struct Found {
     /// The mode in the window that grows fastest, or decays slowest.
     pub leading: Option<Mode>,
-    /// The fastest of those that grow faster than the window's upper edge (see [`modes::beyond`]).
-    pub beyond: Option<Mode>,
+    /// The fastest of those that grow outside it, up to its highest frequency (see [`modes::outside`]).
+    pub outside: Option<Mode>,
+    /// Whether further growth there is excluded, by proof.
+    pub excluded: bool,
+    /// Growth rate (1/s) up to which was searched.
+    pub searched_to: f64,
 }
 
 /// What is known of one point.
@@ -91,14 +97,20 @@ impl Point {
         self.found().leading
     }
 
-    /// The fastest mode beyond the window's upper edge.
-    pub fn beyond(&self) -> Option<Mode> {
-        self.found().beyond
+    /// The fastest mode that grows outside the window.
+    pub fn outside(&self) -> Option<Mode> {
+        self.found().outside
     }
 
-    /// The fastest mode known, in the window or beyond its upper edge.
+    /// The fastest mode known, in the window or outside.
     pub fn fastest(&self) -> Option<Mode> {
-        self.beyond().or(self.leading())
+        let both = [self.outside(), self.leading()].into_iter().flatten();
+        both.max_by(|a, b| a.growth().total_cmp(&b.growth()))
+    }
+
+    /// Whether growth beside the modes known is excluded, up to the window's highest frequency.
+    pub fn excluded(&self) -> bool {
+        self.found().excluded
     }
 
     /// Whether the list at the point is proved complete.
@@ -150,9 +162,13 @@ pub struct Tally {
     pub failed: usize,
     /// Those where a mode grows, whether or not the list is complete.
     pub growing: usize,
-    /// Those where a mode grows faster than the window's upper edge.
-    pub beyond: usize,
-    /// The largest growth rate found, in the window or beyond, with its values on `across` and `up`.
+    /// Those where a mode grows outside the window.
+    pub outside: usize,
+    /// Those where growth beside the modes known is not excluded.
+    pub open: usize,
+    /// Least growth rate (1/s) up to which growth outside the window was searched at those.
+    pub searched_to: Option<f64>,
+    /// The largest growth rate found, in the window or outside, with its values on `across` and `up`.
     pub greatest: Option<(f64, f64, Mode)>,
 }
 
@@ -167,12 +183,15 @@ impl Map {
                 Point::Doubtful { .. } => tally.doubtful += 1,
                 Point::Failed(_) => tally.failed += 1,
             }
+            if !point.excluded() {
+                tally.open += 1;
+                let to = point.found().searched_to;
+                tally.searched_to = Some(tally.searched_to.map_or(to, |least| least.min(to)));
+            }
             let Some(mode) = point.fastest() else {
                 continue;
             };
-            if point.beyond().is_some() {
-                tally.beyond += 1;
-            }
+            tally.outside += usize::from(point.outside().is_some());
             if mode.tendency() == Tendency::Grows {
                 tally.growing += 1;
             }
@@ -186,6 +205,9 @@ impl Map {
         tally
     }
 }
+
+/// Points of a row that are solved one after another.
+const STRETCH: usize = 50;
 
 /// Asks for the modes at every point of the plane, on all cores.
 ///
@@ -201,46 +223,70 @@ pub fn map(
 ) -> Option<Map> {
     let moves = moves_mean_flow(network, across.knob) || moves_mean_flow(network, up.knob);
     let held = (!moves).then_some(mean);
-    let columns = across.points;
-    let points: Option<Vec<Point>> = (0..columns * up.points)
+    let in_row = across.points.div_ceil(STRETCH);
+    let stretches: Option<Vec<Vec<Point>>> = (0..in_row * up.points)
         .into_par_iter()
         .map(|index| {
-            let (i, j) = (index % columns, index / columns);
+            let (first, j) = (index % in_row * STRETCH, index / in_row);
             let mut here = network.clone();
-            here.values[across.knob] = across.value(i);
-            here.values[up.knob] = up.value(j);
-            let point = point(&here, held, window);
-            watch().is_continue().then_some(point)
+            let mut known = Known::default();
+            (first..across.points.min(first + STRETCH))
+                .map(|i| {
+                    here.values[across.knob] = across.value(i);
+                    here.values[up.knob] = up.value(j);
+                    let point = point(&here, held, window, &mut known);
+                    watch().is_continue().then_some(point)
+                })
+                .collect()
         })
         .collect();
     Some(Map {
         across,
         up,
         window,
-        points: points?,
+        points: stretches?.into_iter().flatten().collect(),
     })
 }
 
-fn point(network: &Network, held: Option<&MeanFlow<f64>>, window: Window) -> Point {
-    let solved = match held {
-        None => modes::solve(network),
-        Some(mean) => acoustics::assemble(network, mean).map(|acoustics| Solved {
-            mean: mean.clone(),
-            acoustics,
-        }),
+/// What was met at the point before.
+#[derive(Default)]
+struct Known {
+    zeros: Vec<Complex64>,
+    clear_beyond: f64,
+}
+
+/// One point. `known` is of the point before and is left with what is met here.
+fn point(
+    network: &Network,
+    held: Option<&MeanFlow<f64>>,
+    window: Window,
+    known: &mut Known,
+) -> Point {
+    let acoustics = match held {
+        None => modes::solve(network).map(|solved| solved.acoustics),
+        Some(mean) => acoustics::assemble(network, mean),
     };
-    let solved = match solved {
-        Ok(solved) => solved,
+    let acoustics = match acoustics {
+        Ok(acoustics) => acoustics,
         Err(Problems(problems)) => {
             let unsaid = || Problem::error("network", "this point has no solution");
             return Point::Failed(Box::new(problems.into_iter().next().unwrap_or_else(unsaid)));
         }
     };
     // The characteristic function is analytic by construction.
-    let list = modes::find(&solved, window, Scan::UntilCounted);
+    let list = modes::find_from(&acoustics, window, Scan::UntilCounted, &known.zeros);
+    let outside = modes::outside_from(&acoustics, window, known.clear_beyond, &known.zeros);
+    known.zeros.clear();
+    known.zeros.extend(list.met.iter().chain(&outside.met));
+    known.clear_beyond = outside.searched_to;
+    let grows = outside
+        .fastest()
+        .filter(|m| m.tendency() == Tendency::Grows);
     let found = Found {
         leading: list.leading().copied(),
-        beyond: modes::beyond(&solved, window).leading().copied(),
+        outside: grows.copied(),
+        excluded: outside.rest_excluded(),
+        searched_to: outside.searched_to,
     };
     match list.doubts.first() {
         None => Point::Certified(found),

@@ -205,6 +205,9 @@ pub fn parse_number(text: &str) -> Result<f64, QuantityError> {
 /// As [`parse`]; whether `A` lies below `B` is the caller's question.
 pub fn parse_span(text: &str, wanted: Dimension) -> Result<(f64, f64), QuantityError> {
     let text = plain_number(text);
+    if text.is_empty() {
+        return Err(QuantityError::Empty { wanted });
+    }
     let words: Vec<&str> = text.split(' ').collect();
     let mut at = words
         .iter()
@@ -312,7 +315,7 @@ fn find(text: &str, wanted: Dimension, all: &str) -> Result<&'static Unit, Quant
     let meant = match (wanted, plain.as_str()) {
         (Dimension::Temperature, "C" | "c") => Some("degC"),
         (Dimension::Temperature, "F" | "f") => Some("degF"),
-        _ => nearest(&plain, wanted.unit_names()),
+        _ => nearest(&plain, wanted.unit_names()).or_else(|| table::spelt_out(&plain, wanted)),
     };
     Err(QuantityError::UnknownUnit {
         unit,

@@ -218,3 +218,46 @@ pub(super) const fn units(dimension: Dimension) -> &'static [Unit] {
         Dimension::MolarMass => MOLAR_MASS,
     }
 }
+
+/// Units as they are said, for a hint on what stands in their place.
+const SPELT_OUT: &[(&str, &str)] = &[
+    ("metre", "m"),
+    ("meter", "m"),
+    ("millimetre", "mm"),
+    ("millimeter", "mm"),
+    ("centimetre", "cm"),
+    ("centimeter", "cm"),
+    ("inch", "in"),
+    ("inche", "in"),
+    ("feet", "ft"),
+    ("foot", "ft"),
+    ("litre", "L"),
+    ("liter", "L"),
+    ("kelvin", "K"),
+    ("celsiu", "degC"),
+    ("degree celsiu", "degC"),
+    ("fahrenheit", "degF"),
+    ("pascal", "Pa"),
+    ("bara", "bar"),
+    ("atmosphere", "atm"),
+    ("second", "s"),
+    ("sec", "s"),
+    ("millisecond", "ms"),
+    ("msec", "ms"),
+    ("microsecond", "us"),
+    ("minute", "min"),
+    ("hertz", "Hz"),
+    ("kilohertz", "kHz"),
+    ("degree", "deg"),
+    ("radian", "rad"),
+    ("rad/", "1/s"),
+];
+
+/// The unit of a dimension that a word such as `metres` says.
+pub(super) fn spelt_out(word: &str, wanted: Dimension) -> Option<&'static str> {
+    let word = word.to_lowercase();
+    let singular = word.strip_suffix('s').unwrap_or(&word);
+    let (_, name) = SPELT_OUT.iter().find(|(said, _)| *said == singular)?;
+    let mut names = units(wanted).iter().map(|u| u.name);
+    names.find(|n| n == name)
+}

@@ -25,6 +25,7 @@ use super::law::Law;
 use super::primitive::{Block, Chain, Joint, Plane, Row, Step, Travel};
 use super::tape::{Tape, Writer};
 use crate::numerics::dual::Real;
+use crate::numerics::fine::Fine;
 
 /// The characteristic function of a chain with the factor that relates it to its global matrix.
 #[derive(Clone, Debug, PartialEq)]
@@ -83,9 +84,22 @@ struct Front<'a, T> {
 
 /// Eliminates a chain.
 ///
+/// The constants of the program are differences of products that may all but cancel, and a wave that
+/// grows by ten orders of magnitude along a duct enlarges what rounding leaves of them. So they are
+/// worked out in twice the precision and rounded once.
+///
 /// # Errors
 /// See [`EliminationError`].
 pub fn eliminate<T: Real>(chain: &Chain<T>) -> Result<Characteristic<T>, EliminationError> {
+    let fine = walk(&chain.map(Fine::exact))?;
+    Ok(Characteristic {
+        tape: fine.tape.map(Fine::rounded),
+        joints: fine.joints.rounded(),
+        closed_late: fine.closed_late.rounded(),
+    })
+}
+
+fn walk<T: Real>(chain: &Chain<T>) -> Result<Characteristic<T>, EliminationError> {
     let zero = T::from(0.0);
     let mut front = Front {
         chain,

@@ -98,6 +98,44 @@ pub struct Chain<T> {
     pub end: End<T>,
 }
 
+impl<T: Copy> Chain<T> {
+    /// The same chain with each number replaced by `f` of it.
+    pub fn map<U>(&self, f: impl Fn(T) -> U + Copy) -> Chain<U> {
+        let row = |r: &Row<T>| r.map(f);
+        let block = |b: &Block<T>| b.map(|r| r.map(f));
+        let signal = |(law, sense): &(Law<T>, Row<T>)| (law.map(|x| f(*x)), row(sense));
+        let term = |t: &Term<T>| Term {
+            law: t.law.map(|x| f(*x)),
+            sense: row(&t.sense),
+            at: t.at,
+        };
+        let step = |step: &Step<T>| match step {
+            Step::Travel(t) => Step::Travel(Travel {
+                downstream: f(t.downstream),
+                upstream: f(t.upstream),
+                entropy: t.entropy.as_ref().map(|law| law.map(|x| f(*x))),
+            }),
+            Step::Joint(j) => Step::Joint(Joint {
+                up: block(&j.up),
+                down: block(&j.down),
+                row: row(&j.row),
+                terms: j.terms.iter().map(term).collect(),
+            }),
+        };
+        Chain {
+            start: Start {
+                rows: self.start.rows.map(|r| r.map(f)),
+                term: self.start.term.as_ref().map(signal),
+            },
+            steps: self.steps.iter().map(step).collect(),
+            end: End {
+                row: row(&self.end.row),
+                term: self.end.term.as_ref().map(signal),
+            },
+        }
+    }
+}
+
 impl<T> Chain<T> {
     /// Number of planes.
     pub fn planes(&self) -> usize {
@@ -108,40 +146,6 @@ impl<T> Chain<T> {
 impl Chain<f64> {
     /// The same chain in another number type, as constants.
     pub fn lift<T: Real>(&self) -> Chain<T> {
-        let row = |r: &Row<f64>| r.map(T::from);
-        let law = |l: &Law<f64>| l.map(|&x| T::from(x));
-        let term = |t: &Option<(Law<f64>, Row<f64>)>| t.as_ref().map(|(l, r)| (law(l), row(r)));
-        let step = |s: &Step<f64>| match s {
-            Step::Travel(t) => Step::Travel(Travel {
-                downstream: T::from(t.downstream),
-                upstream: T::from(t.upstream),
-                entropy: t.entropy.as_ref().map(law),
-            }),
-            Step::Joint(j) => Step::Joint(Joint {
-                up: j.up.map(|r| row(&r)),
-                down: j.down.map(|r| row(&r)),
-                row: row(&j.row),
-                terms: j
-                    .terms
-                    .iter()
-                    .map(|t| Term {
-                        law: law(&t.law),
-                        sense: row(&t.sense),
-                        at: t.at,
-                    })
-                    .collect(),
-            }),
-        };
-        Chain {
-            start: Start {
-                rows: self.start.rows.map(|r| row(&r)),
-                term: term(&self.start.term),
-            },
-            steps: self.steps.iter().map(step).collect(),
-            end: End {
-                row: row(&self.end.row),
-                term: term(&self.end.term),
-            },
-        }
+        self.map(T::from)
     }
 }

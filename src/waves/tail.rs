@@ -92,6 +92,10 @@ impl Arithmetic<f64> for Split {
         Self::constant(Complex64::ONE, 0.0)
     }
 
+    fn add(&self, a: Parts, b: Parts) -> Parts {
+        self.add_scaled(a, 1.0, b)
+    }
+
     fn add_scaled(&self, mut sum: Parts, k: f64, x: Parts) -> Parts {
         sum.degree = sum.degree.max(x.degree);
         for i in 0..=x.degree {
@@ -102,9 +106,10 @@ impl Arithmetic<f64> for Split {
         sum
     }
 
-    fn add_product(&self, mut sum: Parts, a: Parts, b: Parts) -> Parts {
+    fn product(&self, a: Parts, b: Parts) -> Parts {
+        let mut sum = self.zero();
         // Beyond MOST the powers pile up in the last place; the caller refuses such a tape beforehand.
-        sum.degree = sum.degree.max(a.degree + b.degree).min(MOST);
+        sum.degree = (a.degree + b.degree).min(MOST);
         for i in 0..=a.degree {
             for j in 0..=b.degree {
                 let k = (i + j).min(MOST);
@@ -138,11 +143,11 @@ impl Arithmetic<f64> for Split {
                     p.prompt[k] = c.into();
                     p.moduli[k] = c.abs();
                 }
-                self.add_product(self.zero(), p, self.delay(*delay))
+                self.product(p, self.delay(*delay))
             }
             Law::Complex { re, im, delay } => {
                 let value = Self::constant(Complex64::new(*re, *im), 0.0);
-                self.add_product(self.zero(), value, self.delay(*delay))
+                self.product(value, self.delay(*delay))
             }
         }
     }

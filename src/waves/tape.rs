@@ -20,12 +20,13 @@ use crate::numerics::dual::Real;
 /// Most slots the vector may have.
 pub const MOST_SLOTS: usize = 64;
 
-/// One nonzero coefficient of a map.
-#[derive(Clone, Copy, Debug, PartialEq)]
-struct Entry<T> {
-    row: u8,
-    column: u8,
-    coefficient: T,
+/// A constant real matrix without its zeros, row by row in one list.
+#[derive(Clone, Debug, PartialEq)]
+struct Sparse<T> {
+    /// Where each row ends in the list.
+    ends: Vec<usize>,
+    /// Column and coefficient.
+    entries: Vec<(u8, T)>,
 }
 
 #[derive(Clone, Debug, PartialEq)]
@@ -35,9 +36,8 @@ enum Op<T> {
         slots: Vec<u8>,
     },
     Map {
-        rows: usize,
-        constant: Vec<Entry<T>>,
-        lawful: Vec<(Law<T>, Vec<Entry<T>>)>,
+        constant: Sparse<T>,
+        lawful: Vec<(Law<T>, Sparse<T>)>,
     },
 }
 
@@ -55,8 +55,9 @@ pub(super) trait Arithmetic<T> {
     type Element: Copy;
     fn zero(&self) -> Self::Element;
     fn one(&self) -> Self::Element;
+    fn add(&self, a: Self::Element, b: Self::Element) -> Self::Element;
     fn add_scaled(&self, sum: Self::Element, k: T, x: Self::Element) -> Self::Element;
-    fn add_product(&self, sum: Self::Element, a: Self::Element, b: Self::Element) -> Self::Element;
+    fn product(&self, a: Self::Element, b: Self::Element) -> Self::Element;
     fn delay(&self, t: T) -> Self::Element;
     fn law(&self, law: &Law<T>) -> Self::Element;
 }
@@ -77,13 +78,16 @@ impl<T: Real, const N: usize> Arithmetic<T> for Taylor<T, N> {
         one
     }
     #[inline]
+    fn add(&self, a: Self::Element, b: Self::Element) -> Self::Element {
+        std::array::from_fn(|i| a[i] + b[i])
+    }
+    #[inline]
     fn add_scaled(&self, sum: Self::Element, k: T, x: Self::Element) -> Self::Element {
         std::array::from_fn(|i| sum[i] + x[i].scale(k))
     }
     #[inline]
-    fn add_product(&self, sum: Self::Element, a: Self::Element, b: Self::Element) -> Self::Element {
-        let p = law::product(&a, &b);
-        std::array::from_fn(|i| sum[i] + p[i])
+    fn product(&self, a: Self::Element, b: Self::Element) -> Self::Element {
+        law::product(&a, &b)
     }
     #[inline]
     fn delay(&self, t: T) -> Self::Element {
@@ -109,13 +113,16 @@ impl Arithmetic<f64> for Majorant<'_> {
         one
     }
     #[inline]
+    fn add(&self, a: Self::Element, b: Self::Element) -> Self::Element {
+        std::array::from_fn(|i| a[i] + b[i])
+    }
+    #[inline]
     fn add_scaled(&self, sum: Self::Element, k: f64, x: Self::Element) -> Self::Element {
         std::array::from_fn(|i| sum[i] + k.abs() * x[i])
     }
     #[inline]
-    fn add_product(&self, sum: Self::Element, a: Self::Element, b: Self::Element) -> Self::Element {
-        let p = law::real_product(&a, &b);
-        std::array::from_fn(|i| sum[i] + p[i])
+    fn product(&self, a: Self::Element, b: Self::Element) -> Self::Element {
+        law::real_product(&a, &b)
     }
     #[inline]
     fn delay(&self, t: f64) -> Self::Element {
@@ -127,17 +134,84 @@ impl Arithmetic<f64> for Majorant<'_> {
     }
 }
 
+impl<T: Real> Sparse<T> {
+    fn of(m: &Dense<T>) -> Self {
+        let mut sparse = Sparse {
+            ends: Vec::with_capacity(m.len()),
+            entries: Vec::new(),
+        };
+        for row in m {
+            let used = row.iter().enumerate().filter(|(_, x)| !x.is_exactly_zero());
+            sparse.entries.extend(used.map(|(j, &x)| (j as u8, x)));
+            sparse.ends.push(sparse.entries.len());
+        }
+        sparse
+    }
+
+    fn rows(&self) -> impl Iterator<Item = &[(u8, T)]> {
+        let mut from = 0;
+        self.ends.iter().map(move |&end| {
+            let row = &self.entries[from..end];
+            from = end;
+            row
+        })
+    }
+}
+
+/// `row . v`. The sum is held apart from the vectors, so that it can stay in registers.
+#[inline]
+fn dot<T: Real, A: Arithmetic<T>>(arithmetic: &A, row: &[(u8, T)], v: &[A::Element]) -> A::Element {
+    let add = |sum, &(j, k): &(u8, T)| arithmetic.add_scaled(sum, k, v[usize::from(j)]);
+    row.iter().fold(arithmetic.zero(), add)
+}
+
+impl<T: Copy> Sparse<T> {
+    fn map<U>(&self, f: impl Fn(T) -> U) -> Sparse<U> {
+        Sparse {
+            ends: self.ends.clone(),
+            entries: self.entries.iter().map(|&(j, x)| (j, f(x))).collect(),
+        }
+    }
+}
+
+impl<T: Copy> Tape<T> {
+    /// The same program with each number replaced by `f` of it.
+    pub fn map<U>(&self, f: impl Fn(T) -> U + Copy) -> Tape<U> {
+        let op = |op: &Op<T>| match op {
+            Op::Scale { delay, slots } => Op::Scale {
+                delay: f(*delay),
+                slots: slots.clone(),
+            },
+            Op::Map { constant, lawful } => Op::Map {
+                constant: constant.map(f),
+                lawful: lawful
+                    .iter()
+                    .map(|(law, b)| (law.map(|x| f(*x)), b.map(f)))
+                    .collect(),
+            },
+        };
+        Tape {
+            ops: self.ops.iter().map(op).collect(),
+            width: self.width,
+            rounding: self.rounding,
+            symmetric: self.symmetric,
+        }
+    }
+}
+
 impl<T: Real> Tape<T> {
     pub(super) fn run<A: Arithmetic<T>>(&self, arithmetic: &A) -> A::Element {
         match self.width {
-            0..=4 => self.run_in::<A, 4>(arithmetic),
+            0..=2 => self.run_in::<A, 2>(arithmetic),
+            3..=4 => self.run_in::<A, 4>(arithmetic),
             5..=16 => self.run_in::<A, 16>(arithmetic),
             _ => self.run_in::<A, MOST_SLOTS>(arithmetic),
         }
     }
 
     fn run_in<A: Arithmetic<T>, const W: usize>(&self, arithmetic: &A) -> A::Element {
-        let mut v = [arithmetic.zero(); W];
+        let (mut one, mut other) = ([arithmetic.zero(); W], [arithmetic.zero(); W]);
+        let (mut v, mut next) = (&mut one, &mut other);
         v[0] = arithmetic.one();
         for op in &self.ops {
             match op {
@@ -145,31 +219,23 @@ impl<T: Real> Tape<T> {
                     let e = arithmetic.delay(*delay);
                     for &i in slots {
                         let i = usize::from(i);
-                        v[i] = arithmetic.add_product(arithmetic.zero(), e, v[i]);
+                        v[i] = arithmetic.product(e, v[i]);
                     }
                 }
-                Op::Map {
-                    rows,
-                    constant,
-                    lawful,
-                } => {
-                    let mut next = [arithmetic.zero(); W];
-                    for e in constant {
-                        let (row, column) = (usize::from(e.row), usize::from(e.column));
-                        next[row] = arithmetic.add_scaled(next[row], e.coefficient, v[column]);
+                Op::Map { constant, lawful } => {
+                    for (n, row) in next.iter_mut().zip(constant.rows()) {
+                        *n = dot(arithmetic, row, v);
                     }
-                    for (law, entries) in lawful {
-                        let mut part = [arithmetic.zero(); W];
-                        for e in entries {
-                            let (row, column) = (usize::from(e.row), usize::from(e.column));
-                            part[row] = arithmetic.add_scaled(part[row], e.coefficient, v[column]);
-                        }
+                    for (law, part) in lawful {
                         let f = arithmetic.law(law);
-                        for (n, &p) in next.iter_mut().zip(&part).take(*rows) {
-                            *n = arithmetic.add_product(*n, f, p);
+                        for (n, row) in next.iter_mut().zip(part.rows()) {
+                            if !row.is_empty() {
+                                let x = dot(arithmetic, row, v);
+                                *n = arithmetic.add(*n, arithmetic.product(f, x));
+                            }
                         }
                     }
-                    v = next;
+                    std::mem::swap(&mut v, &mut next);
                 }
             }
         }
@@ -343,9 +409,11 @@ impl<T: Real> Writer<T> {
                         (2.0 + terms(&constant)).max(of_laws) + 1.0 + lawful.len() as f64;
                     tape.symmetric &= lawful.iter().all(|(f, _)| f.is_symmetric());
                     tape.ops.push(Op::Map {
-                        rows: constant.len(),
-                        constant: sparse(&constant),
-                        lawful: lawful.into_iter().map(|(f, b)| (f, sparse(&b))).collect(),
+                        constant: Sparse::of(&constant),
+                        lawful: lawful
+                            .into_iter()
+                            .map(|(f, b)| (f, Sparse::of(&b)))
+                            .collect(),
                     });
                 }
             }
@@ -354,22 +422,6 @@ impl<T: Real> Writer<T> {
         tape.rounding.values *= 1.1;
         Some(tape)
     }
-}
-
-fn sparse<T: Real>(m: &Dense<T>) -> Vec<Entry<T>> {
-    let mut entries = Vec::new();
-    for (row, line) in m.iter().enumerate() {
-        for (column, &coefficient) in line.iter().enumerate() {
-            if !coefficient.is_exactly_zero() {
-                entries.push(Entry {
-                    row: row as u8,
-                    column: column as u8,
-                    coefficient,
-                });
-            }
-        }
-    }
-    entries
 }
 
 fn matrix_product<T: Real>(a: &Dense<T>, b: &Dense<T>) -> Dense<T> {

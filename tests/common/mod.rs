@@ -1,4 +1,8 @@
 //! Shared by the tests and benches.
 #![allow(dead_code, reason = "each test binary uses its own part")]
 
+pub mod census;
 pub mod exact;
+pub mod random;
+pub mod rig;
+pub mod witness;
