@@ -23,7 +23,7 @@ const ANSWERING: &[(&str, &[&str])] = &[
             "--up",
             "main_flame.burnt_temperature = 1500 K to 1700 K",
             "--points",
-            "3x2",
+            "2x2",
         ],
     ),
     (
