@@ -263,7 +263,7 @@ fn doubtful(svg: &mut Svg, figure: &LineFigure, r: Rect, x: &Span) {
 
 /// Hue (degrees), lightness and dash of a style: neighbours differ in all three, for readers
 /// without colour vision and for grey print.
-fn stroke(style: usize) -> String {
+pub(super) fn stroke(style: usize) -> String {
     const LOOK: [(f64, f64, &str); 7] = [
         (255.0, 0.46, ""),
         (45.0, 0.62, "7 2.5"),

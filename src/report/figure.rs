@@ -10,7 +10,7 @@ use crate::studies::regions::{Region, regions};
 use crate::units::{self, Dimension, write_rounded};
 
 /// The unit an engineer writes a quantity of that size in, and its size in SI.
-fn engineers_unit(dimension: Dimension, largest: f64) -> (String, f64) {
+pub(super) fn engineers_unit(dimension: Dimension, largest: f64) -> (String, f64) {
     let text = write_rounded(largest, dimension, 6);
     let unit = text.split_once(' ').map_or("", |(_, unit)| unit);
     match units::parse(&format!("1 {unit}"), dimension) {
