@@ -398,5 +398,6 @@ fn files_go_where_they_are_asked_for_and_say_the_same() {
         .unwrap()
         .map(|e| e.unwrap().file_name())
         .collect();
-    assert_eq!(names.len(), 3, "{names:?}");
+    // Two lists, the flow, and a picture of each mode.
+    assert_eq!(names.len(), 3 + rows.len(), "{names:?}");
 }

@@ -184,6 +184,8 @@ proptest! {
         let [without, with] = [without, with].map(|c| front::eliminate(&c).unwrap().tape);
         let s = Complex64::new(re, im);
         let bound = without.bound(&Region::disc(s, 0.0))[0];
+        // A first joint that lets nothing pass leaves nothing to compare with.
+        prop_assume!(bound > 0.0);
         let difference = with.value_and_slope(s).0 - without.value_and_slope(s).0;
         prop_assert!(difference.norm() <= 1e-14 * bound, "{difference} of {bound}");
     }

@@ -352,6 +352,57 @@ fn stands_in(line: &str, word: &str) -> bool {
     })
 }
 
+/// A figure must not depend on the machine: nothing that looks for fonts of the system, renders with its
+/// libraries, or finds its folders may come with any dependency. Names from memory of the registry.
+#[test]
+fn no_dependency_looks_for_fonts_of_the_system() {
+    const ALONE: &[&str] = &[
+        "allsorts",
+        "app_dirs",
+        "cosmic-text",
+        "directories",
+        "directories-next",
+        "dirs",
+        "dirs-next",
+        "dirs-sys",
+        "dirs-sys-next",
+        "dwrote",
+        "findfont",
+        "fontdb",
+        "fontique",
+        "parley",
+        "pango",
+        "pangocairo",
+        "rust-fontconfig",
+        "usvg",
+        "resvg",
+    ];
+    const WITHIN: &[&str] = &[
+        "fontconfig",
+        "font-kit",
+        "font-loader",
+        "freetype",
+        "core-text",
+        "core-graphics",
+        "directwrite",
+        "cairo",
+        "skia",
+        "system-font",
+    ];
+    let lock = std::fs::read_to_string(root().join("Cargo.lock")).unwrap();
+    let names = lock
+        .lines()
+        .filter_map(|l| l.strip_prefix("name = \"")?.strip_suffix('"'));
+    let names: Vec<&str> = names.collect();
+    // The lock file is read as it stands: what measures the embedded font is in it.
+    assert!(names.contains(&"ttf-parser") && names.len() > 50);
+    let faults: Vec<&&str> = names
+        .iter()
+        .filter(|n| ALONE.contains(n) || WITHIN.iter().any(|w| n.contains(w)))
+        .collect();
+    assert!(faults.is_empty(), "{faults:?}");
+}
+
 #[test]
 fn the_test_itself_sees_what_it_looks_for() {
     let text = "use crate::{a::b, c::{d, e}, f};\nlet x = crate::g::h(); // crate::i\n";

@@ -67,6 +67,12 @@ fn compare(name: &str, list: &ModeList, exact: &[(Complex64, usize)]) -> Result<
         if usize::from(nearest.multiplicity) != *multiplicity {
             return Err(format!("{name}: {s} multiplicity {}", nearest.multiplicity));
         }
+        if difference > 1e-12 {
+            println!(
+                "{name}: {s} differs by {difference:.1e}, bound {:.1e}",
+                nearest.error_bound / s.norm()
+            );
+        }
         worst = worst.max(difference);
     }
     Ok(worst)

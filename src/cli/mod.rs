@@ -5,6 +5,7 @@
 //! standard error.
 
 mod check;
+mod companions;
 mod flow;
 mod interrupt;
 mod map;
@@ -22,6 +23,7 @@ use clap::{Parser, Subcommand};
 
 use crate::problems::Problem;
 use crate::report::{document, problems};
+use companions::Companion;
 use options::{Case, Common};
 use output::{Destination, tell};
 
@@ -34,7 +36,15 @@ use output::{Destination, tell};
 #[command(name = "stillflame", version, arg_required_else_help = true, after_help = AFTER_HELP)]
 pub struct Cli {
     #[command(subcommand)]
-    verb: Verb,
+    asked: Asked,
+}
+
+#[derive(Debug, Subcommand)]
+enum Asked {
+    #[command(flatten)]
+    Network(Verb),
+    #[command(flatten)]
+    Companion(Companion),
 }
 
 const AFTER_HELP: &str = "\
@@ -155,8 +165,12 @@ impl Verb {
 /// Does what the command line asks for.
 pub fn run(cli: &Cli) -> Status {
     interrupt::install();
-    let common = cli.verb.common();
-    match attempt(&cli.verb) {
+    let verb = match &cli.asked {
+        Asked::Network(verb) => verb,
+        Asked::Companion(companion) => return accompany(companion),
+    };
+    let common = verb.common();
+    match attempt(verb) {
         Ok(status) => status,
         Err(Failure {
             status,
@@ -171,6 +185,19 @@ pub fn run(cli: &Cli) -> Status {
             }
             tell(&problems::render(&found));
             status
+        }
+    }
+}
+
+fn accompany(companion: &Companion) -> Status {
+    let printed = companion
+        .text()
+        .and_then(|text| output::print(&text).map_err(Failure::from));
+    match printed {
+        Ok(()) => Status::Done,
+        Err(failure) => {
+            tell(&problems::render(&failure.problems));
+            failure.status
         }
     }
 }

@@ -5,7 +5,8 @@ use clap::Args;
 use super::options::{Case, Common, WindowArguments};
 use super::{Answer, Failure, Status};
 use crate::modes::explain::explain;
-use crate::modes::{self, Scan, Tendency, validity};
+use crate::modes::{self, Scan, Tendency, shapes, validity};
+use crate::problems::Problem;
 use crate::report::modes::Modes;
 
 /// Find every mode in a window and prove the list complete
@@ -27,7 +28,7 @@ pub(super) struct Arguments {
     window: WindowArguments,
 
     /// Tell the shape of each mode: amplitude and phase of pressure and velocity at the stations and
-    /// along the ducts
+    /// along the ducts; with --out also draw it, one SVG for each mode
     #[arg(long)]
     shapes: bool,
 
@@ -56,6 +57,9 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
     let outside = modes::outside(&solved, window);
     more.extend(validity::of_growth_outside(&window, &outside));
     more.extend(modes::doubts_as_warnings(&list));
+    if arguments.shapes {
+        more.extend(shapes::unsettled(&list, &explained));
+    }
     let warnings = case.warnings_with(more);
     let report = Modes {
         heading: case.heading(),
@@ -70,6 +74,9 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
     let mut files = vec![(case.file("modes.csv"), report.csv()?)];
     if arguments.shapes {
         files.push((case.file("shapes.csv"), report.shapes_csv()?));
+        if arguments.common.out.is_some() {
+            files.extend(pictures(&case, &report)?);
+        }
     }
     let listed = list.modes.iter().chain(&outside.faster);
     let grows = listed
@@ -91,4 +98,18 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
         files,
         status,
     })
+}
+
+/// The figure of each mode, named by its number in the list.
+fn pictures(case: &Case, report: &Modes) -> Result<Vec<(String, Vec<u8>)>, Failure> {
+    let drawn = report.shapes_svg().map_err(|e| {
+        let what = format!("the shapes cannot be drawn: {e}");
+        Failure::input([Problem::error("modes", what)])
+    })?;
+    let digits = report.list.modes.len().to_string().len();
+    let named = |(number, svg): (usize, String)| {
+        let file = case.file(&format!("shape_{number:0digits$}.svg"));
+        (file, svg.into_bytes())
+    };
+    Ok(drawn.into_iter().map(named).collect())
 }

@@ -56,7 +56,7 @@ fn smooth(line: Line, fine: usize) -> Line {
 }
 
 /// Crossings by edge: edges along x come first, then edges along y.
-struct Links {
+pub(super) struct Links {
     nx: usize,
     ny: usize,
     next: Vec<[usize; 2]>,
@@ -66,7 +66,7 @@ struct Links {
 const NONE: usize = usize::MAX;
 
 impl Links {
-    fn new(nx: usize, ny: usize) -> Self {
+    pub(super) fn new(nx: usize, ny: usize) -> Self {
         let edges = 2 * nx * ny;
         Links {
             nx,
@@ -131,7 +131,7 @@ impl Links {
         }
     }
 
-    fn link(&mut self, (p, at_p): (usize, (f64, f64)), (q, at_q): (usize, (f64, f64))) {
+    pub(super) fn link(&mut self, (p, at_p): (usize, (f64, f64)), (q, at_q): (usize, (f64, f64))) {
         for (edge, at, other) in [(p, at_p, q), (q, at_q, p)] {
             if let Some(slot) = self.at.get_mut(edge) {
                 *slot = at;
@@ -147,7 +147,7 @@ impl Links {
     }
 
     /// Open lines first, from their ends, then loops.
-    fn join(self) -> Vec<Line> {
+    pub(super) fn join(self) -> Vec<Line> {
         let mut done = vec![false; self.next.len()];
         let mut out = Vec::new();
         for open in [true, false] {

@@ -5,10 +5,10 @@ use super::axis::{Axis, Span, check_samples};
 use super::colour::{diverging, hex};
 use super::contour::simplify;
 use super::frame::{self, Entry, MARGIN, Swatch, WIDTH};
+use super::mark::{Mark, Spot};
 use super::sheet::{corner, ends};
 use super::style::{curve_colour, curve_style, hatch_style, patterns};
 use super::svg::{Anchor, GREY, INK, Point, Rect, Svg, Text, open_path, px};
-use super::symbol::{Spot, Symbol};
 use super::tags::{self, Tagged};
 use super::text::{Weight, fit, tidy};
 
@@ -71,7 +71,7 @@ pub struct LineFigure {
     /// From top to bottom.
     pub panels: Vec<Panel>,
     /// Legend text of the marks.
-    pub symbols: Vec<(Symbol, String)>,
+    pub marks: Vec<(Mark, String)>,
 }
 
 const GAP: f64 = 14.0;
@@ -299,7 +299,7 @@ fn names_and_marks(svg: &mut Svg, panel: &Panel, figure: &LineFigure, r: Rect, a
     {
         let place = (x.at(spot.x), y.at(spot.y));
         let colour = spot.style.map_or(INK.to_owned(), curve_colour);
-        spot.symbol.draw(svg, place, &colour);
+        spot.mark.draw(svg, place, &colour);
         let (left, top) = place;
         taken.push(
             Rect {
@@ -357,11 +357,11 @@ fn legend_entries(figure: &LineFigure, mark: Option<&(f64, String)>) -> Vec<Entr
             });
         }
     }
-    for (symbol, label) in &figure.symbols {
+    for (mark, label) in &figure.marks {
         let drawn = figure.panels.iter().flat_map(|p| &p.spots);
-        if drawn.clone().any(|s| s.symbol == *symbol) {
+        if drawn.clone().any(|s| s.mark == *mark) {
             entries.push(Entry {
-                swatch: Swatch::Symbol(*symbol),
+                swatch: Swatch::Mark(*mark),
                 label: label.clone(),
             });
         }

@@ -6,9 +6,9 @@ use super::contour::simplify;
 use super::frame::{self, Entry, MARGIN, Swatch, WIDTH};
 use super::label::{Measured, beside};
 use super::lines::{RIGHT, Shade, tint, with_room};
+use super::mark::{Mark, Spot};
 use super::style::{curve_colour, curve_style};
 use super::svg::{GREY, INK, Point, Rect, Svg, Text, closed_path, open_path};
-use super::symbol::{Spot, Symbol};
 use super::tags::{self, Tagged};
 use super::text::{CAP_HEIGHT, Weight, tidy, width};
 
@@ -47,7 +47,7 @@ pub struct Locus {
     /// Marks, with text beside them where they have a label.
     pub spots: Vec<Spot>,
     /// Legend text of the marks.
-    pub symbols: Vec<(Symbol, String)>,
+    pub marks: Vec<(Mark, String)>,
 }
 
 const HEIGHT: f64 = 430.0;
@@ -113,7 +113,7 @@ pub fn render(figure: &Locus) -> Result<String, DrawError> {
             for tick in &at_ticks {
                 if let Some((u, v)) = on_run(run, |p| fraction(p) - tick) {
                     let at = (x.at(u), y.at(v));
-                    Symbol::Dot.draw(&mut svg, at, &drawn.colour);
+                    Mark::Dot.draw(&mut svg, at, &drawn.colour);
                     taken.push(around(at, 3.0));
                 }
             }
@@ -122,7 +122,7 @@ pub fn render(figure: &Locus) -> Result<String, DrawError> {
     for spot in &figure.spots {
         let at = (x.at(spot.x), y.at(spot.y));
         let colour = spot.style.map_or(INK.to_owned(), curve_colour);
-        spot.symbol.draw(&mut svg, at, &colour);
+        spot.mark.draw(&mut svg, at, &colour);
         taken.push(around(at, 5.0));
     }
     tags::write(&mut svg, plot, &tagged, &mut taken);
@@ -284,14 +284,14 @@ fn legend_entries(figure: &Locus, ticks: &[String]) -> Vec<Entry> {
         let at = format!("at {} {unit}", ticks.join(", "));
         let label = format!("{}; arrows to larger values", at.trim_end());
         entries.push(Entry {
-            swatch: Swatch::Symbol(Symbol::Dot),
+            swatch: Swatch::Mark(Mark::Dot),
             label,
         });
     }
-    for (symbol, label) in &figure.symbols {
-        if figure.spots.iter().any(|s| s.symbol == *symbol) {
+    for (mark, label) in &figure.marks {
+        if figure.spots.iter().any(|s| s.mark == *mark) {
             entries.push(Entry {
-                swatch: Swatch::Symbol(*symbol),
+                swatch: Swatch::Mark(*mark),
                 label: label.clone(),
             });
         }

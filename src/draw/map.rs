@@ -7,9 +7,10 @@ use super::curves::Curves;
 use super::field::{Field, Rows};
 use super::frame::{self, Entry, MARGIN, Swatch, WIDTH};
 use super::label::beside;
+use super::patches::{self, Patches};
 use super::sheet::{Sheet, ends, index_of};
 use super::style::{
-    NEUTRAL_HALO, absent_style, hatch_style, neutral_style, patterns, second_style,
+    NEUTRAL_HALO, absent_style, hatch_style, neutral_style, patch_style, patterns, second_style,
 };
 use super::svg::{Point, Rect, Svg, Text, px};
 use super::text::{Weight, fit, tidy, width};
@@ -96,6 +97,8 @@ pub struct StabilityMap {
     pub certified: Vec<Vec<bool>>,
     /// Optional second field.
     pub frequency: Option<IsoLines>,
+    /// Optional patches of samples that belong together.
+    pub patches: Option<Patches>,
     /// Optional marked point.
     pub design_point: Option<DesignPoint>,
     /// Legend texts.
@@ -162,12 +165,19 @@ pub fn render(map: &StabilityMap) -> Result<String, DrawError> {
         let (i, j) = sheet.nearest(p);
         is_plain(i, j)
     };
+    let parted = map
+        .patches
+        .as_ref()
+        .is_some_and(|patches| patches.draw_borders(&mut svg, &sheet));
     let labels = curves.draw_thin(&mut svg, plot, &mut taken, plain);
     svg.path(&doubtful, "fill=\"#fff\" fill-opacity=\".4\"");
     svg.path(&doubtful, &hatch_style());
     curves.draw_neutral(&mut svg);
     for label in &labels {
         label.draw(&mut svg);
+    }
+    if let Some(patches) = &map.patches {
+        patches.draw_names(&mut svg, &sheet, &mut taken, |r| curves.crowding(r));
     }
     if let Some(d) = &design {
         frame::marker(&mut svg, d.at);
@@ -187,6 +197,7 @@ pub fn render(map: &StabilityMap) -> Result<String, DrawError> {
         map,
         !curves.neutral.is_empty(),
         labels.iter().any(|l| l.second),
+        parted,
         !doubtful.is_empty(),
         !absent.is_empty(),
     );
@@ -225,6 +236,7 @@ fn spread_single(map: &StabilityMap) -> StabilityMap {
     if let Some(second) = &mut map.frequency {
         doubled(&mut second.values, column, row);
     }
+    patches::doubled(&mut map, column, row);
     map
 }
 
@@ -238,6 +250,9 @@ fn check(map: &StabilityMap) -> Result<(), DrawError> {
     if let Some(frequency) = &map.frequency {
         check_shape("frequency", &frequency.values, nx, ny)?;
         check_finite("frequency", &frequency.values)?;
+    }
+    if let Some(patches) = &map.patches {
+        check_shape("patches", &patches.index, nx, ny)?;
     }
     Ok(())
 }
@@ -342,6 +357,7 @@ fn legend_entries(
     map: &StabilityMap,
     neutral: bool,
     second: bool,
+    parted: bool,
     doubtful: bool,
     absent: bool,
 ) -> Vec<Entry> {
@@ -363,6 +379,9 @@ fn legend_entries(
             Swatch::Line(vec![second_style()]),
             &caption(&field.label, &field.unit),
         );
+    }
+    if let (Some(patches), true) = (&map.patches, parted) {
+        add(Swatch::Line(vec![patch_style()]), &patches.caption);
     }
     if doubtful {
         add(Swatch::Patch(vec![hatch_style()]), &map.words.uncertified);

@@ -5,11 +5,13 @@
 //! pure function of its input: equal input, equal bytes.
 //!
 //! ```text
-//! map, lines, locus     the figures
+//! map, lines, locus, profile   the figures
 //!   frame               title, plot rectangle, axes, legend, footnote
 //!   raster, contour     a sampled field as an embedded image, its level lines
 //!   region, label       outlines of marked cells, places for labels
-//!   symbol, tags        marks and names on curves
+//!   mark, tags          marks and names on curves
+//!   chain, names        passages drawn to scale, names with leaders
+//!   contributions       bars of the parts of a sum
 //!   field               interpolation that adds no extrema
 //!   axis, colour        value to position, value to colour
 //!   svg, text           elements and escaping, glyph widths
@@ -17,8 +19,10 @@
 
 pub mod axis;
 mod bar;
+pub mod chain;
 pub mod colour;
 pub mod contour;
+pub mod contributions;
 mod curves;
 pub mod field;
 mod frame;
@@ -26,20 +30,29 @@ mod label;
 pub mod lines;
 pub mod locus;
 pub mod map;
+pub mod mark;
+mod names;
+pub mod patches;
+pub mod profile;
 mod raster;
 mod region;
 mod sheet;
+#[cfg(test)]
+mod sight;
 mod style;
 mod svg;
-pub mod symbol;
+
 mod tags;
 pub mod text;
 
 pub use axis::{Axis, Scale};
+pub use chain::{Chain, ChainEnd, EndSymbol, Passage, Plane, Symbol};
+pub use contributions::{Contribution, Contributions};
 pub use lines::{LineFigure, Panel, Series, Shade};
 pub use locus::{Locus, Trail};
 pub use map::{DesignPoint, IsoLines, Quantity, StabilityMap, Words};
-pub use symbol::{Spot, Symbol};
+pub use mark::{Mark, Spot};
+pub use profile::{Curve, ProfileFigure, ProfilePanel, ProfileWords};
 
 /// Why a figure cannot be drawn: its arrays contradict each other.
 #[derive(Debug, Clone, PartialEq, thiserror::Error)]

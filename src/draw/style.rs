@@ -29,6 +29,13 @@ pub(super) fn second_style() -> String {
     )
 }
 
+pub(super) fn patch_style() -> String {
+    format!(
+        "fill=\"none\" stroke=\"{INK}\" stroke-opacity=\".75\" stroke-width=\"1.1\" stroke-linecap=\"round\" \
+         stroke-dasharray=\".1 2.6\""
+    )
+}
+
 pub(super) fn hatch_style() -> String {
     format!(
         "fill=\"{}\" stroke=\"{INK}\" stroke-width=\".9\"",

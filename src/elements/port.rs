@@ -102,15 +102,19 @@ impl<T: Real> Port<Variation<T>> {
     }
 }
 
-/// `(T_t - T)/u` [K s/m], finite at rest.
+/// `(T_t - T)/u` (K s/m), finite at rest.
+///
+/// The difference of two temperatures would lose digits where it is small: from `h(T_t) - h(T) = u^2/2` it is
+/// `u/(2 cp)` with the mean heat capacity between, by Gauss's rule of three points, exact for polynomials
+/// of fifth degree.
 fn stagnation_rise_over_velocity<T: Real>(state: &State<T>, t_t: T) -> T {
     let rise = t_t - state.temperature;
-    // Below this the difference of two temperatures has lost too many digits; the heat capacity at
-    // the middle is then exact to the square of the rise, 1e-10 relative.
-    if rise.value() < 1e-5 * state.temperature.value() {
-        let middle = (t_t + state.temperature) * 0.5;
-        state.velocity / (state.gas.cp(middle) * 2.0)
-    } else {
-        rise / state.velocity
+    if rise.value() > 1e-2 * state.temperature.value() {
+        return rise / state.velocity;
     }
+    let half_width = 0.5 * 0.6f64.sqrt();
+    let cp = |node: f64| state.gas.cp(state.temperature + rise * node);
+    let outer = cp(0.5 - half_width) + cp(0.5 + half_width);
+    let mean = (outer * 5.0 + cp(0.5) * 8.0) / 18.0;
+    state.velocity / (mean * 2.0)
 }

@@ -10,10 +10,12 @@
 
 use num_complex::Complex64;
 
-use super::{Mode, Solved, shape};
+use super::explain::Explained;
+use super::{Mode, ModeList, Solved, shape};
 use crate::elements::Kind;
 use crate::gas::State;
 use crate::network::{ElementId, Network};
+use crate::problems::Problem;
 
 /// Amplitudes at one place, `a(x)` of `Re[a(x) exp(s t)]`.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -109,4 +111,20 @@ fn sample(
         pressure: plus + minus,
         velocity: (plus - minus) / (state.density() * state.sound_speed()),
     }
+}
+
+/// A warning for each mode without a shape.
+pub fn unsettled(list: &ModeList, explained: &[Explained]) -> Vec<Problem> {
+    let modes = list.modes.iter().zip(explained).enumerate();
+    modes
+        .filter(|(_, (_, told))| told.shape.is_none())
+        .map(|(i, (mode, _))| {
+            let what = format!(
+                "mode {} at {:.2} Hz has no shape: the null vector did not settle",
+                i + 1,
+                mode.frequency()
+            );
+            Problem::warning("modes", what).hint("its frequency and growth rate stand all the same")
+        })
+        .collect()
 }

@@ -2,8 +2,11 @@
 
 use super::map::{MapReport, rate};
 use super::{CAUTION, window_text};
-use crate::draw::{Axis, DesignPoint, DrawError, IsoLines, Quantity, StabilityMap, Words, map};
+use crate::draw::patches::Patches;
+use crate::draw::text::fixed;
+use crate::draw::{Axis, DesignPoint, DrawError, Quantity, StabilityMap, Words, map};
 use crate::studies::map::{Axis as Values, Point};
+use crate::studies::regions::{Region, regions};
 use crate::units::{self, Dimension, write_rounded};
 
 /// The unit an engineer writes a quantity of that size in, and its size in SI.
@@ -52,6 +55,26 @@ impl MapReport<'_> {
         }
     }
 
+    /// Which mode leads where.
+    fn patches(&self) -> Patches {
+        let regions = regions(self.map);
+        let columns = self.map.across.points.max(1);
+        let name = |r: &Region| {
+            let (low, high) = r.frequency;
+            let (low, high) = (fixed(low, 0), fixed(high, 0));
+            if low == high {
+                format!("{low} Hz")
+            } else {
+                format!("{low} to {high} Hz")
+            }
+        };
+        Patches {
+            caption: "another mode leads".into(),
+            index: regions.of.chunks(columns).map(<[_]>::to_vec).collect(),
+            names: regions.list.iter().map(name).collect(),
+        }
+    }
+
     /// The map as SVG.
     ///
     /// # Errors
@@ -91,11 +114,8 @@ impl MapReport<'_> {
             },
             values: self.rows(|p| p.fastest().map(|m| m.growth())),
             certified: self.rows(Point::complete),
-            frequency: Some(IsoLines {
-                label: "Frequency".into(),
-                unit: "Hz".into(),
-                values: self.rows(|p| p.fastest().map(|m| m.frequency())),
-            }),
+            frequency: None,
+            patches: Some(self.patches()),
             design_point: self.design_inside().then(|| DesignPoint {
                 x: design_x / x.size,
                 y: design_y / y.size,

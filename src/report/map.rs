@@ -10,6 +10,7 @@ use crate::network::Network;
 use crate::problems::Problem;
 use crate::studies::cautions::{place, setting};
 use crate::studies::map::{Axis, Map, Point};
+use crate::studies::regions::{Region, regions};
 use crate::units::{Dimension, write_rounded};
 
 /// A map to report.
@@ -51,6 +52,24 @@ struct Counts {
     growth_not_excluded: usize,
 }
 
+/// Points led by one mode; its index in the list is its number in `leading_region`.
+#[derive(Clone, Debug, Serialize)]
+struct RegionFields {
+    points: usize,
+    frequency_hz: [f64; 2],
+    largest_growth_per_s: f64,
+}
+
+impl From<&Region> for RegionFields {
+    fn from(r: &Region) -> Self {
+        RegionFields {
+            points: r.points,
+            frequency_hz: [r.frequency.0, r.frequency.1],
+            largest_growth_per_s: r.fastest.growth(),
+        }
+    }
+}
+
 #[derive(Clone, Debug, Serialize)]
 struct Body<'a> {
     finding: String,
@@ -64,6 +83,8 @@ struct Body<'a> {
     frequency_hz_there: Vec<Vec<Option<f64>>>,
     complete: Vec<Vec<bool>>,
     growth_outside_window_per_s: Vec<Vec<Option<f64>>>,
+    leading_region: Vec<Vec<Option<usize>>>,
+    leading_regions: Vec<RegionFields>,
     points: Counts,
     design_point: Design,
     window: WindowFields,
@@ -123,6 +144,8 @@ impl<'a> MapReport<'a> {
         let (x, y) = self.design_values();
         let ((across_knob, across), (up_knob, up)) = (self.axis(map.across), self.axis(map.up));
         let leading = self.design.leading();
+        let regions = regions(map);
+        let columns = map.across.points.max(1);
         let body = Body {
             finding: self.finding(),
             across_knob,
@@ -135,6 +158,8 @@ impl<'a> MapReport<'a> {
             frequency_hz_there: self.rows(|p| p.leading().map(|m| m.frequency())),
             complete: self.rows(Point::complete),
             growth_outside_window_per_s: self.rows(|p| p.outside().map(|m| m.growth())),
+            leading_region: regions.of.chunks(columns).map(<[_]>::to_vec).collect(),
+            leading_regions: regions.list.iter().map(Into::into).collect(),
             points: Counts {
                 total: tally.points,
                 complete: tally.complete,

@@ -11,6 +11,7 @@ pub mod flow;
 pub mod map;
 pub mod modes;
 pub mod problems;
+pub mod profile;
 pub mod shapes;
 pub mod sweep;
 mod table;

@@ -3,4 +3,5 @@
 pub mod cautions;
 pub mod map;
 pub mod path;
+pub mod regions;
 pub mod sweep;

@@ -84,3 +84,39 @@ pub fn check_drawing(name: &str, svg: &str) {
         );
     }
 }
+
+/// Whether two boxes, turned or not, share any area: no edge of either parts them.
+fn meet(a: &[(f64, f64); 4], b: &[(f64, f64); 4]) -> bool {
+    let parts = |p: &[(f64, f64); 4], q: &[(f64, f64); 4]| {
+        (0..4).any(|k| {
+            let (from, to) = (p[k], p[(k + 1) % 4]);
+            let (nx, ny) = (to.1 - from.1, from.0 - to.0);
+            let side = |x: &(f64, f64)| (x.0 - from.0) * nx + (x.1 - from.1) * ny;
+            // A tenth of a px may be lost to rounding.
+            let slack = 0.15 * nx.hypot(ny);
+            q.iter().all(|x| side(x) >= -slack)
+        })
+    };
+    !parts(a, b) && !parts(b, a)
+}
+
+pub fn check_no_text_meets_another(name: &str, svg: &str) {
+    let document = Document::parse(svg).unwrap();
+    let all = text_corners(&document);
+    for (i, (text, corners)) in all.iter().enumerate() {
+        for (other, others) in &all[..i] {
+            assert!(!meet(corners, others), "{name}: {text:?} over {other:?}");
+        }
+    }
+}
+
+#[test]
+fn the_check_sees_texts_that_meet() {
+    let square = |x: f64, y: f64| [(x, y), (x + 10.0, y), (x + 10.0, y + 5.0), (x, y + 5.0)];
+    assert!(meet(&square(0.0, 0.0), &square(9.0, 4.0)));
+    assert!(!meet(&square(0.0, 0.0), &square(10.5, 0.0)));
+    // A turned box in the bounds of another, beside it.
+    let turned = [(8.0, -6.0), (14.0, 0.0), (12.0, 2.0), (6.0, -4.0)];
+    assert!(!meet(&square(0.0, 0.0), &turned));
+    assert!(meet(&square(3.0, -3.0), &turned));
+}

@@ -1,8 +1,8 @@
 //! Invented figures, plain and hostile.
 
 use stillflame::draw::{
-    Axis, DesignPoint, IsoLines, LineFigure, Locus, Panel, Quantity, Scale, Series, Shade, Spot,
-    StabilityMap, Symbol, Trail, text,
+    Axis, DesignPoint, IsoLines, LineFigure, Locus, Mark, Panel, Quantity, Scale, Series, Shade,
+    Spot, StabilityMap, Trail, text,
 };
 
 pub type Rows = Vec<Vec<Option<f64>>>;
@@ -269,7 +269,7 @@ pub fn sweep() -> LineFigure {
                 spots: vec![Spot {
                     x: 2.0,
                     y: 235.0,
-                    symbol: Symbol::Diamond,
+                    mark: Mark::Diamond,
                     style: None,
                     label: String::new(),
                 }],
@@ -285,15 +285,15 @@ pub fn sweep() -> LineFigure {
                 spots: vec![Spot {
                     x: 4.2,
                     y: 0.0,
-                    symbol: Symbol::Circle,
+                    mark: Mark::Circle,
                     style: Some(0),
                     label: String::new(),
                 }],
             },
         ],
-        symbols: vec![
-            (Symbol::Circle, "neutral".into()),
-            (Symbol::Diamond, "two modes meet".into()),
+        marks: vec![
+            (Mark::Circle, "neutral".into()),
+            (Mark::Diamond, "two modes meet".into()),
         ],
     }
 }
@@ -357,10 +357,10 @@ pub fn root_locus() -> Locus {
                 .collect(),
         ],
     };
-    let spot = |x: f64, symbol, label: &str| Spot {
+    let spot = |x: f64, mark, label: &str| Spot {
         x,
         y: 0.0,
-        symbol,
+        mark,
         style: Some(1),
         label: label.into(),
     };
@@ -382,13 +382,13 @@ pub fn root_locus() -> Locus {
             trail(2, 410.0, 0.3),
         ],
         spots: vec![
-            spot(150.0, Symbol::Circle, "2.3 ms"),
-            spot(300.0, Symbol::Diamond, "3.1 ms"),
-            spot(400.0, Symbol::Cross, ""),
+            spot(150.0, Mark::Circle, "2.3 ms"),
+            spot(300.0, Mark::Diamond, "3.1 ms"),
+            spot(400.0, Mark::Cross, ""),
         ],
-        symbols: vec![
-            (Symbol::Circle, "neutral".into()),
-            (Symbol::Diamond, "modes meet".into()),
+        marks: vec![
+            (Mark::Circle, "neutral".into()),
+            (Mark::Diamond, "modes meet".into()),
         ],
     }
 }

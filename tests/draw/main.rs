@@ -3,6 +3,7 @@
 
 mod check;
 mod figures;
+mod profiles;
 
 use check::check_drawing;
 use figures::{

@@ -5,7 +5,7 @@ use std::f64::consts::TAU;
 use super::SweepReport;
 use super::words::joined;
 use crate::draw::{
-    Axis, DrawError, LineFigure, Locus, Panel, Scale, Series, Shade, Spot, Symbol, Trail, lines,
+    Axis, DrawError, LineFigure, Locus, Mark, Panel, Scale, Series, Shade, Spot, Trail, lines,
     locus,
 };
 use crate::report::figure::{engineers_unit, label};
@@ -85,24 +85,24 @@ impl SweepReport<'_> {
     ) -> Vec<Spot> {
         let mut spots = Vec::new();
         for event in &self.sweep.events {
-            let symbol = match event.kind {
-                Kind::BecomesUnstable | Kind::BecomesStable => Symbol::Circle,
-                Kind::Enters | Kind::Leaves => Symbol::Triangle,
+            let mark = match event.kind {
+                Kind::BecomesUnstable | Kind::BecomesStable => Mark::Circle,
+                Kind::Enters | Kind::Leaves => Mark::Triangle,
                 Kind::ExceptionalPoint
                 | Kind::Crossing
                 | Kind::BecomesReal
-                | Kind::BecomesOscillating => Symbol::Diamond,
-                Kind::Found | Kind::Lost => Symbol::Cross,
+                | Kind::BecomesOscillating => Mark::Diamond,
+                Kind::Found | Kind::Lost => Mark::Cross,
             };
-            let label = match symbol {
-                Symbol::Circle | Symbol::Diamond if told => self.told(event.u, 3),
+            let label = match mark {
+                Mark::Circle | Mark::Diamond if told => self.told(event.u, 3),
                 _ => String::new(),
             };
             let (x, y) = at(event.u, event.s);
             spots.push(Spot {
                 x,
                 y,
-                symbol,
+                mark,
                 style: event.branches.first().copied(),
                 label,
             });
@@ -110,16 +110,16 @@ impl SweepReport<'_> {
         spots
     }
 
-    fn symbols() -> Vec<(Symbol, String)> {
+    fn marks() -> Vec<(Mark, String)> {
         [
-            (Symbol::Circle, "neutral"),
-            (Symbol::Triangle, "enters or leaves the window"),
-            (Symbol::Diamond, "modes meet"),
-            (Symbol::Cross, "not to be followed further"),
-            (Symbol::Box, "start of the sweep"),
-            (Symbol::Square, "end of the sweep"),
+            (Mark::Circle, "neutral"),
+            (Mark::Triangle, "enters or leaves the window"),
+            (Mark::Diamond, "modes meet"),
+            (Mark::Cross, "not to be followed further"),
+            (Mark::Box, "start of the sweep"),
+            (Mark::Square, "end of the sweep"),
         ]
-        .map(|(symbol, text)| (symbol, text.to_owned()))
+        .map(|(mark, text)| (mark, text.to_owned()))
         .to_vec()
     }
 
@@ -179,7 +179,7 @@ impl SweepReport<'_> {
                     spots: self.spots(|u, s| (scaled(u), s.re), false),
                 },
             ],
-            symbols: Self::symbols(),
+            marks: Self::marks(),
         };
         lines::render(&figure)
     }
@@ -217,19 +217,19 @@ impl SweepReport<'_> {
         for (i, branch) in sweep.branches.iter().enumerate() {
             let first = branch.trace.first().filter(|p| p.u <= 0.0);
             let last = branch.trace.last().filter(|p| p.u >= 1.0);
-            for (place, symbol) in [(first, Symbol::Box), (last, Symbol::Square)] {
+            for (place, mark) in [(first, Mark::Box), (last, Mark::Square)] {
                 if let Some((_, x, y)) = place.map(point) {
                     spots.push(Spot {
                         x,
                         y,
-                        symbol,
+                        mark,
                         style: Some(i),
                         label: String::new(),
                     });
                 }
             }
         }
-        let mut symbols = Self::symbols();
+        let mut marks = Self::marks();
         if let Some(u) = self.design_at() {
             let places = sweep.branches.iter().filter_map(|b| b.known_at(u));
             for place in places {
@@ -237,12 +237,12 @@ impl SweepReport<'_> {
                 spots.push(Spot {
                     x,
                     y,
-                    symbol: Symbol::Target,
+                    mark: Mark::Target,
                     style: None,
                     label: String::new(),
                 });
             }
-            symbols.push((Symbol::Target, format!("design at {}", self.told(u, 4))));
+            marks.push((Mark::Target, format!("design at {}", self.told(u, 4))));
         }
         locus::render(&Locus {
             title: self.finding(),
@@ -254,7 +254,7 @@ impl SweepReport<'_> {
             shade: Some(grows()),
             trails,
             spots,
-            symbols,
+            marks,
         })
     }
 }

@@ -4,7 +4,7 @@ use super::svg::{INK, Point, Svg, px};
 
 /// What a mark looks like.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
-pub enum Symbol {
+pub enum Mark {
     /// An open circle.
     Circle,
     /// A filled diamond.
@@ -31,14 +31,14 @@ pub struct Spot {
     /// Along y.
     pub y: f64,
     /// Its look.
-    pub symbol: Symbol,
+    pub mark: Mark,
     /// The style of the curve it belongs to; of no curve where there is none.
     pub style: Option<usize>,
     /// Text beside it; may be empty.
     pub label: String,
 }
 
-impl Symbol {
+impl Mark {
     /// Draws it about a point.
     pub(super) fn draw(self, svg: &mut Svg, (x, y): Point, colour: &str) {
         let at = |dx: f64, dy: f64| format!("{} {}", px(x + dx), px(y + dy));
@@ -47,36 +47,36 @@ impl Symbol {
         );
         let filled = format!("fill=\"{colour}\" stroke=\"#fff\" stroke-width=\".8\"");
         match self {
-            Symbol::Circle => svg.raw(&format!(
+            Mark::Circle => svg.raw(&format!(
                 "<circle cx=\"{}\" cy=\"{}\" r=\"3.4\" {open}/>",
                 px(x),
                 px(y)
             )),
-            Symbol::Dot => svg.raw(&format!(
+            Mark::Dot => svg.raw(&format!(
                 "<circle cx=\"{}\" cy=\"{}\" r=\"2.3\" {filled}/>",
                 px(x),
                 px(y)
             )),
-            Symbol::Target => svg.raw(&format!(
+            Mark::Target => svg.raw(&format!(
                 "<circle cx=\"{0}\" cy=\"{1}\" r=\"4.6\" {open}/><circle cx=\"{0}\" cy=\"{1}\" r=\"1.7\" \
                  fill=\"{colour}\"/>",
                 px(x),
                 px(y)
             )),
-            Symbol::Diamond => {
+            Mark::Diamond => {
                 let data = format!("M{}L{} {} {}Z", at(0.0, -5.5), at(5.5, 0.0), at(0.0, 5.5), at(-5.5, 0.0));
                 svg.path(&data, &format!("fill=\"{INK}\" stroke=\"#fff\" stroke-width=\".8\""));
             }
-            Symbol::Triangle => {
+            Mark::Triangle => {
                 let data = format!("M{}L{} {}Z", at(0.0, -4.0), at(3.8, 2.8), at(-3.8, 2.8));
                 svg.path(&data, &open);
             }
-            Symbol::Box | Symbol::Square => {
-                let look = if self == Symbol::Box { &open } else { &filled };
+            Mark::Box | Mark::Square => {
+                let look = if self == Mark::Box { &open } else { &filled };
                 let data = format!("M{}h6.4v6.4h-6.4Z", at(-3.2, -3.2));
                 svg.path(&data, look);
             }
-            Symbol::Cross => {
+            Mark::Cross => {
                 let data = format!("M{}L{}M{}L{}", at(-3.5, -3.5), at(3.5, 3.5), at(-3.5, 3.5), at(3.5, -3.5));
                 svg.path(&data, &format!("fill=\"none\" stroke=\"{colour}\" stroke-width=\"1.6\""));
             }
