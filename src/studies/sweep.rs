@@ -1,9 +1,9 @@
 //! A sweep: the certified mode list at every point of a path, and its modes followed from point to
 //! point as branches.
 //!
-//! Every point has its own count and its own proofs ([`sample`]), and so has every point put in between
-//! where a step does not say by itself which mode is which ([`ties`], [`follow`]). What happens to
-//! branches is told as events ([`weave`]): a mode leaves or enters through an edge of the window, two
+//! Every point has its own count and its own proofs (`sample`), and so has every point put in between
+//! where a step does not say by itself which mode is which (`ties`, `follow`). What happens to
+//! branches is told as events (`weave`): a mode leaves or enters through an edge of the window, two
 //! modes meet, a mode and its conjugate become two real modes, a growth rate changes its sign.
 
 pub mod cautions;
