@@ -2,7 +2,7 @@
 //!
 //! An element lists its knobs once as [`KnobSpec`]s; input, overrides, sweeps, hints and docs all
 //! read that list. The numbers themselves live in one flat [`Values`] of the network, so that the
-//! same network can be evaluated in plain numbers or in duals seeded in one knob.
+//! same network can be evaluated in plain numbers or in duals seeded in one knob or along several.
 
 use std::ops::{Index, IndexMut};
 
@@ -91,9 +91,16 @@ impl Values<f64> {
 
     /// The same numbers as duals, derivative one at `knob`.
     pub fn seeded(&self, knob: KnobId) -> Values<Dual> {
+        self.seeded_along(&[(knob, 1.0)])
+    }
+
+    /// The same numbers as duals, with the derivative given at each knob named: along a direction.
+    pub fn seeded_along(&self, direction: &[(KnobId, f64)]) -> Values<Dual> {
         let mut v: Values<Dual> = self.lift();
-        if let Some(x) = v.0.get_mut(knob.0) {
-            x.d = [1.0];
+        for &(knob, slope) in direction {
+            if let Some(x) = v.0.get_mut(knob.0) {
+                x.d = [slope];
+            }
         }
         v
     }

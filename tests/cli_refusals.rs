@@ -9,7 +9,7 @@ use std::time::Duration;
 
 use cli::{NETWORKS, json, network, run};
 
-const VERBS: [&str; 4] = ["check", "flow", "modes", "map"];
+const VERBS: [&str; 5] = ["check", "flow", "modes", "sweep", "map"];
 const PLANE: [&str; 4] = [
     "--across",
     "main_flame.delay = 0 ms to 10 ms",
@@ -21,6 +21,7 @@ const PLANE: [&str; 4] = [
 fn needed(verb: &str) -> Vec<&'static str> {
     match verb {
         "map" => PLANE.to_vec(),
+        "sweep" => vec!["--vary", "main_flame.delay = 1 ms to 8 ms"],
         _ => Vec::new(),
     }
 }
@@ -241,7 +242,15 @@ fn help_speaks_the_trade_and_its_examples_run() {
     };
     assert!(text(&["--version"]).starts_with("stillflame "));
     let top = text(&["--help"]);
-    for word in ["check", "flow", "modes", "map", "Exit codes", "rig test"] {
+    for word in [
+        "check",
+        "flow",
+        "modes",
+        "sweep",
+        "map",
+        "Exit codes",
+        "rig test",
+    ] {
         assert!(top.contains(word), "{word}");
     }
     let folder = tempfile::tempdir().unwrap();
@@ -266,5 +275,8 @@ fn help_speaks_the_trade_and_its_examples_run() {
             .unwrap();
         assert!(status.success(), "{line}");
     }
-    assert!(folder.path().join("results/swirl_rig_map.svg").is_file());
+    for written in ["map.svg", "sweep.svg", "locus.svg", "sweep.csv"] {
+        let file = format!("results/swirl_rig_{written}");
+        assert!(folder.path().join(&file).is_file(), "{file}");
+    }
 }

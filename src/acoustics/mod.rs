@@ -4,13 +4,15 @@
 pub mod matrix;
 pub mod vary;
 
+use num_complex::Complex64;
+
 use crate::elements::flame::Reference;
 use crate::elements::lowering::Between;
 use crate::elements::{Kind, Sensed};
 use crate::gas::State;
 use crate::meanflow::MeanFlow;
 use crate::network::{ElementId, Layout, Network};
-use crate::numerics::dual::Real;
+use crate::numerics::dual::{Dual, Real};
 use crate::problems::{Problem, Problems};
 use crate::waves::front::{self, Characteristic, EliminationError};
 use crate::waves::primitive::{Chain, Plane, Step};
@@ -22,6 +24,18 @@ pub struct Acoustics<T> {
     pub chain: Chain<T>,
     /// Its characteristic function.
     pub characteristic: Characteristic<T>,
+}
+
+impl Acoustics<Dual> {
+    /// Taylor coefficients `D^(k)/k!` at `s`, orders 0 to `N - 1`, each with its derivative along the direction
+    /// the network is seeded in.
+    pub fn taylor<const N: usize>(&self, s: Complex64) -> [(Complex64, Complex64); N] {
+        let tape = &self.characteristic.tape;
+        tape.taylor_at::<N>(s).map(|c| {
+            let derivative = Complex64::new(c.re.d[0], c.im.d[0]);
+            (c.value(), derivative)
+        })
+    }
 }
 
 /// Lowers a network and eliminates it.

@@ -3,11 +3,10 @@
 use std::ops::ControlFlow;
 
 use clap::Args;
-use indicatif::{ProgressBar, ProgressStyle};
 
 use super::options::{Case, Common, WindowArguments};
 use super::plane::{self, Points};
-use super::{Answer, Failure, Status};
+use super::{Answer, Failure, Status, progress};
 use crate::modes::{self, ModeList, Scan, validity};
 use crate::network::Network;
 use crate::problems::Problem;
@@ -64,7 +63,7 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
         Some(number) => Some(chosen(network, (across, up), &design, number)?),
     };
 
-    let bar = bar(across.points * up.points);
+    let bar = progress::bar(across.points * up.points);
     let watch = || {
         bar.inc(1);
         ControlFlow::Continue(())
@@ -136,15 +135,6 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
             Status::Failed
         },
     })
-}
-
-/// A bar on standard error; nothing where that is no terminal.
-fn bar(points: usize) -> ProgressBar {
-    let bar = ProgressBar::new(points as u64);
-    if let Ok(style) = ProgressStyle::with_template("{bar:40} {pos} of {len} points, {eta} left") {
-        bar.set_style(style);
-    }
-    bar
 }
 
 /// The mode of that number at the design point, which must lie on the map to be followed from.

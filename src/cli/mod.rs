@@ -12,7 +12,10 @@ mod map;
 mod modes;
 mod options;
 mod output;
+mod path;
 mod plane;
+mod progress;
+mod sweep;
 
 use std::process::ExitCode;
 
@@ -60,6 +63,7 @@ enum Verb {
     Check(check::Arguments),
     Flow(flow::Arguments),
     Modes(modes::Arguments),
+    Sweep(sweep::Arguments),
     Map(map::Arguments),
 }
 
@@ -132,14 +136,17 @@ impl Verb {
             Verb::Check(a) => &a.common,
             Verb::Flow(a) => &a.common,
             Verb::Modes(a) => &a.common,
+            Verb::Sweep(a) => &a.common,
             Verb::Map(a) => &a.common,
         }
     }
 
-    /// Where files go: where asked for, and those of a map for people into the working directory.
+    /// Where files go: where asked for, and those of a map or a sweep for people into the working
+    /// directory.
     fn destination(&self) -> Result<Option<Destination>, Failure> {
         let common = self.common();
-        let here = (matches!(self, Verb::Map(_)) && !common.json).then(|| ".".into());
+        let here =
+            (matches!(self, Verb::Map(_) | Verb::Sweep(_)) && !common.json).then(|| ".".into());
         let directory = common.out.clone().or(here);
         directory.map(Destination::open).transpose()
     }
@@ -149,6 +156,7 @@ impl Verb {
             Verb::Check(a) => check::answer(a, case),
             Verb::Flow(a) => flow::answer(a, case),
             Verb::Modes(a) => modes::answer(a, case),
+            Verb::Sweep(a) => sweep::answer(a, case),
             Verb::Map(a) => map::answer(a, case),
         }
     }

@@ -1,13 +1,13 @@
 //! The plane of a map as written: `main_flame.delay = 0 ms to 10 ms`, `200x200`.
 
 use super::Failure;
-use crate::knobs::Knob;
+use crate::knobs::{Knob, KnobId};
 use crate::network::values::out_of_range;
 use crate::network::{Layout, Network};
 use crate::problems::{Place, Problem, listed, nearest};
 use crate::studies::cautions;
 use crate::studies::map::Axis;
-use crate::units::parse_span;
+use crate::units::{Dimension, parse_span};
 
 /// Fewest and most points along an axis.
 const FEWEST: usize = 2;
@@ -86,20 +86,21 @@ pub(super) fn check(network: &Network, across: Axis, up: Axis) -> Result<(), Fai
     }
 }
 
-/// One axis as written.
+/// A name and a span as written.
 #[derive(Clone, Copy)]
-struct Written<'t> {
-    flag: &'static str,
-    text: &'t str,
+pub(super) struct Written<'t> {
+    pub flag: &'static str,
+    pub text: &'t str,
 }
 
 impl<'t> Written<'t> {
-    fn name(&self) -> &'t str {
+    /// What stands before the `=`.
+    pub fn name(&self) -> &'t str {
         self.text.split('=').next().unwrap_or_default().trim()
     }
 
     /// A problem at some part of the text.
-    fn mark(&self, problem: Problem, part: &str) -> Box<Problem> {
+    pub fn mark(&self, problem: Problem, part: &str) -> Box<Problem> {
         let before = self.text.find(part).and_then(|at| self.text.get(..at));
         Box::new(problem.at(Place {
             source: self.flag.to_owned(),
@@ -110,50 +111,76 @@ impl<'t> Written<'t> {
         }))
     }
 
-    fn axis(&self, layout: &Layout, points: usize) -> Result<Axis, Box<Problem>> {
+    /// What stands behind the `=`.
+    pub fn span(&self) -> Result<&'t str, Box<Problem>> {
         let form = "write NAME = A to B, as in main_flame.delay = 0 ms to 10 ms";
-        let Some((_, span)) = self.text.split_once('=') else {
-            let problem = Problem::error(self.flag, "no `=` stands between a name and a span");
-            return Err(self.mark(problem.hint(form), self.text));
-        };
-        let (name, span) = (self.name(), span.trim());
-        let knob = layout.knob(name).ok_or_else(|| {
-            let what = format!("the network has no number named `{name}`");
-            self.mark(
-                Problem::error(self.flag, what).hint(meant(layout, name)),
-                name,
-            )
-        })?;
+        match self.text.split_once('=') {
+            Some((_, span)) => Ok(span.trim()),
+            None => {
+                let problem = Problem::error(self.flag, "no `=` stands between a name and a span");
+                Err(self.mark(problem.hint(form), self.text))
+            }
+        }
+    }
+
+    /// Both ends of the span, which differ.
+    pub fn ends(&self, name: &str, dimension: Dimension) -> Result<(f64, f64), Box<Problem>> {
+        let span = self.span()?;
         let fail =
             |what: String, hint: String| self.mark(Problem::error(name, what).hint(hint), span);
-        let Some(Knob { spec, .. }) = layout.knobs.get(knob.0) else {
-            return Err(fail(
-                "the network has no such number".to_owned(),
-                form.to_owned(),
-            ));
-        };
-        let (low, high) =
-            parse_span(span, spec.dimension).map_err(|e| fail(e.to_string(), e.hint()))?;
-        if low >= high {
-            let what = if low == high {
-                "the span is empty: both its ends are the same"
-            } else {
-                "the span runs downwards"
-            };
-            let hint = "write the lower value first, as in 1 to 2";
+        let (from, to) = parse_span(span, dimension).map_err(|e| fail(e.to_string(), e.hint()))?;
+        if from == to {
+            let what = "the span is empty: both its ends are the same";
+            let hint = "write two different values, as in 1 to 2";
             return Err(fail(what.to_owned(), hint.to_owned()));
         }
-        for end in [low, high] {
-            if let Some(problem) = out_of_range(name, spec, end) {
+        Ok((from, to))
+    }
+
+    /// The knob of a name that stands in the text.
+    pub fn knob(&self, layout: &Layout, name: &str) -> Result<KnobId, Box<Problem>> {
+        layout.knob(name).ok_or_else(|| {
+            let what = format!("the network has no number named `{name}`");
+            let problem = Problem::error(self.flag, what).hint(meant(layout, name));
+            self.mark(problem, name)
+        })
+    }
+
+    /// A knob and both ends of its span, each of which it may hold.
+    pub fn run(&self, layout: &Layout) -> Result<(KnobId, f64, f64), Box<Problem>> {
+        let span = self.span()?;
+        let name = self.name();
+        let knob = self.knob(layout, name)?;
+        let dimension = |k: &Knob| k.spec.dimension;
+        let known = layout.knobs.get(knob.0);
+        let (from, to) = self.ends(name, known.map_or(Dimension::Number, dimension))?;
+        for end in [from, to] {
+            if let Some(problem) = known.and_then(|k| out_of_range(name, &k.spec, end)) {
                 return Err(self.mark(problem, span));
             }
         }
+        Ok((knob, from, to))
+    }
+
+    fn axis(&self, layout: &Layout, points: usize) -> Result<Axis, Box<Problem>> {
+        let (knob, low, high) = self.run(layout)?;
+        self.upwards(low, high)?;
         Ok(Axis {
             knob,
             low,
             high,
             points,
         })
+    }
+
+    /// Refuses a span that runs downwards.
+    pub fn upwards(&self, from: f64, to: f64) -> Result<(), Box<Problem>> {
+        if from < to {
+            return Ok(());
+        }
+        let problem = Problem::error(self.name(), "the span runs downwards")
+            .hint("write the lower value first, as in 1 to 2");
+        Err(self.mark(problem, self.span()?))
     }
 }
 

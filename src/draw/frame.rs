@@ -1,6 +1,7 @@
 //! What every figure shares: header, axes, grid, legend, footnote.
 
 use super::axis::{Axis, Tick};
+use super::mark::Mark;
 use super::svg::{Anchor, GREY, INK, Rect, Svg, Text, px};
 use super::text::{Weight, fit, tidy, width, wrap};
 
@@ -134,6 +135,8 @@ pub(super) enum Swatch {
     Line(Vec<String>),
     /// Attributes of rectangles drawn over each other.
     Patch(Vec<String>),
+    /// A mark.
+    Mark(Mark),
 }
 
 /// Lays entries in rows from `left` and `top`, at most `room` wide; gives the y below them.
@@ -162,6 +165,7 @@ pub(super) fn legend(svg: &mut Svg, entries: &[Entry], left: f64, top: f64, room
                     svg.line((x, middle), (x + SWATCH, middle), style);
                 }
             }
+            Swatch::Mark(mark) => mark.draw(svg, (x + SWATCH / 2.0, middle), INK),
             Swatch::Patch(styles) => {
                 let r = Rect {
                     left: x,

@@ -2,12 +2,14 @@
 
 use super::DrawError;
 use super::axis::{Axis, Span, check_samples};
-use super::colour::{diverging, hex, oklch};
+use super::colour::{diverging, hex};
 use super::contour::simplify;
 use super::frame::{self, Entry, MARGIN, Swatch, WIDTH};
+use super::mark::{Mark, Spot};
 use super::sheet::{corner, ends};
-use super::style::{hatch_style, patterns};
+use super::style::{curve_colour, curve_style, hatch_style, patterns};
 use super::svg::{Anchor, GREY, INK, Point, Rect, Svg, Text, open_path, px};
+use super::tags::{self, Tagged};
 use super::text::{Weight, fit, tidy};
 
 /// One curve of a panel.
@@ -19,6 +21,8 @@ pub struct Series {
     pub style: usize,
     /// One value for each x sample; a gap where there is none.
     pub values: Vec<Option<f64>>,
+    /// Short name written on the curve; may be empty.
+    pub tag: String,
 }
 
 /// A tinted half-plane.
@@ -41,6 +45,8 @@ pub struct Panel {
     pub series: Vec<Series>,
     /// Optional tint.
     pub shade: Option<Shade>,
+    /// Marks on it.
+    pub spots: Vec<Spot>,
 }
 
 /// Everything a line figure shows. Values are scaled to the units named beside them.
@@ -64,11 +70,13 @@ pub struct LineFigure {
     pub mark: Option<(f64, String)>,
     /// From top to bottom.
     pub panels: Vec<Panel>,
+    /// Legend text of the marks.
+    pub marks: Vec<(Mark, String)>,
 }
 
 const GAP: f64 = 14.0;
 /// Space right of the plot, for the words beside tinted half-planes.
-const RIGHT: f64 = 20.0;
+pub(super) const RIGHT: f64 = 20.0;
 const MARK: &str = "fill=\"none\" stroke=\"#1b1e23\" stroke-dasharray=\"1.5 2\"";
 
 /// Draws the figure.
@@ -115,7 +123,9 @@ pub fn render(figure: &LineFigure) -> Result<String, DrawError> {
     for (k, (panel, r)) in figure.panels.iter().zip(rects(left)).enumerate() {
         let y = y_span(panel, r);
         let y_ticks = y.ticks(36.0);
-        shade(&mut svg, panel, r, &y);
+        if let Some(shade) = &panel.shade {
+            tint(&mut svg, shade, r, &y);
+        }
         frame::grid(&mut svg, r, &x_ticks, &y_ticks, 0.11);
         doubtful(&mut svg, figure, r, &x);
         if let Some((at, _)) = mark {
@@ -124,6 +134,7 @@ pub fn render(figure: &LineFigure) -> Result<String, DrawError> {
         for series in &panel.series {
             curve(&mut svg, series, figure, &x, &y);
         }
+        names_and_marks(&mut svg, panel, figure, r, (&x, &y));
         frame::y_axis(&mut svg, r, &panel.y, &y_ticks);
         if k + 1 == figure.panels.len() {
             below = frame::x_axis(&mut svg, r, &figure.x, &x_ticks);
@@ -194,13 +205,18 @@ fn y_range(panel: &Panel) -> (f64, f64) {
         .fold((f64::INFINITY, f64::NEG_INFINITY), |(a, b), v| {
             (a.min(v), b.max(v))
         });
-    if low > high {
-        return if logarithmic { (1.0, 10.0) } else { (0.0, 1.0) };
-    }
-    if logarithmic {
+    if logarithmic && low <= high {
         let room = (high / low).powf(0.05).max(1.2);
         return (low / room, high * room);
     }
+    if low > high {
+        return if logarithmic { (1.0, 10.0) } else { (0.0, 1.0) };
+    }
+    with_room(low, high)
+}
+
+/// A range with a little room on both sides.
+pub(super) fn with_room(low: f64, high: f64) -> (f64, f64) {
     let room = match 0.06 * (high - low) {
         r if r > 1e-12 * high.abs().max(low.abs()) => r,
         _ if high == 0.0 => 1.0,
@@ -209,8 +225,8 @@ fn y_range(panel: &Panel) -> (f64, f64) {
     (low - room, high + room)
 }
 
-fn shade(svg: &mut Svg, panel: &Panel, r: Rect, y: &Span) {
-    let Some(shade) = &panel.shade else { return };
+/// Draws a tinted half-plane and the word for it.
+pub(super) fn tint(svg: &mut Svg, shade: &Shade, r: Rect, y: &Span) {
     let edge = y.at(shade.from).clamp(r.top, r.bottom);
     let (tint, area) = if shade.upwards {
         (diverging(0.0), Rect { bottom: edge, ..r })
@@ -230,7 +246,7 @@ fn shade(svg: &mut Svg, panel: &Panel, r: Rect, y: &Span) {
         &tidy(&shade.label),
         Weight::Semibold,
         10.5,
-        area.height().max(24.0),
+        area.height().max(40.0),
     );
     let at = (r.right + 13.0, (area.top + area.bottom) / 2.0);
     let text = Text::new(at, &label, 10.5)
@@ -261,47 +277,57 @@ fn doubtful(svg: &mut Svg, figure: &LineFigure, r: Rect, x: &Span) {
     svg.path(&data, &hatch_style());
 }
 
-/// Hue (degrees), lightness and dash of a style: neighbours differ in all three, for readers
-/// without colour vision and for grey print.
-pub(super) fn stroke(style: usize) -> String {
-    const LOOK: [(f64, f64, &str); 7] = [
-        (255.0, 0.46, ""),
-        (45.0, 0.62, "7 2.5"),
-        (160.0, 0.52, "2.5 2"),
-        (330.0, 0.42, "9 2.5 2 2.5"),
-        (85.0, 0.58, ""),
-        (215.0, 0.64, "4 2"),
-        (20.0, 0.40, "1 2"),
-    ];
-    let (hue, lightness, dash) = LOOK
-        .get(style % LOOK.len())
-        .copied()
-        .unwrap_or((0.0, 0.4, ""));
-    let colour = hex(oklch(
-        lightness - 0.06 * ((style / LOOK.len()) % 3) as f64,
-        0.12,
-        hue,
-    ));
-    let dash = if dash.is_empty() {
-        String::new()
-    } else {
-        format!(" stroke-dasharray=\"{dash}\"")
-    };
-    format!(
-        "fill=\"none\" stroke=\"{colour}\" stroke-width=\"1.9\" stroke-linejoin=\"round\"{dash}"
-    )
-}
-
-/// Draws the stretches of a curve between its gaps; a stretch of one sample is a dot.
-fn curve(svg: &mut Svg, series: &Series, figure: &LineFigure, x: &Span, y: &Span) {
+/// The stretches of a curve between its gaps, px.
+fn runs(series: &Series, figure: &LineFigure, x: &Span, y: &Span) -> Vec<Vec<Point>> {
     let points = figure.x_values.iter().zip(&series.values);
     let points: Vec<Option<Point>> = points
         .map(|(&u, v)| v.map(|v| (x.at(u), y.at(v))))
         .collect();
-    let style = stroke(series.style);
+    let runs = points.split(Option::is_none);
+    runs.map(|run| run.iter().copied().flatten().collect())
+        .collect()
+}
+
+/// Draws the marks of a panel and writes the names of its curves, clear of each other.
+fn names_and_marks(svg: &mut Svg, panel: &Panel, figure: &LineFigure, r: Rect, at: (&Span, &Span)) {
+    let (x, y) = at;
+    let mut taken = Vec::new();
+    for spot in panel
+        .spots
+        .iter()
+        .filter(|s| x.covers(s.x) && y.covers(s.y))
+    {
+        let place = (x.at(spot.x), y.at(spot.y));
+        let colour = spot.style.map_or(INK.to_owned(), curve_colour);
+        spot.mark.draw(svg, place, &colour);
+        let (left, top) = place;
+        taken.push(
+            Rect {
+                left,
+                top,
+                right: left,
+                bottom: top,
+            }
+            .grown(5.0),
+        );
+    }
+    let tagged: Vec<Tagged> = panel
+        .series
+        .iter()
+        .map(|series| Tagged {
+            tag: tidy(&series.tag),
+            colour: curve_colour(series.style),
+            runs: runs(series, figure, x, y),
+        })
+        .collect();
+    tags::write(svg, r, &tagged, &mut taken);
+}
+
+/// Draws the stretches of a curve between its gaps; a stretch of one sample is a dot.
+fn curve(svg: &mut Svg, series: &Series, figure: &LineFigure, x: &Span, y: &Span) {
+    let style = curve_style(series.style);
     let (mut data, mut dots) = (String::new(), String::new());
-    for run in points.split(Option::is_none) {
-        let run: Vec<Point> = run.iter().copied().flatten().collect();
+    for run in runs(series, figure, x, y) {
         match run.as_slice() {
             [] => {}
             [(u, v)] => dots += &format!("M{} {}h.1", px(*u), px(*v)),
@@ -324,10 +350,19 @@ fn legend_entries(figure: &LineFigure, mark: Option<&(f64, String)>) -> Vec<Entr
         let key = (series.name.as_str(), series.style);
         if !series.name.is_empty() && !seen.contains(&key) {
             seen.push(key);
-            let swatch = Swatch::Line(vec![stroke(series.style)]);
+            let swatch = Swatch::Line(vec![curve_style(series.style)]);
             entries.push(Entry {
                 swatch,
                 label: series.name.clone(),
+            });
+        }
+    }
+    for (mark, label) in &figure.marks {
+        let drawn = figure.panels.iter().flat_map(|p| &p.spots);
+        if drawn.clone().any(|s| s.mark == *mark) {
+            entries.push(Entry {
+                swatch: Swatch::Mark(*mark),
+                label: label.clone(),
             });
         }
     }

@@ -5,10 +5,11 @@
 //! pure function of its input: equal input, equal bytes.
 //!
 //! ```text
-//! map, lines, profile   the figures
+//! map, lines, locus, profile   the figures
 //!   frame               title, plot rectangle, axes, legend, footnote
 //!   raster, contour     a sampled field as an embedded image, its level lines
 //!   region, label       outlines of marked cells, places for labels
+//!   mark, tags          marks and names on curves
 //!   chain, names        passages drawn to scale, names with leaders
 //!   contributions       bars of the parts of a sum
 //!   field               interpolation that adds no extrema
@@ -27,7 +28,9 @@ pub mod field;
 mod frame;
 mod label;
 pub mod lines;
+pub mod locus;
 pub mod map;
+pub mod mark;
 mod names;
 pub mod patches;
 pub mod profile;
@@ -38,13 +41,17 @@ mod sheet;
 mod sight;
 mod style;
 mod svg;
+
+mod tags;
 pub mod text;
 
 pub use axis::{Axis, Scale};
 pub use chain::{Chain, ChainEnd, EndSymbol, Passage, Plane, Symbol};
 pub use contributions::{Contribution, Contributions};
 pub use lines::{LineFigure, Panel, Series, Shade};
+pub use locus::{Locus, Trail};
 pub use map::{DesignPoint, IsoLines, Quantity, StabilityMap, Words};
+pub use mark::{Mark, Spot};
 pub use profile::{Curve, ProfileFigure, ProfilePanel, ProfileWords};
 
 /// Why a figure cannot be drawn: its arrays contradict each other.

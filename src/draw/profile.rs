@@ -5,8 +5,8 @@ use super::chain::{Chain, Ground, Symbol, flame_colour, tint};
 use super::contour::simplify;
 use super::contributions::Contributions;
 use super::frame::{self, Entry, MARGIN, Swatch, WIDTH};
-use super::lines::stroke;
 use super::names::Row;
+use super::style::curve_style;
 use super::svg::{INK, Point, Rect, Svg, open_path, px};
 use super::text::{tick_labels, tidy};
 use super::{DrawError, Scale};
@@ -288,7 +288,7 @@ fn draw_curve(svg: &mut Svg, curve: &Curve, figure: &ProfileFigure, x: &Span, y:
             dot(b);
         }
     }
-    let style = stroke(curve.style);
+    let style = curve_style(curve.style);
     svg.path(&data, &style);
     let solid = style.split(" stroke-dasharray").next().unwrap_or_default();
     let round = "stroke-width=\"3.6\" stroke-linecap=\"round\"";
@@ -303,7 +303,7 @@ fn legend_entries(figure: &ProfileFigure) -> Vec<Entry> {
         if !curve.name.is_empty() && !seen.contains(&key) {
             seen.push(key);
             entries.push(Entry {
-                swatch: Swatch::Line(vec![stroke(curve.style)]),
+                swatch: Swatch::Line(vec![curve_style(curve.style)]),
                 label: curve.name.clone(),
             });
         }

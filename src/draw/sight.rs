@@ -16,7 +16,7 @@ use nalgebra::{Matrix3, Vector3};
 
 use super::colour::{Rgb, diverging, hex};
 use super::contributions::fill;
-use super::lines::stroke;
+use super::style::curve_style;
 
 /// How a picture reaches its reader.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -179,9 +179,9 @@ fn growth_and_decay_are_two_hues_for_every_reader() {
 /// Two line styles differ in their dashes, or in lightness by 8 at least; neighbours differ in dashes.
 #[test]
 fn lines_are_told_apart_by_every_reader() {
-    let dash = |k: usize| attribute(&stroke(k), "stroke-dasharray").map(str::to_owned);
-    let colour = |k: usize| parsed(attribute(&stroke(k), "stroke").unwrap());
-    for i in 0..7 {
+    let dash = |k: usize| attribute(&curve_style(k), "stroke-dasharray").map(str::to_owned);
+    let colour = |k: usize| parsed(attribute(&curve_style(k), "stroke").unwrap());
+    for i in 0..10 {
         assert_ne!(dash(i), dash(i + 1), "styles {i} and {}", i + 1);
         for j in 0..i {
             for sight in ALL {

@@ -1,5 +1,6 @@
-//! How the lines and fills of a map look, on the plot, on its colour bar and in its legend.
+//! How lines and fills look, on the plot, on a map's colour bar and in the legend.
 
+use super::colour::{hex, oklch};
 use super::svg::{INK, Svg};
 use super::text::tick_labels;
 
@@ -70,4 +71,45 @@ pub(super) fn signed(level: f64, step: f64) -> String {
     } else {
         text
     }
+}
+
+/// Hue (degrees), lightness and dash of the style of a curve: neighbours differ in all three, for readers
+/// without colour vision and for grey print.
+const LOOK: [(f64, f64, &str); 10] = [
+    (255.0, 0.46, ""),
+    (45.0, 0.62, "7 2.5"),
+    (160.0, 0.52, "2.5 2"),
+    (330.0, 0.42, "9 2.5 2 2.5"),
+    (85.0, 0.58, ""),
+    (215.0, 0.64, "4 2"),
+    (20.0, 0.40, "1 2"),
+    (290.0, 0.58, "12 3"),
+    (125.0, 0.45, "5 1.5 1 1.5 1 1.5"),
+    (185.0, 0.36, "3 1"),
+];
+
+fn look(style: usize) -> (f64, f64, &'static str) {
+    let looks = LOOK.get(style % LOOK.len()).copied();
+    looks.unwrap_or((0.0, 0.4, ""))
+}
+
+/// The colour of a style.
+pub(super) fn curve_colour(style: usize) -> String {
+    let (hue, lightness, _) = look(style);
+    let darker = 0.06 * ((style / LOOK.len()) % 3) as f64;
+    hex(oklch(lightness - darker, 0.12, hue))
+}
+
+/// How a curve of a style is drawn.
+pub(super) fn curve_style(style: usize) -> String {
+    let (_, _, dash) = look(style);
+    let dash = if dash.is_empty() {
+        String::new()
+    } else {
+        format!(" stroke-dasharray=\"{dash}\"")
+    };
+    format!(
+        "fill=\"none\" stroke=\"{}\" stroke-width=\"1.9\" stroke-linejoin=\"round\"{dash}",
+        curve_colour(style)
+    )
 }

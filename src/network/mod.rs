@@ -118,9 +118,14 @@ impl<T> Network<T> {
 impl Network<f64> {
     /// The same network as duals, derivative one at `knob`.
     pub fn seeded(&self, knob: KnobId) -> Network<Dual> {
+        self.seeded_along(&[(knob, 1.0)])
+    }
+
+    /// The same network as duals, with the derivative given at each knob named.
+    pub fn seeded_along(&self, direction: &[(KnobId, f64)]) -> Network<Dual> {
         Network {
             layout: Arc::clone(&self.layout),
-            values: self.values.seeded(knob),
+            values: self.values.seeded_along(direction),
         }
     }
 

@@ -20,7 +20,7 @@ pub(super) fn engineers_unit(dimension: Dimension, largest: f64) -> (String, f64
 }
 
 /// `main_flame.delay` as `Delay of main_flame`.
-fn label(name: &str) -> String {
+pub(super) fn label(name: &str) -> String {
     let (element, key) = name.rsplit_once('.').unwrap_or(("", name));
     let words = key.replace('_', " ");
     let mut letters = words.chars();

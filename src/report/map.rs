@@ -5,7 +5,7 @@ use serde::Serialize;
 use super::document::WindowFields;
 use super::{Document, Heading, closing, window_text};
 use crate::draw::text::fixed;
-use crate::modes::{Mode, ModeList, Outside, Tendency};
+use crate::modes::{Mode, ModeList, Outside, Tendency, Window};
 use crate::network::Network;
 use crate::problems::Problem;
 use crate::studies::cautions::{place, setting};
@@ -137,20 +137,8 @@ impl<'a> MapReport<'a> {
     /// What the map says of growth outside its window, in a sentence.
     pub(super) fn growth_outside(&self) -> String {
         let tally = self.map.tally();
-        let top = self.map.window.frequency.1;
-        match (tally.open, tally.searched_to) {
-            (0, _) if tally.outside == 0 => {
-                format!("Growth outside the window is excluded up to {top:.0} Hz, by proof.")
-            }
-            (0, _) => format!(
-                "Growth outside the window is shown as well; more of it up to {top:.0} Hz is excluded, by proof."
-            ),
-            (open, Some(to)) if to > self.map.window.growth.1 => format!(
-                "Growth outside the window was searched up to {top:.0} Hz and at least {to:.0} 1/s; beyond, \
-                 it is not excluded at {open} points."
-            ),
-            (open, _) => format!("Growth outside the window is not excluded at {open} points."),
-        }
+        let known = (tally.outside, tally.open, tally.searched_to);
+        growth_outside(&self.map.window, known, "is shown as well")
     }
 
     /// Each row as what `f` makes of its points.
@@ -358,6 +346,29 @@ impl<'a> MapReport<'a> {
     }
 }
 
+/// What is said of growth outside a window, in a sentence: the number of points where there is some, of those
+/// where more is not excluded, and the least growth rate up to which those were searched.
+pub(super) fn growth_outside(
+    window: &Window,
+    (outside, open, searched_to): (usize, usize, Option<f64>),
+    seen: &str,
+) -> String {
+    let top = window.frequency.1;
+    match (open, searched_to) {
+        (0, _) if outside == 0 => {
+            format!("Growth outside the window is excluded up to {top:.0} Hz, by proof.")
+        }
+        (0, _) => format!(
+            "Growth outside the window {seen}; more of it up to {top:.0} Hz is excluded, by proof."
+        ),
+        (open, Some(to)) if to > window.growth.1 => format!(
+            "Growth outside the window was searched up to {top:.0} Hz and at least {to:.0} 1/s; beyond, \
+             it is not excluded at {open} points."
+        ),
+        (open, _) => format!("Growth outside the window is not excluded at {open} points."),
+    }
+}
+
 /// A growth rate with its sign, whole where it is large.
 pub(super) fn rate(growth: f64) -> String {
     let digits = if growth.abs() < 9.95 { 1 } else { 0 };
@@ -370,7 +381,7 @@ pub(super) fn rate(growth: f64) -> String {
 }
 
 /// `41 %`; what is neither nothing nor all is never said to be.
-fn percent(part: usize, whole: usize) -> String {
+pub(super) fn percent(part: usize, whole: usize) -> String {
     let exact = 100.0 * part as f64 / whole.max(1) as f64;
     match exact {
         p if p > 0.0 && p < 1.0 => "less than 1 %".to_owned(),

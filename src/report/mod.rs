@@ -13,6 +13,7 @@ pub mod modes;
 pub mod problems;
 pub mod profile;
 pub mod shapes;
+pub mod sweep;
 mod table;
 
 pub use document::{Document, Remark};

@@ -1,11 +1,11 @@
-//! What is wrong with a map before it is computed, and what qualifies it.
+//! What is wrong with a map before it is computed, and what qualifies it; what a sweep shares with it.
 
 use super::map::{Axis, Map, Point, moves_mean_flow};
 use crate::elements::Kind;
 use crate::elements::ends::{Exit, ExitEnd};
 use crate::knobs::KnobId;
 use crate::meanflow::{self, MeanFlow};
-use crate::modes::{Mode, validity};
+use crate::modes::{Mode, Window, validity};
 use crate::network::{Network, areas, values};
 use crate::problems::Problem;
 use crate::units::{Dimension, write_rounded};
@@ -58,7 +58,7 @@ pub fn setting(network: &Network, (knob, value): (KnobId, f64)) -> String {
 }
 
 /// Adds those of `more` whose subject has not been spoken of, with the place where they arise.
-fn add(found: &mut Vec<Problem>, known: &[Problem], place: &str, more: Vec<Problem>) {
+pub(super) fn add(found: &mut Vec<Problem>, known: &[Problem], place: &str, more: Vec<Problem>) {
     for mut problem in more {
         let said = |p: &Problem| p.subject == problem.subject;
         if known.iter().chain(found.iter()).any(said) {
@@ -72,11 +72,16 @@ fn add(found: &mut Vec<Problem>, known: &[Problem], place: &str, more: Vec<Probl
 /// Numbers out of range and areas that do not fit, at the corners: areas are monotone in a knob, so
 /// what fits at the corners fits between them.
 pub fn refusals(network: &Network, across: Axis, up: Axis) -> Vec<Problem> {
+    refused(corners(network, across, up))
+}
+
+/// Numbers out of range and areas that do not fit, at the places given.
+pub(super) fn refused(places: Vec<(String, Network)>) -> Vec<Problem> {
     let mut found = Vec::new();
-    for (place, corner) in corners(network, across, up) {
-        let mut wrong = values::check_values(&corner);
+    for (place, network) in places {
+        let mut wrong = values::check_values(&network);
         if wrong.is_empty() {
-            wrong = areas::check_areas(&corner);
+            wrong = areas::check_areas(&network);
         }
         add(&mut found, &[], &place, wrong);
     }
@@ -92,52 +97,88 @@ pub fn warnings(
     known: &[Problem],
 ) -> Vec<Problem> {
     let (across, up) = (map.across, map.up);
-    let mut found = moving(network, mean, across, up);
-    let moves = [across, up].map(|a| moves_mean_flow(network, a.knob));
-    let looked = if moves.contains(&true) {
+    let knobs = [across.knob, up.knob];
+    let mut found = moving(network, mean, &knobs, "the map", "map it as well");
+    let looked = if knobs.iter().any(|k| moves_mean_flow(network, *k)) {
         // The flow is not monotone over the plane, and a corner may have none.
         sampled(network, across, up)
     } else {
         corners(network, across, up)
     };
-    for (place, sample) in looked {
-        let mut more = validity::of_responses(&sample);
-        // A point without a mean flow is told as a failed one.
-        if let Ok(mean) = meanflow::solve(&sample) {
-            more.extend(mean.warnings.iter().cloned());
-            more.extend(validity::of_window(&sample, &mean, &map.window));
-        }
-        add(&mut found, known, &place, more);
-    }
-    found.extend(outside(network, map));
-    found.extend(unanswered(network, map));
+    assumptions(&mut found, known, &map.window, looked);
+    let place = |(x, y): (f64, f64)| place(network, (across.knob, x), (up.knob, y));
+    let grows = map
+        .placed()
+        .filter_map(|(x, y, p)| Some(((x, y), p.outside()?)));
+    let hint = "the figure shows those growth rates; the lists and largest_growth_per_s keep to the window";
+    found.extend(outside(grows, (map.points.len(), &map.window), place, hint));
+    let points = map.placed().map(|(x, y, point)| {
+        let answer = match point {
+            Point::Certified(_) => Answer::Certified,
+            Point::Doubtful { why, .. } => Answer::Doubtful(why),
+            Point::Failed(problem) => Answer::Failed(problem),
+        };
+        (answer, (x, y))
+    });
+    found.extend(unanswered(points, place));
     found
 }
 
-/// Delays that stay and throats that move while an axis moves the mean flow.
-fn moving(network: &Network, mean: &MeanFlow<f64>, across: Axis, up: Axis) -> Vec<Problem> {
+/// Assumptions that fail at the places given.
+pub(super) fn assumptions(
+    found: &mut Vec<Problem>,
+    known: &[Problem],
+    window: &Window,
+    places: Vec<(String, Network)>,
+) {
+    for (place, network) in places {
+        let mut more = validity::of_responses(&network);
+        // A point without a mean flow is told as a failed one.
+        if let Ok(mean) = meanflow::solve(&network) {
+            more.extend(mean.warnings.iter().cloned());
+            more.extend(validity::of_window(&network, &mean, window));
+        }
+        add(found, known, &place, more);
+    }
+}
+
+/// Delays that stay and throats that move while some of the knobs move the mean flow. `over` is what they
+/// span, `mend` what else to do with a delay.
+pub(super) fn moving(
+    network: &Network,
+    mean: &MeanFlow<f64>,
+    knobs: &[KnobId],
+    over: &str,
+    mend: &str,
+) -> Vec<Problem> {
     let mut found = Vec::new();
     let name = |k: KnobId| {
         let knob = network.layout.knobs.get(k.0);
         knob.map_or("network", |k| k.name.as_str())
     };
-    let movers: Vec<&str> = [across.knob, up.knob]
-        .into_iter()
-        .filter(|k| moves_mean_flow(network, *k))
-        .map(name)
+    let movers: Vec<&str> = knobs
+        .iter()
+        .filter(|k| moves_mean_flow(network, **k))
+        .map(|k| name(*k))
         .collect();
     if movers.is_empty() {
         return found;
     }
-    let by = movers.join(" and ");
+    let by = match movers.as_slice() {
+        [most @ .., one, other] => {
+            let mut names: Vec<&str> = most.to_vec();
+            let last = format!("{one} and {other}");
+            names.push(&last);
+            names.join(", ")
+        }
+        few => few.concat(),
+    };
     for (delay, _) in validity::delays(network) {
-        if delay != across.knob && delay != up.knob {
+        if !knobs.contains(&delay) {
             let what =
-                format!("this delay stays fixed, while {by} can move velocities over the map");
-            found.push(
-                Problem::warning(name(delay), what)
-                    .hint("a delay of convection shortens as velocity rises: map it as well"),
-            );
+                format!("this delay stays fixed, while {by} can move velocities over {over}");
+            let hint = format!("a delay of convection shortens as velocity rises: {mend}");
+            found.push(Problem::warning(name(delay), what).hint(hint));
         }
     }
     for element in &network.layout.elements {
@@ -150,8 +191,8 @@ fn moving(network: &Network, mean: &MeanFlow<f64>, across: Axis, up: Axis) -> Ve
         {
             let area = write_rounded(area, Dimension::Area, 4);
             let what = format!(
-                "the throat area follows from the flow, so {by} can move it over the map; it is {area} as \
-                 the file stands"
+                "the throat area follows from the flow, so {by} can move it over {over}; it is {area} as the \
+                 file stands"
             );
             found.push(
                 Problem::warning("exit", what)
@@ -162,58 +203,70 @@ fn moving(network: &Network, mean: &MeanFlow<f64>, across: Axis, up: Axis) -> Ve
     found
 }
 
-/// Points where a mode grows outside the window.
-fn outside(network: &Network, map: &Map) -> Option<Problem> {
+/// Points, of so many, where a mode grows outside the window.
+pub(super) fn outside<P>(
+    grows: impl Iterator<Item = (P, Mode)>,
+    (total, window): (usize, &Window),
+    place: impl Fn(P) -> String,
+    hint: &str,
+) -> Option<Problem> {
     let mut count = 0;
-    let mut fastest: Option<(f64, f64, Mode)> = None;
-    for (x, y, point) in map.placed() {
-        let Some(mode) = point.outside() else {
-            continue;
-        };
+    let mut fastest: Option<(P, Mode)> = None;
+    for (at, mode) in grows {
         count += 1;
-        if fastest.is_none_or(|(_, _, m)| m.growth() < mode.growth()) {
-            fastest = Some((x, y, mode));
+        if fastest
+            .as_ref()
+            .is_none_or(|(_, m)| m.growth() < mode.growth())
+        {
+            fastest = Some((at, mode));
         }
     }
-    let (x, y, fastest) = fastest?;
+    let (at, fastest) = fastest?;
     let what = format!(
-        "at {count} of {} points a mode grows outside the window; the fastest, at {}: {:.0} 1/s at {:.1} Hz",
-        map.points.len(),
-        place(network, (map.across.knob, x), (map.up.knob, y)),
+        "at {count} of {total} points a mode grows outside the window; the fastest, at {}: {:.0} 1/s at {:.1} Hz",
+        place(at),
         fastest.growth(),
         fastest.frequency()
     );
-    let subject = if fastest.growth() > map.window.growth.1 {
+    let subject = if fastest.growth() > window.growth.1 {
         "search.growth"
     } else {
         "search.frequency"
     };
-    Some(Problem::warning(subject, what).hint(
-        "the figure shows those growth rates; the lists and largest_growth_per_s keep to the window",
-    ))
+    Some(Problem::warning(subject, what).hint(hint))
+}
+
+/// What is known of a point.
+pub(super) enum Answer<'a> {
+    Certified,
+    Doubtful(&'a str),
+    Failed(&'a Problem),
 }
 
 /// Points that failed, by what they failed at, and points not certified.
-fn unanswered(network: &Network, map: &Map) -> Vec<Problem> {
+pub(super) fn unanswered<'a, P>(
+    points: impl Iterator<Item = (Answer<'a>, P)>,
+    place: impl Fn(P) -> String,
+) -> Vec<Problem> {
     let mut failed: Vec<(&Problem, usize, String)> = Vec::new();
     let mut doubtful: Option<(&str, usize, String)> = None;
-    for (x, y, point) in map.placed() {
-        let here = || place(network, (map.across.knob, x), (map.up.knob, y));
-        match point {
-            Point::Certified(_) => {}
-            Point::Doubtful { why, .. } => match &mut doubtful {
+    let mut total = 0;
+    for (answer, at) in points {
+        total += 1;
+        match answer {
+            Answer::Certified => {}
+            Answer::Doubtful(why) => match &mut doubtful {
                 Some((_, count, _)) => *count += 1,
-                None => doubtful = Some((why, 1, here())),
+                None => doubtful = Some((why, 1, place(at))),
             },
-            Point::Failed(problem) => {
+            Answer::Failed(problem) => {
                 match failed.iter_mut().find(|f| f.0.subject == problem.subject) {
                     Some((_, count, _)) => *count += 1,
-                    None => failed.push((problem, 1, here())),
+                    None => failed.push((problem, 1, place(at))),
                 }
             }
         }
     }
-    let total = map.points.len();
     let mut found: Vec<Problem> = failed
         .into_iter()
         .map(|(first, count, place)| {

@@ -3,4 +3,6 @@
 pub mod branch;
 pub mod cautions;
 pub mod map;
+pub mod path;
 pub mod regions;
+pub mod sweep;

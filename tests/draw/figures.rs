@@ -1,8 +1,8 @@
 //! Invented figures, plain and hostile.
 
 use stillflame::draw::{
-    Axis, DesignPoint, IsoLines, LineFigure, Panel, Quantity, Scale, Series, Shade, StabilityMap,
-    text,
+    Axis, DesignPoint, IsoLines, LineFigure, Locus, Mark, Panel, Quantity, Scale, Series, Shade,
+    Spot, StabilityMap, Trail, text,
 };
 
 pub type Rows = Vec<Vec<Option<f64>>>;
@@ -246,6 +246,7 @@ pub fn sweep() -> LineFigure {
                 name: format!("branch {}", k + 1),
                 style: k,
                 values: pick(b).clone(),
+                tag: (k + 1).to_string(),
             })
             .collect::<Vec<_>>()
     };
@@ -265,6 +266,13 @@ pub fn sweep() -> LineFigure {
                 y: Axis::new("Frequency", "Hz"),
                 series: series(|b| &b.0),
                 shade: None,
+                spots: vec![Spot {
+                    x: 2.0,
+                    y: 235.0,
+                    mark: Mark::Diamond,
+                    style: None,
+                    label: String::new(),
+                }],
             },
             Panel {
                 y: Axis::new("Growth rate", "1/s"),
@@ -274,7 +282,18 @@ pub fn sweep() -> LineFigure {
                     upwards: true,
                     label: "grows".into(),
                 }),
+                spots: vec![Spot {
+                    x: 4.2,
+                    y: 0.0,
+                    mark: Mark::Circle,
+                    style: Some(0),
+                    label: String::new(),
+                }],
             },
+        ],
+        marks: vec![
+            (Mark::Circle, "neutral".into()),
+            (Mark::Diamond, "two modes meet".into()),
         ],
     }
 }
@@ -319,5 +338,83 @@ pub fn line_gallery() -> Vec<(&'static str, LineFigure)> {
         ("dots", dots),
         ("empty_lines", empty),
         ("single_lines", single),
+    ]
+}
+
+/// Three invented trails, as a root locus has them.
+pub fn root_locus() -> Locus {
+    let trail = |k: usize, hz: f64, turn: f64| Trail {
+        name: format!("{}: about {hz} Hz", k + 1),
+        tag: (k + 1).to_string(),
+        style: k,
+        runs: vec![
+            samples(1.0, 8.0, 120)
+                .into_iter()
+                .map(|t| {
+                    let phase = turn * t;
+                    (t, hz + 60.0 * phase.cos(), 90.0 * phase.sin() - 12.0 * t)
+                })
+                .collect(),
+        ],
+    };
+    let spot = |x: f64, mark, label: &str| Spot {
+        x,
+        y: 0.0,
+        mark,
+        style: Some(1),
+        label: label.into(),
+    };
+    Locus {
+        title: "Both lower modes leave the growing half-plane for delays beyond 3 ms".into(),
+        subtitle: "Invented rig, 120 networks".into(),
+        footnote: "Confirm by rig test before any decision on hardware.".into(),
+        x: Axis::new("Frequency", "Hz"),
+        y: Axis::new("Growth rate", "1/s"),
+        parameter: (Axis::new("Flame delay", "ms"), 1.0, 8.0),
+        shade: Some(Shade {
+            from: 0.0,
+            upwards: true,
+            label: "grows".into(),
+        }),
+        trails: vec![
+            trail(0, 120.0, 0.7),
+            trail(1, 260.0, 1.1),
+            trail(2, 410.0, 0.3),
+        ],
+        spots: vec![
+            spot(150.0, Mark::Circle, "2.3 ms"),
+            spot(300.0, Mark::Diamond, "3.1 ms"),
+            spot(400.0, Mark::Cross, ""),
+        ],
+        marks: vec![
+            (Mark::Circle, "neutral".into()),
+            (Mark::Diamond, "modes meet".into()),
+        ],
+    }
+}
+
+pub fn locus_gallery() -> Vec<(&'static str, Locus)> {
+    let mut empty = root_locus();
+    empty.trails.clear();
+    empty.spots.clear();
+    let mut still = root_locus();
+    for run in still.trails.iter_mut().flat_map(|t| &mut t.runs) {
+        run.iter_mut().for_each(|p| (p.1, p.2) = (200.0, -30.0));
+    }
+    let mut lone = root_locus();
+    for trail in &mut lone.trails {
+        trail.runs.iter_mut().for_each(|run| run.truncate(1));
+    }
+    let mut hostile = root_locus();
+    hostile.title = "<b> & \"quotes\" ]]> ".repeat(20);
+    hostile.trails[0].name = "a name far longer than any legend could hold ".repeat(9);
+    hostile.trails[1].tag = "<&>".into();
+    hostile.spots[0].label = "a label much too long to stand anywhere on the plot ".repeat(4);
+    vec![
+        ("locus", root_locus()),
+        ("locus_empty", empty),
+        ("locus_still", still),
+        ("locus_lone", lone),
+        ("locus_hostile", hostile),
     ]
 }

@@ -6,11 +6,13 @@ mod figures;
 mod profiles;
 
 use check::check_drawing;
-use figures::{Rows, base, full, gallery, line_gallery, rows, samples, sweep};
+use figures::{
+    Rows, base, full, gallery, line_gallery, locus_gallery, root_locus, rows, samples, sweep,
+};
 use proptest::prelude::*;
 use roxmltree::Document;
 use stillflame::draw::{
-    DrawError, LineFigure, Scale, StabilityMap, contour, field::Field, lines, map, text,
+    DrawError, LineFigure, Scale, StabilityMap, contour, field::Field, lines, locus, map, text,
 };
 
 #[test]
@@ -21,6 +23,30 @@ fn every_figure_is_well_formed_and_keeps_its_text_on_the_canvas() {
     for (name, figure) in line_gallery() {
         check_drawing(name, &lines::render(&figure).unwrap());
     }
+    for (name, figure) in locus_gallery() {
+        let svg = locus::render(&figure).unwrap();
+        check_drawing(name, &svg);
+        assert_eq!(svg, locus::render(&figure).unwrap());
+    }
+}
+
+#[test]
+fn a_locus_marks_the_round_values_of_its_parameter_on_every_trail() {
+    let figure = root_locus();
+    let svg = locus::render(&figure).unwrap();
+    let document = Document::parse(&svg).unwrap();
+    let dots = document
+        .descendants()
+        .filter(|n| n.attribute("r") == Some("2.3"))
+        .count();
+    // Eight whole milliseconds on each trail, and one in the legend.
+    assert_eq!(dots, 8 * figure.trails.len() + 1);
+    let mut broken = figure;
+    broken.trails[0].runs[0][3].2 = f64::NAN;
+    assert!(matches!(
+        locus::render(&broken),
+        Err(DrawError::NotFinite { .. })
+    ));
 }
 
 #[test]

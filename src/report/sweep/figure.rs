@@ -1,0 +1,293 @@
+//! A sweep as figures: frequency and growth rate over the parameter, and the root locus.
+
+use std::f64::consts::TAU;
+
+use super::SweepReport;
+use super::words::joined;
+use crate::draw::{
+    Axis, DrawError, LineFigure, Locus, Mark, Panel, Scale, Series, Shade, Spot, Trail, lines,
+    locus,
+};
+use crate::report::figure::{engineers_unit, label};
+use crate::report::map::rate;
+use crate::report::{CAUTION, window_text};
+use crate::studies::path::{Parameter, Spacing};
+use crate::studies::sweep::{Branch, Kind, Place, State};
+
+/// Positions between two neighbours of a trail, for smooth curves.
+const FINE: u32 = 3;
+
+impl SweepReport<'_> {
+    /// The axis of the parameter and the size of its unit in SI.
+    fn parameter_axis(&self) -> (Axis, f64) {
+        let path = &self.sweep.path;
+        let (name, dimension) = self.parameter();
+        let scale = match path.spacing {
+            Spacing::Linear => Scale::Linear,
+            Spacing::Geometric => Scale::Logarithmic,
+        };
+        if path.parameter == Parameter::Factor {
+            let names: Vec<String> = self.knobs().map(|(name, ..)| label(name)).collect();
+            let label = match names.as_slice() {
+                few if few.len() <= 3 => {
+                    let few: Vec<String> = few.iter().map(|n| lower(n)).collect();
+                    format!("Factor on {}", joined(&few))
+                }
+                many => format!("Factor on {} numbers", many.len()),
+            };
+            let unit = String::new();
+            return (Axis { label, unit, scale }, 1.0);
+        }
+        let largest = path.values.from.abs().max(path.values.to.abs());
+        let (unit, size) = engineers_unit(dimension, largest);
+        let label = label(name);
+        (Axis { label, unit, scale }, size)
+    }
+
+    fn subtitle(&self) -> String {
+        let (complete, not_certified, failed) = self.sweep.tally();
+        let certified = match (not_certified, failed) {
+            (0, 0) => "every list proved complete".to_owned(),
+            (n, 0) => format!("{n} not certified"),
+            (0, f) => format!("{f} without an answer"),
+            (n, f) => format!("{n} not certified, {f} without an answer"),
+        };
+        let total = complete + not_certified + failed;
+        format!("{}; {total} networks, {certified}", self.heading.title)
+    }
+
+    fn footnote(&self) -> String {
+        format!(
+            "Modes in {}. {} {CAUTION}",
+            window_text(&self.sweep.window),
+            self.growth_outside()
+        )
+    }
+
+    /// The legend text of a branch.
+    fn branch_name(index: usize, branch: &Branch) -> String {
+        let frequencies = || branch.trace.iter().map(|p| p.s.im / TAU);
+        let low = frequencies().fold(f64::INFINITY, f64::min);
+        let high = frequencies().fold(0.0, f64::max);
+        let number = index + 1;
+        if high.round() > low.round() {
+            format!("{number}: {low:.0} to {high:.0} Hz")
+        } else {
+            format!("{number}: {low:.0} Hz")
+        }
+    }
+
+    /// Marks of events, each placed by `at` from position and mode.
+    fn spots(
+        &self,
+        at: impl Fn(f64, num_complex::Complex64) -> (f64, f64),
+        told: bool,
+    ) -> Vec<Spot> {
+        let mut spots = Vec::new();
+        for event in &self.sweep.events {
+            let mark = match event.kind {
+                Kind::BecomesUnstable | Kind::BecomesStable => Mark::Circle,
+                Kind::Enters | Kind::Leaves => Mark::Triangle,
+                Kind::ExceptionalPoint
+                | Kind::Crossing
+                | Kind::BecomesReal
+                | Kind::BecomesOscillating => Mark::Diamond,
+                Kind::Found | Kind::Lost => Mark::Cross,
+            };
+            let label = match mark {
+                Mark::Circle | Mark::Diamond if told => self.told(event.u, 3),
+                _ => String::new(),
+            };
+            let (x, y) = at(event.u, event.s);
+            spots.push(Spot {
+                x,
+                y,
+                mark,
+                style: event.branches.first().copied(),
+                label,
+            });
+        }
+        spots
+    }
+
+    fn marks() -> Vec<(Mark, String)> {
+        [
+            (Mark::Circle, "neutral"),
+            (Mark::Triangle, "enters or leaves the window"),
+            (Mark::Diamond, "modes meet"),
+            (Mark::Cross, "not to be followed further"),
+            (Mark::Box, "start of the sweep"),
+            (Mark::Square, "end of the sweep"),
+        ]
+        .map(|(mark, text)| (mark, text.to_owned()))
+        .to_vec()
+    }
+
+    /// Frequency and growth rate over the parameter, as SVG.
+    ///
+    /// # Errors
+    /// Where the figure cannot be drawn.
+    pub fn panels_svg(&self) -> Result<String, DrawError> {
+        let sweep = self.sweep;
+        let (axis, size) = self.parameter_axis();
+        let scaled = |u: f64| self.value(u) / size;
+        let places = sweep.branches.iter().flat_map(|b| &b.trace).map(|p| p.u);
+        let mut at: Vec<f64> = sweep.points.iter().map(|p| p.u).chain(places).collect();
+        at.sort_by(f64::total_cmp);
+        at.dedup_by(|b, a| scaled(*b) <= scaled(*a));
+        let uncertain = |u: f64| {
+            let point = sweep.points.iter().find(|p| p.u == u);
+            point.is_some_and(|p| p.state != State::Certified)
+        };
+        let series = |of: fn(&Place) -> f64| -> Vec<Series> {
+            let branches = sweep.branches.iter().enumerate();
+            branches
+                .map(|(i, branch)| Series {
+                    name: Self::branch_name(i, branch),
+                    style: i,
+                    values: at
+                        .iter()
+                        .map(|u| branch.known_at(*u).map(|p| of(&p)))
+                        .collect(),
+                    tag: (i + 1).to_string(),
+                })
+                .collect()
+        };
+        let figure = LineFigure {
+            title: self.finding(),
+            subtitle: self.subtitle(),
+            footnote: self.footnote(),
+            x: axis,
+            x_values: at.iter().map(|u| scaled(*u)).collect(),
+            certified: at.iter().map(|u| !uncertain(*u)).collect(),
+            uncertified: match sweep.tally().2 {
+                0 => "not certified".to_owned(),
+                _ => "not certified, or without an answer".to_owned(),
+            },
+            mark: self.design_at().map(|u| (scaled(u), self.design_label(u))),
+            panels: vec![
+                Panel {
+                    y: Axis::new("Frequency", "Hz"),
+                    series: series(|p| p.s.im / TAU),
+                    shade: None,
+                    spots: self.spots(|u, s| (scaled(u), s.im / TAU), false),
+                },
+                Panel {
+                    y: Axis::new("Growth rate", "1/s"),
+                    series: series(|p| p.s.re),
+                    shade: Some(grows()),
+                    spots: self.spots(|u, s| (scaled(u), s.re), false),
+                },
+            ],
+            marks: Self::marks(),
+        };
+        lines::render(&figure)
+    }
+
+    fn design_label(&self, u: f64) -> String {
+        let value = self.told(u, 4);
+        match self.design.leading() {
+            Some(mode) => format!("design at {value}: {} 1/s", rate(mode.growth())),
+            None => format!("design at {value}"),
+        }
+    }
+
+    /// The trails of all branches in the plane of frequency and growth rate, as SVG.
+    ///
+    /// # Errors
+    /// Where the figure cannot be drawn.
+    pub fn locus_svg(&self) -> Result<String, DrawError> {
+        let sweep = self.sweep;
+        let (axis, size) = self.parameter_axis();
+        let scaled = |u: f64| self.value(u) / size;
+        let point = |p: &Place| (scaled(p.u), p.s.im / TAU, p.s.re);
+        let trails = sweep.branches.iter().enumerate();
+        let trails: Vec<Trail> = trails
+            .map(|(i, branch)| Trail {
+                name: Self::branch_name(i, branch),
+                tag: (i + 1).to_string(),
+                style: i,
+                runs: smooth(branch)
+                    .iter()
+                    .map(|run| run.iter().map(point).collect())
+                    .collect(),
+            })
+            .collect();
+        let mut spots = self.spots(|_, s| (s.im / TAU, s.re), true);
+        for (i, branch) in sweep.branches.iter().enumerate() {
+            let first = branch.trace.first().filter(|p| p.u <= 0.0);
+            let last = branch.trace.last().filter(|p| p.u >= 1.0);
+            for (place, mark) in [(first, Mark::Box), (last, Mark::Square)] {
+                if let Some((_, x, y)) = place.map(point) {
+                    spots.push(Spot {
+                        x,
+                        y,
+                        mark,
+                        style: Some(i),
+                        label: String::new(),
+                    });
+                }
+            }
+        }
+        let mut marks = Self::marks();
+        if let Some(u) = self.design_at() {
+            let places = sweep.branches.iter().filter_map(|b| b.known_at(u));
+            for place in places {
+                let (_, x, y) = point(&place);
+                spots.push(Spot {
+                    x,
+                    y,
+                    mark: Mark::Target,
+                    style: None,
+                    label: String::new(),
+                });
+            }
+            marks.push((Mark::Target, format!("design at {}", self.told(u, 4))));
+        }
+        locus::render(&Locus {
+            title: self.finding(),
+            subtitle: self.subtitle(),
+            footnote: self.footnote(),
+            x: Axis::new("Frequency", "Hz"),
+            y: Axis::new("Growth rate", "1/s"),
+            parameter: (axis, scaled(0.0), scaled(1.0)),
+            shade: Some(grows()),
+            trails,
+            spots,
+            marks,
+        })
+    }
+}
+
+fn grows() -> Shade {
+    Shade {
+        from: 0.0,
+        upwards: true,
+        label: "grows".into(),
+    }
+}
+
+fn lower(text: &str) -> String {
+    let mut letters = text.chars();
+    let first = letters.next().into_iter().flat_map(char::to_lowercase);
+    first.chain(letters).collect()
+}
+
+/// The places of a branch with more in between by cubics, parted at gaps.
+fn smooth(branch: &Branch) -> Vec<Vec<Place>> {
+    let mut runs: Vec<Vec<Place>> = Vec::new();
+    let mut before: Option<&Place> = None;
+    for place in &branch.trace {
+        match (before.filter(|_| !place.gap_before), runs.last_mut()) {
+            (Some(last), Some(run)) => {
+                let h = place.u - last.u;
+                let inner = (1..=FINE).map(|k| last.u + h * f64::from(k) / f64::from(FINE + 1));
+                run.extend(inner.filter_map(|u| branch.known_at(u)));
+                run.push(*place);
+            }
+            _ => runs.push(vec![*place]),
+        }
+        before = Some(place);
+    }
+    runs
+}

@@ -1,0 +1,266 @@
+//! A sweep in words: its finding, its branches and its events.
+
+use super::{SweepReport, edge};
+use crate::draw::text::fixed;
+use crate::modes::Tendency;
+use crate::report::map::{percent, rate};
+use crate::report::table::{Lean, Table};
+use crate::report::{closing, counted, window_text};
+use crate::studies::path::{Parameter, Spacing};
+use crate::studies::sweep::{Event, Kind};
+use crate::units::{Dimension, write_rounded};
+
+/// What happens at an event, for people.
+fn happens(event: &Event) -> String {
+    let through = event.edge.map_or(String::new(), |e| {
+        let edge = edge(e).replace('_', " ");
+        format!(
+            " through the {edge}{}",
+            if edge.ends_with('h') { " rate" } else { "" }
+        )
+    });
+    let other = event.branches.get(1).map_or(0, |b| b + 1);
+    match event.kind {
+        Kind::Enters => format!("enters the window{through}"),
+        Kind::Leaves => format!("leaves the window{through}"),
+        Kind::ExceptionalPoint => format!(
+            "meets branch {other} at an exceptional point: which is which beyond is a convention"
+        ),
+        Kind::Crossing => format!("passes through branch {other}, each going on as it came"),
+        Kind::BecomesReal => {
+            format!(
+                "meets its conjugate and parts as two modes that do not oscillate, itself and {other}"
+            )
+        }
+        Kind::BecomesOscillating => {
+            format!("meets branch {other}, which ends; it oscillates from here")
+        }
+        Kind::BecomesUnstable => "becomes unstable".to_owned(),
+        Kind::BecomesStable => "becomes stable".to_owned(),
+        Kind::Found => "begins: not to be followed from before".to_owned(),
+        Kind::Lost => "ends: not to be followed further".to_owned(),
+    }
+}
+
+impl SweepReport<'_> {
+    /// What the sweep shows, in a sentence.
+    pub fn finding(&self) -> String {
+        let sweep = self.sweep;
+        let (complete, not_certified, failed) = sweep.tally();
+        let stretches = sweep.unstable();
+        let length: f64 = stretches.iter().map(|(a, b)| b - a).sum();
+        let mut text = match stretches.as_slice() {
+            _ if complete == 0 => "No point of the sweep is certified".to_owned(),
+            [] if complete == sweep.points.len() => {
+                "No mode in the window grows on the sweep".to_owned()
+            }
+            [] => "No mode grows where the sweep is certified".to_owned(),
+            [(a, b)] if *a <= 0.0 && *b >= 1.0 => "Unstable over the whole sweep".to_owned(),
+            few if few.len() <= 3 => {
+                let parts: Vec<String> = few.iter().map(|s| self.stretch(*s)).collect();
+                format!("Unstable {}{}", self.of_what(), joined(&parts))
+            }
+            many => format!(
+                "Unstable over {:.0} % of the sweep, in {} stretches",
+                100.0 * length,
+                many.len()
+            ),
+        };
+        if let Some((u, _, s)) = sweep.greatest().filter(|_| !stretches.is_empty()) {
+            text.push_str(&format!(
+                "; fastest {} 1/s and {} Hz at {}",
+                rate(s.re),
+                fixed(s.im / std::f64::consts::TAU, 0),
+                self.told(u, 3)
+            ));
+        }
+        let unknown = not_certified + failed;
+        if unknown > 0 && complete > 0 {
+            let share = percent(unknown, sweep.points.len());
+            let what = match (not_certified, failed) {
+                (_, 0) => "not certified",
+                (0, _) => "without an answer",
+                _ => "not certified or without an answer",
+            };
+            text.push_str(&format!("; {share} of the points {what}"));
+        }
+        text
+    }
+
+    /// `for interaction index `; nothing where the unit says what is meant.
+    fn of_what(&self) -> String {
+        let (name, dimension) = self.parameter();
+        if dimension != Dimension::Number {
+            return String::new();
+        }
+        let key = name.rsplit('.').next().unwrap_or(name);
+        format!("for {} ", key.replace('_', " "))
+    }
+
+    /// `from 2.31 ms to 4 ms`, `up to 4 ms`, `from 2.31 ms on`.
+    fn stretch(&self, (a, b): (f64, f64)) -> String {
+        match (a <= 0.0, b >= 1.0) {
+            (true, _) => format!("up to {}", self.told(b, 3)),
+            (_, true) => format!("from {} on", self.told(a, 3)),
+            _ => format!("from {} to {}", self.told(a, 3), self.told(b, 3)),
+        }
+    }
+
+    /// For people.
+    pub fn text(&self) -> String {
+        let sweep = self.sweep;
+        let (complete, not_certified, failed) = sweep.tally();
+        let mut text = format!("{}\n{}.\n\n", self.heading.text(), self.finding());
+        let steps = match sweep.path.spacing {
+            Spacing::Linear => "equal steps",
+            Spacing::Geometric => "equal ratios",
+        };
+        let mut label = "Sweep  ";
+        if sweep.path.parameter == Parameter::Factor {
+            let last = sweep.points.len().saturating_sub(1);
+            let (from, to) = (self.told(0.0, 6), self.told(1.0, 6));
+            text.push_str(&format!(
+                "{label} factor from {from} to {to} in {last} {steps}\n"
+            ));
+            label = "       ";
+        }
+        for (name, dimension, from, to) in self.knobs() {
+            let (from, to) = (
+                write_rounded(from, dimension, 6),
+                write_rounded(to, dimension, 6),
+            );
+            text.push_str(&format!("{label} {name} from {from} to {to}"));
+            if label == "Sweep  " {
+                let last = sweep.points.len().saturating_sub(1);
+                text.push_str(&format!(" in {last} {steps}"));
+            }
+            text.push('\n');
+            label = "       ";
+        }
+        let between = match sweep.between {
+            0 => String::new(),
+            n => format!(" and at {} put in between", counted(n, "point")),
+        };
+        text.push_str(&format!(
+            "Modes in {} at each of {} points{between}\nCertified complete: {complete}; not certified: \
+             {not_certified}; failed: {failed}\n",
+            window_text(&sweep.window),
+            sweep.points.len()
+        ));
+        if !sweep.branches.is_empty() {
+            text.push_str(&format!("\n{}", self.branch_table()));
+        }
+        if !sweep.events.is_empty() {
+            text.push_str(&format!("\n{}", self.event_table()));
+        }
+        text.push_str(&format!(
+            "\n{}{}\n",
+            self.design_words(),
+            self.growth_outside()
+        ));
+        text.push_str(&closing(self.warnings));
+        text
+    }
+
+    fn branch_table(&self) -> String {
+        use Lean::Right;
+        let mut table = Table::new(&[Right; 9]);
+        table.heading(&[
+            "branch",
+            "from",
+            "to",
+            "frequency",
+            "to",
+            "largest",
+            "at",
+            "frequency",
+            "unstable",
+        ]);
+        table.heading(&[
+            "",
+            "",
+            "",
+            "Hz",
+            "Hz",
+            "growth 1/s",
+            "",
+            "there, Hz",
+            "from",
+        ]);
+        let branches = self.sweep.branches.iter().enumerate();
+        for (i, branch) in branches {
+            let (Some(first), Some(last), Some(greatest)) =
+                (branch.trace.first(), branch.trace.last(), branch.greatest())
+            else {
+                continue;
+            };
+            let hz = |s: num_complex::Complex64| s.im / std::f64::consts::TAU;
+            let frequencies = || branch.trace.iter().map(|p| hz(p.s));
+            let mut neutral = self.sweep.neutral(Some(i));
+            let unstable = match neutral.find(|e| e.kind == Kind::BecomesUnstable) {
+                _ if first.tendency() == Tendency::Grows => self.told(first.u, 5),
+                Some(event) => self.told(event.u, 5),
+                None => "never".to_owned(),
+            };
+            table.row(vec![
+                (i + 1).to_string(),
+                self.told(first.u, 5),
+                self.told(last.u, 5),
+                format!("{:.2}", frequencies().fold(f64::INFINITY, f64::min)),
+                format!("{:.2}", frequencies().fold(0.0, f64::max)),
+                format!("{:.3}", greatest.s.re),
+                self.told(greatest.u, 5),
+                format!("{:.2}", hz(greatest.s)),
+                unstable,
+            ]);
+        }
+        table.text()
+    }
+
+    fn event_table(&self) -> String {
+        use Lean::{Left, Right};
+        let mut table = Table::new(&[Right, Right, Right, Right, Left]);
+        table.heading(&["at", "branch", "frequency", "growth rate", "what happens"]);
+        table.heading(&["", "", "Hz", "1/s", ""]);
+        for event in &self.sweep.events {
+            let branch = event.branches.first().map_or(0, |b| b + 1);
+            table.row(vec![
+                self.told(event.u, 6),
+                branch.to_string(),
+                format!("{:.3}", event.s.im / std::f64::consts::TAU),
+                fixed(event.s.re, 3).replace('\u{2212}', "-"),
+                happens(event),
+            ]);
+        }
+        table.text()
+    }
+
+    fn design_words(&self) -> String {
+        let Some(u) = self.design_at() else {
+            return "The network as its file states it does not lie on the sweep.\n".to_owned();
+        };
+        let mode = match self.design.leading() {
+            None => "no mode in the window".to_owned(),
+            Some(m) => format!(
+                "the leading mode {} at {} 1/s and {:.1} Hz",
+                match m.tendency() {
+                    Tendency::Grows => "grows",
+                    Tendency::Neutral => "is neutral",
+                    Tendency::Decays => "decays",
+                },
+                rate(m.growth()),
+                m.frequency()
+            ),
+        };
+        format!("Design point at {}: {mode}.\n", self.told(u, 5))
+    }
+}
+
+/// `a, b and c`.
+pub(super) fn joined(parts: &[String]) -> String {
+    match parts {
+        [] => String::new(),
+        [one] => one.clone(),
+        [most @ .., last] => format!("{} and {last}", most.join(", ")),
+    }
+}
