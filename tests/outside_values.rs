@@ -9,8 +9,9 @@ use std::path::{Path, PathBuf};
 
 use num_complex::Complex64;
 use serde_json::Value;
-use stillflame::input;
+use stillflame::gas::State;
 use stillflame::modes::{self, ModeList, Scan, Window};
+use stillflame::{input, meanflow};
 
 /// Demanded of every eigenvalue, relative to its modulus.
 const TOLERANCE: f64 = 1e-8;
@@ -81,8 +82,10 @@ fn compare(name: &str, list: &ModeList, exact: &[(Complex64, usize)]) -> Result<
 #[test]
 fn closed_dispersion_relations() {
     let all = json("closed_form.json");
+    let cases = all["cases"].as_object().unwrap();
+    assert_eq!(cases.len(), 12);
     let mut faults = Vec::new();
-    for (name, case) in all["cases"].as_object().unwrap() {
+    for (name, case) in cases {
         let toml = std::fs::read_to_string(data(case["network"].as_str().unwrap())).unwrap();
         let list = modes_of(name, &toml);
         let count = case["count"].as_u64().unwrap() as usize;
@@ -113,6 +116,7 @@ fn closed_dispersion_relations() {
 fn fifty_networks_of_the_independent_solver() {
     let all = json("witness_modes.json");
     let networks = all["networks"].as_array().unwrap();
+    assert_eq!(networks.len(), 50);
     let mut faults = Vec::new();
     let mut worst = 0.0f64;
     let mut total = 0;
@@ -141,4 +145,56 @@ fn fifty_networks_of_the_independent_solver() {
         faults.len(),
         faults.join("\n")
     );
+}
+
+/// Every station of the same networks: pressure, temperature, velocity, density, sound speed, Mach number.
+#[test]
+fn the_mean_flow_of_fifty_networks() {
+    /// Relative.
+    const MOST: f64 = 1e-12;
+    type Quantity = (&'static str, fn(&State<f64>) -> f64);
+    let quantities: [Quantity; 7] = [
+        ("pressure_pa", |s| s.pressure),
+        ("temperature_k", |s| s.temperature),
+        ("velocity_m_s", |s| s.velocity),
+        ("density_kg_m3", State::density),
+        ("sound_speed_m_s", State::sound_speed),
+        ("mach", State::mach),
+        ("area_m2", |s| s.area),
+    ];
+    let all = json("witness_modes.json");
+    let (mut stations, mut worst) = (0, 0.0f64);
+    for network in all["networks"].as_array().unwrap() {
+        let name = network["id"].as_str().unwrap();
+        let loaded = input::parse(name, network["toml"].as_str().unwrap(), &[]).unwrap();
+        let mean = meanflow::solve(&loaded.network).unwrap();
+        let layout = &loaded.network.layout;
+        for there in network["mean_flow"].as_array().unwrap() {
+            let element = layout.element(there["element"].as_str().unwrap()).unwrap();
+            let station = match there["side"].as_str() {
+                Some("in") => layout.inlet(element),
+                _ => layout.outlet(element),
+            };
+            let here = mean.state(station.unwrap()).unwrap();
+            for (key, of) in quantities {
+                let exact: f64 = there[key].as_str().unwrap().parse().unwrap();
+                let difference = (of(here) - exact).abs() / exact.abs().max(f64::MIN_POSITIVE);
+                let difference = if exact == 0.0 {
+                    of(here).abs()
+                } else {
+                    difference
+                };
+                assert!(
+                    difference < MOST,
+                    "{name}, {}, {}: {key} differs by {difference:e}",
+                    there["element"],
+                    there["side"]
+                );
+                worst = worst.max(difference);
+            }
+            stations += 1;
+        }
+    }
+    println!("{stations} stations, largest difference {worst:.1e}");
+    assert!(stations > 500);
 }

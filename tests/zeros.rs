@@ -249,6 +249,27 @@ fn a_dropped_zero_is_reported_missing() {
     assert_eq!(verdict.expected, Some(3));
 }
 
+/// A pad may begin at zero frequency by chance, as 2 % about 14 to 714 Hz does; without symmetry the zeros
+/// are single all the same.
+#[test]
+fn without_symmetry_zeros_are_counted_singly_wherever_the_pad_begins() {
+    let f = Polynomial::with(&FAULT_FREE);
+    assert!(!f.is_symmetric());
+    let window = Rectangle {
+        omega: (120.0, 6000.0),
+        ..WINDOW
+    };
+    let verdict = zeros::certify(
+        &Ledger::new(&f, 300.0),
+        &window,
+        &padded(),
+        3,
+        Effort::default(),
+    );
+    assert_eq!(verdict.doubts, [Doubt::Missing { missing: 3 }]);
+    assert_eq!(verdict.expected, Some(3));
+}
+
 #[test]
 fn a_duplicate_is_known_and_never_listed_twice() {
     let f = Polynomial::symmetric(&FAULT_FREE);

@@ -7,10 +7,11 @@ use clap::Args;
 use super::options::{Case, Common, WindowArguments};
 use super::plane::{self, Points};
 use super::{Answer, Failure, Status, progress};
-use crate::modes::{self, Scan, validity};
+use crate::modes::{self, ModeList, Scan, validity};
+use crate::network::Network;
 use crate::problems::Problem;
-use crate::report::map::MapReport;
-use crate::studies::{cautions, map};
+use crate::report::map::{Followed, MapReport};
+use crate::studies::{branch, cautions, map};
 
 /// Draw a stability map over two numbers of the network
 ///
@@ -39,6 +40,11 @@ pub(super) struct Arguments {
     #[arg(long, value_name = "COLUMNSxROWS", default_value = "100x100", value_parser = plane::points, allow_hyphen_values = true)]
     points: Points,
 
+    /// Follow one mode over the map instead of the largest growth rate: the one of that number in
+    /// the list of `stillflame modes`
+    #[arg(long, value_name = "NUMBER")]
+    mode: Option<usize>,
+
     #[command(flatten)]
     window: WindowArguments,
 }
@@ -52,19 +58,39 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
     let window = case.window(&solved.mean)?;
     let design = modes::find(&solved, window, Scan::Whole);
     let design_outside = modes::outside(&solved, window);
+    let followed = match arguments.mode {
+        None => None,
+        Some(number) => Some(chosen(network, (across, up), &design, number)?),
+    };
 
     let bar = progress::bar(across.points * up.points);
     let watch = || {
         bar.inc(1);
         ControlFlow::Continue(())
     };
-    let map = map::map(network, &solved.mean, (across, up), window, watch);
+    let map = map::map(
+        network,
+        &solved.mean,
+        (across, up),
+        window,
+        followed.is_some(),
+        watch,
+    );
     bar.finish_and_clear();
     let Some(map) = map else {
         return Err(Failure::input([Problem::error(
             "map",
             "it was not finished",
         )]));
+    };
+
+    let map = match (&followed, &map.lists) {
+        (Some(one), Some(lists)) => {
+            let design = (network.values[across.knob], network.values[up.knob]);
+            let modes = branch::follow(&map, lists, design, &one.mode);
+            map.of_one(modes)
+        }
+        _ => map,
     };
 
     let mut more = solved.mean.warnings.clone();
@@ -81,12 +107,17 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
         map: &map,
         design: &design,
         design_outside: &design_outside,
+        followed,
         warnings: &warnings,
     };
     let svg = report.svg().map_err(|e| {
         let what = format!("the map cannot be drawn: {e}");
         Failure::input([Problem::error("map", what)])
     })?;
+    let name = followed.map_or_else(
+        || "map".to_owned(),
+        |one| format!("map_mode_{}", one.number),
+    );
     let answered = map.points.iter().any(|p| p.complete());
     Ok(Answer {
         text: if arguments.common.json {
@@ -95,13 +126,46 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
             report.text()
         },
         files: vec![
-            (case.file("map.svg"), svg.into_bytes()),
-            (case.file("map.csv"), report.csv()?),
+            (case.file(&format!("{name}.svg")), svg.into_bytes()),
+            (case.file(&format!("{name}.csv")), report.csv()?),
         ],
         status: if answered {
             Status::Done
         } else {
             Status::Failed
         },
+    })
+}
+
+/// The mode of that number at the design point, which must lie on the map to be followed from.
+fn chosen(
+    network: &Network,
+    (across, up): (map::Axis, map::Axis),
+    design: &ModeList,
+    number: usize,
+) -> Result<Followed, Failure> {
+    for axis in [across, up] {
+        let knob = network.layout.knobs.get(axis.knob.0);
+        if let (false, Some(knob)) = (axis.holds(network.values[axis.knob]), knob) {
+            let what =
+                "it lies outside the map, so that no mode of the network can be followed over it";
+            let hint = "widen the axis to hold the value of the file, or move it by --set";
+            return Err(Failure::input(
+                [Problem::error(&knob.name, what).hint(hint)],
+            ));
+        }
+    }
+    let mode = number.checked_sub(1).and_then(|i| design.modes.get(i));
+    let Some(mode) = mode else {
+        let what = format!(
+            "there is no mode {number}: the list has {}",
+            design.modes.len()
+        );
+        let hint = "`stillflame modes` numbers them";
+        return Err(Failure::input([Problem::error("map", what).hint(hint)]));
+    };
+    Ok(Followed {
+        number,
+        mode: *mode,
     })
 }

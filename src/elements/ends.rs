@@ -117,20 +117,11 @@ impl Feed {
                 scaled(on_waves(state, first_three(port.mass_flow))),
                 stagnation(),
             ],
-            FeedEnd::Reflection(r) => match r.value(values) {
-                Coefficient::Real(r) => [[one, -r, zero], no_entropy],
-                Coefficient::Complex { re, im } => {
-                    term = Some((
-                        Law::Complex {
-                            re,
-                            im,
-                            delay: zero,
-                        },
-                        [zero, -one, zero],
-                    ));
-                    [[one, zero, zero], no_entropy]
-                }
-            },
+            FeedEnd::Reflection(r) => {
+                let end = r.condition(values, [one, zero, zero], [zero, one, zero]);
+                term = end.term;
+                [end.row, no_entropy]
+            }
         };
         Start { rows, term }
     }
@@ -144,7 +135,6 @@ impl Exit {
     /// Candel 1977, J. Sound Vib. 55).
     pub fn lower<T: Real>(&self, state: &State<T>, values: &Values<T>) -> End<T> {
         let (zero, one) = (T::from(0.0), T::from(1.0));
-        let mut term = None;
         let row = match self.end {
             ExitEnd::Closed => [one, -one, zero],
             ExitEnd::Open => [one, one, zero],
@@ -162,22 +152,11 @@ impl Exit {
                     - warming * Grad::constant(slope);
                 scaled(on_waves(state, first_three(row)))
             }
-            ExitEnd::Reflection(r) => match r.value(values) {
-                Coefficient::Real(r) => [-r, one, zero],
-                Coefficient::Complex { re, im } => {
-                    term = Some((
-                        Law::Complex {
-                            re,
-                            im,
-                            delay: zero,
-                        },
-                        [-one, zero, zero],
-                    ));
-                    [zero, one, zero]
-                }
-            },
+            ExitEnd::Reflection(r) => {
+                return r.condition(values, [zero, one, zero], [one, zero, zero]);
+            }
         };
-        End { row, term }
+        End { row, term: None }
     }
 }
 
@@ -193,25 +172,30 @@ fn scaled<T: Real>(row: Row<T>) -> Row<T> {
     row.map(|x| x / largest)
 }
 
-enum Coefficient<T> {
-    Real(T),
-    Complex { re: T, im: T },
-}
-
 impl Reflection {
-    /// The coefficient; real where its phase is zero or half a turn, or where nothing is reflected.
-    fn value<T: Real>(&self, values: &Values<T>) -> Coefficient<T> {
+    /// `reflected - R incident = 0`: a row, and a law on what it multiplies where `R` is not real. It is
+    /// real where its phase is zero or half a turn, or where nothing is reflected.
+    fn condition<T: Real>(
+        &self,
+        values: &Values<T>,
+        reflected: Row<T>,
+        incident: Row<T>,
+    ) -> End<T> {
         let (modulus, phase) = (values[self.coefficient], values[self.phase]);
-        if phase.is_exactly_zero() || modulus.is_exactly_zero() {
-            Coefficient::Real(modulus)
+        let by_real = |r: T| std::array::from_fn(|i| reflected[i] - incident[i] * r);
+        let (row, term) = if phase.is_exactly_zero() || modulus.is_exactly_zero() {
+            (by_real(modulus), None)
         } else if (phase - PI).is_exactly_zero() {
-            Coefficient::Real(-modulus)
+            (by_real(-modulus), None)
         } else {
-            Coefficient::Complex {
+            let law = Law::Complex {
                 re: modulus * phase.cos(),
                 im: modulus * phase.sin(),
-            }
-        }
+                delay: T::from(0.0),
+            };
+            (reflected, Some((law, incident.map(|x| -x))))
+        };
+        End { row, term }
     }
 }
 

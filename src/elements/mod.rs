@@ -138,7 +138,7 @@ pub enum GasChoice {
     PerfectByMolarMass {
         /// Ratio of specific heats.
         gamma: KnobId,
-        /// Molar mass [kg/mol].
+        /// Molar mass (kg/mol).
         molar_mass: KnobId,
     },
 }

@@ -42,6 +42,11 @@ impl<'f, F: Analytic + ?Sized> Ledger<'f, F> {
         }
     }
 
+    /// Whether the function is symmetric about the real axis, so that zeros above it stand for pairs.
+    pub fn symmetric(&self) -> bool {
+        self.symmetric
+    }
+
     /// The zeros listed.
     pub fn zeros(&self) -> &[Zero] {
         &self.zeros

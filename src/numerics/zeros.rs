@@ -183,7 +183,7 @@ pub fn certify<F: Analytic + ?Sized>(
     count: i64,
     effort: Effort,
 ) -> Search {
-    let symmetric = padded.omega.0 == 0.0;
+    let symmetric = ledger.symmetric();
     let mut doubts = Vec::new();
     let mut zeros = Vec::new();
     let mut weight = 0;

@@ -4,7 +4,7 @@ use super::map::{MapReport, rate};
 use super::{CAUTION, window_text};
 use crate::draw::patches::Patches;
 use crate::draw::text::fixed;
-use crate::draw::{Axis, DesignPoint, DrawError, Quantity, StabilityMap, Words, map};
+use crate::draw::{Axis, DesignPoint, DrawError, IsoLines, Quantity, StabilityMap, Words, map};
 use crate::studies::map::{Axis as Values, Point};
 use crate::studies::regions::{Region, regions};
 use crate::units::{self, Dimension, write_rounded};
@@ -90,11 +90,17 @@ impl MapReport<'_> {
             "{}; {} \u{d7} {} networks, {certified}",
             self.heading.title, self.map.across.points, self.map.up.points
         );
-        let footnote = format!(
-            "Largest growth rate of the modes in {}. {} {CAUTION}",
-            window_text(&self.map.window),
-            self.growth_outside()
-        );
+        let footnote = match &self.followed {
+            None => format!(
+                "Largest growth rate of the modes in {}. {} {CAUTION}",
+                window_text(&self.map.window),
+                self.growth_outside()
+            ),
+            Some(one) => format!(
+                "Growth rate of mode {}, followed from point to point; other modes may grow. {CAUTION}",
+                one.number
+            ),
+        };
         let (design_x, design_y) = self.design_values();
         let design = match self.design_mode() {
             Some(mode) => format!("design, {} 1/s", rate(mode.growth())),
@@ -107,15 +113,22 @@ impl MapReport<'_> {
             x_values: x.values,
             y_values: y.values,
             quantity: Quantity {
-                label: "Largest growth rate".into(),
+                label: match self.followed {
+                    None => "Largest growth rate".into(),
+                    Some(_) => "Growth rate of the mode".into(),
+                },
                 unit: "1/s".into(),
                 above: "grows".into(),
                 below: "decays".into(),
             },
             values: self.rows(|p| p.fastest().map(|m| m.growth())),
             certified: self.rows(Point::complete),
-            frequency: None,
-            patches: Some(self.patches()),
+            frequency: self.followed.map(|_| IsoLines {
+                label: "Frequency".into(),
+                unit: "Hz".into(),
+                values: self.rows(|p| p.leading().map(|m| m.frequency())),
+            }),
+            patches: self.followed.is_none().then(|| self.patches()),
             design_point: self.design_inside().then(|| DesignPoint {
                 x: design_x / x.size,
                 y: design_y / y.size,
@@ -125,6 +138,10 @@ impl MapReport<'_> {
                 uncertified: match tally.failed {
                     0 => "not certified".into(),
                     _ => "not certified, or no mean flow".into(),
+                },
+                absent: match self.followed {
+                    None => Words::default().absent,
+                    Some(_) => "not followed, or outside the window".into(),
                 },
                 ..Words::default()
             },

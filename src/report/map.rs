@@ -26,8 +26,19 @@ pub struct MapReport<'a> {
     pub design: &'a ModeList,
     /// What grows outside the window there.
     pub design_outside: &'a Outside,
+    /// The mode followed, on a map of one mode.
+    pub followed: Option<Followed>,
     /// What qualifies it.
     pub warnings: &'a [Problem],
+}
+
+/// A mode followed over a map.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Followed {
+    /// Its number in the list at the design point, from one.
+    pub number: usize,
+    /// The mode there.
+    pub mode: Mode,
 }
 
 #[derive(Clone, Debug, Serialize)]
@@ -73,6 +84,7 @@ impl From<&Region> for RegionFields {
 #[derive(Clone, Debug, Serialize)]
 struct Body<'a> {
     finding: String,
+    followed_mode: Option<usize>,
     across_knob: &'a str,
     across_unit: &'static str,
     across: Vec<f64>,
@@ -114,6 +126,9 @@ impl<'a> MapReport<'a> {
 
     /// The fastest mode known at the design point.
     pub(super) fn design_mode(&self) -> Option<&Mode> {
+        if let Some(one) = &self.followed {
+            return Some(&one.mode);
+        }
         let both = [self.design_outside.fastest(), self.design.leading()];
         let known = both.into_iter().flatten();
         known.max_by(|a, b| a.growth().total_cmp(&b.growth()))
@@ -148,6 +163,7 @@ impl<'a> MapReport<'a> {
         let columns = map.across.points.max(1);
         let body = Body {
             finding: self.finding(),
+            followed_mode: self.followed.map(|one| one.number),
             across_knob,
             across_unit: across.si_unit(),
             across: map.across.values(),
@@ -231,6 +247,17 @@ impl<'a> MapReport<'a> {
     pub fn finding(&self) -> String {
         let tally = self.map.tally();
         let unknown = tally.points - tally.complete;
+        if let Some(one) = &self.followed {
+            let over = match tally.growing {
+                0 => "grows nowhere on the map".to_owned(),
+                n => format!("grows over {} of the map", percent(n, tally.points)),
+            };
+            return format!(
+                "The mode of {:.0} Hz {over}; there, at the design point, it is at {} 1/s",
+                one.mode.frequency(),
+                rate(one.mode.growth())
+            );
+        }
         let mut text = match (tally.growing, unknown) {
             (0, 0) => "No mode in the window grows on the map".to_owned(),
             (0, n) if n == tally.points => "No point of the map is certified".to_owned(),

@@ -130,6 +130,8 @@ pub struct Map {
     pub window: Window,
     /// Row by row, each of `across.points`.
     pub points: Vec<Point>,
+    /// The modes of each point, in and outside the window, where they were asked for.
+    pub lists: Option<Vec<Vec<Mode>>>,
 }
 
 impl Map {
@@ -146,6 +148,24 @@ impl Map {
                 .enumerate()
                 .map(move |(i, point)| (self.across.value(i), up, point))
         })
+    }
+}
+
+impl Map {
+    /// The same map of one mode alone, as it was followed.
+    #[must_use]
+    pub fn of_one(mut self, followed: Vec<Option<Mode>>) -> Map {
+        for (point, mode) in self.points.iter_mut().zip(followed) {
+            match point {
+                Point::Certified(found) | Point::Doubtful { found, .. } => {
+                    found.leading = mode;
+                    found.outside = None;
+                }
+                Point::Failed(_) => {}
+            }
+        }
+        self.lists = None;
+        self
     }
 }
 
@@ -206,10 +226,13 @@ impl Map {
     }
 }
 
+/// A point with its modes, in and outside the window.
+type Solution = (Point, Vec<Mode>);
+
 /// Points of a row that are solved one after another.
 const STRETCH: usize = 50;
 
-/// Asks for the modes at every point of the plane, on all cores.
+/// Asks for the modes at every point of the plane, on all cores; with `lists`, keeps them all.
 ///
 /// `mean` is the mean flow of the network; it is computed anew at each point where a knob of the plane
 /// can move it. `watch` is called once for each point done and may end the work, which then has no
@@ -219,12 +242,13 @@ pub fn map(
     mean: &MeanFlow<f64>,
     (across, up): (Axis, Axis),
     window: Window,
+    lists: bool,
     watch: impl Fn() -> ControlFlow<()> + Sync,
 ) -> Option<Map> {
     let moves = moves_mean_flow(network, across.knob) || moves_mean_flow(network, up.knob);
     let held = (!moves).then_some(mean);
     let in_row = across.points.div_ceil(STRETCH);
-    let stretches: Option<Vec<Vec<Point>>> = (0..in_row * up.points)
+    let stretches: Option<Vec<Vec<Solution>>> = (0..in_row * up.points)
         .into_par_iter()
         .map(|index| {
             let (first, j) = (index % in_row * STRETCH, index / in_row);
@@ -234,17 +258,22 @@ pub fn map(
                 .map(|i| {
                     here.values[across.knob] = across.value(i);
                     here.values[up.knob] = up.value(j);
-                    let point = point(&here, held, window, &mut known);
-                    watch().is_continue().then_some(point)
+                    let (point, mut modes) = point(&here, held, window, &mut known);
+                    if !lists {
+                        modes = Vec::new();
+                    }
+                    watch().is_continue().then_some((point, modes))
                 })
                 .collect()
         })
         .collect();
+    let (points, all): (Vec<_>, Vec<_>) = stretches?.into_iter().flatten().unzip();
     Some(Map {
         across,
         up,
         window,
-        points: stretches?.into_iter().flatten().collect(),
+        points,
+        lists: lists.then_some(all),
     })
 }
 
@@ -261,7 +290,7 @@ fn point(
     held: Option<&MeanFlow<f64>>,
     window: Window,
     known: &mut Known,
-) -> Point {
+) -> Solution {
     let acoustics = match held {
         None => modes::solve(network).map(|solved| solved.acoustics),
         Some(mean) => acoustics::assemble(network, mean),
@@ -270,7 +299,8 @@ fn point(
         Ok(acoustics) => acoustics,
         Err(Problems(problems)) => {
             let unsaid = || Problem::error("network", "this point has no solution");
-            return Point::Failed(Box::new(problems.into_iter().next().unwrap_or_else(unsaid)));
+            let first = problems.into_iter().next().unwrap_or_else(unsaid);
+            return (Point::Failed(Box::new(first)), Vec::new());
         }
     };
     // The characteristic function is analytic by construction.
@@ -288,13 +318,16 @@ fn point(
         excluded: outside.rest_excluded(),
         searched_to: outside.searched_to,
     };
-    match list.doubts.first() {
+    let point = match list.doubts.first() {
         None => Point::Certified(found),
         Some(doubt) => Point::Doubtful {
             found,
             why: modes::doubt_in_words(doubt).0.into(),
         },
-    }
+    };
+    let mut all = list.modes;
+    all.extend(outside.faster);
+    (point, all)
 }
 
 /// Whether a knob can move the mean flow. Those of the acoustics alone cannot: ducts lose nothing along

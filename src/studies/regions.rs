@@ -163,6 +163,7 @@ mod tests {
                 growth: (-1.0, 1.0),
             },
             points: frequencies.iter().map(point).collect(),
+            lists: None,
         }
     }
 

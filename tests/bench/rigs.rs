@@ -73,7 +73,15 @@ impl Rig {
     /// The modes at every point of a plane.
     pub fn map(&self, axes: (Axis, Axis)) -> Map {
         let go_on = || std::ops::ControlFlow::Continue(());
-        map::map(&self.network, &self.solved.mean, axes, self.window, go_on).expect("not ended")
+        map::map(
+            &self.network,
+            &self.solved.mean,
+            axes,
+            self.window,
+            false,
+            go_on,
+        )
+        .expect("not ended")
     }
 }
 
