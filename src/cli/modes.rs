@@ -71,10 +71,8 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
     if arguments.shapes {
         files.push((case.file("shapes.csv"), report.shapes_csv()?));
     }
-    let listed = list.modes.iter().chain(&outside.faster);
-    let grows = listed
-        .chain(&outside.slower)
-        .any(|m| m.tendency() == Tendency::Grows);
+    let mut known = list.modes.iter().chain(outside.modes());
+    let grows = known.any(|m| m.tendency() == Tendency::Grows);
     let status = if arguments.fail_on_growth && grows {
         Status::Grows
     } else if list.complete() {

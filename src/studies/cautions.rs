@@ -183,10 +183,11 @@ fn outside(network: &Network, map: &Map) -> Option<Problem> {
         fastest.growth(),
         fastest.frequency()
     );
-    let subject = if fastest.growth() > map.window.growth.1 {
-        "search.growth"
-    } else {
+    let (low, high) = map.window.growth;
+    let subject = if (low..=high).contains(&fastest.growth()) {
         "search.frequency"
+    } else {
+        "search.growth"
     };
     Some(Problem::warning(subject, what).hint(
         "the figure shows those growth rates; the lists and largest_growth_per_s keep to the window",
