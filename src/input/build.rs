@@ -331,7 +331,7 @@ fn element_name<'d>(
             subject.as_str(),
             format!("`{}` cannot be a name", shown(name)),
         )
-        .hint("a name is letters, digits, _ and -, and begins with a letter")
+        .hint("a name is letters a to z of either case, digits, _ and -, and begins with a letter")
     } else if RESERVED.contains(&name.as_str()) {
         Problem::error(
             subject.as_str(),
