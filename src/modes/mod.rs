@@ -48,10 +48,10 @@ impl Mode {
         (self.s.im > 0.0).then(|| self.growth() / self.frequency())
     }
 
-    /// `-growth/|s|`; none at `s = 0`.
+    /// `-growth/|s|`; none where `s` is zero, as far as its error bound tells.
     pub fn damping_ratio(&self) -> Option<f64> {
         let size = self.s.norm();
-        (size > 0.0).then(|| -self.growth() / size)
+        (size > self.error_bound).then(|| -self.growth() / size)
     }
 
     /// Full width at half power of the peak a damped mode makes in a spectrum, `-growth/pi` (Hz).
