@@ -197,10 +197,15 @@ pub fn doubt_in_words(doubt: &Doubt) -> (String, &'static str) {
         ),
         Doubt::NotCounted(CountError::Overflow { at }) => (
             format!(
-                "the modes could not be counted: at {} the waves of the longest delays overflow",
+                "the modes could not be counted: at {} the numbers overflow",
                 place(at)
             ),
-            "raise the lower growth rate, or carry entropy through fewer slow ducts",
+            if at.re < 0.0 {
+                "raise the lower growth rate: the longest delay sets how far it may go down, be it of a flame, a \
+                 long duct or entropy carried slowly"
+            } else {
+                "take a window that reaches less far"
+            },
         ),
         Doubt::NotCounted(CountError::BoundContradicted { at }) => (
             format!(

@@ -195,7 +195,9 @@ impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
         self.effort.bounds += 1;
         let bounds = self.f.bound(&region);
         if !bounds.iter().all(|b| b.is_finite()) {
-            return Err(CountError::Overflow { at: a });
+            // Delays grow to the left.
+            let at = if b.re < a.re { b } else { a };
+            return Err(CountError::Overflow { at });
         }
         self.cached = Some((region, bounds));
         Ok(bounds)
