@@ -83,6 +83,30 @@ proptest! {
         }
     }
 
+    /// A factor moves no zero, not even one near the ends of the range of numbers: long delays make
+    /// values of 1e150 and more far left of the imaginary axis.
+    #[test]
+    fn a_factor_changes_nothing(
+        zeros in prop::collection::vec(zero(), 1..5),
+        exponent in -250..250i32,
+        symmetric in any::<bool>(),
+    ) {
+        prop_assume!(zeros.iter().all(|z| clear_of_edges(*z) && (z.im - 300.0).abs() > 1e-3));
+        let low = if symmetric { 0.0 } else { 300.0 };
+        let window = Rectangle { omega: (low, 6000.0), ..WINDOW };
+        let plain = if symmetric { Polynomial::symmetric(&zeros) } else { Polynomial::with(&zeros) };
+        let scaled = Scaled { inner: &plain, factor: 10f64.powi(exponent) };
+        let expected = zeros::search(&plain, &window, Scan::Whole);
+        let found = zeros::search(&scaled, &window, Scan::Whole);
+        prop_assert_eq!(found.expected, expected.expected);
+        prop_assert!(found.complete() && expected.complete(), "{:?}", found.doubts);
+        prop_assert_eq!(found.zeros.len(), expected.zeros.len());
+        for z in &expected.zeros {
+            let near = |k: &Zero| (k.at - z.at).norm() <= k.error + z.error;
+            prop_assert!(found.zeros.iter().any(near), "{z:?} not in {:?}", found.zeros);
+        }
+    }
+
     #[test]
     fn every_zero_is_found_without_symmetry(zeros in prop::collection::vec(zero(), 1..5)) {
         let window = Rectangle { growth: (-600.0, 600.0), omega: (300.0, 6000.0) };
@@ -176,6 +200,31 @@ fn an_exact_double_zero_is_one_of_multiplicity_two() {
     let double = &found.zeros[0];
     assert_eq!(double.multiplicity, 2);
     assert!((double.at - z).norm() < 1e-4);
+}
+
+/// A function times a constant.
+struct Scaled<'f> {
+    inner: &'f Polynomial,
+    factor: f64,
+}
+
+impl Analytic for Scaled<'_> {
+    fn value_and_slope(&self, s: Complex64) -> (Complex64, Complex64) {
+        let (value, slope) = self.inner.value_and_slope(s);
+        (value * self.factor, slope * self.factor)
+    }
+    fn taylor(&self, s: Complex64) -> [Complex64; 4] {
+        self.inner.taylor(s).map(|c| c * self.factor)
+    }
+    fn bound(&self, region: &Region) -> [f64; TAYLOR] {
+        self.inner.bound(region).map(|b| b * self.factor)
+    }
+    fn rounding(&self) -> Rounding {
+        self.inner.rounding()
+    }
+    fn is_symmetric(&self) -> bool {
+        self.inner.is_symmetric()
+    }
 }
 
 /// A function with something wrong about it.

@@ -78,10 +78,8 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
             files.extend(pictures(&case, &report)?);
         }
     }
-    let listed = list.modes.iter().chain(&outside.faster);
-    let grows = listed
-        .chain(&outside.slower)
-        .any(|m| m.tendency() == Tendency::Grows);
+    let mut known = list.modes.iter().chain(outside.modes());
+    let grows = known.any(|m| m.tendency() == Tendency::Grows);
     let status = if arguments.fail_on_growth && grows {
         Status::Grows
     } else if list.complete() {

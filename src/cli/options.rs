@@ -9,10 +9,10 @@ use super::Failure;
 use crate::input::{self, SourceMap};
 use crate::meanflow::{self, MeanFlow};
 use crate::modes::{self, Solved, Window};
-use crate::network::Network;
+use crate::network::{FARTHEST, Network};
 use crate::problems::{Problem, Problems};
 use crate::report::Heading;
-use crate::units::{Dimension, parse_span};
+use crate::units::{Dimension, parse_span, write};
 
 /// Options of every verb.
 #[derive(Clone, Debug, Args)]
@@ -63,7 +63,10 @@ fn growth(text: &str) -> Result<Range, String> {
 
 fn span(text: &str, dimension: Dimension) -> Result<Range, String> {
     let (low, high) = parse_span(text, dimension).map_err(|e| format!("{e}; {}", e.hint()))?;
-    if low < high {
+    if low < -FARTHEST || high > FARTHEST {
+        let farthest = write(FARTHEST, dimension);
+        Err(format!("the window reaches beyond {farthest}"))
+    } else if low < high {
         Ok((low, high))
     } else if low == high {
         Err("the window is empty: both its ends are the same".to_owned())

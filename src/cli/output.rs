@@ -70,7 +70,7 @@ fn temporary(directory: &Path) -> io::Result<tempfile::NamedTempFile> {
 }
 
 fn fault(path: &Path, e: &io::Error) -> Failure {
-    let what = format!("{} cannot be written: {e}", path.display());
+    let what = format!("`{}` cannot be written: {e}", path.display());
     Failure::input([
         Problem::error("--out", what).hint("name a directory that may be made and written to")
     ])

@@ -9,7 +9,7 @@ use super::{elements, ends, references};
 use crate::elements::ends::{Exit, ExitEnd, Feed, FeedEnd, FeedFlow};
 use crate::elements::{Element, GasChoice, Kind, Section, duct};
 use crate::knobs::Values;
-use crate::network::{ElementId, Layout, Link, Network, Search, areas, values};
+use crate::network::{ElementId, FARTHEST, Layout, Link, Network, Search, areas, values};
 use crate::problems::Problem;
 use crate::units::{self, Dimension, QuantityError};
 
@@ -228,6 +228,10 @@ fn window(
     } else if dimension == Dimension::Frequency && low < 0.0 {
         fail("the window begins below zero frequency".to_owned())
             .hint("begin at 0 Hz: modes of negative frequency mirror those of positive")
+    } else if low < -FARTHEST || high > FARTHEST {
+        let farthest = units::write(FARTHEST, dimension);
+        fail(format!("the window reaches beyond {farthest}"))
+            .hint(format!("write it like {key} = \"{example}\""))
     } else {
         return Some((low, high));
     };
@@ -327,7 +331,7 @@ fn element_name<'d>(
             subject.as_str(),
             format!("`{}` cannot be a name", shown(name)),
         )
-        .hint("a name is letters, digits, _ and -, and begins with a letter")
+        .hint("a name is letters a to z of either case, digits, _ and -, and begins with a letter")
     } else if RESERVED.contains(&name.as_str()) {
         Problem::error(
             subject.as_str(),

@@ -48,10 +48,10 @@ impl Mode {
         (self.s.im > 0.0).then(|| self.growth() / self.frequency())
     }
 
-    /// `-growth/|s|`; none at `s = 0`.
+    /// `-growth/|s|`; none where `s` is zero, as far as its error bound tells.
     pub fn damping_ratio(&self) -> Option<f64> {
         let size = self.s.norm();
-        (size > 0.0).then(|| -self.growth() / size)
+        (size > self.error_bound).then(|| -self.growth() / size)
     }
 
     /// Full width at half power of the peak a damped mode makes in a spectrum, `-growth/pi` (Hz).
@@ -197,10 +197,15 @@ pub fn doubt_in_words(doubt: &Doubt) -> (String, &'static str) {
         ),
         Doubt::NotCounted(CountError::Overflow { at }) => (
             format!(
-                "the modes could not be counted: at {} the waves of the longest delays overflow",
+                "the modes could not be counted: at {} the numbers overflow",
                 place(at)
             ),
-            "raise the lower growth rate, or carry entropy through fewer slow ducts",
+            if at.re < 0.0 {
+                "raise the lower growth rate: the longest delay sets how far it may go down, be it of a flame, a \
+                 long duct or entropy carried slowly"
+            } else {
+                "take a window that reaches less far"
+            },
         ),
         Doubt::NotCounted(CountError::BoundContradicted { at }) => (
             format!(

@@ -2,7 +2,8 @@
 //!
 //! In the band of frequency from zero to the window's top, growth rates from the window's upper edge to one
 //! beyond which nothing lies ([`tail`]) are searched like any window; below the window's lowest frequency
-//! those above zero are searched as well, on the real axis too.
+//! those above zero are searched as well, on the real axis too, and so are those between zero and a lower
+//! edge that is positive.
 
 use std::f64::consts::TAU;
 
@@ -21,14 +22,17 @@ pub struct Outside {
     pub faster: Vec<Mode>,
     /// Modes that grow below the window's lowest frequency, those that do not oscillate among them.
     pub slower: Vec<Mode>,
+    /// Modes in the window's band of frequency that grow, though slower than its lower edge: there are
+    /// some only where that edge is positive.
+    pub milder: Vec<Mode>,
     /// Growth rate (1/s) up to which was searched.
     pub searched_to: f64,
     /// Whether the search up to there is proved complete.
     pub complete: bool,
     /// Whether it is proved that nothing lies beyond.
     pub proved: bool,
-    /// Why it is not proved that nothing in the band lies right of the window and nothing below it
-    /// grows; `None` where it is proved.
+    /// Why it is not proved that nothing in the band lies right of the window and nothing below or left
+    /// of it grows; `None` where it is proved.
     pub reason: Option<String>,
     /// Every zero met on the way, for the next search nearby.
     pub met: Vec<Complex64>,
@@ -45,10 +49,15 @@ impl Outside {
         self.complete && self.proved
     }
 
+    /// Every mode that grows outside the window, and those right of it that do not.
+    pub fn modes(&self) -> impl Iterator<Item = &Mode> {
+        self.slower.iter().chain(&self.milder).chain(&self.faster)
+    }
+
     /// The fastest of all.
     pub fn fastest(&self) -> Option<&Mode> {
-        let all = self.faster.iter().chain(&self.slower);
-        all.max_by(|a, b| a.growth().total_cmp(&b.growth()))
+        self.modes()
+            .max_by(|a, b| a.growth().total_cmp(&b.growth()))
     }
 }
 
@@ -76,6 +85,7 @@ pub fn outside_from(
 ) -> Outside {
     let tape = &acoustics.characteristic.tape;
     let (low, high) = window.growth;
+    let lowest = window.frequency.0;
     let from = high.max(start);
     let clear = tail::clear_beyond(tape, from, TAU * window.frequency.1, LIMIT);
     let mut reason = clear.err().map(in_words);
@@ -104,20 +114,23 @@ pub fn outside_from(
         met.extend(list.met);
     };
     look((high, searched_to), (0.0, window.frequency.1));
-    look((0.0, high), (0.0, window.frequency.0));
-    let (faster, slower): (Vec<Mode>, Vec<Mode>) = seen
+    look((0.0, high), (0.0, lowest));
+    look((0.0, low), window.frequency);
+    let (faster, others): (Vec<Mode>, Vec<Mode>) = seen
         .into_iter()
-        .partition(|m| m.growth() > high && m.frequency() >= window.frequency.0);
-    let slower: Vec<Mode> = slower
+        .partition(|m| m.growth() > high && m.frequency() >= lowest);
+    let (slower, milder): (Vec<Mode>, Vec<Mode>) = others
         .into_iter()
-        .filter(|m| m.tendency() == Tendency::Grows && m.frequency() < window.frequency.0)
-        .collect();
-    if let Some(found) = found_in_words(&faster, &slower) {
+        .filter(|m| m.tendency() == Tendency::Grows)
+        .filter(|m| m.frequency() < lowest || m.growth() < low)
+        .partition(|m| m.frequency() < lowest);
+    if let Some(found) = found_in_words(&faster, &slower, &milder) {
         reason = Some(found);
     }
     Outside {
         faster,
         slower,
+        milder,
         searched_to,
         complete,
         proved: clear.is_ok(),
@@ -126,24 +139,22 @@ pub fn outside_from(
     }
 }
 
-fn found_in_words(faster: &[Mode], slower: &[Mode]) -> Option<String> {
-    let most = |modes: &[Mode]| {
-        let by_growth = |a: &&Mode, b: &&Mode| a.growth().total_cmp(&b.growth());
-        modes.iter().max_by(by_growth).copied()
-    };
-    match (most(faster), most(slower)) {
-        (Some(m), _) => Some(format!(
-            "a mode lies right of the window: {:+.1} 1/s at {:.1} Hz",
+fn found_in_words(faster: &[Mode], slower: &[Mode], milder: &[Mode]) -> Option<String> {
+    let parts = [
+        (faster, "lies right of"),
+        (slower, "grows below"),
+        (milder, "grows left of"),
+    ];
+    parts.into_iter().find_map(|(modes, does)| {
+        let m = modes
+            .iter()
+            .max_by(|a, b| a.growth().total_cmp(&b.growth()))?;
+        Some(format!(
+            "a mode {does} the window: {:+.1} 1/s at {:.1} Hz",
             m.growth(),
             m.frequency()
-        )),
-        (None, Some(m)) => Some(format!(
-            "a mode grows below the window: {:+.1} 1/s at {:.1} Hz",
-            m.growth(),
-            m.frequency()
-        )),
-        (None, None) => None,
-    }
+        ))
+    })
 }
 
 fn in_words(reason: Option<Unbounded>) -> String {
@@ -245,5 +256,18 @@ mod tests {
         let m = outside.slower[0];
         assert!((m.growth() - 1064.0).abs() < 1.0 && m.frequency() == 0.0);
         assert!(!outside.excluded());
+    }
+
+    #[test]
+    fn growth_left_of_a_window_of_fast_growth_is_found() {
+        // The intrinsic mode at 500 Hz and 1064 1/s, below a window that begins at 1200 1/s.
+        let toml = intrinsic(2.0, 1.0, r#"kind = "n-tau","#).replace("-300 to 300", "1200 to 1500");
+        let (list, outside) = ask(&toml);
+        assert!(list.complete() && list.modes.is_empty());
+        assert!(!outside.excluded() && outside.faster.is_empty() && outside.slower.is_empty());
+        let m = outside.milder[0];
+        assert!((m.growth() - 1064.0).abs() < 1.0 && (m.frequency() - 500.0).abs() < 1e-6);
+        assert_eq!(outside.milder.len(), 1);
+        assert_eq!(outside.fastest(), Some(&m));
     }
 }

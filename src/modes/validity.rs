@@ -111,6 +111,16 @@ pub fn of_growth_outside(window: &Window, outside: &Outside) -> Vec<Problem> {
         let hint = "search frequencies from 0 Hz";
         found.push(Problem::warning("search.frequency", what).hint(hint));
     }
+    if let Some(m) = fastest(&outside.milder) {
+        let what = format!(
+            "growth slower than the window's lower edge of {:.0} 1/s: {:.1} 1/s at {:.1} Hz, not in the list",
+            window.growth.0,
+            m.growth(),
+            m.frequency()
+        );
+        let hint = "search growth rates from 0 1/s or below";
+        found.push(Problem::warning("search.growth", what).hint(hint));
+    }
     found
 }
 

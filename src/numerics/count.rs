@@ -195,7 +195,9 @@ impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
         self.effort.bounds += 1;
         let bounds = self.f.bound(&region);
         if !bounds.iter().all(|b| b.is_finite()) {
-            return Err(CountError::Overflow { at: a });
+            // Delays grow to the left.
+            let at = if b.re < a.re { b } else { a };
+            return Err(CountError::Overflow { at });
         }
         self.cached = Some((region, bounds));
         Ok(bounds)
@@ -253,11 +255,12 @@ impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
                 b.value - b.slope * along * (h / 3.0),
                 b.value,
             ];
-            let bisector = a.value / va + b.value / vb;
+            let (from, to) = (a.value / va, b.value / vb);
+            let bisector = from + to;
             let size = bisector.norm();
             let clear = |p: &Complex64| (p * bisector.conj()).re > (remainder + noise) * size;
             if size > 1e-9 && control.iter().all(clear) {
-                return Ok(crossing(a.value, b.value));
+                return Ok(crossing(from, to));
             }
         }
         if depth >= DEEPEST || h <= 4.0 * f64::EPSILON * modulus {
@@ -276,8 +279,9 @@ impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
     }
 }
 
-/// Crossing of the negative real axis between two values less than half a turn apart:
-/// counterclockwise +1, clockwise -1. The axis itself counts to the upper half-plane.
+/// Crossing of the negative real axis between two directions less than half a turn apart:
+/// counterclockwise +1, clockwise -1. The axis itself counts to the upper half-plane. Directions of
+/// modulus one, since the product of two values may overflow where they do not.
 fn crossing(a: Complex64, b: Complex64) -> i64 {
     let turn = (a.conj() * b).im;
     match (a.im >= 0.0, b.im >= 0.0) {

@@ -38,6 +38,12 @@ pub fn scale<F: Analytic + ?Sized>(f: &F, z: Complex64) -> f64 {
     b[0] / b[1].max(f64::MIN_POSITIVE)
 }
 
+/// `a/b` where `|b|^2` overflows or underflows too.
+pub fn quotient(a: Complex64, b: Complex64) -> Complex64 {
+    let size = b.norm();
+    (a / size) / (b / size)
+}
+
 /// Newton from `z` until the step is at rounding level or no longer shrinks. `None` where it leaves
 /// `reach` about the start or does not settle.
 pub fn newton<F: Analytic + ?Sized>(
@@ -51,7 +57,7 @@ pub fn newton<F: Analytic + ?Sized>(
     for _ in 0..40 {
         *evaluations += 1;
         let (value, slope) = f.value_and_slope(z);
-        let step = value / slope;
+        let step = quotient(value, slope);
         if !step.is_finite() {
             return (value.norm() == 0.0).then_some(z);
         }
@@ -89,12 +95,14 @@ pub fn simple<F: Analytic + ?Sized>(f: &F, z: Complex64, reach: f64) -> Option<Z
         let bounds = f.bound(&Region::disc(z, reach));
         let floor = |order| rounding.floor(&bounds, z.norm(), order);
         let (e, a) = (value.norm() + floor(0), slope.norm() - floor(1));
-        let root = a * a - 4.0 * bounds[2] * e;
+        // Divided by the slope: its square may overflow where it does not.
+        let (e, curvature) = (e / a, bounds[2] / a);
+        let root = 1.0 - 4.0 * curvature * e;
         if a > 0.0 && root > 0.0 {
-            let sum = a + root.sqrt();
+            let sum = 1.0 + root.sqrt();
             let inner = 2.0 * e / sum;
-            let outer = if 2.0 * bounds[2] * reach > sum {
-                sum / (2.0 * bounds[2])
+            let outer = if 2.0 * curvature * reach > sum {
+                sum / (2.0 * curvature)
             } else {
                 reach
             };
@@ -138,7 +146,7 @@ pub fn pair<F: Analytic + ?Sized>(
     for _ in 0..30 {
         *evaluations += 1;
         let [_, c1, c2, _] = f.taylor(z);
-        let step = c1 / (c2 * 2.0);
+        let step = quotient(c1, c2) * 0.5;
         if !step.is_finite() {
             return None;
         }
@@ -160,10 +168,11 @@ pub fn pair<F: Analytic + ?Sized>(
         real: false,
         settled: true,
     };
-    let root = (c1 * c1 - c0 * c2 * 4.0).sqrt();
+    let (c0, c1) = (quotient(c0, c2), quotient(c1, c2));
+    let root = (c1 * c1 - c0 * 4.0).sqrt();
     let mut halves = Vec::new();
     for sign in [1.0, -1.0] {
-        let guess = z + (-c1 + root * sign) / (c2 * 2.0);
+        let guess = z + (-c1 + root * sign) * 0.5;
         if let Some(zero) =
             newton(f, guess, 4.0 * both.error, evaluations).and_then(|z| simple(f, z, both.radius))
         {

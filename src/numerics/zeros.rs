@@ -347,7 +347,7 @@ impl<F: Analytic + ?Sized> Hunt<'_, F> {
         for start in self.points(pitch) {
             walker.effort.evaluations += 1;
             let (value, slope) = self.f.value_and_slope(start);
-            let step = value / slope;
+            let step = isolate::quotient(value, slope);
             if !step.is_finite() || step.norm_sqr() > (1.2 * pitch).powi(2) {
                 continue;
             }
@@ -381,7 +381,7 @@ impl<F: Analytic + ?Sized> Hunt<'_, F> {
             for _ in 0..25 {
                 walker.effort.evaluations += 1;
                 let (value, slope) = self.f.value_and_slope(z);
-                let mut rate = slope / value;
+                let mut rate = isolate::quotient(slope, value);
                 for k in ledger.zeros() {
                     let m = f64::from(k.multiplicity);
                     rate -= m / (z - k.at);

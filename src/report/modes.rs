@@ -173,10 +173,7 @@ impl Modes<'_> {
             growth_excluded_beyond: self.outside.excluded(),
             growth_not_excluded_because: self.outside.reason.as_deref(),
             growth_searched_to_per_s: self.outside.searched_to,
-            outside_window: (self.outside.slower.iter())
-                .chain(&self.outside.faster)
-                .map(Into::into)
-                .collect(),
+            outside_window: self.outside.modes().map(Into::into).collect(),
         };
         Document::new("stillflame/modes", &self.heading, body, self.warnings).to_json()
     }

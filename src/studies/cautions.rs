@@ -228,10 +228,11 @@ pub(super) fn outside<P>(
         fastest.growth(),
         fastest.frequency()
     );
-    let subject = if fastest.growth() > window.growth.1 {
-        "search.growth"
-    } else {
+    let (low, high) = window.growth;
+    let subject = if (low..=high).contains(&fastest.growth()) {
         "search.frequency"
+    } else {
+        "search.growth"
     };
     Some(Problem::warning(subject, what).hint(hint))
 }

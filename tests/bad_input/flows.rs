@@ -253,6 +253,11 @@ fn windows_that_are_none() {
             "lower end first",
         ),
         ("\"-300 to 300 Hz\"", "`Hz` is a unit of frequency", "1/s"),
+        (
+            "\"-1e308 to 1e308 1/s\"",
+            "the window reaches beyond",
+            "growth = \"-300 to 300 1/s\"",
+        ),
         ("\"-300 to 300\"", "no unit", "1/s"),
         (
             "300",
