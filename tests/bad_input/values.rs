@@ -349,9 +349,9 @@ fn a_name_that_cannot_be_one() {
             "names the element on line 21",
             "name of its own",
         ),
-        ("\"mixing tube\"", "cannot be a name", "letters, digits"),
+        ("\"mixing tube\"", "cannot be a name", "letters a to z"),
         ("\"feed\"", "another part of the file", "another name"),
-        ("\"\"", "cannot be a name", "letters, digits"),
+        ("\"\"", "cannot be a name", "letters a to z"),
     ] {
         // The response still follows `mixing_tube`, which is no second mistake.
         let new = format!("¦{name}¦\nkind     = \"duct\"\nlength   = \"0.10 m\"");
