@@ -208,6 +208,19 @@ fn a_point_without_mean_flow_is_marked_and_counted() {
     run("map", &network("swirl_rig"), &all);
     let svg = std::fs::read_to_string(folder.path().join("swirl_rig_map.svg")).unwrap();
     assert!(svg.contains("not certified, or no mean flow"));
+    // Each point without an answer is listed with its reason.
+    let (value, _) = json(
+        "map",
+        &network("swirl_rig"),
+        &arguments(flow, length, "6x3"),
+    );
+    let listed = value["points_without_answer"].as_array().unwrap();
+    assert_eq!(
+        listed.len() as u64,
+        value["points"]["failed"].as_u64().unwrap()
+    );
+    assert!(!listed.is_empty() && listed.iter().all(|p| p["failed"] == true));
+    assert!(listed[0]["why"].as_str().unwrap().contains("beyond Mach 1"));
     // Nowhere an answer: the computation failed.
     let all = arguments("feed.mass_flow = 300 g/s to 400 g/s", length, "2x2");
     let (value, code) = json("map", &network("swirl_rig"), &all);

@@ -65,7 +65,11 @@ pub fn tidy(text: &str) -> String {
     let line: Vec<char> = words
         .join(" ")
         .chars()
-        .filter(|&c| !matches!(c, '\u{fffe}' | '\u{ffff}'))
+        // No characters of XML, and marks that turn the direction of writing.
+        .filter(|&c| {
+            !matches!(c, '\u{fffe}' | '\u{ffff}' | '\u{200e}' | '\u{200f}')
+                && !matches!(c, '\u{202a}'..='\u{202e}' | '\u{2066}'..='\u{2069}')
+        })
         .collect();
     let mut out = String::with_capacity(line.len());
     for (i, &c) in line.iter().enumerate() {

@@ -57,8 +57,9 @@ pub struct Search {
     pub growth: Option<(f64, f64)>,
 }
 
-/// Farthest a window may reach (Hz and 1/s): any farther, and sums of its ends may overflow.
-pub const FARTHEST: f64 = 1e9;
+/// Farthest a window may reach (Hz and 1/s): far beyond what plane waves in combustors are good for, and
+/// near enough for a search to end in seconds.
+pub const FARTHEST: f64 = 1e5;
 
 /// A layout with its numbers.
 #[derive(Clone, Debug)]

@@ -82,9 +82,11 @@ impl MapReport<'_> {
     pub fn svg(&self) -> Result<String, DrawError> {
         let (x, y) = (self.scaled(self.map.across), self.scaled(self.map.up));
         let tally = self.map.tally();
-        let certified = match tally.points - tally.complete {
-            0 => "every list proved complete".to_owned(),
-            n => format!("{n} not certified"),
+        let certified = match (tally.doubtful, tally.failed) {
+            (0, 0) => "every list proved complete".to_owned(),
+            (n, 0) => format!("{n} not certified"),
+            (0, m) => format!("{m} without a mean flow"),
+            (n, m) => format!("{n} not certified, {m} without a mean flow"),
         };
         let subtitle = format!(
             "{}; {} \u{d7} {} networks, {certified}",

@@ -81,6 +81,16 @@ impl From<&Region> for RegionFields {
     }
 }
 
+/// A point without a mean flow, or whose list is not certified.
+#[derive(Clone, Debug, Serialize)]
+struct Unanswered<'a> {
+    across: f64,
+    up: f64,
+    failed: bool,
+    subject: Option<&'a str>,
+    why: &'a str,
+}
+
 #[derive(Clone, Debug, Serialize)]
 struct Body<'a> {
     finding: String,
@@ -98,6 +108,7 @@ struct Body<'a> {
     leading_region: Vec<Vec<Option<usize>>>,
     leading_regions: Vec<RegionFields>,
     points: Counts,
+    points_without_answer: Vec<Unanswered<'a>>,
     design_point: Design,
     window: WindowFields,
     growth_excluded_beyond: bool,
@@ -149,6 +160,26 @@ impl<'a> MapReport<'a> {
             .collect()
     }
 
+    fn unanswered(&self) -> Vec<Unanswered<'a>> {
+        let told = |(across, up, point): (f64, f64, &'a Point)| {
+            let (failed, subject, why) = match point {
+                Point::Certified(_) => return None,
+                Point::Doubtful { why, .. } => (false, None, &**why),
+                Point::Failed(problem) => {
+                    (true, Some(problem.subject.as_str()), problem.what.as_str())
+                }
+            };
+            Some(Unanswered {
+                across,
+                up,
+                failed,
+                subject,
+                why,
+            })
+        };
+        self.map.placed().filter_map(told).collect()
+    }
+
     /// As JSON.
     ///
     /// # Errors
@@ -185,6 +216,7 @@ impl<'a> MapReport<'a> {
                 growing_outside_window: tally.outside,
                 growth_not_excluded: tally.open,
             },
+            points_without_answer: self.unanswered(),
             design_point: Design {
                 across: x,
                 up: y,
@@ -250,7 +282,7 @@ impl<'a> MapReport<'a> {
         if let Some(one) = &self.followed {
             let over = match tally.growing {
                 0 => "grows nowhere on the map".to_owned(),
-                n => format!("grows over {} of the map", percent(n, tally.points)),
+                n => format!("grows at {} of the points", percent(n, tally.points)),
             };
             return format!(
                 "The mode of {:.0} Hz {over}; there, at the design point, it is at {} 1/s",
@@ -262,13 +294,15 @@ impl<'a> MapReport<'a> {
             (0, 0) => "No mode in the window grows on the map".to_owned(),
             (0, n) if n == tally.points => "No point of the map is certified".to_owned(),
             (0, _) => "No mode grows where the map is certified".to_owned(),
-            (n, _) => format!("Unstable over {} of the map", percent(n, tally.points)),
+            (n, _) => format!("Unstable at {} of the points", percent(n, tally.points)),
         };
-        if unknown > 0 && unknown < tally.points {
-            text.push_str(&format!(
-                ", {} not certified",
-                percent(unknown, tally.points)
-            ));
+        for (count, what) in [
+            (tally.doubtful, "not certified"),
+            (tally.failed, "without a mean flow"),
+        ] {
+            if count > 0 && unknown < tally.points {
+                text.push_str(&format!(", {} {what}", percent(count, tally.points)));
+            }
         }
         text.push_str("; ");
         text.push_str(&self.design_words());

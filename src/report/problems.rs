@@ -100,10 +100,15 @@ pub(super) fn visible(text: &str) -> String {
     text.chars()
         .map(|c| match c {
             '\t' => ' ',
-            c if c.is_control() => '\u{fffd}',
+            c if c.is_control() || turns_text(c) => '\u{fffd}',
             c => c,
         })
         .collect()
+}
+
+/// Marks and overrides of writing direction, which make a line read otherwise than it is written.
+fn turns_text(c: char) -> bool {
+    matches!(c, '\u{200e}' | '\u{200f}' | '\u{202a}'..='\u{202e}' | '\u{2066}'..='\u{2069}')
 }
 
 /// A message with a capital where it begins with a word, and a full stop.

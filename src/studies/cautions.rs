@@ -121,6 +121,44 @@ pub fn warnings(
         (answer, (x, y))
     });
     found.extend(unanswered(points, place));
+    found.extend(extrapolated(network, map));
+    found
+}
+
+/// Points where growth is so fast that a response is taken far from where it was measured,
+/// `|growth| delay > 1`.
+fn extrapolated(network: &Network, map: &Map) -> Vec<Problem> {
+    let mut found = Vec::new();
+    for (delay, _) in validity::delays(network) {
+        let tau = |x: f64, y: f64| match delay {
+            k if k == map.across.knob => x,
+            k if k == map.up.knob => y,
+            k => network.values[k],
+        };
+        let fast = map.placed().filter_map(|(x, y, point)| {
+            let product = point.fastest()?.growth().abs() * tau(x, y);
+            (product > 1.0).then_some((product, (x, y)))
+        });
+        let mut count = 0;
+        let most = fast
+            .inspect(|_| count += 1)
+            .max_by(|a, b| a.0.total_cmp(&b.0));
+        let Some((product, (x, y))) = most else {
+            continue;
+        };
+        let name = network.layout.knobs.get(delay.0);
+        let what = format!(
+            "at {count} of {} points growth rate times delay exceeds 1 ({product:.1} at {}): a response known \
+             from steady forcing is extrapolated there",
+            map.points.len(),
+            place(network, (map.across.knob, x), (map.up.knob, y))
+        );
+        let name = name.map_or("network", |k| k.name.as_str());
+        found.push(
+            Problem::warning(name, what)
+                .hint("take the growth rates there as signs, not as values"),
+        );
+    }
     found
 }
 
