@@ -253,6 +253,22 @@ fn growth_that_leaves_the_window_does_not_look_calm() {
 }
 
 #[test]
+fn responses_taken_far_from_steady_forcing_are_told() {
+    let up = "main_flame.interaction_index = 1.9 to 2";
+    let all = arguments("main_flame.delay = 8 ms to 8.1 ms", up, "3x2");
+    let (value, _) = json("map", &network("swirl_rig"), &all);
+    let warnings = value["warnings"].as_array().unwrap();
+    let told = |w: &&Value| w["subject"] == "main_flame.delay";
+    let warning = warnings.iter().find(told).unwrap()["message"]
+        .as_str()
+        .unwrap();
+    assert!(
+        warning.contains("of 6 points growth rate times delay exceeds 1"),
+        "{warning}"
+    );
+}
+
+#[test]
 fn the_same_map_has_the_same_bytes_on_any_number_of_threads() {
     let once = |threads: &str| {
         let folder = tempfile::tempdir().unwrap();

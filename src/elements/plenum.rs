@@ -69,3 +69,65 @@ pub const KNOBS: &[KnobSpec] = &[KnobSpec {
     default: None,
     doc: "volume of the gas at rest",
 }];
+
+#[cfg(test)]
+mod tests {
+    use crate::input;
+    use crate::modes::{self, Scan, Window};
+    use num_complex::Complex64;
+
+    /// A flame right before the vessel, or before nothing.
+    fn found(velocity: f64, vessel: &str) -> Vec<Complex64> {
+        let toml = format!(
+            r#"
+            title = "Flame before a vessel (invented)"
+            search = {{ frequency = "20 to 700 Hz", growth = "-400 to 400 1/s" }}
+            exit = {{ end = "open" }}
+            [feed]
+            gas = {{ gamma = 1.4, gas_constant = "287 J/(kg K)" }}
+            velocity = "{velocity} m/s"
+            temperature = "300 K"
+            pressure = "1 bar"
+            end = "closed"
+            [[element]]
+            name = "a"
+            kind = "duct"
+            length = "0.4 m"
+            diameter = "80 mm"
+            [[element]]
+            name = "f"
+            kind = "flame"
+            burnt_temperature = "1500 K"
+            response = {{ kind = "n-tau", interaction_index = 0.7, delay = "2 ms" }}
+            {vessel}
+            [[element]]
+            name = "b"
+            kind = "duct"
+            length = "0.6 m"
+            diameter = "80 mm"
+            "#
+        );
+        let network = input::parse("t.toml", &toml, &[]).unwrap().network;
+        let solved = modes::solve(&network).unwrap();
+        let window = Window::of(&network, &solved.mean).unwrap();
+        let list = modes::find(&solved, window, Scan::Whole);
+        assert!(list.complete());
+        list.modes.iter().map(|m| m.s).collect()
+    }
+
+    /// A vessel of no volume adds nothing but the loss of the jet's head, of first order in the Mach number (0.003
+    /// and 0.013 here), so that the flame before it acts as if it were not there.
+    #[test]
+    fn a_vanishing_vessel_lets_a_flame_act_through_it() {
+        let vessel = "[[element]]\nname = \"v\"\nkind = \"plenum\"\nvolume = \"1e-9 mm^3\"";
+        for (velocity, tolerance) in [(0.0, 1e-9), (0.5, 4e-3), (2.0, 2e-2)] {
+            let (with, without) = (found(velocity, vessel), found(velocity, ""));
+            assert_eq!(with.len(), without.len());
+            assert!(!with.is_empty());
+            for (a, b) in with.iter().zip(&without) {
+                let off = (a - b).norm() / b.norm();
+                assert!(off < tolerance, "{velocity}: {a} {b} {off:e}");
+            }
+        }
+    }
+}

@@ -156,6 +156,14 @@ mod tests {
     }
 
     #[test]
+    fn nothing_turns_the_direction_of_writing() {
+        for c in ['\u{202e}', '\u{2066}', '\u{200f}'] {
+            assert_eq!(visible(&format!("a{c}b")), "a\u{fffd}b");
+        }
+        assert_eq!(visible("Brüder \u{5d0}"), "Brüder \u{5d0}");
+    }
+
+    #[test]
     fn long_and_hostile_lines_stay_short_and_harmless() {
         let line = format!("{}WRONG{}\u{1b}[31m", "a".repeat(5000), "b".repeat(5000));
         let text = render(&[placed(&line, 5001, 5)]);
