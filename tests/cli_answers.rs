@@ -401,3 +401,26 @@ fn files_go_where_they_are_asked_for_and_say_the_same() {
     // Two lists, the flow, and a picture of each mode.
     assert_eq!(names.len(), 3 + rows.len(), "{names:?}");
 }
+
+/// Two points cannot see what grows between them; the mode that enters the window while it grows tells.
+#[test]
+fn growth_between_the_points_of_a_sweep_is_not_called_excluded() {
+    let more = [
+        "--vary",
+        "main_flame.delay = 2.5 ms to 6.3 ms",
+        "--growth",
+        "-50 to 20 1/s",
+        "--frequency",
+        "250 to 350 Hz",
+        "--points",
+        "2",
+    ];
+    let (value, _) = json("sweep", &network("swirl_rig"), &more);
+    assert_eq!(value["growth_excluded_beyond"], false);
+    assert!(
+        value["growth_outside"]
+            .as_str()
+            .unwrap()
+            .contains("NOT EXCLUDED")
+    );
+}

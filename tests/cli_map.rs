@@ -263,7 +263,7 @@ fn responses_taken_far_from_steady_forcing_are_told() {
         .as_str()
         .unwrap();
     assert!(
-        warning.contains("of 6 points growth rate times delay exceeds 1"),
+        warning.contains("of 6 points growth or decay rate times delay exceeds 1"),
         "{warning}"
     );
 }

@@ -99,7 +99,8 @@ impl MapReport<'_> {
                 self.growth_outside()
             ),
             Some(one) => format!(
-                "Growth rate of mode {}, followed from point to point; other modes may grow. {CAUTION}",
+                "Growth rate of mode {}, followed from point to point: around a meeting with another mode it depends on the \
+                 way taken, and a cut remains. Other modes may grow. {CAUTION}",
                 one.number
             ),
         };

@@ -390,10 +390,12 @@ pub(super) fn growth_outside(
     let top = window.frequency.1;
     match (open, searched_to) {
         (0, _) if outside == 0 => {
-            format!("Growth outside the window is excluded up to {top:.0} Hz, by proof.")
+            format!(
+                "At each point growth outside the window is excluded up to {top:.0} Hz, by proof."
+            )
         }
         (0, _) => format!(
-            "Growth outside the window {seen}; more of it up to {top:.0} Hz is excluded, by proof."
+            "Growth outside the window {seen}; more of it up to {top:.0} Hz is excluded at each point, by proof."
         ),
         (open, Some(to)) if to > window.growth.1 => format!(
             "Growth outside the window was searched up to {top:.0} Hz and at least {to:.0} 1/s; beyond, \

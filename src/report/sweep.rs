@@ -177,13 +177,26 @@ impl<'a> SweepReport<'a> {
         )
     }
 
-    /// What the sweep says of growth outside its window, in a sentence.
+    /// Modes that pass an edge of the window while they grow: between the points something grows outside.
+    fn grows_through_an_edge(&self) -> usize {
+        let events = self.sweep.events.iter();
+        events.filter(|e| e.edge.is_some() && e.s.re > 0.0).count()
+    }
+
+    /// What the sweep says of growth outside its window, in a sentence or two.
     fn growth_outside(&self) -> String {
-        growth_outside(
+        let said = growth_outside(
             &self.sweep.window,
             self.outside(),
             "is told in the warnings",
-        )
+        );
+        match self.grows_through_an_edge() {
+            0 => said,
+            n => format!(
+                "{said} Between points it is NOT EXCLUDED: {n} times a growing mode passes an edge of the window; \
+                 sweep a wider window."
+            ),
+        }
     }
 
     /// The parameter at a position.
@@ -251,7 +264,7 @@ impl<'a> SweepReport<'a> {
             },
             evaluations: sweep.effort.evaluations,
             window: (&sweep.window).into(),
-            growth_excluded_beyond: outside == 0 && open == 0,
+            growth_excluded_beyond: outside == 0 && open == 0 && self.grows_through_an_edge() == 0,
             growth_outside: self.growth_outside(),
         };
         Document::new("stillflame/sweep", &self.heading, body, self.warnings).to_json()

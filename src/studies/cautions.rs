@@ -148,8 +148,8 @@ fn extrapolated(network: &Network, map: &Map) -> Vec<Problem> {
         };
         let name = network.layout.knobs.get(delay.0);
         let what = format!(
-            "at {count} of {} points growth rate times delay exceeds 1 ({product:.1} at {}): a response known \
-             from steady forcing is extrapolated there",
+            "at {count} of {} points growth or decay rate times delay exceeds 1 ({product:.1} at {}): a response \
+             known from steady forcing is extrapolated there",
             map.points.len(),
             place(network, (map.across.knob, x), (map.up.knob, y))
         );
