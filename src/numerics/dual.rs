@@ -171,7 +171,7 @@ impl<T: Real, const N: usize> Sub for Grad<T, N> {
     }
 }
 
-#[allow(clippy::suspicious_arithmetic_impl)] // the product rule adds
+#[expect(clippy::suspicious_arithmetic_impl, reason = "the product rule adds")]
 impl<T: Real, const N: usize> Mul for Grad<T, N> {
     type Output = Self;
     fn mul(self, o: Self) -> Self {
@@ -182,7 +182,10 @@ impl<T: Real, const N: usize> Mul for Grad<T, N> {
     }
 }
 
-#[allow(clippy::suspicious_arithmetic_impl)] // the quotient rule subtracts
+#[expect(
+    clippy::suspicious_arithmetic_impl,
+    reason = "the quotient rule multiplies and subtracts"
+)]
 impl<T: Real, const N: usize> Div for Grad<T, N> {
     type Output = Self;
     fn div(self, o: Self) -> Self {
