@@ -7,7 +7,7 @@ use super::contour::simplify;
 use super::frame::{self, Entry, MARGIN, Swatch, WIDTH};
 use super::mark::{Mark, Spot};
 use super::sheet::{corner, ends};
-use super::style::{curve_colour, curve_style, hatch_style, patterns};
+use super::style::{CROWD, crowd, curve_colour, curve_style, hatch_style, patterns};
 use super::svg::{Anchor, GREY, INK, Point, Rect, Svg, Text, open_path, px};
 use super::tags::{self, Tagged};
 use super::text::{Weight, fit, tidy};
@@ -45,6 +45,8 @@ pub struct Panel {
     pub series: Vec<Series>,
     /// Optional tint.
     pub shade: Option<Shade>,
+    /// Curves without a name of their own, below the others.
+    pub crowd: Vec<Vec<(f64, f64)>>,
     /// Marks on it.
     pub spots: Vec<Spot>,
 }
@@ -72,6 +74,8 @@ pub struct LineFigure {
     pub panels: Vec<Panel>,
     /// Legend text of the marks.
     pub marks: Vec<(Mark, String)>,
+    /// Legend text of curves without a name of their own.
+    pub crowd: String,
 }
 
 const GAP: f64 = 14.0;
@@ -131,6 +135,9 @@ pub fn render(figure: &LineFigure) -> Result<String, DrawError> {
         if let Some((at, _)) = mark {
             svg.line((x.at(*at), r.top), (x.at(*at), r.bottom), MARK);
         }
+        let place = |&(u, v): &(f64, f64)| (x.at(u), y.at(v));
+        let unnamed = panel.crowd.iter();
+        crowd(&mut svg, unnamed.map(|c| c.iter().map(place).collect()));
         for series in &panel.series {
             curve(&mut svg, series, figure, &x, &y);
         }
@@ -164,6 +171,16 @@ fn check(figure: &LineFigure) -> Result<(), DrawError> {
         fits("certified".into(), figure.certified.len())?;
     }
     for (row, panel) in figure.panels.iter().enumerate() {
+        for (column, &(u, v)) in panel.crowd.iter().flatten().enumerate() {
+            if let Some(value) = [u, v].into_iter().find(|x| !x.is_finite()) {
+                return Err(DrawError::NotFinite {
+                    what: "a curve",
+                    row,
+                    column,
+                    value,
+                });
+            }
+        }
         for series in &panel.series {
             fits(format!("series {:?}", series.name), series.values.len())?;
             for (column, value) in series.values.iter().enumerate() {
@@ -193,7 +210,8 @@ fn y_range(panel: &Panel) -> (f64, f64) {
     let values = panel
         .series
         .iter()
-        .flat_map(|s| s.values.iter().flatten().copied());
+        .flat_map(|s| s.values.iter().flatten().copied())
+        .chain(panel.crowd.iter().flatten().map(|p| p.1));
     let logarithmic = panel.y.scale == super::Scale::Logarithmic;
     let edge = panel
         .shade
@@ -356,6 +374,12 @@ fn legend_entries(figure: &LineFigure, mark: Option<&(f64, String)>) -> Vec<Entr
                 label: series.name.clone(),
             });
         }
+    }
+    if figure.panels.iter().any(|p| !p.crowd.is_empty()) {
+        entries.push(Entry {
+            swatch: Swatch::Line(vec![CROWD.into()]),
+            label: figure.crowd.clone(),
+        });
     }
     for (mark, label) in &figure.marks {
         let drawn = figure.panels.iter().flat_map(|p| &p.spots);

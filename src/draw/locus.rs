@@ -7,7 +7,7 @@ use super::frame::{self, Entry, MARGIN, Swatch, WIDTH};
 use super::label::{Measured, beside};
 use super::lines::{RIGHT, Shade, tint, with_room};
 use super::mark::{Mark, Spot};
-use super::style::{curve_colour, curve_style};
+use super::style::{CROWD, crowd, curve_colour, curve_style};
 use super::svg::{GREY, INK, Point, Rect, Svg, Text, closed_path, open_path};
 use super::tags::{self, Tagged};
 use super::text::{CAP_HEIGHT, Weight, tidy, width};
@@ -44,6 +44,8 @@ pub struct Locus {
     pub shade: Option<Shade>,
     /// The trails.
     pub trails: Vec<Trail>,
+    /// Trails without a name of their own, (x, y), and the legend text for all of them.
+    pub crowd: (Vec<Vec<(f64, f64)>>, String),
     /// Marks, with text beside them where they have a label.
     pub spots: Vec<Spot>,
     /// Legend text of the marks.
@@ -63,10 +65,14 @@ pub fn render(figure: &Locus) -> Result<String, DrawError> {
     check(figure)?;
     let mut svg = Svg::default();
     let top = frame::header(&mut svg, &figure.title, &figure.subtitle);
-    let points = || figure.trails.iter().flat_map(|t| t.runs.iter().flatten());
-    let (x0, x1) = range(points().map(|p| p.1));
+    let trails = figure.trails.iter();
+    let named = trails.flat_map(|t| t.runs.iter().flatten().map(|p| (p.1, p.2)));
+    let points: Vec<(f64, f64)> = named
+        .chain(figure.crowd.0.iter().flatten().copied())
+        .collect();
+    let (x0, x1) = range(points.iter().map(|p| p.0));
     let edge = figure.shade.as_ref().map(|s| s.from);
-    let (y0, y1) = range(points().map(|p| p.2).chain(edge));
+    let (y0, y1) = range(points.iter().map(|p| p.1).chain(edge));
     let right = WIDTH - MARGIN - RIGHT;
     let y = Span::new(y0, y1, figure.y.scale, top + HEIGHT, top);
     let y_ticks = y.ticks(36.0);
@@ -83,6 +89,9 @@ pub fn render(figure: &Locus) -> Result<String, DrawError> {
         tint(&mut svg, shade, plot, &y);
     }
     frame::grid(&mut svg, plot, &x_ticks, &y_ticks, 0.11);
+    let unnamed = figure.crowd.0.iter();
+    let on = |&(u, v): &(f64, f64)| (x.at(u), y.at(v));
+    crowd(&mut svg, unnamed.map(|c| c.iter().map(on).collect()));
     let place = |&(_, u, v): &(f64, f64, f64)| (x.at(u), y.at(v));
     let tagged: Vec<Tagged> = figure
         .trails
@@ -137,6 +146,17 @@ pub fn render(figure: &Locus) -> Result<String, DrawError> {
 }
 
 fn check(figure: &Locus) -> Result<(), DrawError> {
+    let unnamed = figure.crowd.0.iter().flatten().enumerate();
+    for (column, &(u, v)) in unnamed {
+        if let Some(value) = [u, v].into_iter().find(|x| !x.is_finite()) {
+            return Err(DrawError::NotFinite {
+                what: "a trail",
+                row: 0,
+                column,
+                value,
+            });
+        }
+    }
     for (row, run) in figure.trails.iter().flat_map(|t| &t.runs).enumerate() {
         for (column, &(p, u, v)) in run.iter().enumerate() {
             if let Some(value) = [p, u, v].into_iter().find(|x| !x.is_finite()) {
@@ -278,6 +298,12 @@ fn legend_entries(figure: &Locus, ticks: &[String]) -> Vec<Entry> {
             label: trail.name.clone(),
         })
         .collect();
+    if !figure.crowd.0.is_empty() {
+        entries.push(Entry {
+            swatch: Swatch::Line(vec![CROWD.into()]),
+            label: figure.crowd.1.clone(),
+        });
+    }
     let axis = &figure.parameter.0;
     if !ticks.is_empty() && !figure.trails.is_empty() {
         let unit = tidy(&axis.unit);

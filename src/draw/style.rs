@@ -1,7 +1,8 @@
 //! How lines and fills look, on the plot, on a map's colour bar and in the legend.
 
 use super::colour::{hex, oklch};
-use super::svg::{INK, Svg};
+use super::contour::simplify;
+use super::svg::{INK, Point, Svg, open_path, px};
 use super::text::tick_labels;
 
 pub(super) const NEUTRAL_HALO: &str = "fill=\"none\" stroke=\"#fff\" stroke-width=\"4.6\" stroke-opacity=\".85\" stroke-linejoin=\"round\"";
@@ -91,6 +92,22 @@ const LOOK: [(f64, f64, &str); 10] = [
 fn look(style: usize) -> (f64, f64, &'static str) {
     let looks = LOOK.get(style % LOOK.len()).copied();
     looks.unwrap_or((0.0, 0.4, ""))
+}
+
+/// How curves without a name of their own are drawn.
+pub(super) const CROWD: &str = "fill=\"none\" stroke=\"#8b9098\" stroke-width=\".9\" stroke-linecap=\"round\" stroke-linejoin=\"round\"";
+
+/// One path of many curves without a name of their own; coarser than those that have one.
+pub(super) fn crowd(svg: &mut Svg, curves: impl Iterator<Item = Vec<Point>>) {
+    let mut data = String::new();
+    for curve in curves {
+        match simplify(&curve, 0.2).as_slice() {
+            [] => {}
+            [(x, y)] => data += &format!("M{} {}h.1", px(*x), px(*y)),
+            many => data += &open_path(many),
+        }
+    }
+    svg.path(&data, CROWD);
 }
 
 /// The colour of a style.

@@ -177,12 +177,6 @@ impl<'a> SweepReport<'a> {
         )
     }
 
-    /// Modes that pass an edge of the window while they grow: between the points something grows outside.
-    fn grows_through_an_edge(&self) -> usize {
-        let events = self.sweep.events.iter();
-        events.filter(|e| e.edge.is_some() && e.s.re > 0.0).count()
-    }
-
     /// What the sweep says of growth outside its window, in a sentence or two.
     fn growth_outside(&self) -> String {
         let said = growth_outside(
@@ -190,11 +184,12 @@ impl<'a> SweepReport<'a> {
             self.outside(),
             "is told in the warnings",
         );
-        match self.grows_through_an_edge() {
+        match self.sweep.grows_through_an_edge() {
             0 => said,
             n => format!(
-                "{said} Between points it is NOT EXCLUDED: {n} times a growing mode passes an edge of the window; \
-                 sweep a wider window."
+                "{said} Growing modes pass an edge of the window {}; unstable stretches count them outside as \
+                 well.",
+                times(n)
             ),
         }
     }
@@ -240,9 +235,9 @@ impl<'a> SweepReport<'a> {
             events: self.events(),
             branches: self.branches(),
             unstable: sweep
-                .unstable()
-                .into_iter()
-                .map(|(a, b)| (self.value(a), self.value(b)))
+                .unstable
+                .iter()
+                .map(|(a, b)| (self.value(*a), self.value(*b)))
                 .collect(),
             growth_outside_window_per_s: sweep
                 .points
@@ -264,7 +259,7 @@ impl<'a> SweepReport<'a> {
             },
             evaluations: sweep.effort.evaluations,
             window: (&sweep.window).into(),
-            growth_excluded_beyond: outside == 0 && open == 0 && self.grows_through_an_edge() == 0,
+            growth_excluded_beyond: outside == 0 && open == 0 && sweep.grows_through_an_edge() == 0,
             growth_outside: self.growth_outside(),
         };
         Document::new("stillflame/sweep", &self.heading, body, self.warnings).to_json()
@@ -378,6 +373,14 @@ impl<'a> SweepReport<'a> {
         writer
             .into_inner()
             .map_err(|e| std::io::Error::other(e.to_string()))
+    }
+}
+
+fn times(n: usize) -> String {
+    match n {
+        1 => "once".to_owned(),
+        2 => "twice".to_owned(),
+        n => format!("{n} times"),
     }
 }
 

@@ -9,6 +9,7 @@
 pub mod cautions;
 mod crossing;
 mod follow;
+mod growth;
 mod reading;
 mod sample;
 mod ties;
@@ -145,6 +146,17 @@ impl Outside {
     }
 }
 
+/// The largest growth rate on a sweep.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Fastest {
+    /// Where, from 0 to 1.
+    pub u: f64,
+    /// The mode.
+    pub s: Complex64,
+    /// Its branch; `None` outside the window.
+    pub branch: Option<usize>,
+}
+
 /// A reported point.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Point {
@@ -175,6 +187,14 @@ pub struct Sweep {
     pub events: Vec<Event>,
     /// Certified points put in between.
     pub between: usize,
+    /// Stretches over which modes move too fast to be followed with as many points as may be put in between, in
+    /// order and apart: what was not clear there ends and begins anew.
+    pub unresolved: Vec<(f64, f64)>,
+    /// Stretches over which some mode grows, in the window or outside up to its highest frequency, in order
+    /// and apart.
+    pub unstable: Vec<(f64, f64)>,
+    /// The mode of largest growth rate found, in the window or outside up to its highest frequency.
+    pub fastest: Option<Fastest>,
     /// Work done on the lists of all points, those in between among them.
     pub effort: Effort,
 }
@@ -209,59 +229,92 @@ pub fn sweep(
         })
         .collect();
     let samples = samples?;
+    let woven = weave(&ground, &samples);
+
+    let mut effort = woven.effort;
+    for sample in &samples {
+        add(&mut effort, &sample.effort);
+    }
+    let points = samples
+        .into_iter()
+        .zip(woven.on)
+        .map(|(sample, on)| point(sample, &on, &woven.branches))
+        .collect();
+    let mut sweep = Sweep {
+        path: path.clone(),
+        window,
+        points,
+        branches: woven.branches,
+        events: woven.events,
+        between: woven.between,
+        unresolved: growth::joined(woven.unresolved),
+        unstable: Vec::new(),
+        fastest: None,
+        effort,
+    };
+    growth::judge(&ground, &mut sweep);
+    Some(sweep)
+}
+
+/// Samples with their modes followed from one to the next.
+#[derive(Default)]
+struct Woven {
+    branches: Vec<Branch>,
+    events: Vec<Event>,
+    /// The branches on each node of each sample.
+    on: Vec<Vec<Vec<usize>>>,
+    between: usize,
+    unresolved: Vec<(f64, f64)>,
+    /// Work done on samples put in between.
+    effort: Effort,
+}
+
+fn weave(ground: &Ground<'_>, samples: &[Sample]) -> Woven {
     let usable: Vec<usize> = (0..samples.len())
         .filter(|i| samples[*i].usable())
         .collect();
     let pairs: Vec<(usize, usize)> = usable.windows(2).map(|w| (w[0], w[1])).collect();
     let stretches: Vec<follow::Stretch> = pairs
         .par_iter()
-        .map(|&(i, j)| follow::follow(&ground, &samples[i], &samples[j]))
+        .map(|&(i, j)| follow::follow(ground, &samples[i], &samples[j]))
         .collect();
 
-    let mut on: Vec<Vec<Vec<usize>>> = vec![Vec::new(); samples.len()];
-    let (mut branches, mut events) = (Vec::new(), Vec::new());
+    let mut woven = Woven {
+        on: vec![Vec::new(); samples.len()],
+        ..Woven::default()
+    };
     if let Some(&first) = usable.first() {
-        let mut weaver = Weaver::new(&ground, &samples[first], first);
-        on[first] = weaver.on().to_vec();
+        let mut weaver = Weaver::new(ground, &samples[first], first);
+        woven.on[first] = weaver.on().to_vec();
         for (&(i, j), stretch) in pairs.iter().zip(&stretches) {
             weaver.advance(&samples[i], stretch, &samples[j], j);
-            on[j] = weaver.on().to_vec();
+            woven.on[j] = weaver.on().to_vec();
         }
         weaver.finish();
-        (branches, events) = (weaver.branches, weaver.events);
+        (woven.branches, woven.events) = (weaver.branches, weaver.events);
     }
-    for branch in &mut branches {
-        mark_gaps(&mut branch.trace, &samples);
+    for branch in &mut woven.branches {
+        mark_gaps(&mut branch.trace, samples);
     }
-    let neutral: Vec<Vec<Event>> = branches
+    let neutral: Vec<Vec<Event>> = woven
+        .branches
         .par_iter()
         .enumerate()
-        .map(|(i, b)| neutral(&ground, i, b))
+        .map(|(i, b)| neutral(ground, i, b))
         .collect();
-    events.extend(neutral.into_iter().flatten());
-    events.sort_by(|a, b| a.u.total_cmp(&b.u).then(a.branches.cmp(&b.branches)));
-    tell_meetings_once(&mut events);
-
-    let mut effort = Effort::default();
-    let inserted = stretches.iter().flat_map(|s| &s.between);
-    let between = inserted.clone().count();
-    for sample in samples.iter().chain(inserted) {
-        add(&mut effort, &sample.effort);
+    woven.events.extend(neutral.into_iter().flatten());
+    woven
+        .events
+        .sort_by(|a, b| a.u.total_cmp(&b.u).then(a.branches.cmp(&b.branches)));
+    tell_meetings_once(&mut woven.events);
+    for stretch in stretches {
+        woven.between += stretch.between.len();
+        woven.unresolved.extend(stretch.unresolved);
+        for sample in &stretch.between {
+            add(&mut woven.effort, &sample.effort);
+        }
     }
-    let points = samples
-        .into_iter()
-        .zip(on)
-        .map(|(sample, on)| point(sample, &on, &branches))
-        .collect();
-    Some(Sweep {
-        path: path.clone(),
-        window,
-        points,
-        branches,
-        events,
-        between,
-        effort,
-    })
+    woven
 }
 
 /// Next to a meeting the shortest steps may be in doubt as well: within [`SAME`] of a meeting of the same

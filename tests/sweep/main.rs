@@ -3,4 +3,5 @@
 
 mod events;
 mod ground;
+mod growth;
 mod meetings;

@@ -10,12 +10,77 @@ use crate::draw::{
 };
 use crate::report::figure::{engineers_unit, label};
 use crate::report::map::rate;
-use crate::report::{CAUTION, window_text};
+use crate::report::{CAUTION, counted, window_text};
 use crate::studies::path::{Parameter, Spacing};
-use crate::studies::sweep::{Branch, Kind, Place, State};
+use crate::studies::sweep::{Branch, Kind, Place, State, Sweep};
 
 /// Positions between two neighbours of a trail, for smooth curves.
 const FINE: u32 = 3;
+
+/// Most branches with a number, a look and a legend entry of their own; where there are more, those of largest
+/// growth rate.
+const MOST_NAMED: usize = 14;
+
+/// Most pieces of modes that move too fast to be followed.
+const MOST_PIECES: usize = 1200;
+
+/// What a figure shows of the branches.
+struct Cast {
+    /// Branches with a name of their own, by number; each with its look's.
+    named: Vec<usize>,
+    /// Stretches of the others.
+    crowd: Vec<Vec<Place>>,
+    /// Legend text of those.
+    crowd_name: String,
+}
+
+impl Cast {
+    fn of(sweep: &Sweep) -> Cast {
+        let all = sweep.branches.iter().enumerate();
+        let (pieces, mut named): (Vec<usize>, Vec<usize>) = all
+            .map(|(i, _)| i)
+            .partition(|i| sweep.branches.get(*i).is_some_and(|b| sweep.is_piece(b)));
+        let growth = |i: &usize| {
+            let branch = sweep.branches.get(*i);
+            branch
+                .and_then(Branch::greatest)
+                .map_or(f64::MIN, |p| p.s.re)
+        };
+        let mut others = Vec::new();
+        if named.len() > MOST_NAMED {
+            named.sort_by(|a, b| growth(b).total_cmp(&growth(a)));
+            others = named.split_off(MOST_NAMED);
+            named.sort_unstable();
+        }
+        let fast = "modes too fast to be followed";
+        let crowd_name = match (others.len(), pieces.len()) {
+            (0, 0) => String::new(),
+            (0, _) => fast.to_owned(),
+            (n, 0) => format!("{} of less growth", counted(n, "other mode")),
+            (n, _) => format!("{} of less growth, and {fast}", counted(n, "other mode")),
+        };
+        let every = pieces.len().div_ceil(MOST_PIECES).max(1);
+        let branch = |i: &usize| sweep.branches.get(*i);
+        let thinned = pieces.iter().step_by(every).filter_map(branch);
+        let crowd = others.iter().filter_map(branch).flat_map(smooth);
+        let crowd = crowd.chain(thinned.map(|b| b.trace.clone())).collect();
+        Cast {
+            named,
+            crowd,
+            crowd_name,
+        }
+    }
+
+    /// The look of a branch, where it has one.
+    fn look(&self, branch: usize) -> Option<usize> {
+        self.named.iter().position(|b| *b == branch)
+    }
+
+    fn crowd(&self, of: impl Fn(&Place) -> (f64, f64)) -> Vec<Vec<(f64, f64)>> {
+        let places = |run: &Vec<Place>| run.iter().map(&of).collect();
+        self.crowd.iter().map(places).collect()
+    }
+}
 
 impl SweepReport<'_> {
     /// The axis of the parameter and the size of its unit in SI.
@@ -80,11 +145,19 @@ impl SweepReport<'_> {
     /// Marks of events, each placed by `at` from position and mode.
     fn spots(
         &self,
+        cast: &Cast,
         at: impl Fn(f64, num_complex::Complex64) -> (f64, f64),
         told: bool,
     ) -> Vec<Spot> {
         let mut spots = Vec::new();
         for event in &self.sweep.events {
+            let looks = event.branches.iter().map(|b| cast.look(*b));
+            let Some(style) = looks.reduce(Option::or).filter(Option::is_some) else {
+                continue;
+            };
+            if self.is_of_pieces(event) {
+                continue;
+            }
             let mark = match event.kind {
                 Kind::BecomesUnstable | Kind::BecomesStable => Mark::Circle,
                 Kind::Enters | Kind::Leaves => Mark::Triangle,
@@ -103,7 +176,7 @@ impl SweepReport<'_> {
                 x,
                 y,
                 mark,
-                style: event.branches.first().copied(),
+                style,
                 label,
             });
         }
@@ -131,20 +204,26 @@ impl SweepReport<'_> {
         let sweep = self.sweep;
         let (axis, size) = self.parameter_axis();
         let scaled = |u: f64| self.value(u) / size;
-        let places = sweep.branches.iter().flat_map(|b| &b.trace).map(|p| p.u);
+        let cast = Cast::of(sweep);
+        let named = || {
+            cast.named
+                .iter()
+                .filter_map(|i| Some((*i, sweep.branches.get(*i)?)))
+        };
+        let places = named().flat_map(|(_, b)| &b.trace).map(|p| p.u);
         let mut at: Vec<f64> = sweep.points.iter().map(|p| p.u).chain(places).collect();
         at.sort_by(f64::total_cmp);
         at.dedup_by(|b, a| scaled(*b) <= scaled(*a));
         let uncertain = |u: f64| {
             let point = sweep.points.iter().find(|p| p.u == u);
-            point.is_some_and(|p| p.state != State::Certified)
+            point.is_some_and(|p| p.state != State::Certified) || sweep.is_unresolved(u)
         };
         let series = |of: fn(&Place) -> f64| -> Vec<Series> {
-            let branches = sweep.branches.iter().enumerate();
-            branches
-                .map(|(i, branch)| Series {
+            named()
+                .enumerate()
+                .map(|(style, (i, branch))| Series {
                     name: Self::branch_name(i, branch),
-                    style: i,
+                    style,
                     values: at
                         .iter()
                         .map(|u| branch.known_at(*u).map(|p| of(&p)))
@@ -160,28 +239,40 @@ impl SweepReport<'_> {
             x: axis,
             x_values: at.iter().map(|u| scaled(*u)).collect(),
             certified: at.iter().map(|u| !uncertain(*u)).collect(),
-            uncertified: match sweep.tally().2 {
-                0 => "not certified".to_owned(),
-                _ => "not certified, or without an answer".to_owned(),
-            },
+            uncertified: self.uncertain(),
             mark: self.design_at().map(|u| (scaled(u), self.design_label(u))),
             panels: vec![
                 Panel {
                     y: Axis::new("Frequency", "Hz"),
                     series: series(|p| p.s.im / TAU),
                     shade: None,
-                    spots: self.spots(|u, s| (scaled(u), s.im / TAU), false),
+                    crowd: cast.crowd(|p| (scaled(p.u), p.s.im / TAU)),
+                    spots: self.spots(&cast, |u, s| (scaled(u), s.im / TAU), false),
                 },
                 Panel {
                     y: Axis::new("Growth rate", "1/s"),
                     series: series(|p| p.s.re),
                     shade: Some(grows()),
-                    spots: self.spots(|u, s| (scaled(u), s.re), false),
+                    crowd: cast.crowd(|p| (scaled(p.u), p.s.re)),
+                    spots: self.spots(&cast, |u, s| (scaled(u), s.re), false),
                 },
             ],
             marks: Self::marks(),
+            crowd: cast.crowd_name.clone(),
         };
         lines::render(&figure)
+    }
+
+    /// What is hatched.
+    fn uncertain(&self) -> String {
+        let (_, not_certified, failed) = self.sweep.tally();
+        let parts = [
+            (not_certified > 0, "not certified"),
+            (failed > 0, "without an answer"),
+            (!self.sweep.unresolved.is_empty(), "too fast to be followed"),
+        ];
+        let words: Vec<&str> = parts.iter().filter(|p| p.0).map(|p| p.1).collect();
+        words.join(", or ")
     }
 
     fn design_label(&self, u: f64) -> String {
@@ -201,20 +292,26 @@ impl SweepReport<'_> {
         let (axis, size) = self.parameter_axis();
         let scaled = |u: f64| self.value(u) / size;
         let point = |p: &Place| (scaled(p.u), p.s.im / TAU, p.s.re);
-        let trails = sweep.branches.iter().enumerate();
-        let trails: Vec<Trail> = trails
-            .map(|(i, branch)| Trail {
+        let cast = Cast::of(sweep);
+        let named = || {
+            cast.named
+                .iter()
+                .filter_map(|i| Some((*i, sweep.branches.get(*i)?)))
+        };
+        let trails: Vec<Trail> = named()
+            .enumerate()
+            .map(|(style, (i, branch))| Trail {
                 name: Self::branch_name(i, branch),
                 tag: (i + 1).to_string(),
-                style: i,
+                style,
                 runs: smooth(branch)
                     .iter()
                     .map(|run| run.iter().map(point).collect())
                     .collect(),
             })
             .collect();
-        let mut spots = self.spots(|_, s| (s.im / TAU, s.re), true);
-        for (i, branch) in sweep.branches.iter().enumerate() {
+        let mut spots = self.spots(&cast, |_, s| (s.im / TAU, s.re), true);
+        for (style, (_, branch)) in named().enumerate() {
             let first = branch.trace.first().filter(|p| p.u <= 0.0);
             let last = branch.trace.last().filter(|p| p.u >= 1.0);
             for (place, mark) in [(first, Mark::Box), (last, Mark::Square)] {
@@ -223,7 +320,7 @@ impl SweepReport<'_> {
                         x,
                         y,
                         mark,
-                        style: Some(i),
+                        style: Some(style),
                         label: String::new(),
                     });
                 }
@@ -231,7 +328,7 @@ impl SweepReport<'_> {
         }
         let mut marks = Self::marks();
         if let Some(u) = self.design_at() {
-            let places = sweep.branches.iter().filter_map(|b| b.known_at(u));
+            let places = named().filter_map(|(_, b)| b.known_at(u));
             for place in places {
                 let (_, x, y) = point(&place);
                 spots.push(Spot {
@@ -253,6 +350,7 @@ impl SweepReport<'_> {
             parameter: (axis, scaled(0.0), scaled(1.0)),
             shade: Some(grows()),
             trails,
+            crowd: (cast.crowd(|p| (p.s.im / TAU, p.s.re)), cast.crowd_name),
             spots,
             marks,
         })

@@ -47,7 +47,7 @@ impl SweepReport<'_> {
     pub fn finding(&self) -> String {
         let sweep = self.sweep;
         let (complete, not_certified, failed) = sweep.tally();
-        let stretches = sweep.unstable();
+        let stretches = &sweep.unstable;
         let length: f64 = stretches.iter().map(|(a, b)| b - a).sum();
         let mut text = match stretches.as_slice() {
             _ if complete == 0 => "No point of the sweep is certified".to_owned(),
@@ -66,12 +66,12 @@ impl SweepReport<'_> {
                 many.len()
             ),
         };
-        if let Some((u, _, s)) = sweep.greatest().filter(|_| !stretches.is_empty()) {
+        if let Some(fastest) = sweep.fastest.filter(|_| !stretches.is_empty()) {
             text.push_str(&format!(
                 "; fastest {} 1/s and {} Hz at {}",
-                rate(s.re),
-                fixed(s.im / std::f64::consts::TAU, 0),
-                self.told(u, 3)
+                rate(fastest.s.re),
+                fixed(fastest.s.im / std::f64::consts::TAU, 0),
+                self.told(fastest.u, 3)
             ));
         }
         let unknown = not_certified + failed;
@@ -187,8 +187,12 @@ impl SweepReport<'_> {
             "there, Hz",
             "from",
         ]);
-        let branches = self.sweep.branches.iter().enumerate();
-        for (i, branch) in branches {
+        let mut pieces = 0;
+        for (i, branch) in self.sweep.branches.iter().enumerate() {
+            if self.sweep.is_piece(branch) {
+                pieces += 1;
+                continue;
+            }
             let (Some(first), Some(last), Some(greatest)) =
                 (branch.trace.first(), branch.trace.last(), branch.greatest())
             else {
@@ -214,7 +218,14 @@ impl SweepReport<'_> {
                 unstable,
             ]);
         }
-        table.text()
+        let mut text = table.text();
+        if pieces > 0 {
+            text.push_str(&format!(
+                "and {} where modes move too fast to be followed\n",
+                counted(pieces, "piece")
+            ));
+        }
+        text
     }
 
     fn event_table(&self) -> String {
@@ -222,7 +233,12 @@ impl SweepReport<'_> {
         let mut table = Table::new(&[Right, Right, Right, Right, Left]);
         table.heading(&["at", "branch", "frequency", "growth rate", "what happens"]);
         table.heading(&["", "", "Hz", "1/s", ""]);
+        let mut of_pieces = 0;
         for event in &self.sweep.events {
+            if self.is_of_pieces(event) {
+                of_pieces += 1;
+                continue;
+            }
             let branch = event.branches.first().map_or(0, |b| b + 1);
             table.row(vec![
                 self.told(event.u, 6),
@@ -232,7 +248,23 @@ impl SweepReport<'_> {
                 happens(event),
             ]);
         }
-        table.text()
+        let mut text = table.text();
+        if of_pieces > 0 {
+            text.push_str(&format!(
+                "and {} where modes move too fast to be followed\n",
+                counted(of_pieces, "event")
+            ));
+        }
+        text
+    }
+
+    /// Whether an event only says that modes move too fast to be followed, or is of pieces of such modes.
+    pub(super) fn is_of_pieces(&self, event: &Event) -> bool {
+        let sweep = self.sweep;
+        let piece = |b: &usize| sweep.branches.get(*b).is_some_and(|b| sweep.is_piece(b));
+        let ends = matches!(event.kind, Kind::Lost | Kind::Found);
+        (ends && sweep.is_unresolved(event.u))
+            || (!event.branches.is_empty() && event.branches.iter().all(piece))
     }
 
     fn design_words(&self) -> String {

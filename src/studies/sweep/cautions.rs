@@ -60,6 +60,17 @@ pub fn warnings(
         place,
         hint,
     ));
+    if let (Some((from, _)), Some((_, to))) = (sweep.unresolved.first(), sweep.unresolved.last()) {
+        let what = format!(
+            "between {} and {} modes move too fast for {} points to tell which is which: branches end and begin there",
+            place(*from),
+            place(*to),
+            sweep.points.len()
+        );
+        found.push(
+            Problem::warning("sweep", what).hint("sweep a shorter span or more points (--points)"),
+        );
+    }
     let points = sweep.points.iter().map(|point| {
         let answer = match &point.state {
             State::Certified => Answer::Certified,

@@ -1,11 +1,13 @@
 //! From one reported point to the next: ties that are clear, with certified points in between where they
 //! must be.
 //!
-//! A step that is not clear is halved. What a list gains or loses at a clear step has gone through the
-//! window's edge: it is followed outside by Newton from its prediction, proved there, and tied like any
-//! other. Halving ends at [`LEAST`], where two modes that still cannot be told apart meet.
+//! A step that is not clear is halved, the longest first. What a list gains or loses at a clear step has
+//! gone through the window's edge: it is followed outside by Newton from its prediction, proved there, and
+//! tied like any other. Halving ends at [`LEAST`], where two modes that still cannot be told apart meet,
+//! and after [`MOST_BETWEEN`] points; then only what is clear by itself is kept.
 
 use num_complex::Complex64;
+use rayon::prelude::*;
 
 use super::sample::{Ground, Live, Node, Sample};
 use super::ties::{Step, Tie, Ties, between};
@@ -13,8 +15,8 @@ use super::ties::{Step, Tie, Ties, between};
 /// Shortest step in `u`: below it neighbours differ by rounding alone.
 pub(super) const LEAST: f64 = 1.0 / (1u64 << 40) as f64;
 
-/// Most points put between two reported ones; beyond, what is near is taken to belong together.
-const MOST_BETWEEN: usize = 600;
+/// Most points put between two reported ones.
+const MOST_BETWEEN: usize = 400;
 
 /// An edge of the window.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -59,44 +61,84 @@ pub(super) struct Link {
 pub(super) struct Stretch {
     pub between: Vec<Sample>,
     pub links: Vec<Link>,
+    /// Steps that would have been halved further, as positions.
+    pub unresolved: Vec<(f64, f64)>,
+}
+
+/// What is known of a step.
+enum Known {
+    /// Every tie is beyond doubt.
+    Clear(Link),
+    /// It is to be halved.
+    Open,
+    /// It cannot be halved: it is the shortest, or there is nothing to go by in its middle.
+    Stuck,
+}
+
+impl Known {
+    fn of(ground: &Ground<'_>, left: &Sample, right: &Sample) -> Known {
+        let attempt = Attempt::new(ground, left, right);
+        match attempt.clear() {
+            Some(link) => Known::Clear(link),
+            None if attempt.step.last => Known::Stuck,
+            None => Known::Open,
+        }
+    }
 }
 
 /// Follows every node from one usable sample to another.
 pub(super) fn follow(ground: &Ground<'_>, left: &Sample, right: &Sample) -> Stretch {
-    let mut stretch = Stretch::default();
+    let mut samples = vec![left.clone(), right.clone()];
+    let mut steps = vec![Known::of(ground, left, right)];
     let mut budget = MOST_BETWEEN;
-    halve(ground, left, right, &mut budget, &mut stretch);
+    loop {
+        let is_open = |i: &usize| matches!(steps[*i], Known::Open);
+        let open: Vec<usize> = (0..steps.len()).filter(is_open).take(budget).collect();
+        if open.is_empty() {
+            break;
+        }
+        budget -= open.len();
+        let halves: Vec<Option<(Sample, [Known; 2])>> = open
+            .par_iter()
+            .map(|&i| halves(ground, &samples[i], &samples[i + 1]))
+            .collect();
+        for (i, halves) in open.into_iter().zip(halves).rev() {
+            match halves {
+                Some((middle, both)) => {
+                    samples.insert(i + 1, middle);
+                    steps.splice(i..=i, both);
+                }
+                None => steps[i] = Known::Stuck,
+            }
+        }
+    }
+    let mut stretch = Stretch::default();
+    for (ends, known) in samples.windows(2).zip(steps) {
+        let (a, b) = (&ends[0], &ends[1]);
+        if matches!(known, Known::Open) {
+            stretch.unresolved.push((a.u, b.u));
+        }
+        stretch.links.push(match known {
+            Known::Clear(link) => link,
+            Known::Open | Known::Stuck => Attempt::new(ground, a, b).whatever_holds(),
+        });
+    }
+    samples.pop();
+    samples.remove(0);
+    stretch.between = samples;
     stretch
 }
 
-fn halve(
-    ground: &Ground<'_>,
-    left: &Sample,
-    right: &Sample,
-    budget: &mut usize,
-    out: &mut Stretch,
-) {
-    let h = right.u - left.u;
-    let last = h <= LEAST || *budget == 0;
-    let attempt = Attempt::new(ground, left, right, last);
-    if let Some(link) = attempt.clear() {
-        out.links.push(link);
-        return;
-    }
-    if last {
-        out.links.push(attempt.whatever_holds());
-        return;
-    }
-    *budget -= 1;
+/// A step in two, where the list in its middle can be followed.
+fn halves(ground: &Ground<'_>, left: &Sample, right: &Sample) -> Option<(Sample, [Known; 2])> {
     let middle = ground.sample(0.5 * (left.u + right.u), false);
-    if !middle.usable() {
-        // Nothing to go by in between: what the prediction carries across is kept.
-        out.links.push(attempt.whatever_holds());
-        return;
-    }
-    halve(ground, left, &middle, budget, out);
-    out.between.push(middle.clone());
-    halve(ground, &middle, right, budget, out);
+    middle.usable().then(|| {
+        let both = [
+            Known::of(ground, left, &middle),
+            Known::of(ground, &middle, right),
+        ];
+        (middle, both)
+    })
 }
 
 struct Attempt<'a> {
@@ -108,14 +150,15 @@ struct Attempt<'a> {
 }
 
 impl<'a> Attempt<'a> {
-    fn new(ground: &'a Ground<'a>, left: &'a Sample, right: &'a Sample, last: bool) -> Self {
+    fn new(ground: &'a Ground<'a>, left: &'a Sample, right: &'a Sample) -> Self {
+        let h = right.u - left.u;
         let step = Step {
             left: &left.nodes,
             right: &right.nodes,
-            h: right.u - left.u,
+            h,
             merge: ground.merge,
             symmetric: left.symmetric && right.symmetric,
-            last,
+            last: h <= LEAST,
         };
         let ties = step.ties();
         Attempt {
@@ -277,6 +320,7 @@ pub(super) fn edge_between(ground: &Ground<'_>, inside: &Node, outside: &Node, h
         Edge::HighestFrequency,
         Edge::LowestFrequency,
     ];
+    let passed = |e: &Edge| beyond_edge(ground, *e, outside.at) > 0.0;
     let path = |t| {
         between(
             inside.at,
@@ -289,7 +333,10 @@ pub(super) fn edge_between(ground: &Ground<'_>, inside: &Node, outside: &Node, h
     };
     let first = (1..=PLACES)
         .map(|k| path(f64::from(k) / f64::from(PLACES)))
-        .find_map(|s| edges.into_iter().find(|e| beyond_edge(ground, *e, s) > 0.0));
+        .find_map(|s| {
+            let mut passed = edges.into_iter().filter(passed);
+            passed.find(|e| beyond_edge(ground, *e, s) > 0.0)
+        });
     first.unwrap_or_else(|| {
         let far = |e: &Edge| beyond_edge(ground, *e, outside.at);
         let by_distance = |a: &Edge, b: &Edge| far(a).total_cmp(&far(b));

@@ -1,7 +1,5 @@
 //! What a sweep says: where branches are, where some mode grows, how many points are certified.
 
-use num_complex::Complex64;
-
 use super::{Branch, Event, Kind, Place, State, Sweep, crossing};
 use crate::modes::Tendency;
 
@@ -33,7 +31,10 @@ impl Branch {
     }
 
     /// Stretches over which it grows, given the events at which its growth rate changes its sign.
-    fn growing<'e>(&self, neutral: impl Iterator<Item = &'e Event> + Clone) -> Vec<(f64, f64)> {
+    pub(super) fn growing<'e>(
+        &self,
+        neutral: impl Iterator<Item = &'e Event> + Clone,
+    ) -> Vec<(f64, f64)> {
         let mut stretches = Vec::new();
         for run in self.trace.chunk_by(|_, next| !next.gap_before) {
             let (Some(first), Some(last)) = (run.first(), run.last()) else {
@@ -62,47 +63,18 @@ impl Branch {
 impl Sweep {
     /// Positions where a branch becomes neutral, with the event, of one branch or of all.
     pub fn neutral(&self, branch: Option<usize>) -> impl Iterator<Item = &Event> + Clone {
-        let sign = |k: Kind| matches!(k, Kind::BecomesUnstable | Kind::BecomesStable);
-        self.events
-            .iter()
-            .filter(move |e| sign(e.kind) && branch.is_none_or(|b| e.branches.contains(&b)))
+        neutral(&self.events, branch)
     }
 
-    /// Stretches over which some mode grows, in the window or outside, in order and apart. Outside they are
-    /// known from point to point.
-    pub fn unstable(&self) -> Vec<(f64, f64)> {
-        let mut all: Vec<(f64, f64)> = Vec::new();
-        for (i, branch) in self.branches.iter().enumerate() {
-            all.extend(branch.growing(self.neutral(Some(i))));
-        }
-        for (i, point) in self.points.iter().enumerate() {
-            if point.outside.fastest.is_some() {
-                let u = |i: usize| self.points.get(i).map_or(point.u, |p| p.u);
-                all.push((u(i.saturating_sub(1)), u(i + 1)));
-            }
-        }
-        all.sort_by(|a, b| a.0.total_cmp(&b.0));
-        let mut joined: Vec<(f64, f64)> = Vec::new();
-        for (from, to) in all {
-            match joined.last_mut() {
-                Some(last) if from <= last.1 => last.1 = last.1.max(to),
-                _ => joined.push((from, to)),
-            }
-        }
-        joined
+    /// Whether a position lies where modes move too fast to be followed.
+    pub fn is_unresolved(&self, u: f64) -> bool {
+        let i = self.unresolved.partition_point(|(_, to)| *to < u);
+        self.unresolved.get(i).is_some_and(|(from, _)| *from <= u)
     }
 
-    /// The mode of largest growth rate on any branch or outside the window: its position, and its branch.
-    pub fn greatest(&self) -> Option<(f64, Option<usize>, Complex64)> {
-        let branches = self.branches.iter().enumerate();
-        let inside = branches.filter_map(|(i, b)| b.greatest().map(|p| (p.u, Some(i), p.s)));
-        let beyond = self
-            .points
-            .iter()
-            .filter_map(|p| p.outside.fastest.map(|m| (p.u, None, m.s)));
-        inside
-            .chain(beyond)
-            .max_by(|a, b| a.2.re.total_cmp(&b.2.re))
+    /// Whether a branch is a piece of modes that move too fast to be followed: all of it lies where they do.
+    pub fn is_piece(&self, branch: &Branch) -> bool {
+        !self.unresolved.is_empty() && branch.trace.iter().all(|p| self.is_unresolved(p.u))
     }
 
     /// How many points are certified, not certified, and without an answer.
@@ -117,4 +89,14 @@ impl Sweep {
         }
         tally
     }
+}
+
+/// Events at which a growth rate changes its sign, of one branch or of all.
+pub(super) fn neutral(
+    events: &[Event],
+    branch: Option<usize>,
+) -> impl Iterator<Item = &Event> + Clone {
+    let sign = |k: Kind| matches!(k, Kind::BecomesUnstable | Kind::BecomesStable);
+    let of = move |e: &&Event| branch.is_none_or(|b| e.branches.contains(&b));
+    events.iter().filter(move |e| sign(e.kind)).filter(of)
 }

@@ -1,0 +1,115 @@
+//! Where on a path some mode grows, in the window or outside.
+//!
+//! Modes are followed a second time, in a window that holds whatever grows up to the highest frequency of the
+//! window asked for, so that the ends of unstable stretches are neutral values wherever these lie.
+
+use super::follow::Edge;
+use super::reading::neutral;
+use super::sample::{Ground, Sample};
+use super::{Branch, Event, Fastest, Sweep, Woven, add, weave};
+use crate::modes::Window;
+
+use rayon::prelude::*;
+
+/// How far the window of growth reaches below zero and beyond the growth rate searched at the points, over
+/// the height of the window asked for.
+const ROOM: f64 = 0.25;
+
+/// Finds the unstable stretches of a sweep and its fastest mode.
+pub(super) fn judge(ground: &Ground<'_>, sweep: &mut Sweep) {
+    let (stretches, fastest) = of(&sweep.branches, &sweep.events, |_, _| true);
+    let mut all = stretches;
+    sweep.fastest = fastest;
+    let window = window_of_growth(sweep);
+    let wide = Ground { window, ..*ground };
+    let samples: Vec<Sample> = sweep
+        .points
+        .par_iter()
+        .map(|p| wide.sample(p.u, false))
+        .collect();
+    let woven: Woven = weave(&wide, &samples);
+    let asked = ground.window.rectangle();
+    let (stretches, fastest) = of(&woven.branches, &woven.events, |s, error| {
+        asked.holds(s, error) == Some(false)
+    });
+    all.extend(stretches);
+    let outside = fastest.map(|f| Fastest { branch: None, ..f });
+    let at_points = sweep.points.iter().filter_map(|p| {
+        p.outside.fastest.map(|m| Fastest {
+            u: p.u,
+            s: m.s,
+            branch: None,
+        })
+    });
+    let found = sweep.fastest.into_iter().chain(outside).chain(at_points);
+    sweep.fastest = found.max_by(|a, b| a.s.re.total_cmp(&b.s.re));
+    // Where that window has no list to go by, growth is known from point to point.
+    for (i, (point, sample)) in sweep.points.iter().zip(&samples).enumerate() {
+        if point.outside.fastest.is_some() && !sample.usable() {
+            let u = |i: usize| sweep.points.get(i).map_or(point.u, |p| p.u);
+            all.push((u(i.saturating_sub(1)), u(i + 1)));
+        }
+    }
+    sweep.unstable = joined(all);
+    for sample in &samples {
+        add(&mut sweep.effort, &sample.effort);
+    }
+    add(&mut sweep.effort, &woven.effort);
+}
+
+/// The stretches over which branches grow, and the fastest of the places that `count`.
+fn of(
+    branches: &[Branch],
+    events: &[Event],
+    count: impl Fn(num_complex::Complex64, f64) -> bool,
+) -> (Vec<(f64, f64)>, Option<Fastest>) {
+    let mut stretches = Vec::new();
+    let mut fastest: Option<Fastest> = None;
+    for (i, branch) in branches.iter().enumerate() {
+        stretches.extend(branch.growing(neutral(events, Some(i))));
+        for place in branch.trace.iter().filter(|p| count(p.s, p.error)) {
+            if fastest.is_none_or(|f| f.s.re < place.s.re) {
+                fastest = Some(Fastest {
+                    u: place.u,
+                    s: place.s,
+                    branch: Some(i),
+                });
+            }
+        }
+    }
+    (stretches, fastest)
+}
+
+fn window_of_growth(sweep: &Sweep) -> Window {
+    let (low, high) = sweep.window.growth;
+    let room = ROOM * (high - low);
+    let searched = sweep.points.iter().map(|p| p.outside.searched_to);
+    Window {
+        frequency: (0.0, sweep.window.frequency.1),
+        growth: (-room, searched.fold(high.max(0.0), f64::max) + room),
+    }
+}
+
+/// Stretches in order, those that touch as one.
+pub(super) fn joined(mut all: Vec<(f64, f64)>) -> Vec<(f64, f64)> {
+    all.sort_by(|a, b| a.0.total_cmp(&b.0));
+    let mut joined: Vec<(f64, f64)> = Vec::new();
+    for (from, to) in all {
+        match joined.last_mut() {
+            Some(last) if from <= last.1 => last.1 = last.1.max(to),
+            _ => joined.push((from, to)),
+        }
+    }
+    joined
+}
+
+impl Sweep {
+    /// Modes that pass an edge of the window while they grow, other than that of highest frequency: beyond these
+    /// edges some mode grows that is on no branch.
+    pub fn grows_through_an_edge(&self) -> usize {
+        let events = self.events.iter().filter(|e| e.s.re > 0.0);
+        events
+            .filter(|e| e.edge.is_some_and(|edge| edge != Edge::HighestFrequency))
+            .count()
+    }
+}

@@ -1,0 +1,92 @@
+//! Stretches of growth inside and outside the window, and modes too fast to be followed.
+
+use std::f64::consts::TAU;
+
+use stillflame::meanflow;
+use stillflame::modes::Window;
+use stillflame::studies::sweep::{Edge, cautions};
+
+use crate::ground::{check, network, path, sweep};
+
+/// Unstable stretches of the swirl rig over its flame's delay, up to 350 Hz, in the smallest window of growth that
+/// shows them, in one that shows hardly any of it, and in one that begins above zero; with many points and with two.
+#[test]
+fn unstable_stretches_do_not_depend_on_the_window_of_growth_or_the_points() {
+    let rig = network("networks/swirl_rig.toml", &[]);
+    let stretches = |growth: (f64, f64), lowest: f64, points: usize| {
+        let window = Window {
+            frequency: (lowest, 350.0),
+            growth,
+        };
+        let found = sweep(
+            &rig,
+            &path(&rig, &[("main_flame.delay", 1e-3, 8e-3)], points),
+            window,
+        );
+        check(&found);
+        assert!(found.unresolved.is_empty());
+        (found.unstable, found.fastest.unwrap().s)
+    };
+    let (all, fastest) = stretches((-300.0, 300.0), 0.0, 141);
+    assert!(all.len() >= 3, "{all:?}");
+    for (growth, lowest, points) in [
+        ((-50.0, 20.0), 250.0, 141),
+        ((-50.0, 20.0), 250.0, 2),
+        ((10.0, 100.0), 0.0, 141),
+        ((-300.0, -200.0), 300.0, 3),
+        ((-300.0, 300.0), 0.0, 2),
+    ] {
+        let (these, greatest) = stretches(growth, lowest, points);
+        assert_eq!(
+            these.len(),
+            all.len(),
+            "{growth:?}, {points}: {these:?}, not {all:?}"
+        );
+        for ((a, b), (c, d)) in these.iter().zip(&all) {
+            assert!(
+                (a - c).abs() < 1e-10 && (b - d).abs() < 1e-10,
+                "{growth:?}: {these:?}, not {all:?}"
+            );
+        }
+        // Between points the largest is known roughly.
+        assert!(
+            (greatest.re - fastest.re).abs() < 0.1 * fastest.re,
+            "{greatest}"
+        );
+    }
+}
+
+/// Over a delay far longer than periods modes come in faster than points may be put in between: the sweep says where,
+/// and whatever passes an edge does so on the edge.
+#[test]
+fn modes_too_fast_to_follow_are_told() {
+    let rig = network("networks/swirl_rig.toml", &[]);
+    let window = Window {
+        frequency: (20.0, 400.0),
+        growth: (-100.0, 300.0),
+    };
+    let found = sweep(
+        &rig,
+        &path(&rig, &[("main_flame.delay", 0.0, 0.2)], 2),
+        window,
+    );
+    check(&found);
+    assert!(!found.unresolved.is_empty() && found.between > 100);
+    for event in &found.events {
+        let (off, within) = match event.edge {
+            None => continue,
+            Some(Edge::LowestFrequency) => (event.s.im / TAU - 20.0, 1e-6),
+            Some(Edge::HighestFrequency) => (event.s.im / TAU - 400.0, 1e-6),
+            Some(Edge::LowestGrowth) => (event.s.re + 100.0, 1e-5),
+            Some(Edge::HighestGrowth) => (event.s.re - 300.0, 1e-5),
+        };
+        assert!(off.abs() < within, "{event:?}");
+    }
+    let pieces = found.branches.iter().filter(|b| found.is_piece(b)).count();
+    assert!(pieces > 0 && pieces < found.branches.len());
+    let warnings = cautions::warnings(&rig, &meanflow::solve(&rig).unwrap(), &found, &[]);
+    assert!(
+        warnings.iter().any(|w| w.what.contains("too fast")),
+        "{warnings:?}"
+    );
+}
