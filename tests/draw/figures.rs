@@ -250,6 +250,8 @@ pub fn sweep() -> LineFigure {
             })
             .collect::<Vec<_>>()
     };
+    // Two curves without a name, one of them of a single point.
+    let unnamed = |a: f64, b: f64| vec![vec![(1.5, a), (4.0, b), (6.5, a)], vec![(5.0, b)]];
     LineFigure {
         title: "Branch 1 grows for delays up to 4.2 ms; branch 2 takes over beyond".into(),
         subtitle: "Invented atmospheric swirl rig, sweep of the flame delay, 141 networks".into(),
@@ -266,6 +268,7 @@ pub fn sweep() -> LineFigure {
                 y: Axis::new("Frequency", "Hz"),
                 series: series(|b| &b.0),
                 shade: None,
+                crowd: unnamed(300.0, 400.0),
                 spots: vec![Spot {
                     x: 2.0,
                     y: 235.0,
@@ -282,6 +285,7 @@ pub fn sweep() -> LineFigure {
                     upwards: true,
                     label: "grows".into(),
                 }),
+                crowd: unnamed(-60.0, -30.0),
                 spots: vec![Spot {
                     x: 4.2,
                     y: 0.0,
@@ -295,6 +299,7 @@ pub fn sweep() -> LineFigure {
             (Mark::Circle, "neutral".into()),
             (Mark::Diamond, "two modes meet".into()),
         ],
+        crowd: "2 other modes".into(),
     }
 }
 
@@ -364,6 +369,7 @@ pub fn root_locus() -> Locus {
         style: Some(1),
         label: label.into(),
     };
+    let unnamed = |a: f64, b: f64| vec![vec![(200.0, a), (350.0, b)], vec![(500.0, b)]];
     Locus {
         title: "Both lower modes leave the growing half-plane for delays beyond 3 ms".into(),
         subtitle: "Invented rig, 120 networks".into(),
@@ -381,6 +387,7 @@ pub fn root_locus() -> Locus {
             trail(1, 260.0, 1.1),
             trail(2, 410.0, 0.3),
         ],
+        crowd: (unnamed(-40.0, 40.0), "2 other modes".into()),
         spots: vec![
             spot(150.0, Mark::Circle, "2.3 ms"),
             spot(300.0, Mark::Diamond, "3.1 ms"),
