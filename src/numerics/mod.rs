@@ -5,5 +5,7 @@ pub mod count;
 pub mod dual;
 pub mod fine;
 pub mod isolate;
+pub mod lanes;
 pub mod ledger;
+pub mod number;
 pub mod zeros;
