@@ -2,6 +2,7 @@
 #![allow(dead_code, reason = "each test binary uses its own part")]
 
 pub mod census;
+pub mod counting;
 pub mod exact;
 pub mod random;
 pub mod rig;
