@@ -114,7 +114,11 @@ pub fn search_from<F: Analytic + ?Sized>(
         padded = pad_by(window, pad, symmetric);
         walker.effort.retries = attempt;
         counted = count(&mut walker, &padded, symmetric);
-        if !matches!(counted, Err(CountError::OnContour { .. })) {
+        let again = matches!(
+            counted,
+            Err(CountError::OnContour { .. } | CountError::Drowned { .. })
+        );
+        if !again {
             break;
         }
     }

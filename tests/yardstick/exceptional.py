@@ -8,8 +8,8 @@ Still gas, c = 340 m/s, L = 1 m, heater at x_f, both ends open, exp(s t):
 
 At an exceptional point D = 0 and dD/ds = 0. With R = sinh(s L/c) / (cosh(s x_f/c) sinh(s (L - x_f)/c)) this is
 tau = -R'/R and n = -R exp(s tau), both of which must be real: two real equations for s, solved by Newton's method
-in 50 digits. About each point n and tau are moved in turn by 1 to 1e-12 of themselves, either way, rounded to doubles, and
-every root of D in the window is found from a grid and, beside the point, from the square root that parts the
+in 50 digits. About each point n and tau are moved in turn by 1 to 1e-12 of themselves, either way, and not at all, rounded to
+doubles, and every root of D in the window is found from a grid and, beside the point, from the square root that parts the
 two; the argument principle in double precision must count as many.
 """
 
@@ -110,7 +110,7 @@ def inside(s):
     return WINDOW[0] < s.real < WINDOW[1] and WINDOW[2] < s.imag < WINDOW[3]
 
 
-def roots(n, tau, xf, point, knob, moved):
+def roots(n, tau, xf, point, moved):
     """Every root in the window; None where that cannot be told."""
     x0, x1, y0, y1 = WINDOW
     s = (np.linspace(x0 - 20, x1 + 20, 40)[None, :] + 1j * np.linspace(y0 - 50, y1 + 50, 80)[:, None]).ravel()
@@ -177,19 +177,18 @@ def main():
         entry = {"x_f": mp.nstr(xf, 3), "s_re": digits(s.real), "s_im": digits(s.imag), "n": digits(n), "tau": digits(tau),
                  "parting": [float(abs(mp.sqrt(-2 * n * h / d2))), float(abs(mp.sqrt(2 * s * tau * n * h / d2)))], "beside": []}
         for knob in ("n", "tau"):
-            for k in range(13):
-                for way in (1, -1):
-                    moved = way * mpf(10) ** -k
-                    a = float(n * (1 + moved)) if knob == "n" else float(n)
-                    b = float(tau * (1 + moved)) if knob == "tau" else float(tau)
-                    found = roots(a, b, xf, point, knob, moved)
-                    if found is None:
-                        skipped += 1
-                        print("skipped", mp.nstr(xf, 3), mp.nstr(s, 5), knob, mp.nstr(moved, 3))
-                        continue
-                    cases += 1
-                    entry["beside"].append({"moved": f"{knob} {'+' if way > 0 else '-'}1e-{k}", "n": a, "tau": b,
-                                            "roots": [[float(z.real), float(z.imag)] for z in found]})
+            steps = [(f"{'+' if way > 0 else '-'}1e-{k}", way * mpf(10) ** -k) for k in range(13) for way in (1, -1)]
+            for name, moved in steps + ([("on it", mpf(0))] if knob == "n" else []):
+                a = float(n * (1 + moved)) if knob == "n" else float(n)
+                b = float(tau * (1 + moved)) if knob == "tau" else float(tau)
+                found = roots(a, b, xf, point, moved)
+                if found is None:
+                    skipped += 1
+                    print("skipped", mp.nstr(xf, 3), mp.nstr(s, 5), knob, mp.nstr(moved, 3))
+                    continue
+                cases += 1
+                entry["beside"].append({"moved": f"{knob} {name}", "n": a, "tau": b,
+                                        "roots": [[float(z.real), float(z.imag)] for z in found]})
         out.append(entry)
     print(f"{cases} cases, {skipped} skipped")
     text = {"_about": "Written by tests/yardstick/exceptional.py: exceptional points of a heater in an open tube and every root in the "
