@@ -2,7 +2,8 @@
 //!
 //! 1. Count the zeros in the window padded by about 2 % ([`count`](super::count)); a zero on the padded
 //!    edge asks for another pad.
-//! 2. Newton from a staggered grid of pitch `1.6 B_0/B_1`, where the first step is short; each point
+//! 2. Newton from a staggered grid of pitch `1.6 B_0/B_1`, where the first step is short, and where zeros are
+//!    missing from a rim about it; each point
 //!    reached is proved ([`isolate`]) and entered ([`ledger`](super::ledger)), until the
 //!    weights add up to the count. Zeros expected somewhere, as those of a function much like this one,
 //!    are tried before the grid.
@@ -291,7 +292,10 @@ impl<F: Analytic + ?Sized> Hunt<'_, F> {
         if self.counted(ledger) {
             return;
         }
-        self.grid(ledger, walker);
+        self.scan(ledger, walker, self.points(self.pitch));
+        if self.weight(ledger) < self.count {
+            self.scan(ledger, walker, self.rim());
+        }
         if self.weight(ledger) >= self.count {
             return;
         }
@@ -346,9 +350,33 @@ impl<F: Analytic + ?Sized> Hunt<'_, F> {
         })
     }
 
-    fn grid(&self, ledger: &mut Ledger<'_, F>, walker: &mut Walker<'_, F>) {
+    /// Points just outside, half a pitch apart: a zero at the edge has starts on one side of it only, and
+    /// may draw none of them.
+    fn rim(&self) -> impl Iterator<Item = Complex64> {
+        let (g, w) = (self.padded.growth, self.padded.omega);
+        let off = 0.4 * self.pitch;
+        let along = move |length: f64| {
+            let n = (length / (0.5 * self.pitch)).ceil().clamp(1.0, 1e4);
+            (0..n as usize).map(move |i| (i as f64 + 0.5) / n * length)
+        };
+        let sides = along(w.1 - w.0)
+            .flat_map(move |y| [g.0 - off, g.1 + off].map(|x| Complex64::new(x, w.0 + y)));
+        let bottom = (!self.symmetric).then_some(w.0 - off);
+        let ends = along(g.1 - g.0).flat_map(move |x| {
+            let rows = [Some(w.1 + off), bottom].into_iter().flatten();
+            rows.map(move |y| Complex64::new(g.0 + x, y))
+        });
+        sides.chain(ends)
+    }
+
+    fn scan(
+        &self,
+        ledger: &mut Ledger<'_, F>,
+        walker: &mut Walker<'_, F>,
+        starts: impl Iterator<Item = Complex64>,
+    ) {
         let pitch = self.pitch;
-        for start in self.points(pitch) {
+        for start in starts {
             walker.effort.evaluations += 1;
             let (value, slope) = self.f.value_and_slope(start);
             let step = isolate::quotient(value, slope);

@@ -13,7 +13,7 @@ use super::front;
 use super::law::{Delayed, Law, delay_majorant, real_product};
 use super::primitive::{Chain, End, Joint, Start, Step, Term, Travel};
 use super::tape::{Arithmetic, Tape, Writer};
-use crate::numerics::analytic::{Region, TAYLOR};
+use crate::numerics::analytic::{Analytic, Region, TAYLOR};
 
 /// Something that has a bound of its own.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -239,6 +239,7 @@ fn half_of_any_bound_shows_at_every_place_a_law_may_stand() {
             let values = tape.taylor_at::<TAYLOR>(PLACE);
             let sound = bounds(&tape, None);
             assert!(exceeded(&values, &sound).is_empty(), "{place}, {what:?}");
+            assert_eq!(sound, tape.bound(&region));
             // Every order of the whole program is attained, so that half of it would show.
             for (v, b) in values.iter().zip(sound) {
                 let part = v.value().norm() / b;
@@ -308,6 +309,7 @@ proptest! {
         let region = Region::disc(s, 0.0);
         let bounds = |fault| tape.run(&Halved { region: &region, fault });
         let values = tape.taylor_at::<TAYLOR>(s);
+        prop_assert_eq!(bounds(None), tape.bound(&region));
         for (v, b) in values.iter().zip(bounds(None)) {
             prop_assert!((v.value().norm() / b - 1.0).abs() < 1e-11);
         }
