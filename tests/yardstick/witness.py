@@ -269,8 +269,8 @@ def solve_to_json(name):
     mp.dps = assembly.LINEARISING_DIGITS
     try:
         _, _, modes, figures = solve(Path(name).read_text())
-    except (search.Incomplete, ArithmeticError, ValueError) as problem:
-        return json.dumps({"file": name, "problem": str(problem) or type(problem).__name__})
+    except Exception as problem:  # whatever it cannot do is told, and ends no other network
+        return json.dumps({"file": name, "problem": f"{type(problem).__name__}: {problem}"})
     listed = [[float(mp.re(s)), float(mp.im(s)), m] for s, m in modes]
     return json.dumps({"file": name, "modes": listed, "how": figures["how"]})
 
