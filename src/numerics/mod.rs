@@ -6,4 +6,5 @@ pub mod dual;
 pub mod fine;
 pub mod isolate;
 pub mod ledger;
+mod starts;
 pub mod zeros;

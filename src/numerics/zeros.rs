@@ -17,6 +17,7 @@ use super::analytic::Analytic;
 use super::count::{CountError, Effort, Rectangle, Walker};
 use super::isolate::{self, Zero};
 use super::ledger::{Entry, Ledger};
+use super::starts;
 
 /// Why a list is not certified.
 #[derive(Clone, Copy, Debug, PartialEq, thiserror::Error)]
@@ -292,9 +293,10 @@ impl<F: Analytic + ?Sized> Hunt<'_, F> {
         if self.counted(ledger) {
             return;
         }
-        self.scan(ledger, walker, self.points(self.pitch));
+        self.scan(ledger, walker, starts::grid(self.padded, self.pitch));
         if self.weight(ledger) < self.count {
-            self.scan(ledger, walker, self.rim());
+            let rim = starts::rim(self.padded, self.pitch, self.symmetric);
+            self.scan(ledger, walker, rim);
         }
         if self.weight(ledger) >= self.count {
             return;
@@ -331,42 +333,6 @@ impl<F: Analytic + ?Sized> Hunt<'_, F> {
     /// Whether nothing more is to be looked for.
     fn counted(&self, ledger: &Ledger<'_, F>) -> bool {
         self.scan == Scan::UntilCounted && self.weight(ledger) >= self.count
-    }
-
-    /// Points of a staggered grid of the given pitch, at most some ten thousand.
-    fn points(&self, pitch: f64) -> impl Iterator<Item = Complex64> {
-        let (g, w) = (self.padded.growth, self.padded.omega);
-        let cells = |length: f64| (length / pitch).ceil().clamp(1.0, 1e6);
-        let (mut nx, mut ny) = (cells(g.1 - g.0), cells(w.1 - w.0));
-        let thinning = (nx * ny / 2e4).sqrt().max(1.0);
-        nx = (nx / thinning).ceil();
-        ny = (ny / thinning).ceil();
-        let (dx, dy) = ((g.1 - g.0) / nx, (w.1 - w.0) / ny);
-        (0..ny as usize).flat_map(move |j| {
-            let stagger = if j % 2 == 0 { 0.3 } else { 0.7 };
-            (0..nx as usize).map(move |i| {
-                Complex64::new(g.0 + (i as f64 + stagger) * dx, w.0 + (j as f64 + 0.5) * dy)
-            })
-        })
-    }
-
-    /// Points just outside, half a pitch apart: a zero at the edge has starts on one side of it only, and
-    /// may draw none of them.
-    fn rim(&self) -> impl Iterator<Item = Complex64> {
-        let (g, w) = (self.padded.growth, self.padded.omega);
-        let off = 0.4 * self.pitch;
-        let along = move |length: f64| {
-            let n = (length / (0.5 * self.pitch)).ceil().clamp(1.0, 1e4);
-            (0..n as usize).map(move |i| (i as f64 + 0.5) / n * length)
-        };
-        let sides = along(w.1 - w.0)
-            .flat_map(move |y| [g.0 - off, g.1 + off].map(|x| Complex64::new(x, w.0 + y)));
-        let bottom = (!self.symmetric).then_some(w.0 - off);
-        let ends = along(g.1 - g.0).flat_map(move |x| {
-            let rows = [Some(w.1 + off), bottom].into_iter().flatten();
-            rows.map(move |y| Complex64::new(g.0 + x, y))
-        });
-        sides.chain(ends)
     }
 
     fn scan(
@@ -408,7 +374,7 @@ impl<F: Analytic + ?Sized> Hunt<'_, F> {
 
     /// Newton on `f` divided by its known zeros: `step = 1/(f'/f - sum m/(s - z))`.
     fn deflated(&self, ledger: &mut Ledger<'_, F>, walker: &mut Walker<'_, F>, pitch: f64) {
-        for start in self.points(pitch) {
+        for start in starts::grid(self.padded, pitch) {
             let mut z = start;
             for _ in 0..25 {
                 walker.effort.evaluations += 1;
