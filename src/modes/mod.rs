@@ -195,6 +195,14 @@ pub fn doubt_in_words(doubt: &Doubt) -> (String, &'static str) {
             ),
             "move the edges of the window",
         ),
+        Doubt::NotCounted(CountError::Drowned { near }) => (
+            format!(
+                "the modes could not be counted: near {} what waves cancel leaves less than rounding",
+                place(near)
+            ),
+            "raise the lower growth rate: waves that decay fast in time grow along the network, entropy carried slowly \
+             most of all",
+        ),
         Doubt::NotCounted(CountError::Overflow { at }) => (
             format!(
                 "the modes could not be counted: at {} the numbers overflow",

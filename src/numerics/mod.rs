@@ -8,4 +8,5 @@ pub mod isolate;
 pub mod lanes;
 pub mod ledger;
 pub mod number;
+mod starts;
 pub mod zeros;
