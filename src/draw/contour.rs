@@ -13,7 +13,7 @@ pub type Line = Vec<(f64, f64)>;
 /// Lines of `field` at `level`.
 ///
 /// Each cell is divided into `fine` by `fine` parts along the field's own interpolation. A cell
-/// with an absent corner has no lines, nor has one for which `skip(column, row)` holds.
+/// with an absent corner has no lines, nor has one that a seam passes or for which `skip(column, row)` holds.
 pub fn lines(
     field: &Field,
     level: f64,
@@ -85,6 +85,11 @@ impl Links {
                 field.at(i as f64 / f, j as f64 / f)
             }
         };
+        let ends = |k: usize| (k as f64 / f, (k + 1) as f64 / f);
+        let (v0, v1) = ends(j);
+        if field.parted(ends(i), [v0, v1]) {
+            return;
+        }
         let corners = (
             value(i, j),
             value(i + 1, j),

@@ -54,7 +54,7 @@ impl Curves {
         }
         if let Some(second) = &map.frequency {
             let unit = &second.unit;
-            let second = Field::new(&second.values);
+            let second = Field::new(&second.values).cut(&map.cuts.seams);
             let (levels, jump) = second_levels(&second);
             let texts = tick_labels(&levels);
             for (&level, text) in levels.iter().zip(texts) {
