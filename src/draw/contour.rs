@@ -101,18 +101,24 @@ impl Links {
         };
         let along_y = self.nx * self.ny;
         let (x, y) = (i as f64, j as f64);
-        let cut = |p: f64, q: f64| (level - p) / (q - p);
+        // Where a sample stands for its half, the field steps in the middle.
+        let halves = field.halves();
+        let along = |half: bool, p: f64, q: f64| if half { 0.5 } else { (level - p) / (q - p) };
+        let (cut_x, cut_y) = (
+            |p: f64, q: f64| along(halves.0, p, q),
+            |p: f64, q: f64| along(halves.1, p, q),
+        );
         // Edges in order around the cell: bottom, right, top, left.
         let edges = [
-            (a, b, j * self.nx + i, (x + cut(a, b), y)),
+            (a, b, j * self.nx + i, (x + cut_x(a, b), y)),
             (
                 b,
                 c,
                 along_y + j * self.nx + i + 1,
-                (x + 1.0, y + cut(b, c)),
+                (x + 1.0, y + cut_y(b, c)),
             ),
-            (d, c, (j + 1) * self.nx + i, (x + cut(d, c), y + 1.0)),
-            (a, d, along_y + j * self.nx + i, (x, y + cut(a, d))),
+            (d, c, (j + 1) * self.nx + i, (x + cut_x(d, c), y + 1.0)),
+            (a, d, along_y + j * self.nx + i, (x, y + cut_y(a, d))),
         ];
         let crossed: Vec<(usize, (f64, f64))> = edges
             .into_iter()

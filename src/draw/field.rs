@@ -6,7 +6,8 @@
 //! Carlson, 1980). The surface is exact at the samples, continuous across cells, and within a cell
 //! stays in the range of its corners, so it shows no sign that none of them has. Positions are in
 //! samples: (0, 0) is row 0, column 0. A field may be cut along seams between two
-//! columns; beside one it is continued straight from its own side.
+//! columns; beside one it is continued straight from its own side. Two samples say nothing of what lies between
+//! them: along an axis of two, each stands for its half.
 
 use super::cut::Seam;
 
@@ -30,6 +31,12 @@ impl<'a> Field<'a> {
             seams: &[],
             columns: rows.first().map_or(0, Vec::len),
         }
+    }
+
+    /// Whether each sample stands for its half of the axis, along rows and along columns.
+    pub fn halves(&self) -> (bool, bool) {
+        let whole = self.seams.is_empty();
+        (whole && self.columns == 2, whole && self.height() == 2)
     }
 
     /// The same field cut along seams: beside one a value comes from its own side alone.
@@ -86,6 +93,9 @@ impl<'a> Field<'a> {
     /// Value at column position `u` and row position `v`. Next to an absent sample the nearest
     /// sample decides whether there is a value, and the known corners give it.
     pub fn at(&self, u: f64, v: f64) -> Option<f64> {
+        let own = |x: f64, half| if half { x.round() } else { x };
+        let halves = self.halves();
+        let (u, v) = (own(u, halves.0), own(v, halves.1));
         let (column, s) = split(u, self.columns);
         let (row, t) = split(v, self.height());
         if self.columns < 2 || self.height() < 2 {
@@ -100,8 +110,13 @@ impl<'a> Field<'a> {
         let line = |r: usize| -> [f64; 4] {
             let p1 = self.sample(column, r);
             let p2 = self.sample(column + 1, r);
-            let p0 = column.checked_sub(1).and_then(|c| self.sample(c, r));
-            complete([p0, p1, p2, self.sample(column + 2, r)])
+            // What lies beyond a seam beside the cell says nothing of slopes here.
+            let whole = |c: &usize| self.seams(*c, row).next().is_none();
+            let before = column.checked_sub(1).filter(whole);
+            let after = Some(column + 1).filter(whole);
+            let p0 = before.and_then(|c| self.sample(c, r));
+            let p3 = after.and_then(|c| self.sample(c + 1, r));
+            complete([p0, p1, p2, p3])
         };
         let known =
             |r: usize| self.sample(column, r).is_some() && self.sample(column + 1, r).is_some();

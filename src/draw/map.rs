@@ -258,6 +258,17 @@ fn check(map: &StabilityMap) -> Result<(), DrawError> {
         check_shape("frequency", &frequency.values, nx, ny)?;
         check_finite("frequency", &frequency.values)?;
     }
+    let seams = map.cuts.seams.iter().flat_map(|s| [s.from, s.to]);
+    for (k, (u, v)) in seams.chain(map.cuts.points.iter().copied()).enumerate() {
+        if let Some(value) = [u, v].into_iter().find(|x| !x.is_finite()) {
+            return Err(DrawError::NotFinite {
+                what: "cuts",
+                row: k,
+                column: 0,
+                value,
+            });
+        }
+    }
     if let Some(patches) = &map.patches {
         check_shape("patches", &patches.index, nx, ny)?;
     }
