@@ -170,9 +170,12 @@ pub fn render(map: &StabilityMap) -> Result<String, DrawError> {
         let (i, j) = sheet.nearest(p);
         is_plain(i, j)
     };
+    // A border through the cells does not fit samples that stand for their halves.
+    let halves = field.halves();
     let parted = map
         .patches
         .as_ref()
+        .filter(|_| !halves.0 && !halves.1)
         .is_some_and(|patches| patches.draw_borders(&mut svg, &sheet));
     let labels = curves.draw_thin(&mut svg, plot, &mut taken, plain);
     svg.path(&doubtful, "fill=\"#fff\" fill-opacity=\".4\"");

@@ -93,20 +93,26 @@ impl MapReport<'_> {
                 .any(|j| known(column, j) || known(column + 1, j))
         };
         let seams = one.over.cuts.iter();
-        let seams = seams.filter(|c| shown(c.column, (c.from.1, c.to.1)));
+        let seams: Vec<_> = seams
+            .filter(|c| shown(c.column, (c.from.1, c.to.1)))
+            .collect();
+        let ends = |at: &(f64, f64)| seams.iter().any(|c| [c.from, c.to].contains(at));
         let points = one.over.exceptional.iter().map(|p| p.at);
-        let points = points.filter(|at| shown(at.0.max(0.0).floor() as usize, (at.1, at.1)));
+        let points = points
+            .filter(|at| ends(at) || shown(at.0.max(0.0).floor() as usize, (at.1, at.1)))
+            .collect();
         Cuts {
             caption: "cut: not one mode across".into(),
             point_caption: "meets another mode".into(),
             seams: seams
+                .iter()
                 .map(|cut| Seam {
                     column: cut.column,
                     from: cut.from,
                     to: cut.to,
                 })
                 .collect(),
-            points: points.collect(),
+            points,
         }
     }
 

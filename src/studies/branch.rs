@@ -357,6 +357,3 @@ fn tie(ground: &Ground<'_>, a: &Spot, b: &Spot) -> (Tie, Crossed) {
     // On a line through an exceptional point neither way is open; the neighbours are not tied then.
     (Tie::Other, Crossed { right, left })
 }
-
-#[cfg(test)]
-mod tests;

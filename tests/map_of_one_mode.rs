@@ -1,11 +1,14 @@
+//! One mode followed over a map, held against a closed relation whose roots are carried along the same way in small
+//! steps, and against exact exceptional points.
+
 use std::path::Path;
 
 use num_complex::Complex64;
-
-use super::*;
-use crate::modes::{self, Scan, Window};
-use crate::studies::map::{Axis, map};
-use crate::{input, meanflow};
+use stillflame::modes::{self, Mode, Scan, Window};
+use stillflame::network::Network;
+use stillflame::studies::branch::{Followed, follow};
+use stillflame::studies::map::{Axis, Map, map};
+use stillflame::{input, meanflow};
 
 fn tube() -> Network {
     let folder = Path::new(env!("CARGO_MANIFEST_DIR"));
