@@ -9,6 +9,7 @@ mod explain;
 pub mod figure;
 pub mod flow;
 pub mod map;
+mod map_events;
 pub mod modes;
 pub mod problems;
 pub mod profile;

@@ -12,7 +12,8 @@ use figures::{
 use proptest::prelude::*;
 use roxmltree::Document;
 use stillflame::draw::{
-    DrawError, LineFigure, Scale, StabilityMap, contour, field::Field, lines, locus, map, text,
+    Cuts, DrawError, LineFigure, Scale, Seam, StabilityMap, contour, field::Field, lines, locus,
+    map, text,
 };
 
 #[test]
@@ -155,6 +156,97 @@ fn lines_stop_at_holes() {
     for p in found.iter().flatten() {
         assert!(p.0 <= 4.0 || p.0 >= 7.0, "a point beside the hole: {p:?}");
         assert!((p.1 - 5.25).abs() < 1e-12);
+    }
+}
+
+#[test]
+fn on_either_side_of_a_cut_the_field_comes_from_its_own_side() {
+    // Two planes that do not meet, parted at column 4.3 from row 2.4 upwards; below they are one.
+    let axis = samples(0.0, 9.0, 10);
+    let left = |x: f64, y: f64| 1.0 + 0.5 * x + y;
+    let right = |x: f64, y: f64| -20.0 - 0.25 * x + 2.0 * y;
+    let values = rows(&axis, &axis, |x, y| {
+        let far = x > 4.3 && y > 2.4;
+        Some(if far { right(x, y) } else { left(x, y) })
+    });
+    let seams = [Seam {
+        column: 4,
+        from: (4.3, 2.4),
+        to: (4.3, 9.0),
+    }];
+    let field = Field::new(&values).cut(&seams);
+    for v in [4.2, 5.0, 6.9, 8.5] {
+        for u in [3.5, 4.0, 4.1, 4.299] {
+            assert!(
+                (field.at(u, v).unwrap() - left(u, v)).abs() < 1e-9,
+                "{u} {v}"
+            );
+        }
+        for u in [4.301, 4.7, 5.0, 5.5] {
+            assert!(
+                (field.at(u, v).unwrap() - right(u, v)).abs() < 1e-9,
+                "{u} {v}"
+            );
+        }
+    }
+    // Lines end at the cut: none runs along it.
+    for level in [-14.0, -11.0, 5.0, 8.0] {
+        let found = contour::lines(&field, level, 4, |_, _| false);
+        for pair in found.iter().flat_map(|l| l.windows(2)) {
+            let across = (pair[0].0 < 4.3) != (pair[1].0 < 4.3);
+            assert!(
+                !across || pair[0].1.min(pair[1].1) < 3.0,
+                "{level}: {pair:?}"
+            );
+        }
+    }
+}
+
+#[test]
+fn a_cut_and_its_points_are_drawn_with_their_legend() {
+    let mut figure = full();
+    let plain = map::render(&figure).unwrap();
+    figure.cuts = Cuts {
+        caption: "a cut".into(),
+        point_caption: "a point".into(),
+        seams: vec![Seam {
+            column: 60,
+            from: (60.4, 20.0),
+            to: (60.4, 199.0),
+        }],
+        points: vec![(60.4, 20.0)],
+    };
+    let svg = map::render(&figure).unwrap();
+    check_drawing("cut", &svg);
+    assert!(svg.contains("a cut") && svg.contains("a point"));
+    assert!(svg.len() < 200_000, "{} bytes", svg.len());
+    assert!(!plain.contains("stroke-width=\"4.2\"") && svg.contains("stroke-width=\"4.2\""));
+    figure.cuts.points[0].1 = f64::NAN;
+    assert!(matches!(
+        map::render(&figure),
+        Err(DrawError::NotFinite { .. })
+    ));
+}
+
+#[test]
+fn of_two_by_two_points_each_is_a_quarter_of_the_figure() {
+    // However different the values are: one of four grows, a quarter of the figure shows it.
+    for strong in [0.1, 75.0, 1e4] {
+        for corner in 0..4 {
+            let value = |k: usize| Some(if k == corner { strong } else { -8.0 });
+            let values: Rows = vec![vec![value(0), value(1)], vec![value(2), value(3)]];
+            let field = Field::new(&values);
+            let place = |k: i32| (f64::from(k) + 0.5) / 100.0;
+            let grows = |(i, j)| field.at(place(i), place(j)).unwrap() > 0.0;
+            let all = (0..100).flat_map(|i| (0..100).map(move |j| (i, j)));
+            assert_eq!(all.filter(|p| grows(*p)).count(), 2500);
+            let lines = contour::lines(&field, 0.0, 65, |_, _| false);
+            let [line] = lines.as_slice() else {
+                panic!("{lines:?}");
+            };
+            let near = |x: f64| (x - 0.5).abs() < 0.02;
+            assert!(line.iter().all(|p| near(p.0) || near(p.1)));
+        }
     }
 }
 
