@@ -205,6 +205,16 @@ fn numbers_carry_a_true_minus_and_equal_precision() {
         text::tidy("at -3 °C, low-swirl\n  burner"),
         "at −3 °C, low-swirl burner"
     );
+    // A sign that stands alone stays with its number, and no word parts behind a sign.
+    let wrapped = |text, limit| text::wrap(text, text::Weight::Regular, 10.0, limit, 9);
+    assert_eq!(wrapped("falls by − 5 Hz", 50.0), ["falls by", "− 5 Hz"]);
+    for limit in 12..90 {
+        let lines = wrapped("ab−12−34−56−78", f64::from(limit));
+        assert!(
+            lines.iter().rev().skip(1).all(|l| !l.ends_with('−')),
+            "{lines:?}"
+        );
+    }
     for c in "AZaz09ÀÿαωΔΩ−°×–¹²³⁻₀…≤√".chars() {
         assert!(text::covers(c), "{c}");
     }
@@ -231,6 +241,24 @@ proptest! {
     fn wrapped_lines_fit(words in "[A-Za-z0-9 äé−]{0,200}", limit in 20.0..300.0f64) {
         for line in text::wrap(&words, text::Weight::Regular, 11.0, limit, 4) {
             prop_assert!(text::width(&line, text::Weight::Regular, 11.0) <= limit);
+        }
+    }
+
+    #[test]
+    fn a_number_stays_with_its_unit(
+        quantities in proptest::collection::vec((-999.0..999.0f64, 0..6usize, "[a-z]{1,9}"), 1..12),
+        limit in 120.0..400.0f64,
+    ) {
+        let units = ["Hz", "1/s", "ms", "%", "J/(kg K)", "K,"];
+        let words = quantities.iter().map(|(x, unit, word)| {
+            format!("{word} {} {}", text::fixed(*x, 2), units[*unit])
+        });
+        let sentence = words.collect::<Vec<_>>().join(" ");
+        let lines = text::wrap(&sentence, text::Weight::Semibold, 11.0, limit, 99);
+        prop_assert_eq!(lines.join(" "), sentence);
+        for line in &lines {
+            let last = line.rsplit(' ').next().unwrap();
+            prop_assert!(last.replace('−', "-").parse::<f64>().is_err() && last != "J/(kg", "{}", line);
         }
     }
 
