@@ -14,7 +14,11 @@
 //! `STILLFLAME_NETWORKS=20000 cargo test --release --test campaign -- --nocapture` tries more networks,
 //! `STILLFLAME_FIRST=5000` other ones: network `k` is the one of seed `k`. Figures go to standard output.
 
+#[path = "common/census.rs"]
+mod census;
 mod common;
+#[path = "common/witness.rs"]
+mod witness;
 
 use std::time::Instant;
 
@@ -22,9 +26,9 @@ use rayon::prelude::*;
 use stillflame::modes::{self, ModeList, Scan, Window};
 use stillflame::numerics::count::Effort;
 
-use common::census::Census;
+use census::Census;
 use common::random::{Drawn, Wish, draw};
-use common::witness::{Walk, longest_delay};
+use witness::{Walk, longest_delay};
 
 /// Part of the reciprocal of the longest delay the witness steps.
 const STEP: f64 = 0.5;

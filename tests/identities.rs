@@ -1,6 +1,10 @@
 //! Identities every network must satisfy, over random ones that hold everything a file can state.
 
+#[path = "common/census.rs"]
+mod census;
 mod common;
+#[path = "common/split.rs"]
+mod split;
 
 use std::fmt::Display;
 
@@ -15,7 +19,7 @@ use stillflame::modes::{self, Mode, ModeList, Scan, Solved, Window};
 use stillflame::numerics::analytic::{Analytic, Region};
 use stillflame::numerics::isolate;
 
-use common::census::Census;
+use census::Census;
 use common::random::{Drawn, Ends, Stream, Wish, draw};
 
 const WINDOW: Window = Window {

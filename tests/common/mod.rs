@@ -1,8 +1,4 @@
-//! Shared by the tests and benches.
-#![allow(dead_code, reason = "each test binary uses its own part")]
+//! Random networks, shared by the tests.
 
-pub mod census;
-pub mod exact;
 pub mod random;
 pub mod rig;
-pub mod witness;

@@ -26,6 +26,7 @@ pub struct Wish {
 }
 
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
+#[allow(dead_code, reason = "no test draws every kind of stream")]
 pub enum Stream {
     Still,
     /// Up to Mach 0.3 anywhere.
@@ -36,6 +37,7 @@ pub enum Stream {
 }
 
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
+#[allow(dead_code, reason = "no test draws every kind of ends")]
 pub enum Ends {
     Any,
     /// No complex reflection coefficient.
@@ -67,6 +69,7 @@ pub struct Drawn {
     pub network: Network,
     pub solved: Solved,
     /// Networks drawn before it that have no mean flow below Mach 0.3 or no elimination.
+    #[allow(dead_code, reason = "only a campaign tells it")]
     pub redrawn: usize,
 }
 
