@@ -87,6 +87,58 @@ fn hatch_and_quiet_fill_stand_exactly_where_they_are_needed() {
     }
 }
 
+/// From the last trusted sample to the next nothing is known: a curve ends where the hatching begins.
+#[test]
+fn hatching_of_a_sweep_meets_the_curves() {
+    let mut figure = sweep();
+    let count = figure.x_values.len();
+    for untrusted in [0..1, 3..4, 40..52, count - 2..count] {
+        figure.certified = (0..count).map(|i| !untrusted.contains(&i)).collect();
+        for series in figure.panels.iter_mut().flat_map(|p| &mut p.series) {
+            series.values = (0..count)
+                .map(|i| (!untrusted.contains(&i)).then_some(1.0 + i as f64))
+                .collect();
+        }
+        let svg = lines::render(&figure).unwrap();
+        let document = Document::parse(&svg).unwrap();
+        let paths = || document.descendants().filter(|n| n.has_tag_name("path"));
+        let hatched = paths()
+            .find(|n| n.attribute("fill").is_some_and(|f| f.ends_with("-hatch)")))
+            .and_then(|n| n.attribute("d"))
+            .unwrap();
+        // `M left top H right ...`
+        let numbers: Vec<f64> = hatched
+            .split(|c: char| !(c.is_ascii_digit() || c == '.'))
+            .filter_map(|n| n.parse().ok())
+            .collect();
+        let (left, right) = (numbers[0], numbers[2]);
+        let curve = paths()
+            .find(|n| n.attribute("stroke-width") == Some("1.9"))
+            .and_then(|n| n.attribute("d"))
+            .unwrap();
+        // Each stretch begins at `M x y`; the one behind the hatching at its right edge.
+        let starts: Vec<f64> = curve
+            .split('M')
+            .filter_map(|run| run.split(' ').next()?.parse().ok())
+            .collect();
+        let first = if untrusted.start == 0 { 0 } else { 1 };
+        match starts.get(first) {
+            Some(start) => assert!((start - right).abs() < 0.2, "{untrusted:?} {start} {right}"),
+            None => assert_eq!(untrusted.end, count),
+        }
+        // The left edge by the scale between the first sample and the right edge.
+        if untrusted.start > 0 && untrusted.end < count {
+            let x = &figure.x_values;
+            let part = (x[untrusted.start - 1] - x[0]) / (x[untrusted.end] - x[0]);
+            let expected = starts[0] + part * (right - starts[0]);
+            assert!(
+                (left - expected).abs() < 0.3,
+                "{untrusted:?} {left} {expected}"
+            );
+        }
+    }
+}
+
 #[test]
 fn a_sweep_hatches_untrusted_samples_and_breaks_at_gaps() {
     let doubtful = |figure: &LineFigure| {
