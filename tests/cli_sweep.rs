@@ -461,6 +461,24 @@ fn a_window_and_its_doubts_are_told_in_few_digits() {
             }
         }
     }
+    // Without a window of its own, in a gas far beyond its data.
+    let folder = tempfile::tempdir().unwrap();
+    let path = folder.path().join("hot.toml");
+    let tube = "title = \"Hot tube (invented)\"\n[feed]\ngas = \"air\"\nmass_flow = \"0 kg/s\"\n\
+                temperature = \"1e300 K\"\npressure = \"1 bar\"\nend = \"closed\"\n[[element]]\nname = \"tube\"\n\
+                kind = \"duct\"\nlength = \"1 m\"\ndiameter = \"60 mm\"\n[exit]\nend = \"open\"\n";
+    std::fs::write(&path, tube).unwrap();
+    for verb in ["check", "flow", "modes"] {
+        let ran = run(verb, &path, &[]);
+        let longest = ran
+            .stdout
+            .split(|c: char| !c.is_ascii_digit())
+            .map(str::len)
+            .max();
+        assert!(longest < Some(20), "{}", ran.stdout);
+    }
+    let (value, _) = json("check", &path, &[]);
+    assert_eq!(value["window"]["frequency_hz"][1], 1e5);
     // Far beyond what can be counted: said, and no list is called complete.
     let huge = run("modes", &swirl, &["--growth", "-1e5 to 1e5 1/s"]);
     assert_eq!(huge.code, Some(1));

@@ -240,7 +240,13 @@ impl SweepReport<'_> {
         };
         let band = band(&self.sweep.window);
         let mode = match self.design.leading() {
-            None => format!("no mode in {}", window_text(&self.sweep.window)),
+            None if self.design.complete() => {
+                format!("no mode in {}", window_text(&self.sweep.window))
+            }
+            None => format!(
+                "no mode was found in {}, and the list is not certified",
+                window_text(&self.sweep.window)
+            ),
             Some(m) => format!(
                 "the leading mode in {band} {} at {} 1/s and {} Hz",
                 match m.tendency() {
