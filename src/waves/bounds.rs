@@ -71,11 +71,18 @@ impl Arithmetic<f64> for Halved<'_> {
     fn add(&self, a: Self::Element, b: Self::Element) -> Self::Element {
         std::array::from_fn(|i| a[i] + b[i])
     }
+    fn scaled(&self, k: f64, x: Self::Element) -> Self::Element {
+        x.map(|x| k.abs() * x)
+    }
     fn add_scaled(&self, sum: Self::Element, k: f64, x: Self::Element) -> Self::Element {
         std::array::from_fn(|i| sum[i] + k.abs() * x[i])
     }
     fn product(&self, a: Self::Element, b: Self::Element) -> Self::Element {
         real_product(&a, &b)
+    }
+    type Delay = Self::Element;
+    fn delayed(&self, e: Self::Element, _: f64, x: Self::Element) -> Self::Element {
+        real_product(&e, &x)
     }
     fn delay(&self, t: f64) -> Self::Element {
         self.spoilt(Bounded::Distance, delay_majorant(self.region, t))

@@ -9,5 +9,6 @@ pub mod exact;
 pub mod heater;
 pub mod random;
 pub mod rig;
+pub mod split;
 pub mod subdivision;
 pub mod witness;

@@ -88,6 +88,58 @@ fn hatch_and_quiet_fill_stand_exactly_where_they_are_needed() {
     }
 }
 
+/// From the last trusted sample to the next nothing is known: a curve ends where the hatching begins.
+#[test]
+fn hatching_of_a_sweep_meets_the_curves() {
+    let mut figure = sweep();
+    let count = figure.x_values.len();
+    for untrusted in [0..1, 3..4, 40..52, count - 2..count] {
+        figure.certified = (0..count).map(|i| !untrusted.contains(&i)).collect();
+        for series in figure.panels.iter_mut().flat_map(|p| &mut p.series) {
+            series.values = (0..count)
+                .map(|i| (!untrusted.contains(&i)).then_some(1.0 + i as f64))
+                .collect();
+        }
+        let svg = lines::render(&figure).unwrap();
+        let document = Document::parse(&svg).unwrap();
+        let paths = || document.descendants().filter(|n| n.has_tag_name("path"));
+        let hatched = paths()
+            .find(|n| n.attribute("fill").is_some_and(|f| f.ends_with("-hatch)")))
+            .and_then(|n| n.attribute("d"))
+            .unwrap();
+        // `M left top H right ...`
+        let numbers: Vec<f64> = hatched
+            .split(|c: char| !(c.is_ascii_digit() || c == '.'))
+            .filter_map(|n| n.parse().ok())
+            .collect();
+        let (left, right) = (numbers[0], numbers[2]);
+        let curve = paths()
+            .find(|n| n.attribute("stroke-width") == Some("1.9"))
+            .and_then(|n| n.attribute("d"))
+            .unwrap();
+        // Each stretch begins at `M x y`; the one behind the hatching at its right edge.
+        let starts: Vec<f64> = curve
+            .split('M')
+            .filter_map(|run| run.split(' ').next()?.parse().ok())
+            .collect();
+        let first = if untrusted.start == 0 { 0 } else { 1 };
+        match starts.get(first) {
+            Some(start) => assert!((start - right).abs() < 0.2, "{untrusted:?} {start} {right}"),
+            None => assert_eq!(untrusted.end, count),
+        }
+        // The left edge by the scale between the first sample and the right edge.
+        if untrusted.start > 0 && untrusted.end < count {
+            let x = &figure.x_values;
+            let part = (x[untrusted.start - 1] - x[0]) / (x[untrusted.end] - x[0]);
+            let expected = starts[0] + part * (right - starts[0]);
+            assert!(
+                (left - expected).abs() < 0.3,
+                "{untrusted:?} {left} {expected}"
+            );
+        }
+    }
+}
+
 #[test]
 fn a_sweep_hatches_untrusted_samples_and_breaks_at_gaps() {
     let doubtful = |figure: &LineFigure| {
@@ -297,6 +349,16 @@ fn numbers_carry_a_true_minus_and_equal_precision() {
         text::tidy("at -3 °C, low-swirl\n  burner"),
         "at −3 °C, low-swirl burner"
     );
+    // A sign that stands alone stays with its number, and no word parts behind a sign.
+    let wrapped = |text, limit| text::wrap(text, text::Weight::Regular, 10.0, limit, 9);
+    assert_eq!(wrapped("falls by − 5 Hz", 50.0), ["falls by", "− 5 Hz"]);
+    for limit in 12..90 {
+        let lines = wrapped("ab−12−34−56−78", f64::from(limit));
+        assert!(
+            lines.iter().rev().skip(1).all(|l| !l.ends_with('−')),
+            "{lines:?}"
+        );
+    }
     for c in "AZaz09ÀÿαωΔΩ−°×–¹²³⁻₀…≤√".chars() {
         assert!(text::covers(c), "{c}");
     }
@@ -323,6 +385,24 @@ proptest! {
     fn wrapped_lines_fit(words in "[A-Za-z0-9 äé−]{0,200}", limit in 20.0..300.0f64) {
         for line in text::wrap(&words, text::Weight::Regular, 11.0, limit, 4) {
             prop_assert!(text::width(&line, text::Weight::Regular, 11.0) <= limit);
+        }
+    }
+
+    #[test]
+    fn a_number_stays_with_its_unit(
+        quantities in proptest::collection::vec((-999.0..999.0f64, 0..6usize, "[a-z]{1,9}"), 1..12),
+        limit in 120.0..400.0f64,
+    ) {
+        let units = ["Hz", "1/s", "ms", "%", "J/(kg K)", "K,"];
+        let words = quantities.iter().map(|(x, unit, word)| {
+            format!("{word} {} {}", text::fixed(*x, 2), units[*unit])
+        });
+        let sentence = words.collect::<Vec<_>>().join(" ");
+        let lines = text::wrap(&sentence, text::Weight::Semibold, 11.0, limit, 99);
+        prop_assert_eq!(lines.join(" "), sentence);
+        for line in &lines {
+            let last = line.rsplit(' ').next().unwrap();
+            prop_assert!(last.replace('−', "-").parse::<f64>().is_err() && last != "J/(kg", "{}", line);
         }
     }
 
