@@ -125,6 +125,11 @@ fn attaining(what: Bounded) -> Option<Law<f64>> {
     }
 }
 
+/// Whether bounds worked out in two ways are the same to rounding.
+fn agree(a: [f64; TAYLOR], b: [f64; TAYLOR]) -> bool {
+    a.iter().zip(b).all(|(a, b)| (a - b).abs() <= 1e-13 * b)
+}
+
 const PLACE: Complex64 = Complex64::new(-100.0, 0.0);
 
 #[test]
@@ -246,7 +251,7 @@ fn half_of_any_bound_shows_at_every_place_a_law_may_stand() {
             let values = tape.taylor_at::<TAYLOR>(PLACE);
             let sound = bounds(&tape, None);
             assert!(exceeded(&values, &sound).is_empty(), "{place}, {what:?}");
-            assert_eq!(sound, tape.bound(&region));
+            assert!(agree(sound, tape.bound(&region)), "{place}, {what:?}");
             // Every order of the whole program is attained, so that half of it would show.
             for (v, b) in values.iter().zip(sound) {
                 let part = v.value().norm() / b;
@@ -316,7 +321,7 @@ proptest! {
         let region = Region::disc(s, 0.0);
         let bounds = |fault| tape.run(&Halved { region: &region, fault });
         let values = tape.taylor_at::<TAYLOR>(s);
-        prop_assert_eq!(bounds(None), tape.bound(&region));
+        prop_assert!(agree(bounds(None), tape.bound(&region)));
         for (v, b) in values.iter().zip(bounds(None)) {
             prop_assert!((v.value().norm() / b - 1.0).abs() < 1e-11);
         }
