@@ -1,6 +1,6 @@
 //! From the steps of an elimination to a tape.
 
-use super::{MOST_SLOTS, Op, Sparse, Tape};
+use super::{MOST_SLOTS, Op, Part, Sparse, Tape};
 use crate::numerics::analytic::Rounding;
 use crate::numerics::dual::Real;
 use crate::waves::exterior::Dense;
@@ -119,10 +119,11 @@ impl<T: Real> Writer<T> {
                             .max()
                             .unwrap_or(0) as f64
                     };
-                    // Laws of one map lie on parallel paths: the longest counts, sums add one each.
+                    // Laws of one map lie on parallel paths: the longest counts, sums add one each. A column
+                    // times a row has three roundings more, and is right to two of its own.
                     let of_laws = lawful
                         .iter()
-                        .map(|(f, b)| f.operations() + terms(b))
+                        .map(|(f, b)| f.operations() + terms(b) + 6.0)
                         .fold(0.0, f64::max);
                     tape.rounding.values +=
                         (2.0 + terms(&constant)).max(of_laws) + 1.0 + lawful.len() as f64;
@@ -131,7 +132,7 @@ impl<T: Real> Writer<T> {
                         constant: Sparse::of(&constant),
                         lawful: lawful
                             .into_iter()
-                            .map(|(f, b)| (f, Sparse::of(&b)))
+                            .map(|(f, b)| (f, Part::of(&b)))
                             .collect(),
                     });
                 }
