@@ -120,6 +120,9 @@ enum Told {
 /// Most halvings of one segment before a zero is taken to lie on it.
 const DEEPEST: u32 = 60;
 
+/// Most segments halved together: rounding, not zeros, keeps so many open.
+const MOST_OPEN: usize = 200_000;
+
 /// Distance from a zero within which a point of the contour is on it, over the modulus, where rounding
 /// stops the walk.
 const BESIDE: f64 = 1e-5;
@@ -241,6 +244,9 @@ impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
                     }
                 }
             }
+            if let (Some(open), true) = (work.open.first(), work.open.len() > MOST_OPEN) {
+                return Err(CountError::Drowned { near: open.a.s });
+            }
             work.segments.clear();
             self.effort.refinements += work.open.len();
             self.evaluate(work)?;
@@ -345,16 +351,11 @@ impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
                 return Ok(Told::Clear(crossing(from, to)));
             }
         }
-        if *depth >= DEEPEST || h <= 4.0 * f64::EPSILON * modulus {
+        // A value within rounding of zero stays the end of a segment however often that is halved.
+        let lost = va <= floor || vb <= floor;
+        if lost || *depth >= DEEPEST || h <= 4.0 * f64::EPSILON * modulus {
             let p = if va < vb { a } else { b };
-            let [_, value, slope] = p.moduli;
-            // Beside a zero the slope tells where it lies.
-            let found = slope > 2.0 * slope_floor && value + floor < BESIDE * modulus * slope;
-            return Err(if found {
-                CountError::OnContour { near: p.s }
-            } else {
-                CountError::Drowned { near: p.s }
-            });
+            return Err(stopped(p, floor, slope_floor, modulus));
         }
         Ok(Told::Open)
     }
@@ -379,6 +380,16 @@ impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
             return Err(CountError::BoundContradicted { at: middle.s });
         }
         Ok(())
+    }
+}
+
+/// Why the walk ends at a point: beside a zero the slope tells where it lies.
+fn stopped(p: &Sample, floor: f64, slope_floor: f64, modulus: f64) -> CountError {
+    let [_, value, slope] = p.moduli;
+    if slope > 2.0 * slope_floor && value + floor < BESIDE * modulus * slope {
+        CountError::OnContour { near: p.s }
+    } else {
+        CountError::Drowned { near: p.s }
     }
 }
 

@@ -56,10 +56,15 @@ struct Run {
     start: Complex64,
     z: Complex64,
     last: f64,
+    steps: usize,
 }
 
 /// Most steps.
 const MOST_STEPS: usize = 40;
+
+/// Steps after which each must be shorter than the one before by a fifth: towards two zeros that all but coincide they
+/// are halved, towards one they do better.
+const FREE_STEPS: usize = 6;
 
 impl Default for Newton {
     /// With no memory yet.
@@ -89,6 +94,7 @@ impl Newton {
             start,
             z: start,
             last,
+            steps: 0,
         };
         self.runs.extend(starts.iter().map(begin));
         self.reached.clear();
@@ -146,6 +152,10 @@ impl Run {
         if noise {
             return Step::Done(Some(self.z));
         }
+        self.steps += 1;
+        if self.steps > FREE_STEPS && size > 0.8 * self.last {
+            return Step::Done(None);
+        }
         self.z -= step;
         if settled {
             return Step::Done(Some(self.z));
@@ -169,6 +179,7 @@ pub fn newton<F: Analytic + ?Sized>(
         start,
         z: start,
         last: f64::INFINITY,
+        steps: 0,
     };
     for _ in 0..MOST_STEPS {
         *evaluations += 1;
