@@ -75,6 +75,7 @@ pub mod gas;
 pub mod input;
 pub mod knobs;
 pub mod meanflow;
+pub mod measured;
 pub mod modes;
 pub mod network;
 pub mod numerics;
