@@ -4,8 +4,7 @@ use serde::Serialize;
 
 use super::document::WindowFields;
 use super::map_events::{EventFields, events};
-use super::{Document, Heading, closing, window_text};
-use crate::draw::text::fixed;
+use super::{Document, Heading, closing, counted, rate, window_text};
 use crate::modes::{Mode, ModeList, Outside, Tendency, Window};
 use crate::network::Network;
 use crate::problems::Problem;
@@ -13,7 +12,7 @@ use crate::studies::branch;
 use crate::studies::cautions::{place, setting};
 use crate::studies::map::{Axis, Map, Point};
 use crate::studies::regions::{Region, regions};
-use crate::units::{Dimension, write_rounded};
+use crate::units::{Dimension, write_decimals, write_rounded};
 
 /// A map to report.
 #[derive(Clone, Copy, Debug)]
@@ -99,6 +98,7 @@ struct Unanswered<'a> {
 struct Body<'a> {
     finding: String,
     followed_mode: Option<usize>,
+    followed_to: Option<Vec<Vec<bool>>>,
     across_knob: &'a str,
     across_unit: &'static str,
     across: Vec<f64>,
@@ -165,6 +165,13 @@ impl<'a> MapReport<'a> {
             .collect()
     }
 
+    /// Whether the mode followed was followed to each point, in or outside the window.
+    pub(super) fn reached(&self) -> Option<Vec<Vec<bool>>> {
+        let reached = self.followed?.over.reached.as_slice();
+        let columns = self.map.across.points.max(1);
+        Some(reached.chunks(columns).map(<[_]>::to_vec).collect())
+    }
+
     fn unanswered(&self) -> Vec<Unanswered<'a>> {
         let told = |(across, up, point): (f64, f64, &'a Point)| {
             let (failed, subject, why) = match point {
@@ -200,6 +207,7 @@ impl<'a> MapReport<'a> {
         let body = Body {
             finding: self.finding(),
             followed_mode: self.followed.map(|one| one.number),
+            followed_to: self.reached(),
             across_knob,
             across_unit: across.si_unit(),
             across: map.across.values(),
@@ -244,6 +252,7 @@ impl<'a> MapReport<'a> {
     /// # Errors
     /// Where a row cannot be written.
     pub fn csv(&self) -> std::io::Result<Vec<u8>> {
+        let reached = self.followed.map(|one| one.over.reached.as_slice());
         let named = |axis| {
             let (name, dimension): (&str, Dimension) = self.axis(axis);
             match dimension.si_unit() {
@@ -252,20 +261,24 @@ impl<'a> MapReport<'a> {
             }
         };
         let mut writer = csv::Writer::from_writer(Vec::new());
-        writer.write_record([
-            named(self.map.across).as_str(),
-            named(self.map.up).as_str(),
-            "largest_growth_per_s",
-            "frequency_hz_there",
-            "error_bound_per_s",
-            "growth_outside_window_per_s",
-            "complete",
-            "failed",
-        ])?;
+        let mut head = vec![named(self.map.across), named(self.map.up)];
+        head.extend(
+            [
+                "largest_growth_per_s",
+                "frequency_hz_there",
+                "error_bound_per_s",
+                "growth_outside_window_per_s",
+                "complete",
+                "failed",
+            ]
+            .map(str::to_owned),
+        );
+        head.extend(reached.map(|_| "followed_to".to_owned()));
+        writer.write_record(head)?;
         let number = |x: Option<f64>| x.map_or(String::new(), |x| x.to_string());
-        for (x, y, point) in self.map.placed() {
+        for (k, (x, y, point)) in self.map.placed().enumerate() {
             let mode = point.leading();
-            writer.write_record([
+            let mut row = vec![
                 x.to_string(),
                 y.to_string(),
                 number(mode.map(|m| m.growth())),
@@ -274,7 +287,9 @@ impl<'a> MapReport<'a> {
                 number(point.outside().map(|m| m.growth())),
                 point.complete().to_string(),
                 matches!(point, Point::Failed(_)).to_string(),
-            ])?;
+            ];
+            row.extend(reached.map(|r| r.get(k).is_some_and(|r| *r).to_string()));
+            writer.write_record(row)?;
         }
         writer
             .into_inner()
@@ -291,8 +306,9 @@ impl<'a> MapReport<'a> {
                 n => format!("grows at {} of the points", percent(n, tally.points)),
             };
             return format!(
-                "The mode of {:.0} Hz {over}; there, at the design point, it is at {} 1/s",
-                one.mode.frequency(),
+                "Mode {}, {} Hz and {} 1/s at the design point, {over}",
+                one.number,
+                write_decimals(one.mode.frequency(), 0),
                 rate(one.mode.growth())
             );
         }
@@ -336,7 +352,7 @@ impl<'a> MapReport<'a> {
         format!(
             "the design point {verb} at {} 1/s and {} Hz{certified}",
             rate(mode.growth()),
-            fixed(mode.frequency(), 0)
+            write_decimals(mode.frequency(), 0)
         )
     }
 
@@ -347,9 +363,12 @@ impl<'a> MapReport<'a> {
         let mut text = format!(
             "Followed from the design point first along {across}, then along {}; to {} of {} points\n",
             self.axis(map.up).0,
-            one.over.reached,
+            one.over.reached.iter().filter(|r| **r).count(),
             map.points.len()
         );
+        if one.over.reached.iter().any(|r| !r) {
+            text.push_str(&format!("{NOT_FOLLOWED}.\n"));
+        }
         for point in &one.over.exceptional {
             let at = place(
                 self.network,
@@ -358,8 +377,8 @@ impl<'a> MapReport<'a> {
             );
             let told = match point.s {
                 Some(s) => format!(
-                    "It meets another mode at {at}: {:.1} Hz, {} 1/s\n",
-                    s.im / std::f64::consts::TAU,
+                    "It meets another mode at {at}: {} Hz, {} 1/s\n",
+                    write_decimals(s.im / std::f64::consts::TAU, 1),
                     rate(s.re)
                 ),
                 None => format!("It meets another mode near {at}\n"),
@@ -367,7 +386,10 @@ impl<'a> MapReport<'a> {
             text.push_str(&told);
         }
         if !one.over.cuts.is_empty() {
-            text.push_str("From there the map has a cut: beyond, what the mode becomes depends on the way taken.\n");
+            text.push_str(
+                "From there the map has a cut: beyond, what the mode becomes depends on the way taken.\n\
+                 Meetings farther outside the window than a quarter of its width are not listed.\n",
+            );
         }
         text
     }
@@ -379,10 +401,10 @@ impl<'a> MapReport<'a> {
         let range = |axis: Axis| {
             let (name, dimension) = self.axis(axis);
             format!(
-                "{name} from {} to {} in {} steps",
+                "{name} from {} to {} at {} values",
                 write_rounded(axis.low, dimension, 6),
                 write_rounded(axis.high, dimension, 6),
-                axis.points.saturating_sub(1)
+                axis.points
             )
         };
         let mut text = format!(
@@ -400,9 +422,9 @@ impl<'a> MapReport<'a> {
         ));
         if let Some((x, y, mode)) = tally.greatest {
             text.push_str(&format!(
-                "Largest growth rate: {} 1/s at {:.1} Hz, at {}\n",
+                "Largest growth rate: {} 1/s at {} Hz, at {}\n",
                 rate(mode.growth()),
-                mode.frequency(),
+                write_decimals(mode.frequency(), 1),
                 place(self.network, (map.across.knob, x), (map.up.knob, y))
             ));
         }
@@ -421,6 +443,9 @@ impl<'a> MapReport<'a> {
     }
 }
 
+/// Why a mode is not followed to all points.
+pub(super) const NOT_FOLLOWED: &str = "It is followed until it stops oscillating, meets another mode on the way, or there is no mean flow";
+
 /// What is said of growth outside a window, in a sentence: the number of points where there is some, of those
 /// where more is not excluded, and the least growth rate up to which those were searched.
 pub(super) fn growth_outside(
@@ -428,32 +453,24 @@ pub(super) fn growth_outside(
     (outside, open, searched_to): (usize, usize, Option<f64>),
     seen: &str,
 ) -> String {
-    let top = window.frequency.1;
+    let top = write_decimals(window.frequency.1, 0);
     match (open, searched_to) {
         (0, _) if outside == 0 => {
-            format!(
-                "At each point growth outside the window is excluded up to {top:.0} Hz, by proof."
-            )
+            format!("At each point growth outside the window is excluded up to {top} Hz, by proof.")
         }
         (0, _) => format!(
-            "Growth outside the window {seen}; more of it up to {top:.0} Hz is excluded at each point, by proof."
+            "Growth outside the window {seen}; more of it up to {top} Hz is excluded at each point, by proof."
         ),
         (open, Some(to)) if to > window.growth.1 => format!(
-            "Growth outside the window was searched up to {top:.0} Hz and at least {to:.0} 1/s; beyond, \
-             it is not excluded at {open} points."
+            "Growth outside the window was searched up to {top} Hz and at least {} 1/s; beyond, \
+             it is not excluded at {}.",
+            write_decimals(to, 0),
+            counted(open, "point")
         ),
-        (open, _) => format!("Growth outside the window is not excluded at {open} points."),
-    }
-}
-
-/// A growth rate with its sign, whole where it is large.
-pub(super) fn rate(growth: f64) -> String {
-    let digits = if growth.abs() < 9.95 { 1 } else { 0 };
-    let text = fixed(growth, digits);
-    if growth > 0.0 {
-        format!("+{text}")
-    } else {
-        text
+        (open, _) => format!(
+            "Growth outside the window is not excluded at {}.",
+            counted(open, "point")
+        ),
     }
 }
 
