@@ -207,7 +207,7 @@ fn a_point_without_mean_flow_is_marked_and_counted() {
     all.extend(["--out", folder.path().to_str().unwrap()]);
     run("map", &network("swirl_rig"), &all);
     let svg = std::fs::read_to_string(folder.path().join("swirl_rig_map.svg")).unwrap();
-    assert!(svg.contains("not certified, or no mean flow"));
+    assert!(svg.contains(">no mean flow<"));
     // Each point without an answer is listed with its reason.
     let (value, _) = json(
         "map",
@@ -439,6 +439,10 @@ fn a_map_of_one_mode_tells_where_it_is_outside_the_window_from_where_it_is_not_f
         }
     }
     assert!(outside > 20 && unreached > 5, "{outside} {unreached}");
+    // Other modes grow outside the window at short delays.
+    assert_eq!(value["growth_excluded_beyond"], false);
+    let told = value["growth_outside"].as_str().unwrap();
+    assert!(!told.contains("excluded"), "{told}");
     let read = |name: &str| std::fs::read_to_string(folder.path().join(name)).unwrap();
     let svg = read("swirl_rig_map_mode_2.svg");
     assert!(svg.contains("outside the window") && svg.contains("not followed so far"));

@@ -1,6 +1,7 @@
 //! A stability map as a figure: units for its axes and words for its labels.
 
-use super::map::{MapReport, NOT_FOLLOWED};
+use super::map::MapReport;
+use super::map_events::NOT_FOLLOWED;
 use super::{CAUTION, rate, window_text};
 use crate::draw::patches::Patches;
 use crate::draw::{
@@ -221,8 +222,9 @@ impl MapReport<'_> {
                 label: design,
             }),
             words: Words {
-                uncertified: match tally.failed {
-                    0 => "not certified".into(),
+                uncertified: match (tally.doubtful, tally.failed) {
+                    (_, 0) => "not certified".into(),
+                    (0, _) => "no mean flow".into(),
                     _ => "not certified, or no mean flow".into(),
                 },
                 absent: match self.followed {

@@ -152,6 +152,10 @@ impl<'a> MapReport<'a> {
 
     /// What the map says of growth outside its window, in a sentence.
     pub(super) fn growth_outside(&self) -> String {
+        if self.followed.is_some() {
+            return "A map of one mode tells of no other, and of no growth outside the window."
+                .to_owned();
+        }
         let tally = self.map.tally();
         let known = (tally.outside, tally.open, tally.searched_to);
         growth_outside(&self.map.window, known, "is shown as well")
@@ -241,7 +245,9 @@ impl<'a> MapReport<'a> {
                 growth_outside_window_per_s: self.design_outside.fastest().map(|m| m.growth()),
             },
             window: (&map.window).into(),
-            growth_excluded_beyond: tally.outside == 0 && tally.open == 0,
+            growth_excluded_beyond: self.followed.is_none()
+                && tally.outside == 0
+                && tally.open == 0,
             growth_outside: self.growth_outside(),
         };
         Document::new("stillflame/map", &self.heading, body, self.warnings).to_json()
@@ -356,44 +362,6 @@ impl<'a> MapReport<'a> {
         )
     }
 
-    /// How the mode was followed, and where it meets another.
-    fn cut_words(&self, one: &Followed) -> String {
-        let map = self.map;
-        let across = self.axis(map.across).0;
-        let mut text = format!(
-            "Followed from the design point first along {across}, then along {}; to {} of {} points\n",
-            self.axis(map.up).0,
-            one.over.reached.iter().filter(|r| **r).count(),
-            map.points.len()
-        );
-        if one.over.reached.iter().any(|r| !r) {
-            text.push_str(&format!("{NOT_FOLLOWED}.\n"));
-        }
-        for point in &one.over.exceptional {
-            let at = place(
-                self.network,
-                (map.across.knob, map.across.between(point.at.0)),
-                (map.up.knob, map.up.between(point.at.1)),
-            );
-            let told = match point.s {
-                Some(s) => format!(
-                    "It meets another mode at {at}: {} Hz, {} 1/s\n",
-                    write_decimals(s.im / std::f64::consts::TAU, 1),
-                    rate(s.re)
-                ),
-                None => format!("It meets another mode near {at}\n"),
-            };
-            text.push_str(&told);
-        }
-        if !one.over.cuts.is_empty() {
-            text.push_str(
-                "From there the map has a cut: beyond, what the mode becomes depends on the way taken.\n\
-                 Meetings farther outside the window than a quarter of its width are not listed.\n",
-            );
-        }
-        text
-    }
-
     /// For people.
     pub fn text(&self) -> String {
         let map = self.map;
@@ -442,9 +410,6 @@ impl<'a> MapReport<'a> {
         text
     }
 }
-
-/// Why a mode is not followed to all points.
-pub(super) const NOT_FOLLOWED: &str = "It is followed until it stops oscillating, meets another mode on the way, or there is no mean flow";
 
 /// What is said of growth outside a window, in a sentence: the number of points where there is some, of those
 /// where more is not excluded, and the least growth rate up to which those were searched.
