@@ -193,7 +193,9 @@ impl<F: Analytic + ?Sized> Hunt<'_, F> {
         let mut newton = Newton::default();
         for _ in 0..MOST_DIVISIONS {
             let without = |g: &Guess| {
-                let step = self.without_known(ledger, g.from, (g.from - g.next).inv()).inv();
+                let step = self
+                    .without_known(ledger, g.from, (g.from - g.next).inv())
+                    .inv();
                 Guess {
                     next: g.from - step,
                     step: step.norm_sqr(),

@@ -276,12 +276,7 @@ impl Proof {
         self.reach *= 0.25;
     }
 
-    fn told<F: Analytic + ?Sized>(
-        &self,
-        f: &F,
-        rounding: &Rounding,
-        widest: f64,
-    ) -> Option<Zero> {
+    fn told<F: Analytic + ?Sized>(&self, f: &F, rounding: &Rounding, widest: f64) -> Option<Zero> {
         let (mut best, mut settled) = (self.best, self.settled);
         if best.is_none() {
             best = outweighed(f, self.z, widest, 1);

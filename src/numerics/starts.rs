@@ -41,7 +41,9 @@ pub fn graded<F: Analytic + ?Sized>(f: &F, r: &Rectangle) -> Vec<Complex64> {
     f.bounds(&regions, &mut bounds);
     let pitch = |x: f64| {
         let at = (SCALES as f64 * (x - g.0) / width).clamp(0.0, SCALES as f64 - 1.0);
-        let scale = bounds.get(at as usize).map_or(0.0, |b| b[0] / b[1].max(f64::MIN_POSITIVE));
+        let scale = bounds
+            .get(at as usize)
+            .map_or(0.0, |b| b[0] / b[1].max(f64::MIN_POSITIVE));
         // A grid of one point is the coarsest, one of ten thousand the finest.
         (1.6 * scale).clamp((width * height / 2e4).sqrt(), width.max(height))
     };

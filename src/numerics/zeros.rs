@@ -14,8 +14,8 @@
 use num_complex::Complex64;
 
 use super::analytic::Analytic;
-use super::hunt::Hunt;
 use super::count::{CountError, Effort, Rectangle, Walker};
+use super::hunt::Hunt;
 use super::isolate::{self, Zero};
 use super::ledger::Ledger;
 

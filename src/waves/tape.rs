@@ -152,7 +152,10 @@ fn outer<T: Real>(m: &Dense<T>) -> Option<(Vec<(u8, T)>, Vec<(u8, T)>)> {
             column.push((i as u8, k));
         }
     }
-    let used = first.iter().enumerate().filter(|(_, x)| !x.is_exactly_zero());
+    let used = first
+        .iter()
+        .enumerate()
+        .filter(|(_, x)| !x.is_exactly_zero());
     Some((column, used.map(|(j, &x)| (j as u8, x)).collect()))
 }
 

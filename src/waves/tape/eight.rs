@@ -2,8 +2,8 @@
 
 use num_complex::Complex64;
 
-use super::{MOST_SLOTS, Tape};
 use super::arithmetic::{Majorant, Taylor};
+use super::{MOST_SLOTS, Tape};
 use crate::numerics::analytic::{Analytic, Region, Rounding, TAYLOR};
 use crate::numerics::lanes::{Both, Job, LANES, Lanes, on_lanes};
 use crate::waves::complex::Cx;

@@ -131,10 +131,7 @@ impl<T: Real> Writer<T> {
                     tape.symmetric &= lawful.iter().all(|(f, _)| f.is_symmetric());
                     tape.ops.push(Op::Map {
                         constant: Sparse::of(&constant),
-                        lawful: lawful
-                            .into_iter()
-                            .map(|(f, b)| (f, Part::of(&b)))
-                            .collect(),
+                        lawful: lawful.into_iter().map(|(f, b)| (f, Part::of(&b))).collect(),
                     });
                 }
             }
