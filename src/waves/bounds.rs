@@ -87,6 +87,9 @@ impl Arithmetic<f64> for Halved<'_> {
     fn delay(&self, t: f64) -> Self::Element {
         self.spoilt(Bounded::Distance, delay_majorant(self.region, t))
     }
+    fn answer(&self, law: &Law<f64>, x: Self::Element) -> Self::Element {
+        real_product(&self.law(law), &x)
+    }
     fn law(&self, law: &Law<f64>) -> Self::Element {
         self.spoilt(bounded(law), law.majorant(self.region))
     }
