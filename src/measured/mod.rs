@@ -18,7 +18,10 @@ mod average;
 mod engine;
 mod envelope;
 mod level;
+pub mod microphones;
+pub mod nature;
 pub mod peaks;
+pub mod response;
 
 mod record;
 

@@ -4,16 +4,17 @@
 //! least
 //!
 //! ```text
-//! Q = sum_j (P_j/M_j + ln M_j),   M_j = floor_j + sum_k Re[C_k L_j(s_k)]
+//! Q = sum_j (P_j/M_j + ln M_j) + ...,   M_j = floor + sum_k Re[C_k L_j(s_k)]
 //! ```
 //!
-//! (Whittle 1953; with `M_j` the exact mean of the estimate as in Sykulski et al. 2019, Biometrika 106, 251). With
+//! and of `Im C/Re C` a normal deviate of spread [`ASYMMETRY`] (Whittle 1953; with `M_j` the exact mean of the estimate as in Sykulski et al. 2019, Biometrika 106, 251). With
 //! `u_j = dM_j/M_j` the Fisher matrix is `F = sum u_j u_j^T`; neighbouring bins are correlated by `kappa_{|i-j|}`,
 //! so the covariance of the parameters is `F^-1 (sum_ij kappa_{|i-j|} u_i u_j^T) F^-1`.
 
-use std::f64::consts::TAU;
+use std::f64::consts::{PI, TAU};
 
-use nalgebra::{DMatrix, DVector};
+use nalgebra::linalg::Cholesky;
+use nalgebra::{DMatrix, DVector, Dyn};
 use num_complex::Complex64;
 
 use super::line::{Bins, Line};
@@ -37,11 +38,25 @@ impl Resonance {
     }
 }
 
-/// Resonances on a floor `floor + slope (f_0/f)^2`, `f_0` the first frequency fitted.
+/// Resonances on a floor that is the same at all frequencies.
 #[derive(Clone, Debug, PartialEq)]
 pub(super) struct Model {
     pub(super) resonances: Vec<Resonance>,
     pub(super) floor: f64,
+}
+
+/// Spread of `Im C/Re C` known beforehand: it is `-nu/(2 pi f)` of a displacement driven by white noise, the opposite of a
+/// velocity, and larger only where modes that overlap are driven by the same noise.
+const ASYMMETRY: f64 = 0.5;
+
+/// `Im C/Re C` in units of its spread.
+fn asymmetry(c: Complex64) -> f64 {
+    c.im / (ASYMMETRY * c.re)
+}
+
+/// Its derivatives with respect to the real and the imaginary part.
+fn asymmetry_turns(c: Complex64) -> [f64; 2] {
+    [-asymmetry(c) / c.re, 1.0 / (ASYMMETRY * c.re)]
 }
 
 /// Parameters of each resonance: ln decay, frequency, real and imaginary part of `C`.
@@ -96,13 +111,17 @@ impl Fitted {
     }
 
     fn with(data: &Data, model: Model, lines: Vec<Line>) -> Option<Fitted> {
+        if model.resonances.iter().any(|r| r.c.re <= 0.0) {
+            return None;
+        }
         let mut mean = vec![model.floor; data.bins.count()];
         for (r, line) in model.resonances.iter().zip(&lines) {
             for (m, v) in mean.iter_mut().zip(&line.value) {
                 *m += r.c.re * v.re - r.c.im * v.im;
             }
         }
-        let mut q = 0.0;
+        let asymmetries = model.resonances.iter().map(|r| asymmetry(r.c).powi(2));
+        let mut q = 0.5 * data.inflation() * asymmetries.sum::<f64>();
         for (m, p) in mean.iter().zip(data.power) {
             if *m <= 0.0 {
                 return None;
@@ -169,7 +188,18 @@ pub(super) fn minimise(data: &Data, start: Fitted, most: usize, tolerance: f64) 
             best.mean.len(),
             best.mean.iter().zip(data.power).map(|(m, p)| p / m - 1.0),
         );
-        let slope = u.tr_mul(&misfit);
+        let mut slope = u.tr_mul(&misfit);
+        let inflation = data.inflation();
+        for (k, r) in best.model.resonances.iter().enumerate() {
+            let at = EACH * k + 2;
+            let (rho, turns) = (asymmetry(r.c), asymmetry_turns(r.c));
+            for (i, a) in turns.iter().enumerate() {
+                slope[at + i] -= inflation * rho * a;
+                for (j, b) in turns.iter().enumerate() {
+                    information[(at + i, at + j)] += inflation * a * b;
+                }
+            }
+        }
         // Unit diagonal: parameters differ in size by many orders.
         let size: Vec<f64> = (0..slope.len())
             .map(|i| information[(i, i)].sqrt().max(f64::MIN_POSITIVE))
@@ -218,9 +248,23 @@ pub(super) fn covariance(data: &Data, fitted: &Fitted) -> Option<DMatrix<f64>> {
     for (mut column, s) in u.column_iter_mut().zip(&size) {
         column /= s.max(f64::MIN_POSITIVE);
     }
-    let inverse = u.tr_mul(&u).cholesky()?.inverse();
+    let inflation = data.inflation();
+    let mut information = u.tr_mul(&u);
+    let mut known = DMatrix::zeros(u.ncols(), u.ncols());
+    for (k, r) in fitted.model.resonances.iter().enumerate() {
+        let at = EACH * k + 2;
+        let turns = asymmetry_turns(r.c);
+        for i in 0..2 {
+            for j in 0..2 {
+                let part = turns[i] * turns[j] / (size[at + i] * size[at + j]);
+                information[(at + i, at + j)] += inflation * part;
+                known[(at + i, at + j)] += inflation * inflation * part;
+            }
+        }
+    }
+    let inverse = information.cholesky()?.inverse();
     let n = u.nrows();
-    let mut middle = DMatrix::zeros(u.ncols(), u.ncols());
+    let mut middle = known;
     for (apart, kappa) in data.kappa.iter().enumerate().take(n) {
         let products = u.rows(0, n - apart).tr_mul(&u.rows(apart, n - apart));
         if apart == 0 {
@@ -236,4 +280,85 @@ pub(super) fn covariance(data: &Data, fitted: &Fitted) -> Option<DMatrix<f64>> {
         }
     }
     Some(covariance)
+}
+
+/// What a resonance more would gain, to second order, with all other parameters free to follow (the score test, Rao
+/// 1948).
+pub(super) struct Score {
+    u: DMatrix<f64>,
+    information: Cholesky<f64, Dyn>,
+    misfit: DVector<f64>,
+    inflation: f64,
+}
+
+impl Score {
+    pub(super) fn new(data: &Data, fitted: &Fitted) -> Option<Score> {
+        let mut u = fitted.derivatives();
+        for mut column in u.column_iter_mut() {
+            let size = column.norm().max(f64::MIN_POSITIVE);
+            column /= size;
+        }
+        let mut information = u.tr_mul(&u);
+        for i in 0..u.ncols() {
+            information[(i, i)] += 1e-9;
+        }
+        let misfit = fitted.mean.iter().zip(data.power).map(|(m, p)| p / m - 1.0);
+        Some(Score {
+            information: information.cholesky()?,
+            misfit: DVector::from_iterator(u.nrows(), misfit),
+            inflation: data.inflation(),
+            u,
+        })
+    }
+
+    /// Gain in twice the log-likelihood, and the mean square that brings it, of a resonance at `s`.
+    pub(super) fn of(&self, data: &Data, fitted: &Fitted, s: Complex64) -> Option<(f64, f64)> {
+        let line = data.bins.line(s);
+        let terms = line.value.iter().zip(&fitted.mean).map(|(v, m)| v.re / m);
+        let more = DVector::from_iterator(self.u.nrows(), terms);
+        let shared = self.u.tr_mul(&more);
+        let own = more.norm_squared() - shared.dot(&self.information.solve(&shared));
+        let slope = more.dot(&self.misfit);
+        // No resonance has a negative mean square.
+        (own > 0.0 && slope > 0.0).then(|| (slope * slope / (own * self.inflation), slope / own))
+    }
+}
+
+/// Spread of a parameter between fits that describe the spectrum about as well, as a mean square about the fit chosen: each
+/// weighs `exp(-AIC/2)` against it (Burnham & Anderson 2002, Model Selection and Multimodel Inference). Fits share their first
+/// resonances with the one chosen, in order; where a resonance has become another one in a fit, that fit does not speak of it.
+pub(super) fn between(
+    data: &Data,
+    chosen: &Fitted,
+    others: &[Fitted],
+    k: usize,
+    parameter: usize,
+) -> f64 {
+    let value = |r: &Resonance| match parameter {
+        0 => r.decay().ln(),
+        1 => r.frequency(),
+        2 => r.c.re,
+        _ => r.c.im,
+    };
+    let Some(own) = chosen.model.resonances.get(k) else {
+        return 0.0;
+    };
+    let criterion =
+        |f: &Fitted| 2.0 * f.q / data.inflation() + 2.0 * (EACH * f.model.resonances.len()) as f64;
+    let (mut sum, mut weights) = (0.0, 1.0);
+    for other in others {
+        let Some(r) = other.model.resonances.get(k) else {
+            continue;
+        };
+        let same = (r.frequency() - own.frequency()).abs() < own.decay() / PI
+            && (r.decay() / own.decay()).ln().abs() < 0.7;
+        if same {
+            let weight = (0.5 * (criterion(chosen) - criterion(other)))
+                .min(0.0)
+                .exp();
+            sum += weight * (value(r) - value(own)).powi(2);
+            weights += weight;
+        }
+    }
+    sum / weights
 }

@@ -3,7 +3,8 @@
 //! Resonances are added one after the other where the spectrum exceeds the fit so far, all are fitted again
 //! together, and one that does not better the likelihood enough is dropped. What is fitted is the exact mean of the
 //! estimate ([`line`]), so the window widens no peak and overlapping peaks do not widen each other. A full width at
-//! half power `w` means a decay rate `nu = pi w`.
+//! half power `w` means a decay rate `nu = pi w`. Intervals hold the scatter of the record and that between fits with one resonance
+//! more or less that describe it about as well.
 
 mod fit;
 mod line;
@@ -16,6 +17,7 @@ use crate::problems::Problem;
 
 use fit::{Data, EACH, Fitted, Resonance};
 use line::Bins;
+use search::Chosen;
 
 /// What is fitted.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -123,13 +125,14 @@ pub fn find(spectra: &Spectra, channel: usize, search: Search) -> Result<Peaks, 
         power,
         kappa: &kappa,
     };
-    let fitted = search::search(&data, search.most).ok_or_else(|| {
+    let chosen = search::search(&data, search.most).ok_or_else(|| {
         Problem::error("peaks", "no fit of the spectrum settles").hint("narrow the band")
     })?;
-    Ok(told(&data, &fitted))
+    Ok(told(&data, &chosen))
 }
 
-fn told(data: &Data, fitted: &Fitted) -> Peaks {
+fn told(data: &Data, chosen: &Chosen) -> Peaks {
+    let fitted = &chosen.fitted;
     let n = data.power.len() as f64;
     let squares: f64 = data
         .power
@@ -144,7 +147,8 @@ fn told(data: &Data, fitted: &Fitted) -> Peaks {
         for (k, r) in resonances.iter().enumerate() {
             let deviation = |parameter: usize| {
                 let at = EACH * k + parameter;
-                covariance[(at, at)].max(0.0).sqrt()
+                let between = fit::between(data, fitted, &chosen.others, k, parameter);
+                (covariance[(at, at)].max(0.0) + between).sqrt()
             };
             if let Some(peak) = peak(data, fitted, r, deviation) {
                 peaks.push(peak);

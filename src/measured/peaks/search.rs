@@ -5,11 +5,23 @@ use std::f64::consts::{PI, TAU};
 
 use num_complex::Complex64;
 
-use super::fit::{Data, Fitted, Model, Resonance, minimise};
+use super::fit::{Data, Fitted, Model, Resonance, Score, minimise};
 
-/// Gain in twice the log-likelihood a resonance must bring. Its four parameters alone bring 4 by chance at a given
-/// place; the best of some hundred places brings about 2 ln(100) more.
-const LEAST_GAIN: f64 = 20.0;
+/// Gain in twice the log-likelihood a resonance must bring where it could lie at `places` places side by side: its four
+/// parameters alone bring 4 by chance at one place, and the best of many brings more.
+fn least_gain(places: f64) -> f64 {
+    13.0 + 3.0 * places.ln()
+}
+
+/// The same for a resonance hidden under others. Less is asked: one too many widens intervals, one too few biases its
+/// neighbours.
+fn least_hidden_gain(places: f64) -> f64 {
+    6.0 + 2.0 * (places / 4.0).max(1.0).ln()
+}
+
+/// Narrowest hidden resonance looked for (bins), and how many of the best places a fit is started from.
+const HIDDEN_NARROWEST: f64 = 12.0;
+const STARTS: usize = 4;
 
 /// Candidates refused one after the other before the search ends.
 const REFUSALS: usize = 3;
@@ -34,8 +46,14 @@ struct Candidate {
     excess: f64,
 }
 
+/// The fit chosen, and others that describe the spectrum about as well.
+pub(super) struct Chosen {
+    pub(super) fitted: Fitted,
+    pub(super) others: Vec<Fitted>,
+}
+
 /// Fits as many resonances as the spectrum asks for, at most `most`.
-pub(super) fn search(data: &Data, most: usize) -> Option<Fitted> {
+pub(super) fn search(data: &Data, most: usize) -> Option<Chosen> {
     let n = data.power.len();
     let mut sorted = data.power.to_vec();
     sorted.sort_by(f64::total_cmp);
@@ -53,14 +71,90 @@ pub(super) fn search(data: &Data, most: usize) -> Option<Fitted> {
         };
         let tried = with(data, &best, &found).map(|start| minimise(data, start, STEPS, 0.1));
         match tried {
-            Some(next) if 2.0 * (best.q - next.q) / inflation > LEAST_GAIN => {
+            Some(next)
+                if 2.0 * (best.q - next.q) / inflation > least_gain(n as f64 / found.width) =>
+            {
                 best = next;
                 refused.clear();
             }
             _ => refused.push((found.bin, found.width)),
         }
     }
-    Some(minimise(data, best, LAST_STEPS, 1e-7))
+    best = minimise(data, best, LAST_STEPS, 1e-3);
+    let mut others = Vec::new();
+    while best.model.resonances.len() < most {
+        let mut found = hidden(data, &best);
+        found.sort_by(|a, b| b.q.total_cmp(&a.q));
+        let Some(next) = found.pop() else {
+            break;
+        };
+        others.append(&mut found);
+        let width = next.model.resonances.last().map_or(1.0, |r| r.decay() / PI);
+        let places = n as f64 * data.bins.width() / width;
+        if 2.0 * (best.q - next.q) / inflation <= least_hidden_gain(places) {
+            others.push(next);
+            break;
+        }
+        others.push(std::mem::replace(&mut best, next));
+    }
+    Some(Chosen {
+        fitted: minimise(data, best, LAST_STEPS, 1e-7),
+        others,
+    })
+}
+
+/// Fits with a resonance more where one promises most, by the score of its mean square beside all other parameters: finds
+/// what lies under a wider or stronger neighbour and leaves no excess of its own.
+fn hidden(data: &Data, fitted: &Fitted) -> Vec<Fitted> {
+    let Some(score) = Score::new(data, fitted) else {
+        return Vec::new();
+    };
+    let bins = data.bins;
+    let span = bins.width() * bins.count() as f64;
+    let mut tried: Vec<(f64, Resonance)> = Vec::new();
+    let mut width = HIDDEN_NARROWEST * bins.width();
+    while width < span / 2.0 {
+        let places = (2.0 * span / width).floor() as usize;
+        for i in 0..=places {
+            let frequency = bins.frequency(0) + span * i as f64 / places as f64;
+            let s = Complex64::new(-PI * width, TAU * frequency);
+            if let Some((gain, c)) = score.of(data, fitted, s) {
+                let c = Complex64::from(c);
+                tried.push((gain, Resonance { s, c }));
+            }
+        }
+        width *= WIDER;
+    }
+    tried.sort_by(|a, b| b.0.total_cmp(&a.0));
+    let mut found: Vec<Fitted> = Vec::new();
+    let mut begun: Vec<Resonance> = Vec::new();
+    for (_, resonance) in tried {
+        let (f, width) = (resonance.frequency(), resonance.decay() / PI);
+        let alike = |r: &Resonance| {
+            let wider = width.max(r.decay() / PI);
+            (r.frequency() - f).abs() < 0.5 * wider && r.decay() / PI > 0.4 * wider
+        };
+        if begun.len() == STARTS || begun.iter().any(alike) {
+            continue;
+        }
+        let start = [1.0, 0.3, 0.1].iter().find_map(|part| {
+            let mut model = fitted.model.clone();
+            model.resonances.push(Resonance {
+                c: resonance.c * *part,
+                ..resonance
+            });
+            Fitted::of(data, model)
+        });
+        let Some(start) = start else { continue };
+        begun.push(resonance);
+        let next = minimise(data, start, LAST_STEPS, 1e-2);
+        let last = next.model.resonances.last();
+        if last.is_some_and(|r| r.decay() < 0.5 * PI * HIDDEN_NARROWEST * bins.width()) {
+            continue;
+        }
+        found.push(next);
+    }
+    found
 }
 
 /// The candidate with the highest score beside those refused.

@@ -1,0 +1,132 @@
+//! Plays a network's response to noise and writes it as CSV, marked as synthetic.
+//!
+//! ```text
+//! cargo run --release --example synthetic_record -- networks/swirl_rig.toml --seconds 10 --at "0.2 m" --at "0.9 m" > record.csv
+//! ```
+//!
+//! `--at` is a distance from the feed along the ducts, repeatable; without it there is one sensor at the middle. The model is
+//! told in `play.rs`.
+
+mod play;
+
+use std::error::Error;
+use std::io::Write;
+use std::path::Path;
+
+use stillflame::modes::{self, Scan, shapes};
+use stillflame::units::{self, Dimension};
+use stillflame::{input, measured::Record};
+
+struct Wanted {
+    network: String,
+    positions: Vec<f64>,
+    sound: play::Sound,
+}
+
+fn wanted() -> Result<Wanted, Box<dyn Error>> {
+    let mut arguments = std::env::args().skip(1);
+    let network = arguments
+        .next()
+        .ok_or("name a network file, networks/swirl_rig.toml for instance")?;
+    let mut all = Wanted {
+        network,
+        positions: Vec::new(),
+        sound: play::Sound {
+            rate_hz: 8192.0,
+            duration: 10.0,
+            level: 50.0,
+            cycle: 1000.0,
+            sensor_noise: 1.0,
+            seed: 1,
+        },
+    };
+    while let Some(key) = arguments.next() {
+        let value = arguments.next().ok_or(format!("{key} wants a value"))?;
+        match key.as_str() {
+            "--seconds" => all.sound.duration = value.parse()?,
+            "--rate" => all.sound.rate_hz = value.parse()?,
+            "--seed" => all.sound.seed = value.parse()?,
+            "--at" => {
+                let place = units::parse(&value, Dimension::Length).map_err(|e| e.to_string())?;
+                all.positions.push(place);
+            }
+            _ => return Err(format!("{key} is none of --seconds, --rate, --seed, --at").into()),
+        }
+    }
+    Ok(all)
+}
+
+fn main() -> Result<(), Box<dyn Error>> {
+    let mut wanted = wanted()?;
+    let network = input::read(Path::new(&wanted.network), &[])?.network;
+    let solved = modes::solve(&network)?;
+    let window = modes::Window::of(&network, &solved.mean)?;
+    let list = modes::find(&solved, window, Scan::Whole);
+    let shaped: Vec<_> = list
+        .modes
+        .iter()
+        .map(|m| (*m, shapes::along(&network, &solved, m)))
+        .collect();
+    let end = shaped
+        .iter()
+        .find_map(|(_, s)| s.as_ref()?.along.last().map(|a| a.position))
+        .ok_or("no mode of the network has a shape")?;
+    if wanted.positions.is_empty() {
+        wanted.positions.push(end / 2.0);
+    }
+    if let Some(x) = wanted.positions.iter().find(|x| !(0.0..=end).contains(*x)) {
+        return Err(format!("a sensor at {x} m lies outside the ducts, 0 to {end:.3} m").into());
+    }
+    let names: Vec<String> = (1..=wanted.positions.len())
+        .map(|i| format!("p{i}"))
+        .collect();
+    let parts = play::parts(&shaped, &wanted.positions);
+    let record = play::play(&parts, &names, &wanted.sound);
+    write(&wanted, &network.layout.title, &parts, &record)?;
+    Ok(())
+}
+
+fn write(
+    wanted: &Wanted,
+    title: &str,
+    parts: &[play::Part],
+    record: &Record,
+) -> std::io::Result<()> {
+    let mut out = std::io::BufWriter::new(std::io::stdout().lock());
+    let sound = &wanted.sound;
+    writeln!(
+        out,
+        "# SYNTHETIC record, computed and not measured: {title}"
+    )?;
+    writeln!(
+        out,
+        "# {} Hz, seed {}, sensors at {:?} m from the feed",
+        sound.rate_hz, sound.seed, wanted.positions
+    )?;
+    for part in parts {
+        let kind = if part.s.re < 0.0 {
+            "noise-driven"
+        } else {
+            "cycle"
+        };
+        let frequency = part.s.im / std::f64::consts::TAU;
+        writeln!(
+            out,
+            "# {kind}: {frequency:.3} Hz, growth rate {:+.3} 1/s",
+            part.s.re
+        )?;
+    }
+    write!(out, "time [s]")?;
+    for channel in &record.channels {
+        write!(out, ",{} [{}]", channel.name, channel.quantity.unit())?;
+    }
+    writeln!(out)?;
+    for i in 0..record.len() {
+        write!(out, "{}", record.start + i as f64 / record.rate_hz)?;
+        for channel in &record.channels {
+            write!(out, ",{}", channel.samples[i])?;
+        }
+        writeln!(out)?;
+    }
+    out.flush()
+}

@@ -1,0 +1,86 @@
+//! Frequencies and decay rates from synthetic records of every rig, over many seeds.
+
+use rayon::prelude::*;
+use stillflame::measured::peaks::{Peak, Search, find};
+use stillflame::measured::{Plan, Spectra, Welch};
+
+use crate::rigs::{self, Bound, NAMES, RATE, Rig};
+
+const SECONDS: f64 = 60.0;
+const SEEDS: u64 = 100;
+const LOW: f64 = 10.0;
+
+pub fn spectra(rig: &Rig, seconds: f64, seed: u64) -> Spectra {
+    let record = rigs::record(rig, seconds, seed);
+    // Segments of a thirty-second of the record.
+    let segment = record.len() / 64 * 2;
+    let mut welch = Welch::new(Plan::hann(RATE, segment), 1, &[]).unwrap();
+    welch.feed(&record.blocks()).unwrap();
+    welch.finish().unwrap()
+}
+
+pub fn search(rig: &Rig) -> Search {
+    Search {
+        low: LOW,
+        high: 1.15 * rig.top,
+        most: 20,
+    }
+}
+
+/// The peak that stands for a mode: the nearest, within a full width at half power.
+fn nearest<'a>(peaks: &'a [Peak], bound: &Bound) -> Option<&'a Peak> {
+    let off = |p: &Peak| (p.frequency.value - bound.frequency).abs();
+    peaks
+        .iter()
+        .filter(|p| p.resolved && off(p) < bound.decay / std::f64::consts::PI)
+        .min_by(|a, b| off(a).total_cmp(&off(b)))
+}
+
+#[test]
+fn decay_rates_lie_in_their_intervals_and_intervals_are_near_the_bound() {
+    let mut faults = Vec::new();
+    let mut judged = 0;
+    for name in NAMES {
+        let rig = rigs::rig(name);
+        let sound = rigs::sound(SECONDS, 0);
+        let found: Vec<_> = (0..SEEDS)
+            .into_par_iter()
+            .map(|seed| find(&spectra(&rig, SECONDS, seed), 0, search(&rig)).unwrap())
+            .collect();
+        let misfit = found.iter().map(|p| p.misfit).sum::<f64>() / SEEDS as f64;
+        assert!((misfit - 1.0).abs() < 0.1, "{name}: {misfit}");
+        for bound in rigs::bounds(&rig, &sound, LOW, 1.15 * rig.top) {
+            let (mut seen, mut near, mut held, mut widths) = (0, 0, 0, Vec::new());
+            for peaks in &found {
+                let Some(peak) = nearest(&peaks.peaks, &bound) else {
+                    continue;
+                };
+                seen += 1;
+                let allowed = (0.002 * bound.frequency).max(2.0 * bound.frequency_deviation);
+                near += i32::from((peak.frequency.value - bound.frequency).abs() <= allowed);
+                held += i32::from(peak.decay.holds(bound.decay));
+                widths.push(peak.decay.width() / (2.0 * 1.96 * bound.decay_deviation));
+            }
+            widths.sort_by(f64::total_cmp);
+            let median = widths.get(widths.len() / 2).copied().unwrap_or(f64::NAN);
+            let clear = bound.share > 0.9 && bound.separation > 1.0;
+            println!(
+                "{name:16} {:7.2} Hz {:7.2} 1/s share {:.2} apart {:5.2}: seen {seen:3} frequency {near:3} decay {held:3} width {median:.2} of the bound {:.1} %{}",
+                bound.frequency,
+                -bound.decay,
+                bound.share,
+                bound.separation,
+                100.0 * bound.decay_deviation / bound.decay,
+                if clear { "" } else { "  (overlaps)" }
+            );
+            if clear {
+                judged += 1;
+                if near < 90 || held < 90 || median.is_nan() || median > 1.5 {
+                    faults.push(format!("{name} {:.2} Hz", bound.frequency));
+                }
+            }
+        }
+    }
+    assert!(faults.is_empty(), "{}", faults.join("\n"));
+    assert!(judged >= 10, "{judged}");
+}
