@@ -4,9 +4,6 @@
 
 use std::process::ExitCode;
 
-use clap::Parser;
-use stillflame::cli::{Cli, run};
-
 fn main() -> ExitCode {
-    run(&Cli::parse()).into()
+    stillflame::cli::main(std::env::args_os())
 }

@@ -11,7 +11,7 @@ mod table;
 mod write;
 
 pub use parse::{QuantityError, parse, parse_number, parse_span};
-pub use write::{write, write_rounded};
+pub use write::{write, write_decimals, write_rounded, write_signed};
 
 /// The kind of quantity a number is. Decides which units may be written.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]

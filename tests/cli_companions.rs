@@ -175,11 +175,54 @@ fn manual_pages_say_what_the_help_says() {
         for option in options(&verb) {
             assert!(page.contains(&option), "{verb}: {option}");
         }
-        assert!(page.contains("Example:"), "{verb}");
+        // Commands stand under a heading of their own, their lines kept as they are.
+        let (_, shown) = page.split_once(".SH EXAMPLES\n.nf\n").expect(&verb);
+        let (shown, _) = shown.split_once(".fi\n").unwrap();
+        let lines = |text: &str| {
+            text.lines()
+                .map(|l| l.trim().to_owned())
+                .collect::<Vec<_>>()
+        };
+        let help = stillflame(&[&verb, "--help"]).stdout;
+        let (_, example) = help.split_once("Example:\n").unwrap();
+        let (example, shown) = (lines(example.trim_end()), lines(shown));
+        assert_eq!(shown.len(), example.len(), "{shown:?}");
+        for (shown, line) in shown.iter().zip(&example) {
+            assert_eq!(&shown.replace("\\\\", "\\"), line);
+        }
     }
+    for heading in [".SH \"EXIT STATUS\"\n.nf\n", ".SH NOTES\n"] {
+        assert!(program.stdout.contains(heading), "{heading}");
+    }
+    assert!(!program.stdout.contains("EXTRA"));
     let none = stillflame(&["manual", "abacus"]);
     assert_eq!(none.code, Some(2));
     assert!(none.stderr.contains("`abacus`") && none.stderr.contains("modes"));
+}
+
+/// What a help names in quotes is there: each span of an option runs on some network that is shipped.
+#[test]
+fn spans_named_in_a_help_name_what_a_shipped_network_has() {
+    let networks = ["swirl_rig", "staged_flame"];
+    for (verb, option, more) in [
+        ("sweep", "--vary", vec!["--points", "2"]),
+        ("sweep", "--scale", vec!["--points", "2"]),
+    ] {
+        let help = stillflame(&[verb, "--help"]).stdout;
+        let (_, after) = help.split_once(&format!("      {option} <")).unwrap();
+        let (text, _) = after.split_once("\n\n      --").unwrap();
+        let text = text.split_whitespace().collect::<Vec<_>>().join(" ");
+        let spans: Vec<&str> = text.split('"').skip(1).step_by(2).collect();
+        assert!(!spans.is_empty(), "{text}");
+        for span in spans {
+            let runs = networks.iter().any(|name| {
+                let file = format!("{}/networks/{name}.toml", env!("CARGO_MANIFEST_DIR"));
+                let all = [&[verb, &file, "--json", option, span], &more[..]].concat();
+                stillflame(&all).code == Some(0)
+            });
+            assert!(runs, "{option} {span}");
+        }
+    }
 }
 
 #[test]

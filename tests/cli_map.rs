@@ -303,3 +303,118 @@ fn files_of_a_map_go_to_the_working_directory_unless_told_otherwise() {
         .success();
     assert_eq!(std::fs::read_dir(folder.path()).unwrap().count(), 0);
 }
+
+/// A tube with an exact exceptional point: `tests/data/exceptional_points.json`, by 40-digit arithmetic.
+fn tube() -> std::path::PathBuf {
+    let folder = std::path::Path::new(env!("CARGO_MANIFEST_DIR"));
+    folder.join("tests/data/closed_form/rijke_open_open_L4.toml")
+}
+
+fn of_kind<'v>(value: &'v Value, kind: &str) -> Vec<&'v Value> {
+    let events = value["events"].as_array().unwrap().iter();
+    events.filter(|e| e["kind"] == kind).collect()
+}
+
+#[test]
+fn a_map_of_one_mode_lists_the_exceptional_point_and_the_cut_from_it() {
+    let data = include_str!("data/exceptional_points.json");
+    let exact: Value = serde_json::from_str(data).unwrap();
+    let exact = |key: &str| -> f64 { exact["exceptional"][key].as_str().unwrap().parse().unwrap() };
+    let near = |value: &Value, expected: f64| {
+        let value = value.as_f64().unwrap();
+        assert!((value / expected - 1.0).abs() < 1e-10, "{value} {expected}");
+    };
+    let up = "flame.interaction_index = 0.1 to 0.8";
+    let with = |across: &str, points: &str| {
+        let mut all = arguments(across, up, points);
+        all.extend(["--mode", "2", "--set", "flame.delay = 3.8 ms"]);
+        all.extend(["--set", "flame.interaction_index = 0.3"]);
+        let (value, code) = json("map", &tube(), &all);
+        assert_eq!((code, &value["followed_mode"]), (Some(0), &2.into()));
+        value
+    };
+    for points in ["2x2", "9x13", "40x30"] {
+        let value = with("flame.delay = 3.6 ms to 4.2 ms", points);
+        let [point] = of_kind(&value, "exceptional_point")[..] else {
+            panic!("{}", value["events"]);
+        };
+        near(&point["across"], exact("tau"));
+        near(&point["up"], exact("n"));
+        near(&point["growth_per_s"], exact("s_re"));
+        near(
+            &point["frequency_hz"],
+            exact("s_im") / std::f64::consts::TAU,
+        );
+        let [cut] = of_kind(&value, "cut")[..] else {
+            panic!("{}", value["events"]);
+        };
+        near(&cut["across"], exact("tau"));
+        near(&cut["up"], exact("n"));
+        near(&cut["to"][0], exact("tau"));
+        assert_eq!(cut["to"][1], 0.8);
+    }
+    // A map that holds none has no cut.
+    let value = with("flame.delay = 3.6 ms to 3.85 ms", "9x13");
+    assert_eq!(value["events"], Value::Array(Vec::new()));
+}
+
+#[test]
+fn a_map_of_one_mode_has_the_same_bytes_on_any_number_of_threads() {
+    let once = |threads: &str| {
+        let folder = tempfile::tempdir().unwrap();
+        let mut all = arguments(DELAY, INDEX, "24x16");
+        all.extend([
+            "--mode",
+            "4",
+            "--json",
+            "--out",
+            folder.path().to_str().unwrap(),
+        ]);
+        let mut command = command("map", &network("swirl_rig"), &all);
+        let output = command.env("RAYON_NUM_THREADS", threads).output().unwrap();
+        assert!(output.status.success());
+        let read = |name: &str| std::fs::read(folder.path().join(name)).unwrap();
+        let svg = read("swirl_rig_map_mode_4.svg");
+        assert!(String::from_utf8_lossy(&svg).contains("cut: not one mode across"));
+        (svg, read("swirl_rig_map_mode_4.csv"), output.stdout)
+    };
+    assert!(once("1") == once("2"));
+}
+
+#[test]
+fn events_list_points_without_an_answer_and_are_empty_where_there_is_nothing() {
+    let flow = "feed.mass_flow = 20 g/s to 400 g/s";
+    let length = "chamber.length = 0.5 m to 0.9 m";
+    let all = arguments(flow, length, "6x3");
+    let (value, _) = json("map", &network("swirl_rig"), &all);
+    let failed = of_kind(&value, "failed");
+    assert_eq!(
+        Some(failed.len() as u64),
+        value["points"]["failed"].as_u64()
+    );
+    assert!(!failed.is_empty());
+    for event in failed {
+        assert!(event["why"].as_str().unwrap().contains("beyond Mach 1"));
+        assert!(event["frequency_hz"].is_null() && event["to"].is_null());
+    }
+    let all = arguments(DELAY, INDEX, "3x3");
+    let (value, _) = json("map", &network("swirl_rig"), &all);
+    assert_eq!(value["events"], Value::Array(Vec::new()));
+}
+
+#[test]
+fn a_mode_that_is_not_there_is_wrong_usage() {
+    for number in ["0", "6", "9"] {
+        let mut all = arguments(DELAY, INDEX, "3x3");
+        all.extend(["--mode", number]);
+        let ran = run("map", &network("swirl_rig"), &all);
+        assert_eq!(ran.code, Some(2));
+        assert!(ran.stderr.contains("has 5 modes"), "{}", ran.stderr);
+    }
+    // Nor can one be followed over a map that does not hold the design point.
+    let mut all = arguments("main_flame.delay = 5 ms to 10 ms", INDEX, "3x3");
+    all.extend(["--mode", "1"]);
+    let ran = run("map", &network("swirl_rig"), &all);
+    assert_eq!(ran.code, Some(2));
+    assert!(ran.stderr.contains("outside the map"), "{}", ran.stderr);
+}

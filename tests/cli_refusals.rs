@@ -73,6 +73,67 @@ fn wrong_usage_is_two() {
     }
 }
 
+/// What is mistaken on the command line is 2, a network that is wrong is 1; both are JSON where asked for.
+#[test]
+fn every_verb_tells_wrong_usage_from_a_wrong_network() {
+    let usage: &[&[&str]] = &[
+        &["--set", "chamber.lenght = 1 m"],
+        &["--set", "chamber.length"],
+        &["--set", "chamber.length = 1 s"],
+        &["--set", "chamber.length = -1 m"],
+        &["--set"],
+        &["--nonsense"],
+        &["another.toml"],
+    ];
+    let of_a_search: &[&[&str]] = &[
+        &["--frequency", "800 to 20 Hz"],
+        &["--frequency", "20 to 800"],
+        &["--growth", "-300 to nan 1/s"],
+        &["--growth", "-1e6 to 1e6 1/s"],
+    ];
+    let network_is_wrong: &[&[&str]] = &[
+        &["--set", "feed.mass_flow = 1 kg/s"],
+        &["--set", "main_flame.burnt_temperature = 250 K"],
+    ];
+    let points: &[&[&str]] = &[&["--points", "1"], &["--points", "x"]];
+    let swirl = network("swirl_rig");
+    for verb in VERBS {
+        let told = |file: &Path, more: &[&str], expected: i32| {
+            let all = [&needed(verb), more].concat();
+            let (value, code) = json(verb, file, &all);
+            assert_eq!(code, Some(expected), "{verb} {all:?}: {value}");
+            assert_eq!(value["schema"], "stillflame/problems");
+            for problem in value["problems"].as_array().unwrap() {
+                assert!(problem["hint"].is_string(), "{verb} {all:?}: {problem}");
+            }
+            let people = run(verb, file, &all);
+            assert_eq!((people.code, people.stdout.as_str()), (Some(expected), ""));
+            assert!(!people.stderr.is_empty());
+        };
+        for more in usage {
+            told(&swirl, more, 2);
+        }
+        if !matches!(verb, "check" | "flow") {
+            of_a_search.iter().for_each(|more| told(&swirl, more, 2));
+        }
+        if matches!(verb, "map" | "sweep") {
+            points.iter().for_each(|more| told(&swirl, more, 2));
+        }
+        for more in network_is_wrong {
+            // A map and a sweep say so of the network as it stands too.
+            told(&swirl, more, 1);
+        }
+        told(Path::new("nowhere.toml"), &[], 1);
+        // The file is wrong as well: that comes first.
+        told(Path::new("nowhere.toml"), &["--set", "chamber.length"], 1);
+    }
+    for scale in [", = 0.8 to 1.2", "= 0.8 to 1.2", "*.delay, = 0.8 to 1.2"] {
+        let ran = run("sweep", &swirl, &["--scale", scale]);
+        assert_eq!(ran.code, Some(2));
+        assert!(ran.stderr.contains("name is missing"), "{}", ran.stderr);
+    }
+}
+
 #[test]
 fn wrong_axes_are_wrong_usage_and_say_what_would_be_right() {
     let cases = [
@@ -185,18 +246,21 @@ fn a_full_standard_output_is_a_failure() {
         .write(true)
         .open("/dev/full")
         .unwrap();
-    let output = binary()
-        .arg("flow")
-        .arg(network("swirl_rig"))
-        .stdout(full)
-        .output()
-        .unwrap();
-    assert_eq!(output.status.code(), Some(1));
-    assert!(
-        String::from_utf8(output.stderr)
-            .unwrap()
-            .contains("annot be written")
-    );
+    for more in [&[][..], &["--json"]] {
+        let output = binary()
+            .arg("flow")
+            .arg(network("swirl_rig"))
+            .args(more)
+            .stdout(full.try_clone().unwrap())
+            .output()
+            .unwrap();
+        assert_eq!(output.status.code(), Some(1));
+        let told = String::from_utf8(output.stderr).unwrap();
+        assert!(
+            told.contains("annot be written") && told.contains("Hint: "),
+            "{told}"
+        );
+    }
 }
 
 #[cfg(unix)]

@@ -8,6 +8,13 @@ use serde_json::Value;
 
 const DELAY: &str = "main_flame.delay = 1 ms to 8 ms";
 
+/// A run whose files go into a folder that is thrown away.
+fn in_scratch(verb: &str, name: &str, more: &[&str]) -> cli::Ran {
+    let folder = tempfile::tempdir().unwrap();
+    let out = ["--out", folder.path().to_str().unwrap()];
+    run(verb, &network(name), &[&out, more].concat())
+}
+
 fn f(value: &Value, field: &str) -> f64 {
     value[field]
         .as_f64()
@@ -355,4 +362,125 @@ fn a_path_that_cannot_be_gone_is_wrong_usage_and_says_what_would_be_right() {
         &["--vary", DELAY, "--points", "1"],
     );
     assert_eq!(ran.code, Some(2));
+}
+
+#[test]
+fn one_step_is_told_as_one() {
+    for more in [&[][..], &["--log"]] {
+        let all = [&["--vary", DELAY, "--points", "2"], more].concat();
+        let ran = in_scratch("sweep", "swirl_rig", &all);
+        assert!(
+            ran.stdout.contains("from 1 ms to 8 ms in 1 step\n"),
+            "{}",
+            ran.stdout
+        );
+    }
+}
+
+#[test]
+fn the_headline_and_the_design_line_name_the_band() {
+    for frequency in ["20 to 500 Hz", "20 to 25 Hz"] {
+        let all = ["--vary", DELAY, "--points", "9", "--frequency", frequency];
+        let ran = in_scratch("sweep", "swirl_rig", &all);
+        let mut lines = ran.stdout.lines();
+        assert!(lines.nth(3).unwrap().contains(frequency), "{}", ran.stdout);
+        let design = lines.find(|l| l.starts_with("Design point")).unwrap();
+        assert!(design.contains(frequency), "{design}");
+    }
+}
+
+/// A terminal and a script read one minus sign, and no zero has any.
+#[test]
+fn numbers_in_words_have_one_minus_sign() {
+    let neutral = ["--set", "main_flame.interaction_index = 0"];
+    let mut minus = 0;
+    for name in NETWORKS {
+        for (verb, more) in [
+            ("check", vec![]),
+            ("flow", vec![]),
+            ("modes", vec!["--shapes", "--explain"]),
+            ("modes", [&["--shapes", "--explain"], &neutral[..]].concat()),
+            (
+                "sweep",
+                vec![
+                    "--scale",
+                    "*.interaction_index = 0.01 to 1",
+                    "--points",
+                    "5",
+                ],
+            ),
+        ] {
+            // The flame of this network answers by numbered responses.
+            if name == "staged_flame" && more.contains(&"--set") {
+                continue;
+            }
+            let people = in_scratch(verb, name, &more);
+            let all = [&["--json"], &more[..]].concat();
+            let scripts = run(verb, &network(name), &all);
+            for text in [&people.stdout, &people.stderr, &scripts.stdout] {
+                assert!(!text.contains('\u{2212}'), "{verb} {name}: {text}");
+            }
+            for word in people.stdout.split([' ', '\n', ',', ';', '(']) {
+                if let Ok(number) = word.parse::<f64>() {
+                    assert!(
+                        number != 0.0 || !word.starts_with('-'),
+                        "{verb} {name}: {word}"
+                    );
+                    minus += usize::from(number < 0.0);
+                }
+            }
+        }
+    }
+    assert!(minus > 100, "{minus}");
+}
+
+#[test]
+fn a_window_and_its_doubts_are_told_in_few_digits() {
+    let swirl = network("swirl_rig");
+    let narrow = run("modes", &swirl, &["--frequency", "300 to 300.000000001 Hz"]);
+    assert!(
+        narrow.stdout.contains("300 to 300.000000001 Hz"),
+        "{}",
+        narrow.stdout
+    );
+    for set in [
+        "feed.temperature = 1e300 K",
+        "main_flame.burnt_temperature = 1e300 K",
+        "feed.pressure = 1e300 Pa",
+    ] {
+        for name in ["swirl_rig", "flame_in_tube"] {
+            for verb in ["check", "flow", "modes"] {
+                let ran = run(verb, &network(name), &["--set", set]);
+                for text in [&ran.stdout, &ran.stderr] {
+                    let longest = text
+                        .split(|c: char| !c.is_ascii_digit())
+                        .map(str::len)
+                        .max();
+                    assert!(longest < Some(20), "{verb} {name} {set}: {text}");
+                }
+            }
+        }
+    }
+    // Without a window of its own, in a gas far beyond its data.
+    let folder = tempfile::tempdir().unwrap();
+    let path = folder.path().join("hot.toml");
+    let tube = "title = \"Hot tube (invented)\"\n[feed]\ngas = \"air\"\nmass_flow = \"0 kg/s\"\n\
+                temperature = \"1e300 K\"\npressure = \"1 bar\"\nend = \"closed\"\n[[element]]\nname = \"tube\"\n\
+                kind = \"duct\"\nlength = \"1 m\"\ndiameter = \"60 mm\"\n[exit]\nend = \"open\"\n";
+    std::fs::write(&path, tube).unwrap();
+    for verb in ["check", "flow", "modes"] {
+        let ran = run(verb, &path, &[]);
+        let longest = ran
+            .stdout
+            .split(|c: char| !c.is_ascii_digit())
+            .map(str::len)
+            .max();
+        assert!(longest < Some(20), "{}", ran.stdout);
+    }
+    let (value, _) = json("check", &path, &[]);
+    assert_eq!(value["window"]["frequency_hz"][1], 1e5);
+    // Far beyond what can be counted: said, and no list is called complete.
+    let huge = run("modes", &swirl, &["--growth", "-1e5 to 1e5 1/s"]);
+    assert_eq!(huge.code, Some(1));
+    assert!(huge.stdout.contains("NOT PROVED COMPLETE") && huge.stdout.contains("Hint: "));
 }

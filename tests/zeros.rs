@@ -1,9 +1,10 @@
 //! Counting and finding on functions whose zeros are known exactly, and the ways a certificate must
 //! fail.
 
-mod common;
+#[path = "common/exact.rs"]
+mod exact;
 
-use common::exact::{self, Polynomial};
+use exact::Polynomial;
 use num_complex::Complex64;
 use proptest::prelude::*;
 use stillflame::numerics::analytic::{Analytic, Region, Rounding, TAYLOR};

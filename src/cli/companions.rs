@@ -5,7 +5,10 @@ use std::io;
 
 use clap::{Args, CommandFactory, Subcommand};
 use clap_complete::Shell;
-use clap_mangen::Man;
+use clap_mangen::{
+    Man,
+    roff::{Roff, roman},
+};
 
 use super::Cli;
 use crate::problems::Problem;
@@ -67,8 +70,56 @@ impl Manual {
                 super::Failure::usage([problem.hint(format!("name one of {}", verbs.join(", ")))])
             })?,
         };
+        let man = Man::new(asked.clone());
         let mut page = Vec::new();
-        Man::new(asked.clone()).render(&mut page)?;
+        man.render_title(&mut page)?;
+        man.render_name_section(&mut page)?;
+        man.render_synopsis_section(&mut page)?;
+        man.render_description_section(&mut page)?;
+        man.render_options_section(&mut page)?;
+        if asked.has_subcommands() {
+            man.render_subcommands_section(&mut page)?;
+        }
+        let after = asked.get_after_help().map(ToString::to_string);
+        sections(&after.unwrap_or_default()).to_writer(&mut page)?;
+        if asked.get_version().is_some() {
+            man.render_version_section(&mut page)?;
+        }
         Ok(page)
     }
+}
+
+/// What stands behind the options in a help: a paragraph under a heading of its own becomes a section,
+/// its lines kept as they are; others are notes.
+fn sections(help: &str) -> Roff {
+    let mut roff = Roff::new();
+    let mut noted = false;
+    for paragraph in help.split("\n\n").filter(|p| !p.trim().is_empty()) {
+        let listed = paragraph
+            .split_once('\n')
+            .filter(|(_, lines)| lines.lines().all(|l| l.starts_with("  ")))
+            .and_then(|(head, lines)| Some((head.strip_suffix(':')?, lines)));
+        let Some((head, lines)) = listed else {
+            if !noted {
+                roff.control("SH", ["NOTES"]);
+                noted = true;
+            }
+            roff.control("PP", []);
+            roff.text([roman(paragraph.replace('\n', " "))]);
+            continue;
+        };
+        noted = false;
+        let heading = match head {
+            "Example" => "EXAMPLES".to_owned(),
+            "Exit codes" => "EXIT STATUS".to_owned(),
+            other => other.to_uppercase(),
+        };
+        roff.control("SH", [heading.as_str()]);
+        roff.control("nf", []);
+        for line in lines.lines() {
+            roff.text([roman(line.strip_prefix("  ").unwrap_or(line))]);
+        }
+        roff.control("fi", []);
+    }
+    roff
 }

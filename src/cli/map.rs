@@ -7,7 +7,7 @@ use clap::Args;
 use super::options::{Case, Common, WindowArguments};
 use super::plane::{self, Points};
 use super::{Answer, Failure, Status, progress};
-use crate::modes::{self, ModeList, Scan, validity};
+use crate::modes::{self, Mode, ModeList, Scan, validity};
 use crate::network::Network;
 use crate::problems::Problem;
 use crate::report::map::{Followed, MapReport};
@@ -42,6 +42,9 @@ pub(super) struct Arguments {
 
     /// Follow one mode over the map instead of the largest growth rate: the one of that number in
     /// the list of `stillflame modes`
+    ///
+    /// From the design point it is followed first along the number across, then along the number up. Where two
+    /// modes meet they change places for who goes around: from there a cut is drawn.
     #[arg(long, value_name = "NUMBER")]
     mode: Option<usize>,
 
@@ -58,9 +61,9 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
     let window = case.window(&solved.mean)?;
     let design = modes::find(&solved, window, Scan::Whole);
     let design_outside = modes::outside(&solved, window);
-    let followed = match arguments.mode {
+    let chosen = match arguments.mode {
         None => None,
-        Some(number) => Some(chosen(network, (across, up), &design, number)?),
+        Some(number) => Some((number, chosen(network, (across, up), &design, number)?)),
     };
 
     let bar = progress::bar(across.points * up.points);
@@ -73,7 +76,7 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
         &solved.mean,
         (across, up),
         window,
-        followed.is_some(),
+        chosen.is_some(),
         watch,
     );
     bar.finish_and_clear();
@@ -84,14 +87,19 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
         )]));
     };
 
-    let map = match (&followed, &map.lists) {
-        (Some(one), Some(lists)) => {
-            let design = (network.values[across.knob], network.values[up.knob]);
-            let modes = branch::follow(&map, lists, design, &one.mode);
-            map.of_one(modes)
-        }
-        _ => map,
+    let over = match (&chosen, &map.lists) {
+        (Some((_, mode)), Some(lists)) => branch::follow(network, &solved.mean, &map, lists, mode),
+        _ => branch::Followed::default(),
     };
+    let map = match chosen {
+        Some(_) => map.of_one(&over.modes),
+        None => map,
+    };
+    let followed = chosen.map(|(number, mode)| Followed {
+        number,
+        mode,
+        over: &over,
+    });
 
     let mut more = solved.mean.warnings.clone();
     more.extend(validity::of_window(network, &solved.mean, &window));
@@ -143,29 +151,26 @@ fn chosen(
     (across, up): (map::Axis, map::Axis),
     design: &ModeList,
     number: usize,
-) -> Result<Followed, Failure> {
+) -> Result<Mode, Failure> {
     for axis in [across, up] {
         let knob = network.layout.knobs.get(axis.knob.0);
         if let (false, Some(knob)) = (axis.holds(network.values[axis.knob]), knob) {
             let what =
                 "it lies outside the map, so that no mode of the network can be followed over it";
             let hint = "widen the axis to hold the value of the file, or move it by --set";
-            return Err(Failure::input(
+            return Err(Failure::usage(
                 [Problem::error(&knob.name, what).hint(hint)],
             ));
         }
     }
     let mode = number.checked_sub(1).and_then(|i| design.modes.get(i));
-    let Some(mode) = mode else {
-        let what = format!(
-            "there is no mode {number}: the list has {}",
-            design.modes.len()
-        );
-        let hint = "`stillflame modes` numbers them";
-        return Err(Failure::input([Problem::error("map", what).hint(hint)]));
-    };
-    Ok(Followed {
-        number,
-        mode: *mode,
+    mode.copied().ok_or_else(|| {
+        let what = match design.modes.len() {
+            0 => format!("there is no mode {number}: the network has none in the window"),
+            1 => format!("there is no mode {number}: the network has 1 mode in the window"),
+            n => format!("there is no mode {number}: the network has {n} modes in the window"),
+        };
+        let hint = "`stillflame modes` numbers them, from 1";
+        Failure::usage([Problem::error("--mode", what).hint(hint)])
     })
 }

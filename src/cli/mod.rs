@@ -16,12 +16,15 @@ mod path;
 mod plane;
 mod progress;
 mod sweep;
+mod usage;
 
+use std::ffi::OsString;
 use std::process::ExitCode;
 
 use clap::{Parser, Subcommand};
 
-use crate::problems::Problem;
+use crate::input::OVERRIDE;
+use crate::problems::{Problem, Severity};
 use crate::report::{document, problems};
 use companions::Companion;
 use options::{Case, Common};
@@ -51,7 +54,7 @@ const AFTER_HELP: &str = "\
 Exit codes:
   0    done
   1    the network has problems, the computation failed, or a mode list is not proved complete
-  2    wrong usage
+  2    wrong usage: an option, or a name or value given with one, is mistaken
   3    with --fail-on-growth, some mode grows
   130  interrupted
 
@@ -115,6 +118,16 @@ impl Failure {
         }
     }
 
+    /// A network could not be read: the command line is at fault where every error stands in it.
+    fn of_reading(problems: Vec<Problem>) -> Self {
+        let mut errors = problems.iter().filter(|p| p.severity == Severity::Error);
+        let in_option = |p: &Problem| p.place.as_ref().is_some_and(|p| p.source == OVERRIDE);
+        match errors.all(in_option) {
+            true => Failure::usage(problems),
+            false => Failure::input(problems),
+        }
+    }
+
     /// The command line is at fault.
     fn usage(problems: impl Into<Vec<Problem>>) -> Self {
         Failure {
@@ -159,6 +172,15 @@ impl Verb {
             Verb::Sweep(a) => sweep::answer(a, case),
             Verb::Map(a) => map::answer(a, case),
         }
+    }
+}
+
+/// Parses the command line, the program's name first, does what it asks for, and gives the exit code.
+pub fn main(arguments: impl IntoIterator<Item = OsString>) -> ExitCode {
+    let arguments: Vec<OsString> = arguments.into_iter().collect();
+    match Cli::try_parse_from(&arguments) {
+        Ok(cli) => run(&cli).into(),
+        Err(refused) => usage::refuse(&refused, &arguments),
     }
 }
 
@@ -219,10 +241,8 @@ fn attempt(verb: &Verb) -> Result<Status, Failure> {
         }
     }
     output::print(&text).map_err(|e| {
-        Failure::input([Problem::error(
-            "standard output",
-            format!("cannot be written: {e}"),
-        )])
+        let problem = Problem::error("standard output", format!("cannot be written: {e}"));
+        Failure::input([problem.hint("send it to a place with room that may be written to")])
     })?;
     Ok(answer.status)
 }

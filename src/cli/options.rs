@@ -91,7 +91,7 @@ impl Case {
     /// Reads the network.
     pub fn load(common: &Common) -> Result<Case, Failure> {
         let loaded = input::read(&common.network, &common.overrides)
-            .map_err(|Problems(problems)| Failure::input(problems))?;
+            .map_err(|Problems(problems)| Failure::of_reading(problems))?;
         let stem = common.network.file_stem().unwrap_or_default();
         Ok(Case {
             path: common.network.display().to_string(),

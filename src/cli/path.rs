@@ -160,6 +160,12 @@ fn twice(network: &Network, written: Written<'_>, knob: KnobId) -> Box<Problem> 
 
 /// The knobs of a name in which `*` stands for anything.
 fn named(network: &Network, written: Written<'_>, name: &str) -> Result<Vec<KnobId>, Box<Problem>> {
+    if name.is_empty() {
+        let problem = Problem::error(written.flag, "a name is missing before the `=`").hint(
+            "write NAMES = A to B, as in *.delay = 0.8 to 1.2, and one comma between two names",
+        );
+        return Err(written.mark(problem, written.text));
+    }
     if !name.contains('*') {
         return Ok(vec![written.knob(&network.layout, name)?]);
     }

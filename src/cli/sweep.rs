@@ -35,8 +35,8 @@ pub(super) struct Arguments {
     #[arg(long, value_name = "NAME = A to B", allow_hyphen_values = true)]
     vary: Vec<String>,
 
-    /// Numbers that take one factor on their values, as in "*.delay = 0.8 to 1.2" or "pilot.delay,
-    /// main_flame.delay = 0.8 to 1.2"; `*` stands for anything
+    /// Numbers that take one factor on their values, as in "*.delay = 0.8 to 1.2" or "supply.length,
+    /// chamber.length = 0.8 to 1.2"; `*` stands for anything
     #[arg(long, value_name = "NAMES = A to B", allow_hyphen_values = true)]
     scale: Vec<String>,
 

@@ -13,7 +13,7 @@ pub type Line = Vec<(f64, f64)>;
 /// Lines of `field` at `level`.
 ///
 /// Each cell is divided into `fine` by `fine` parts along the field's own interpolation. A cell
-/// with an absent corner has no lines, nor has one for which `skip(column, row)` holds.
+/// with an absent corner has no lines, nor has one that a seam passes or for which `skip(column, row)` holds.
 pub fn lines(
     field: &Field,
     level: f64,
@@ -85,6 +85,11 @@ impl Links {
                 field.at(i as f64 / f, j as f64 / f)
             }
         };
+        let ends = |k: usize| (k as f64 / f, (k + 1) as f64 / f);
+        let (v0, v1) = ends(j);
+        if field.parted(ends(i), [v0, v1]) {
+            return;
+        }
         let corners = (
             value(i, j),
             value(i + 1, j),
@@ -96,18 +101,24 @@ impl Links {
         };
         let along_y = self.nx * self.ny;
         let (x, y) = (i as f64, j as f64);
-        let cut = |p: f64, q: f64| (level - p) / (q - p);
+        // Where a sample stands for its half, the field steps in the middle.
+        let halves = field.halves();
+        let along = |half: bool, p: f64, q: f64| if half { 0.5 } else { (level - p) / (q - p) };
+        let (cut_x, cut_y) = (
+            |p: f64, q: f64| along(halves.0, p, q),
+            |p: f64, q: f64| along(halves.1, p, q),
+        );
         // Edges in order around the cell: bottom, right, top, left.
         let edges = [
-            (a, b, j * self.nx + i, (x + cut(a, b), y)),
+            (a, b, j * self.nx + i, (x + cut_x(a, b), y)),
             (
                 b,
                 c,
                 along_y + j * self.nx + i + 1,
-                (x + 1.0, y + cut(b, c)),
+                (x + 1.0, y + cut_y(b, c)),
             ),
-            (d, c, (j + 1) * self.nx + i, (x + cut(d, c), y + 1.0)),
-            (a, d, along_y + j * self.nx + i, (x, y + cut(a, d))),
+            (d, c, (j + 1) * self.nx + i, (x + cut_x(d, c), y + 1.0)),
+            (a, d, along_y + j * self.nx + i, (x, y + cut_y(a, d))),
         ];
         let crossed: Vec<(usize, (f64, f64))> = edges
             .into_iter()

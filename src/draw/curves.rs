@@ -35,6 +35,10 @@ impl Curves {
         let cell = (sheet.plot.width() / (field.columns.max(2) - 1) as f64)
             .max(sheet.plot.height() / (field.height().max(2) - 1) as f64);
         let fine = (cell / CELL).ceil().clamp(1.0, 64.0) as usize;
+        let halves = field.halves();
+        // Between two samples there is a step, in the middle of a part; lines would bundle there.
+        let steps = halves.0 || halves.1;
+        let fine = if steps { fine | 1 } else { fine };
         let trace = |field: &Field, level: f64, skip: &dyn Fn(usize, usize) -> bool| {
             lines(field, level, fine, skip)
                 .iter()
@@ -43,7 +47,7 @@ impl Curves {
         };
         let neutral = trace(field, 0.0, &|_, _| false);
         let mut thin = Vec::new();
-        for level in limit.levels().into_iter().filter(|&l| l != 0.0) {
+        for level in limit.levels().into_iter().filter(|&l| l != 0.0 && !steps) {
             let lines = trace(field, level, &|_, _| false);
             thin.push(Level {
                 text: signed(level, limit.step),
@@ -52,9 +56,9 @@ impl Curves {
                 lines,
             });
         }
-        if let Some(second) = &map.frequency {
+        if let Some(second) = map.frequency.as_ref().filter(|_| !steps) {
             let unit = &second.unit;
-            let second = Field::new(&second.values);
+            let second = Field::new(&second.values).cut(&map.cuts.seams);
             let (levels, jump) = second_levels(&second);
             let texts = tick_labels(&levels);
             for (&level, text) in levels.iter().zip(texts) {

@@ -5,7 +5,11 @@
 //! held to three times the smaller, and 0 at an extremum (the monotonicity condition of Fritsch and
 //! Carlson, 1980). The surface is exact at the samples, continuous across cells, and within a cell
 //! stays in the range of its corners, so it shows no sign that none of them has. Positions are in
-//! samples: (0, 0) is row 0, column 0.
+//! samples: (0, 0) is row 0, column 0. A field may be cut along seams between two
+//! columns; beside one it is continued straight from its own side. Two samples say nothing of what lies between
+//! them: along an axis of two, each stands for its half.
+
+use super::cut::Seam;
 
 /// Rows of samples, `None` where there is no value.
 pub type Rows = [Vec<Option<f64>>];
@@ -14,6 +18,7 @@ pub type Rows = [Vec<Option<f64>>];
 #[derive(Debug, Clone, Copy)]
 pub struct Field<'a> {
     rows: &'a Rows,
+    seams: &'a [Seam],
     /// Number of columns.
     pub columns: usize,
 }
@@ -23,8 +28,38 @@ impl<'a> Field<'a> {
     pub fn new(rows: &'a Rows) -> Self {
         Field {
             rows,
+            seams: &[],
             columns: rows.first().map_or(0, Vec::len),
         }
+    }
+
+    /// Whether each sample stands for its half of the axis, along rows and along columns.
+    pub fn halves(&self) -> (bool, bool) {
+        let whole = self.seams.is_empty();
+        (whole && self.columns == 2, whole && self.height() == 2)
+    }
+
+    /// The same field cut along seams: beside one a value comes from its own side alone.
+    #[must_use]
+    pub fn cut(mut self, seams: &'a [Seam]) -> Self {
+        self.seams = seams;
+        self
+    }
+
+    /// The seams between a column and the next that touch the rows of a cell.
+    fn seams(&self, column: usize, row: usize) -> impl Iterator<Item = &'a Seam> {
+        let (low, high) = (row as f64, row as f64 + 1.0);
+        let touches = move |s: &&Seam| s.column == column && s.from.1 < high && s.to.1 > low;
+        self.seams.iter().filter(touches)
+    }
+
+    /// Whether a seam passes between two column positions at one of two row positions.
+    pub fn parted(&self, (u0, u1): (f64, f64), v: [f64; 2]) -> bool {
+        let passes = |s: &Seam| {
+            let between = |v| s.at(v).is_some_and(|u| u0 < u && u <= u1);
+            v.into_iter().any(between)
+        };
+        self.seams.iter().any(passes)
     }
 
     /// Number of rows.
@@ -58,6 +93,9 @@ impl<'a> Field<'a> {
     /// Value at column position `u` and row position `v`. Next to an absent sample the nearest
     /// sample decides whether there is a value, and the known corners give it.
     pub fn at(&self, u: f64, v: f64) -> Option<f64> {
+        let own = |x: f64, half| if half { x.round() } else { x };
+        let halves = self.halves();
+        let (u, v) = (own(u, halves.0), own(v, halves.1));
         let (column, s) = split(u, self.columns);
         let (row, t) = split(v, self.height());
         if self.columns < 2 || self.height() < 2 {
@@ -66,11 +104,19 @@ impl<'a> Field<'a> {
         if self.corners(column, row).is_none() {
             return self.beside_hole(column, s, row, t);
         }
+        if self.seams(column, row).next().is_some() {
+            return self.beside_seam(column, s, row, v);
+        }
         let line = |r: usize| -> [f64; 4] {
             let p1 = self.sample(column, r);
             let p2 = self.sample(column + 1, r);
-            let p0 = column.checked_sub(1).and_then(|c| self.sample(c, r));
-            complete([p0, p1, p2, self.sample(column + 2, r)])
+            // What lies beyond a seam beside the cell says nothing of slopes here.
+            let whole = |c: &usize| self.seams(*c, row).next().is_none();
+            let before = column.checked_sub(1).filter(whole);
+            let after = Some(column + 1).filter(whole);
+            let p0 = before.and_then(|c| self.sample(c, r));
+            let p3 = after.and_then(|c| self.sample(c + 1, r));
+            complete([p0, p1, p2, p3])
         };
         let known =
             |r: usize| self.sample(column, r).is_some() && self.sample(column + 1, r).is_some();
@@ -96,6 +142,35 @@ impl<'a> Field<'a> {
                 }
             }
         }
+    }
+
+    /// In a cell that a seam touches, whose corners are known: along each column the field goes on; where the seam
+    /// passes, it is continued straight from the columns on the same side.
+    fn beside_seam(&self, column: usize, s: f64, row: usize, v: f64) -> Option<f64> {
+        let t = v - row as f64;
+        let along = |c: usize| {
+            let below = row.checked_sub(1).and_then(|r| self.sample(c, r));
+            let above = self.sample(c, row + 2);
+            let own = [self.sample(c, row)?, self.sample(c, row + 1)?];
+            Some(cubic(
+                complete([below, Some(own[0]), Some(own[1]), above]),
+                t,
+            ))
+        };
+        let (left, right) = (along(column)?, along(column + 1)?);
+        let Some(u) = self.seams(column, row).find_map(|seam| seam.at(v)) else {
+            return Some(left + s * (right - left));
+        };
+        // The cell on the far side of a column, where no other seam parts it.
+        let whole = |c: &usize| self.seams(*c, row).next().is_none();
+        let (value, beyond, away) = if column as f64 + s < u {
+            let cell = column.checked_sub(1).filter(whole);
+            (left, cell.and_then(along), s)
+        } else {
+            let cell = Some(column + 1).filter(whole);
+            (right, cell.and_then(|c| along(c + 1)), 1.0 - s)
+        };
+        Some(value + away * beyond.map_or(0.0, |b| value - b))
     }
 
     fn beside_hole(&self, column: usize, s: f64, row: usize, t: f64) -> Option<f64> {

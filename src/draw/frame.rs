@@ -16,23 +16,25 @@ const LEGEND_SIZE: f64 = 10.5;
 const FOOTNOTE_SIZE: f64 = 9.0;
 const TICK: f64 = 4.0;
 
+/// Longest line of running text: a viewer that reads no embedded fonts may take a wider one.
+const LINE: f64 = 0.9 * WIDTH;
+
 /// Draws title and subtitle from the top; gives the y where the rest may start.
 pub(super) fn header(svg: &mut Svg, title: &str, subtitle: &str) -> f64 {
-    let room = WIDTH - 2.0 * MARGIN;
     let (title, subtitle) = (tidy(title), tidy(subtitle));
     let mut y = MARGIN;
     // A title that needs more than two lines is set smaller before any of it is cut.
-    let size = if wrap(&title, Weight::Semibold, 15.0, room, 3).len() <= 2 {
+    let size = if wrap(&title, Weight::Semibold, 15.0, LINE, 3).len() <= 2 {
         15.0
     } else {
         13.0
     };
-    for line in wrap(&title, Weight::Semibold, size, room, 3) {
+    for line in wrap(&title, Weight::Semibold, size, LINE, 3) {
         y += size;
         svg.text(&Text::new((MARGIN, y), &line, size).weight(Weight::Semibold));
         y += 0.3 * size;
     }
-    for line in wrap(&subtitle, Weight::Regular, 11.0, room, 2) {
+    for line in wrap(&subtitle, Weight::Regular, 11.0, LINE, 3) {
         y += 13.0;
         svg.text(&Text::new((MARGIN, y), &line, 11.0).fill(GREY));
         y += 2.0;
@@ -198,13 +200,7 @@ pub(super) fn marker(svg: &mut Svg, (x, y): (f64, f64)) {
 /// Small print at the foot; gives the height of the canvas.
 pub(super) fn footnote(svg: &mut Svg, text: &str, top: f64) -> f64 {
     let mut y = top + 4.0;
-    for line in wrap(
-        &tidy(text),
-        Weight::Regular,
-        FOOTNOTE_SIZE,
-        WIDTH - 2.0 * MARGIN,
-        5,
-    ) {
+    for line in wrap(&tidy(text), Weight::Regular, FOOTNOTE_SIZE, LINE, 6) {
         y += FOOTNOTE_SIZE + 3.0;
         svg.text(&Text::new((MARGIN, y), &line, FOOTNOTE_SIZE).fill(GREY));
     }

@@ -6,7 +6,7 @@ use super::colour::{diverging, hex};
 use super::contour::simplify;
 use super::frame::{self, Entry, MARGIN, Swatch, WIDTH};
 use super::mark::{Mark, Spot};
-use super::sheet::{corner, ends};
+use super::sheet::ends;
 use super::style::{CROWD, crowd, curve_colour, curve_style, hatch_style, patterns};
 use super::svg::{Anchor, GREY, INK, Point, Rect, Svg, Text, open_path, px};
 use super::tags::{self, Tagged};
@@ -282,8 +282,10 @@ fn doubtful(svg: &mut Svg, figure: &LineFigure, r: Rect, x: &Span) {
         match (certified, start) {
             (false, None) => start = Some(i),
             (true, Some(first)) => {
-                let left = corner(&nodes, first, r.left, r.right);
-                let right = corner(&nodes, i, r.left, r.right);
+                // From the last trusted sample to the next: between, nothing is known either.
+                let before = first.checked_sub(1).and_then(|k| nodes.get(k));
+                let left = before.map_or(r.left, |x| *x);
+                let right = nodes.get(i).map_or(r.right, |x| *x);
                 let middle = ((left + right) / 2.0).clamp(r.left + 2.0, r.right - 2.0);
                 let (left, right) = (left.min(middle - 2.0), right.max(middle + 2.0));
                 data += &Rect { left, right, ..r }.path();

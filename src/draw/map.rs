@@ -4,13 +4,16 @@ use super::axis::{Axis, Span, caption, check_samples};
 use super::bar;
 use super::colour::{Limit, palette};
 use super::curves::Curves;
+use super::cut::Cuts;
 use super::field::{Field, Rows};
 use super::frame::{self, Entry, MARGIN, Swatch, WIDTH};
 use super::label::beside;
+use super::mark::Mark;
 use super::patches::{self, Patches};
 use super::sheet::{Sheet, ends, index_of};
 use super::style::{
-    NEUTRAL_HALO, absent_style, hatch_style, neutral_style, patch_style, patterns, second_style,
+    CUT_CORE, NEUTRAL_HALO, absent_style, cut_style, hatch_style, neutral_style, patch_style,
+    patterns, second_style,
 };
 use super::svg::{Point, Rect, Svg, Text, px};
 use super::text::{Weight, fit, tidy, width};
@@ -99,6 +102,8 @@ pub struct StabilityMap {
     pub frequency: Option<IsoLines>,
     /// Optional patches of samples that belong together.
     pub patches: Option<Patches>,
+    /// Lines across which both fields do not go on.
+    pub cuts: Cuts,
     /// Optional marked point.
     pub design_point: Option<DesignPoint>,
     /// Legend texts.
@@ -115,7 +120,7 @@ const OVERSAMPLING: f64 = 1.5;
 pub fn render(map: &StabilityMap) -> Result<String, DrawError> {
     check(map)?;
     let map = &spread_single(map);
-    let field = Field::new(&map.values);
+    let field = Field::new(&map.values).cut(&map.cuts.seams);
     let limit = Limit::covering(map.values.iter().flatten().flatten().copied());
     let mut svg = Svg::default();
     patterns(&mut svg);
@@ -165,14 +170,19 @@ pub fn render(map: &StabilityMap) -> Result<String, DrawError> {
         let (i, j) = sheet.nearest(p);
         is_plain(i, j)
     };
+    // A border through the cells does not fit samples that stand for their halves.
+    let halves = field.halves();
     let parted = map
         .patches
         .as_ref()
+        .filter(|_| !halves.0 && !halves.1)
         .is_some_and(|patches| patches.draw_borders(&mut svg, &sheet));
     let labels = curves.draw_thin(&mut svg, plot, &mut taken, plain);
     svg.path(&doubtful, "fill=\"#fff\" fill-opacity=\".4\"");
     svg.path(&doubtful, &hatch_style());
+    map.cuts.draw(&mut svg, &sheet);
     curves.draw_neutral(&mut svg);
+    map.cuts.draw_points(&mut svg, &sheet);
     for label in &labels {
         label.draw(&mut svg);
     }
@@ -250,6 +260,17 @@ fn check(map: &StabilityMap) -> Result<(), DrawError> {
     if let Some(frequency) = &map.frequency {
         check_shape("frequency", &frequency.values, nx, ny)?;
         check_finite("frequency", &frequency.values)?;
+    }
+    let seams = map.cuts.seams.iter().flat_map(|s| [s.from, s.to]);
+    for (k, (u, v)) in seams.chain(map.cuts.points.iter().copied()).enumerate() {
+        if let Some(value) = [u, v].into_iter().find(|x| !x.is_finite()) {
+            return Err(DrawError::NotFinite {
+                what: "cuts",
+                row: k,
+                column: 0,
+                value,
+            });
+        }
     }
     if let Some(patches) = &map.patches {
         check_shape("patches", &patches.index, nx, ny)?;
@@ -382,6 +403,13 @@ fn legend_entries(
     }
     if let (Some(patches), true) = (&map.patches, parted) {
         add(Swatch::Line(vec![patch_style()]), &patches.caption);
+    }
+    if !map.cuts.seams.is_empty() {
+        let look = vec![cut_style(), CUT_CORE.into()];
+        add(Swatch::Line(look), &map.cuts.caption);
+    }
+    if !map.cuts.points.is_empty() {
+        add(Swatch::Mark(Mark::Diamond), &map.cuts.point_caption);
     }
     if doubtful {
         add(Swatch::Patch(vec![hatch_style()]), &map.words.uncertified);

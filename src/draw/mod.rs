@@ -13,6 +13,7 @@
 //!   chain, names        passages drawn to scale, names with leaders
 //!   contributions       bars of the parts of a sum
 //!   field               interpolation that adds no extrema
+//!   cut                 lines across which a field does not go on
 //!   axis, colour        value to position, value to colour
 //!   svg, text           elements and escaping, glyph widths
 //! ```
@@ -24,6 +25,7 @@ pub mod colour;
 pub mod contour;
 pub mod contributions;
 mod curves;
+pub mod cut;
 pub mod field;
 mod frame;
 mod label;
@@ -48,6 +50,7 @@ pub mod text;
 pub use axis::{Axis, Scale};
 pub use chain::{Chain, ChainEnd, EndSymbol, Passage, Plane, Symbol};
 pub use contributions::{Contribution, Contributions};
+pub use cut::{Cuts, Seam};
 pub use lines::{LineFigure, Panel, Series, Shade};
 pub use locus::{Locus, Trail};
 pub use map::{DesignPoint, IsoLines, Quantity, StabilityMap, Words};

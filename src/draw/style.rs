@@ -30,6 +30,13 @@ pub(super) fn second_style() -> String {
     )
 }
 
+/// A cut is a double line: ink with a white core.
+pub(super) fn cut_style() -> String {
+    format!("fill=\"none\" stroke=\"{INK}\" stroke-width=\"4.2\"")
+}
+
+pub(super) const CUT_CORE: &str = "fill=\"none\" stroke=\"#fff\" stroke-width=\"2\"";
+
 pub(super) fn patch_style() -> String {
     format!(
         "fill=\"none\" stroke=\"{INK}\" stroke-opacity=\".75\" stroke-width=\"1.1\" stroke-linecap=\"round\" \

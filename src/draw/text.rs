@@ -99,8 +99,9 @@ pub fn fit(text: &str, weight: Weight, size: f64, limit: f64) -> String {
     String::new()
 }
 
-/// `text` in at most `lines` lines of `limit` px: broken at blanks, inside a word only where the
-/// word alone is too long, the last line cut with an ellipsis where the rest does not fit.
+/// `text` in at most `lines` lines of `limit` px: broken at blanks, but not between a number and its
+/// unit or behind a sign, inside a word only where the word alone is too long; the last line is cut
+/// with an ellipsis where the rest does not fit.
 pub fn wrap(text: &str, weight: Weight, size: f64, limit: f64, lines: usize) -> Vec<String> {
     let mut out: Vec<String> = Vec::new();
     let mut rest = text.trim();
@@ -131,16 +132,32 @@ fn first_line(text: &str, weight: Weight, size: f64, limit: f64) -> (&str, &str)
         .match_indices(' ')
         .map(|(i, _)| i)
         .take_while(|&i| fits(i))
+        .filter(|&i| text.get(..i).is_some_and(may_end))
         .last();
     let inside = || {
         text.char_indices()
             .map(|(i, _)| i)
             .take_while(|&i| fits(i))
+            .filter(|&i| text.get(..i).is_some_and(|t| !t.ends_with('\u{2212}')))
             .last()
     };
     let cut = at_blank.filter(|&i| i > 0).or_else(inside).unwrap_or(0);
     let (head, tail) = text.split_at(cut);
     (head.trim_end(), tail.trim_start())
+}
+
+/// Whether a line may end here: not behind a sign, a number, whose unit or thing counted follows, or
+/// an open bracket of a unit.
+fn may_end(line: &str) -> bool {
+    let word = line.rsplit(' ').next().unwrap_or(line);
+    let digit = |c: char| c.is_ascii_digit() || "⁰¹²³⁴⁵⁶⁷⁸⁹".contains(c);
+    let part = |c: char| digit(c) || ".−+±-×⁻".contains(c);
+    let number = word.contains(digit) && word.chars().all(part);
+    let sign = matches!(word, "\u{2212}" | "-" | "+" | "±");
+    let open = word
+        .rfind("/(")
+        .is_some_and(|at| !word.get(at..).unwrap_or_default().contains(')'));
+    !(number || sign || open)
 }
 
 /// `value` with `decimals` decimals, a true minus sign, and no negative zero.

@@ -1,12 +1,10 @@
 //! Area changes: the smooth contraction and the sudden expansion.
 
-use super::Kind;
-use super::lowering::{self, Acting, Between, velocity_row};
+use super::lowering::{Acting, Between, Side};
 use super::port::Port;
 use crate::knobs::{KnobId, KnobSpec, Range, Values};
 use crate::numerics::dual::Real;
 use crate::units::Dimension;
-use crate::waves::primitive::Joint;
 
 /// A change to a smaller area in which stagnation pressure is kept.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -24,34 +22,17 @@ pub struct Expansion {
 
 impl Contraction {
     /// The slug moves with the downstream velocity.
-    pub fn lower<T: Real>(
-        &self,
-        kind: &Kind,
-        between: &Between<'_, T>,
-        values: &Values<T>,
-    ) -> Joint<T> {
-        let sense = velocity_row(between.down, T::from(1.0));
-        let slug = Acting::slug(
-            between,
-            values[self.effective_length],
-            sense,
-            between.plane + 1,
-        );
-        lowering::joint(kind, between, values, slug)
+    pub fn acting<T: Real>(&self, between: &Between<'_, T>, values: &Values<T>) -> Acting<T> {
+        let length = values[self.effective_length];
+        Acting::slug(between, length, Side::Outlet, T::from(1.0))
     }
 }
 
 impl Expansion {
     /// The slug moves with the upstream velocity.
-    pub fn lower<T: Real>(
-        &self,
-        kind: &Kind,
-        between: &Between<'_, T>,
-        values: &Values<T>,
-    ) -> Joint<T> {
-        let sense = velocity_row(between.up, T::from(1.0));
-        let slug = Acting::slug(between, values[self.effective_length], sense, between.plane);
-        lowering::joint(kind, between, values, slug)
+    pub fn acting<T: Real>(&self, between: &Between<'_, T>, values: &Values<T>) -> Acting<T> {
+        let length = values[self.effective_length];
+        Acting::slug(between, length, Side::Inlet, T::from(1.0))
     }
 }
 

@@ -1,14 +1,14 @@
 //! A compact flame between equal areas.
 
-use super::lowering::{self, Acting, Between, velocity_row};
+use super::lowering::{Acting, Between, velocity_row};
 use super::port::Port;
-use super::{GasChoice, Kind, Sensed};
+use super::{GasChoice, Sensed};
 use crate::flame::ResponseLaw;
 use crate::knobs::{KnobId, KnobSpec, Range, Values};
 use crate::numerics::dual::Real;
 use crate::units::Dimension;
 use crate::waves::law::Law;
-use crate::waves::primitive::{Joint, Term};
+use crate::waves::primitive::Term;
 
 /// A flame thin against every wavelength in the window.
 #[derive(Clone, Debug, PartialEq)]
@@ -32,13 +32,12 @@ impl Flame {
     /// ```
     ///
     /// which is `Q u'_ref/u_ref` with `Q = mdot (h_t2 - h_t1)`, and its limit in still gas.
-    pub fn lower<'a, T: Real>(
+    pub fn acting<'a, T: Real>(
         &self,
-        kind: &Kind,
         between: &Between<'a, T>,
         values: &Values<T>,
         sensed: &[Sensed<'a, T>],
-    ) -> Joint<T> {
+    ) -> Acting<T> {
         let zero = T::from(0.0);
         let up = between.up;
         let strength = match self.basis {
@@ -67,11 +66,10 @@ impl Flame {
                 at: at.plane,
             });
         }
-        let acting = Acting {
+        Acting {
             row: [zero, T::from(1.0), zero],
             terms,
-        };
-        lowering::joint(kind, between, values, acting)
+        }
     }
 }
 

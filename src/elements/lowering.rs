@@ -23,6 +23,15 @@ pub struct Between<'a, T> {
     pub plane: Plane,
 }
 
+/// One of the two stations of a compact element.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Side {
+    /// The one before it.
+    Inlet,
+    /// The one behind it.
+    Outlet,
+}
+
 /// Coefficients along `(p', u', eta)` of one station as coefficients of its waves.
 pub fn on_waves<T: Real>(state: &State<T>, along: [T; 3]) -> Row<T> {
     let impedance = state.density() * state.sound_speed();
@@ -54,12 +63,17 @@ impl<T: Real> Acting<T> {
         }
     }
 
-    /// The inertia of a slug of gas of effective length `length`:
-    /// `h_t1' - h_t2' = L s u'` and, in the third balance, `rho_1 L s u'`; `sense` reads `u'`.
-    pub fn slug(between: &Between<'_, T>, length: T, sense: Row<T>, at: Plane) -> Self {
+    /// The inertia of a slug of gas of effective length `length` that moves with `faster` times the
+    /// velocity of a station: `h_t1' - h_t2' = L s u'` and, in the third balance, `rho_1 L s u'`.
+    pub fn slug(between: &Between<'_, T>, length: T, side: Side, faster: T) -> Self {
         if length.is_exactly_zero() {
             return Self::nothing();
         }
+        let (state, at) = match side {
+            Side::Inlet => (between.up, between.plane),
+            Side::Outlet => (between.down, between.plane + 1),
+        };
+        let sense = velocity_row(state, faster);
         let zero = T::from(0.0);
         let law = Law::Polynomial {
             coefficients: [zero, length, zero],

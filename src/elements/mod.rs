@@ -91,15 +91,17 @@ impl Kind {
         values: &Values<T>,
         sensed: &[Sensed<'a, T>],
     ) -> Option<Step<T>> {
-        match self {
-            Kind::Feed(_) | Kind::Exit(_) => None,
-            Kind::Duct(duct) => Some(Step::Travel(duct.lower(between.up, values))),
-            Kind::Contraction(c) => Some(Step::Joint(c.lower(self, between, values))),
-            Kind::Expansion(e) => Some(Step::Joint(e.lower(self, between, values))),
-            Kind::Restriction(r) => Some(Step::Joint(r.lower(self, between, values))),
-            Kind::Plenum(p) => Some(Step::Joint(p.lower(between, values))),
-            Kind::Flame(f) => Some(Step::Joint(f.lower(self, between, values, sensed))),
-        }
+        let acting = match self {
+            Kind::Feed(_) | Kind::Exit(_) => return None,
+            Kind::Duct(duct) => return Some(Step::Travel(duct.lower(between.up, values))),
+            // A vessel is no balance between two streams alone.
+            Kind::Plenum(p) => return Some(Step::Joint(p.lower(between, values))),
+            Kind::Contraction(c) => c.acting(between, values),
+            Kind::Expansion(e) => e.acting(between, values),
+            Kind::Restriction(r) => r.acting(between, values),
+            Kind::Flame(f) => f.acting(between, values, sensed),
+        };
+        Some(Step::Joint(lowering::joint(self, between, values, acting)))
     }
 }
 

@@ -1,12 +1,11 @@
 //! A restriction: a pressure loss between equal areas, with the inertia of the gas in it.
 
-use super::lowering::{self, Acting, Between, velocity_row};
+use super::Section;
+use super::lowering::{Acting, Between, Side};
 use super::port::Port;
-use super::{Kind, Section};
 use crate::knobs::{KnobId, KnobSpec, Range, Values};
 use crate::numerics::dual::Real;
 use crate::units::Dimension;
-use crate::waves::primitive::Joint;
 
 /// A burner, plate, orifice or screen between equal areas.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -34,16 +33,10 @@ impl Restriction {
     }
 
     /// The slug moves with the velocity `u1 A1/A` in the stated area.
-    pub fn lower<T: Real>(
-        &self,
-        kind: &Kind,
-        between: &Between<'_, T>,
-        values: &Values<T>,
-    ) -> Joint<T> {
+    pub fn acting<T: Real>(&self, between: &Between<'_, T>, values: &Values<T>) -> Acting<T> {
         let widening = self.widening(between.up.area, |k| values[k]);
-        let sense = velocity_row(between.up, widening);
-        let slug = Acting::slug(between, values[self.effective_length], sense, between.plane);
-        lowering::joint(kind, between, values, slug)
+        let length = values[self.effective_length];
+        Acting::slug(between, length, Side::Inlet, widening)
     }
 
     /// `A1/A`: the upstream area over the area the numbers refer to.

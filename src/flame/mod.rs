@@ -30,6 +30,14 @@ pub enum ResponseLaw {
 }
 
 impl ResponseLaw {
+    /// Its mean delay, and the standard deviation of that where there is one.
+    pub fn delay_and_spread(self) -> (KnobId, Option<KnobId>) {
+        match self {
+            ResponseLaw::NTau { delay, .. } => (delay, None),
+            ResponseLaw::Gaussian { delay, spread, .. } => (delay, Some(spread)),
+        }
+    }
+
     /// The law as one contribution to a measure of delays.
     pub fn delays<T: Real>(self, values: &Values<T>) -> Delayed<T> {
         match self {

@@ -150,9 +150,14 @@ impl<T: Real> Gas<T> {
     pub fn beyond_range(&self, t: T) -> Option<String> {
         let (lowest, highest) = self.range()?;
         let t = t.value();
+        let told = if t < 1e9 {
+            format!("{t:.1}")
+        } else {
+            format!("{t:.3e}")
+        };
         (!(lowest..=highest).contains(&t)).then(|| {
             format!(
-                "air at {t:.1} K lies outside its property data ({lowest} K to {highest} K); \
+                "air at {told} K lies outside its property data ({lowest} K to {highest} K); \
                  its specific heat there is extrapolated"
             )
         })

@@ -19,7 +19,7 @@ mod syntax;
 use std::path::Path;
 
 pub use file::LARGEST_FILE;
-pub use sources::SourceMap;
+pub use sources::{OVERRIDE, SourceMap};
 
 use crate::network::Network;
 use crate::problems::{Problem, Problems, Severity};

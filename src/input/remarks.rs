@@ -1,11 +1,9 @@
 //! Warnings that the file alone can tell, before any mean flow.
 
 use crate::elements::ends::{Exit, ExitEnd, Feed, FeedEnd, Reflection};
-use crate::elements::flame::Flame;
 use crate::elements::{Element, Kind};
-use crate::flame::ResponseLaw;
 use crate::network::areas::{TOLERANCE, station_areas};
-use crate::network::{ElementId, Network, values};
+use crate::network::{ElementId, Network, responses, values};
 use crate::problems::Problem;
 use crate::units::{Dimension, write_rounded};
 
@@ -16,16 +14,20 @@ pub(super) fn remarks(network: &Network<f64>) -> Vec<Problem> {
         match &element.kind {
             Kind::Feed(feed) => self::feed(network, element, feed, flows, &mut found),
             Kind::Exit(exit) => self::exit(network, element, exit, &mut found),
-            Kind::Flame(flame) => self::flame(network, element, flame, &mut found),
             Kind::Restriction(r) => {
                 if let Some(section) = r.section {
                     let open = section.area(&network.values);
                     found.extend(wide_opening(network, id, element, open));
                 }
             }
-            Kind::Duct(_) | Kind::Contraction(_) | Kind::Expansion(_) | Kind::Plenum(_) => {}
+            Kind::Duct(_)
+            | Kind::Contraction(_)
+            | Kind::Expansion(_)
+            | Kind::Plenum(_)
+            | Kind::Flame(_) => {}
         }
     }
+    found.extend(responses::of_responses(network));
     found.extend(damped_at_ends_only(network, flows));
     found
 }
@@ -69,32 +71,6 @@ fn active(network: &Network<f64>, element: &Element, r: Reflection) -> Option<Pr
         Problem::warning(format!("{}.coefficient", element.name), what)
             .hint("a passive end without flow reflects at most 1")
     })
-}
-
-fn flame(network: &Network<f64>, element: &Element, flame: &Flame, found: &mut Vec<Problem>) {
-    for response in &flame.responses {
-        let ResponseLaw::Gaussian { delay, spread, .. } = response.law else {
-            continue;
-        };
-        let (mean, width) = (network.values[delay], network.values[spread]);
-        if width > mean / 3.0 {
-            let time = |t| write_rounded(t, Dimension::Time, 6);
-            let name = network
-                .layout
-                .knobs
-                .get(spread.0)
-                .map_or(&element.name, |k| &k.name);
-            let what = format!(
-                "a spread of {} is more than a third of the mean delay {}, so part of the response would come before its cause",
-                time(width),
-                time(mean)
-            );
-            found.push(
-                Problem::warning(name, what)
-                    .hint(format!("keep the spread below {}", time(mean / 3.0))),
-            );
-        }
-    }
 }
 
 fn wide_opening(

@@ -6,7 +6,7 @@ use super::document::{FILE, Mark};
 use crate::problems::{Place, Problem};
 
 /// Name under which an override is reported.
-const OVERRIDE: &str = "--set";
+pub const OVERRIDE: &str = "--set";
 
 /// The texts a network was read from, and the place of every name in them.
 #[derive(Clone, Debug, Default)]

@@ -127,10 +127,12 @@ impl Fault {
             } => Problem::error(
                 format!("{}.burnt_temperature", name(element)),
                 format!(
-                    "the flame is colder than its inlet: {asked:.2} K behind it, {inlet:.2} K before it"
+                    "the flame is colder than its inlet: {} K behind it, {} K before it",
+                    figure(asked, 2),
+                    figure(inlet, 2)
                 ),
             )
-            .hint(format!("state a temperature above {inlet:.2} K")),
+            .hint(format!("state a temperature above {} K", figure(inlet, 2))),
             Fault::WideThroat { throat, passage } => Problem::error(
                 "exit",
                 format!(

@@ -19,8 +19,15 @@
 //! ```
 //!
 //! where `G_e` is the power an element puts in. It falls into three parts: what sound alone makes of the mean
-//! flow there (losses and gains), what entropy arriving adds, and what fluctuating heat release adds; the
-//! last is the Rayleigh term `(gamma-1)/(gamma p) Re(p'^* Q')/2` in slow flow.
+//! flow there (losses and gains), what entropy arriving adds, and what fluctuating heat release adds. By
+//! the jumps of mass, momentum and energy at a flame the last is, at any Mach number,
+//!
+//! ```text
+//! (gamma - 1)/(2 gamma p) Re[Q'^* (p' + rho u u')]      all of it behind the flame
+//! ```
+//!
+//! which in still gas is the Rayleigh term, and with flow may have the other sign where `p'` is small or near
+//! quadrature with `Q'`.
 
 use nalgebra::{Matrix3, Vector3};
 use num_complex::Complex64;

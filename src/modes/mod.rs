@@ -17,6 +17,7 @@ use crate::numerics::count::{CountError, Effort};
 pub use crate::numerics::zeros::Scan;
 use crate::numerics::zeros::{self, Doubt};
 use crate::problems::{Problem, Problems};
+use crate::units::{write_decimals, write_signed};
 
 pub use outside::{Outside, outside, outside_from};
 pub use window::{Window, cut_on};
@@ -184,7 +185,11 @@ pub fn doubts_as_warnings(list: &ModeList) -> Vec<Problem> {
 pub fn doubt_in_words(doubt: &Doubt) -> (String, &'static str) {
     let place = |s: &Complex64| {
         let frequency = s.im.abs() / std::f64::consts::TAU;
-        format!("{frequency:.4} Hz with growth rate {:+.4} 1/s", s.re)
+        format!(
+            "{} Hz with growth rate {} 1/s",
+            write_decimals(frequency, 4),
+            write_signed(s.re, 4)
+        )
     };
     let defect = "the list is not to be relied on: this is a defect of the program, worth a report";
     match doubt {
@@ -194,6 +199,14 @@ pub fn doubt_in_words(doubt: &Doubt) -> (String, &'static str) {
                 place(near)
             ),
             "move the edges of the window",
+        ),
+        Doubt::NotCounted(CountError::Drowned { near }) => (
+            format!(
+                "the modes could not be counted: near {} what waves cancel leaves less than rounding",
+                place(near)
+            ),
+            "raise the lower growth rate: waves that decay fast in time grow along the network, entropy carried slowly \
+             most of all",
         ),
         Doubt::NotCounted(CountError::Overflow { at }) => (
             format!(

@@ -12,6 +12,7 @@ use num_complex::Complex64;
 use super::{Mode, Solved, Tendency, Window, doubt_in_words, find_from};
 use crate::acoustics::Acoustics;
 use crate::numerics::zeros::{Doubt, Scan};
+use crate::units::{write_decimals, write_signed};
 use crate::waves::tail::{self, Unbounded};
 
 /// Growth outside a window.
@@ -150,9 +151,9 @@ fn found_in_words(faster: &[Mode], slower: &[Mode], milder: &[Mode]) -> Option<S
             .iter()
             .max_by(|a, b| a.growth().total_cmp(&b.growth()))?;
         Some(format!(
-            "a mode {does} the window: {:+.1} 1/s at {:.1} Hz",
-            m.growth(),
-            m.frequency()
+            "a mode {does} the window: {} 1/s at {} Hz",
+            write_signed(m.growth(), 1),
+            write_decimals(m.frequency(), 1)
         ))
     })
 }

@@ -3,12 +3,13 @@
 
 use super::{Mode, ModeList, Outside, Window, cut_on};
 use crate::elements::Kind;
-use crate::flame::ResponseLaw;
 use crate::knobs::KnobId;
 use crate::meanflow::MeanFlow;
 use crate::network::{ElementId, Network};
 use crate::problems::Problem;
-use crate::units::{Dimension, write_rounded};
+use crate::units::{Dimension, write_decimals, write_rounded};
+
+pub use crate::network::responses::{delays, of_responses};
 
 /// Part of a wavelength a compact element may be long (common practice).
 const COMPACT: f64 = 0.1;
@@ -17,6 +18,7 @@ const COMPACT: f64 = 0.1;
 pub fn of_window(network: &Network, mean: &MeanFlow<f64>, window: &Window) -> Vec<Problem> {
     let mut found = Vec::new();
     let top = window.frequency.1;
+    let hz = |f| write_decimals(f, 0);
     let lowest = cut_on(network, mean)
         .into_iter()
         .min_by(|a, b| a.1.total_cmp(&b.1));
@@ -24,11 +26,13 @@ pub fn of_window(network: &Network, mean: &MeanFlow<f64>, window: &Window) -> Ve
         && top > f
     {
         let what = format!(
-            "the window reaches {top:.0} Hz, above the first cut-on of `{duct}` at {f:.0} Hz: waves there \
-             are not plane alone"
+            "the window reaches {} Hz, above the first cut-on of `{duct}` at {} Hz: waves there \
+             are not plane alone",
+            hz(top),
+            hz(f)
         );
         found.push(
-            Problem::warning(duct, what).hint(format!("search up to {:.0} Hz", (0.9 * f).floor())),
+            Problem::warning(duct, what).hint(format!("search up to {} Hz", hz((0.9 * f).floor()))),
         );
     }
     for (id, element) in network.elements() {
@@ -42,14 +46,15 @@ pub fn of_window(network: &Network, mean: &MeanFlow<f64>, window: &Window) -> Ve
         if length > COMPACT * wavelength {
             let mm = |x| write_rounded(x, Dimension::Length, 3);
             let text = format!(
-                "`{}` is not compact at {top:.0} Hz: {what}, {}, is more than a tenth of the wavelength, {}",
+                "`{}` is not compact at {} Hz: {what}, {}, is more than a tenth of the wavelength, {}",
                 element.name,
+                hz(top),
                 mm(length),
                 mm(wavelength)
             );
             let hint = format!(
-                "trust it up to {:.0} Hz, or describe it by ducts",
-                (COMPACT * c / length).floor()
+                "trust it up to {} Hz, or describe it by ducts",
+                hz((COMPACT * c / length).floor())
             );
             found.push(Problem::warning(&element.name, text).hint(hint));
         }
@@ -89,34 +94,39 @@ pub fn of_growth_outside(window: &Window, outside: &Outside) -> Vec<Problem> {
         let by_growth = |a: &&Mode, b: &&Mode| a.growth().total_cmp(&b.growth());
         modes.iter().max_by(by_growth).copied()
     };
+    let place = |m: &Mode| {
+        let (growth, frequency) = (m.growth(), m.frequency());
+        format!(
+            "{} 1/s at {} Hz",
+            write_decimals(growth, 1),
+            write_decimals(frequency, 1)
+        )
+    };
     let mut found = Vec::new();
     if let Some(m) = fastest(&outside.faster) {
         let what = format!(
-            "growth faster than the window's upper edge of {:.0} 1/s: {:.1} 1/s at {:.1} Hz, not in the list",
-            window.growth.1,
-            m.growth(),
-            m.frequency()
+            "growth faster than the window's upper edge of {} 1/s: {}, not in the list",
+            write_decimals(window.growth.1, 0),
+            place(&m)
         );
         let to = (1.1 * m.growth() / 50.0).ceil() * 50.0;
-        let hint = format!("search growth rates up to {to:.0} 1/s");
+        let hint = format!("search growth rates up to {} 1/s", write_decimals(to, 0));
         found.push(Problem::warning("search.growth", what).hint(hint));
     }
     if let Some(m) = fastest(&outside.slower) {
         let what = format!(
-            "growth below the window's lowest frequency of {:.0} Hz: {:.1} 1/s at {:.1} Hz, not in the list",
-            window.frequency.0,
-            m.growth(),
-            m.frequency()
+            "growth below the window's lowest frequency of {} Hz: {}, not in the list",
+            write_decimals(window.frequency.0, 0),
+            place(&m)
         );
         let hint = "search frequencies from 0 Hz";
         found.push(Problem::warning("search.frequency", what).hint(hint));
     }
     if let Some(m) = fastest(&outside.milder) {
         let what = format!(
-            "growth slower than the window's lower edge of {:.0} 1/s: {:.1} 1/s at {:.1} Hz, not in the list",
-            window.growth.0,
-            m.growth(),
-            m.frequency()
+            "growth slower than the window's lower edge of {} 1/s: {}, not in the list",
+            write_decimals(window.growth.0, 0),
+            place(&m)
         );
         let hint = "search growth rates from 0 1/s or below";
         found.push(Problem::warning("search.growth", what).hint(hint));
@@ -140,10 +150,10 @@ pub fn of_modes(network: &Network, list: &ModeList) -> Vec<Problem> {
             n => format!("{n} modes"),
         };
         let what = format!(
-            "for {count} growth rate times delay exceeds 1 ({:.1} at {:.1} Hz): a response known from \
+            "for {count} growth rate times delay exceeds 1 ({} at {} Hz): a response known from \
              steady forcing is extrapolated there",
-            worst.growth().abs() * tau,
-            worst.frequency()
+            write_decimals(worst.growth().abs() * tau, 1),
+            write_decimals(worst.frequency(), 1)
         );
         found.push(
             Problem::warning(name(network, delay), what)
@@ -151,42 +161,6 @@ pub fn of_modes(network: &Network, list: &ModeList) -> Vec<Problem> {
         );
     }
     found
-}
-
-/// Gaussian delays wider than a third of their mean.
-pub fn of_responses(network: &Network) -> Vec<Problem> {
-    let mut found = Vec::new();
-    for (delay, spread) in delays(network) {
-        let Some(spread) = spread else { continue };
-        let (mean, width) = (network.values[delay], network.values[spread]);
-        if width > mean / 3.0 {
-            let time = |t| write_rounded(t, Dimension::Time, 4);
-            let what = format!(
-                "a spread of {} is more than a third of the mean delay {}, so part of the response would \
-                 come before its cause",
-                time(width),
-                time(mean)
-            );
-            found.push(Problem::warning(name(network, spread), what));
-        }
-    }
-    found
-}
-
-/// The delay of every response with its spread.
-pub fn delays(network: &Network) -> Vec<(KnobId, Option<KnobId>)> {
-    network
-        .elements()
-        .filter_map(|(_, e)| match &e.kind {
-            Kind::Flame(flame) => Some(&flame.responses),
-            _ => None,
-        })
-        .flatten()
-        .map(|r| match r.law {
-            ResponseLaw::NTau { delay, .. } => (delay, None),
-            ResponseLaw::Gaussian { delay, spread, .. } => (delay, Some(spread)),
-        })
-        .collect()
 }
 
 fn name(network: &Network, knob: KnobId) -> String {

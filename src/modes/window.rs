@@ -4,7 +4,7 @@ use std::f64::consts::{PI, TAU};
 
 use crate::elements::{Kind, Section};
 use crate::meanflow::MeanFlow;
-use crate::network::Network;
+use crate::network::{FARTHEST, Network};
 use crate::numerics::count::Rectangle;
 use crate::problems::{Problem, Problems};
 
@@ -36,8 +36,8 @@ impl Window {
         }
     }
 
-    /// What the file states, completed: up to 0.9 of the lowest cut-on frequency, and 500 1/s either
-    /// way.
+    /// What the file states, completed: up to 0.9 of the lowest cut-on frequency, no farther than a
+    /// window may be stated, and 500 1/s either way.
     ///
     /// # Errors
     /// Where the window is empty, or cannot be completed because no duct has a cut-on.
@@ -58,7 +58,7 @@ impl Window {
                     .hint("state frequency = \"0 to 500 Hz\" under [search]")
                     .into());
                 };
-                (0.0, BELOW_CUT_ON * lowest)
+                (0.0, (BELOW_CUT_ON * lowest).min(FARTHEST))
             }
         };
         Ok(Window {

@@ -5,6 +5,7 @@
 //! element ends is the plane where the next begins.
 
 pub mod areas;
+pub mod responses;
 pub mod values;
 
 use std::sync::Arc;

@@ -5,15 +5,15 @@ use num_complex::Complex64;
 /// Number of Taylor coefficients a bound covers: orders 0 to 4.
 pub const TAYLOR: usize = 5;
 
-/// Where a bound must hold.
+/// Where a bound must hold; of plain numbers, or several regions at once.
 #[derive(Clone, Copy, Debug, PartialEq)]
-pub struct Region {
+pub struct Region<V = f64> {
     /// Least and greatest real part.
-    pub growth: (f64, f64),
+    pub growth: (V, V),
     /// Greatest modulus.
-    pub modulus: f64,
+    pub modulus: V,
     /// Least modulus of the imaginary part.
-    pub omega: f64,
+    pub omega: V,
 }
 
 impl Region {
@@ -69,6 +69,16 @@ pub trait Analytic: Sync {
 
     /// Bounds of `|f^(k)|/k!` over the region, orders 0 to 4.
     fn bound(&self, region: &Region) -> [f64; TAYLOR];
+
+    /// Value and derivative at many places, one after another into `to`.
+    fn values_and_slopes(&self, at: &[Complex64], to: &mut Vec<(Complex64, Complex64)>) {
+        to.extend(at.iter().map(|&s| self.value_and_slope(s)));
+    }
+
+    /// Bounds over many regions, one after another into `to`.
+    fn bounds(&self, over: &[Region], to: &mut Vec<[f64; TAYLOR]>) {
+        to.extend(over.iter().map(|region| self.bound(region)));
+    }
 
     /// The rounding error of a computed value.
     fn rounding(&self) -> Rounding;

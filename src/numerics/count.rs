@@ -40,6 +40,12 @@ pub enum CountError {
         /// Where.
         near: Complex64,
     },
+    /// Values on the contour are smaller than what rounding leaves open of them.
+    #[error("values near {near} are lost in rounding")]
+    Drowned {
+        /// Where.
+        near: Complex64,
+    },
     /// A bound or a value is infinite: the window reaches too far for the delays in it.
     #[error(
         "values overflow at {at}: the window reaches too far left for the delays in the network"
@@ -96,6 +102,10 @@ struct Sample {
 
 /// Most halvings of one segment before a zero is taken to lie on it.
 const DEEPEST: u32 = 60;
+
+/// Distance from a zero within which a point of the contour is on it, over the modulus, where rounding
+/// stops the walk.
+const BESIDE: f64 = 1e-5;
 
 /// Ratio of the moduli between which segments share a bound.
 const WIDENING: f64 = 1.5;
@@ -264,8 +274,15 @@ impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
             }
         }
         if depth >= DEEPEST || h <= 4.0 * f64::EPSILON * modulus {
-            let near = if va < vb { a.s } else { b.s };
-            return Err(CountError::OnContour { near });
+            let p = if va < vb { a } else { b };
+            let [_, value, slope] = p.moduli;
+            // Beside a zero the slope tells where it lies.
+            let found = slope > 2.0 * slope_floor && value + floor < BESIDE * modulus * slope;
+            return Err(if found {
+                CountError::OnContour { near: p.s }
+            } else {
+                CountError::Drowned { near: p.s }
+            });
         }
         self.effort.refinements += 1;
         let middle = self.sample((a.s + b.s) * 0.5)?;

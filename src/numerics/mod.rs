@@ -5,5 +5,8 @@ pub mod count;
 pub mod dual;
 pub mod fine;
 pub mod isolate;
+pub mod lanes;
 pub mod ledger;
+pub mod number;
+mod starts;
 pub mod zeros;

@@ -2,7 +2,8 @@
 //!
 //! 1. Count the zeros in the window padded by about 2 % ([`count`](super::count)); a zero on the padded
 //!    edge asks for another pad.
-//! 2. Newton from a staggered grid of pitch `1.6 B_0/B_1`, where the first step is short; each point
+//! 2. Newton from a staggered grid of pitch `1.6 B_0/B_1`, where the first step is short, and where zeros are
+//!    missing from a rim about it; each point
 //!    reached is proved ([`isolate`]) and entered ([`ledger`](super::ledger)), until the
 //!    weights add up to the count. Zeros expected somewhere, as those of a function much like this one,
 //!    are tried before the grid.
@@ -16,6 +17,7 @@ use super::analytic::Analytic;
 use super::count::{CountError, Effort, Rectangle, Walker};
 use super::isolate::{self, Zero};
 use super::ledger::{Entry, Ledger};
+use super::starts;
 
 /// Why a list is not certified.
 #[derive(Clone, Copy, Debug, PartialEq, thiserror::Error)]
@@ -114,7 +116,11 @@ pub fn search_from<F: Analytic + ?Sized>(
         padded = pad_by(window, pad, symmetric);
         walker.effort.retries = attempt;
         counted = count(&mut walker, &padded, symmetric);
-        if !matches!(counted, Err(CountError::OnContour { .. })) {
+        let again = matches!(
+            counted,
+            Err(CountError::OnContour { .. } | CountError::Drowned { .. })
+        );
+        if !again {
             break;
         }
     }
@@ -287,7 +293,11 @@ impl<F: Analytic + ?Sized> Hunt<'_, F> {
         if self.counted(ledger) {
             return;
         }
-        self.grid(ledger, walker);
+        self.scan(ledger, walker, starts::grid(self.padded, self.pitch));
+        if self.weight(ledger) < self.count {
+            let rim = starts::rim(self.padded, self.pitch, self.symmetric);
+            self.scan(ledger, walker, rim);
+        }
         if self.weight(ledger) >= self.count {
             return;
         }
@@ -325,26 +335,14 @@ impl<F: Analytic + ?Sized> Hunt<'_, F> {
         self.scan == Scan::UntilCounted && self.weight(ledger) >= self.count
     }
 
-    /// Points of a staggered grid of the given pitch, at most some ten thousand.
-    fn points(&self, pitch: f64) -> impl Iterator<Item = Complex64> {
-        let (g, w) = (self.padded.growth, self.padded.omega);
-        let cells = |length: f64| (length / pitch).ceil().clamp(1.0, 1e6);
-        let (mut nx, mut ny) = (cells(g.1 - g.0), cells(w.1 - w.0));
-        let thinning = (nx * ny / 2e4).sqrt().max(1.0);
-        nx = (nx / thinning).ceil();
-        ny = (ny / thinning).ceil();
-        let (dx, dy) = ((g.1 - g.0) / nx, (w.1 - w.0) / ny);
-        (0..ny as usize).flat_map(move |j| {
-            let stagger = if j % 2 == 0 { 0.3 } else { 0.7 };
-            (0..nx as usize).map(move |i| {
-                Complex64::new(g.0 + (i as f64 + stagger) * dx, w.0 + (j as f64 + 0.5) * dy)
-            })
-        })
-    }
-
-    fn grid(&self, ledger: &mut Ledger<'_, F>, walker: &mut Walker<'_, F>) {
+    fn scan(
+        &self,
+        ledger: &mut Ledger<'_, F>,
+        walker: &mut Walker<'_, F>,
+        starts: impl Iterator<Item = Complex64>,
+    ) {
         let pitch = self.pitch;
-        for start in self.points(pitch) {
+        for start in starts {
             walker.effort.evaluations += 1;
             let (value, slope) = self.f.value_and_slope(start);
             let step = isolate::quotient(value, slope);
@@ -376,7 +374,7 @@ impl<F: Analytic + ?Sized> Hunt<'_, F> {
 
     /// Newton on `f` divided by its known zeros: `step = 1/(f'/f - sum m/(s - z))`.
     fn deflated(&self, ledger: &mut Ledger<'_, F>, walker: &mut Walker<'_, F>, pitch: f64) {
-        for start in self.points(pitch) {
+        for start in starts::grid(self.padded, pitch) {
             let mut z = start;
             for _ in 0..25 {
                 walker.effort.evaluations += 1;

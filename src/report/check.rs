@@ -10,6 +10,7 @@ use crate::meanflow::MeanFlow;
 use crate::modes::Window;
 use crate::network::Network;
 use crate::problems::Problem;
+use crate::units::write_decimals;
 
 /// A sound network to report.
 #[derive(Clone, Copy, Debug)]
@@ -104,7 +105,8 @@ impl Check<'_> {
             let heat = flame.power_w.filter(|p| *p != 0.0).map(power);
             let heat = heat.map_or(String::new(), |p| format!(" {p},"));
             let t = flame.burnt_temperature_k;
-            parts.push(format!("{}{heat} {t:.0} K behind it", flame.element));
+            let t = write_decimals(t, 0);
+            parts.push(format!("{}{heat} {t} K behind it", flame.element));
         }
         parts.push(format!("window {}", window_text(&self.window)));
         let heading = self.heading.text();

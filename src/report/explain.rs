@@ -7,6 +7,7 @@ use crate::modes::Mode;
 use crate::modes::budget::Part;
 use crate::modes::explain::Explained;
 use crate::network::{ElementId, Network};
+use crate::units::{write_decimals, write_signed};
 
 /// One element's part, in SI.
 #[derive(Clone, Debug, Serialize)]
@@ -61,10 +62,10 @@ const TELLING: f64 = 5e-4;
 /// For people; `number` counts from zero.
 pub(super) fn text(network: &Network, number: usize, mode: &Mode, told: &Explained) -> String {
     let mut text = format!(
-        "\nMode {}, {:.2} Hz, {:+.3} 1/s: {}",
+        "\nMode {}, {} Hz, {} 1/s: {}",
         number + 1,
-        mode.frequency(),
-        mode.growth(),
+        write_decimals(mode.frequency(), 2),
+        write_signed(mode.growth(), 3),
         told.label(network)
     );
     if let Some((element, share)) = told.mostly_in() {
@@ -83,7 +84,10 @@ pub(super) fn text(network: &Network, number: usize, mode: &Mode, told: &Explain
         (None, None) => "  No factor on all gains down to a thousandth makes it neutral".to_owned(),
     });
     text.push_str(&match told.margins.delay {
-        Some(t) => format!("; with all delays changed by {:+.4} ms.\n", 1e3 * t),
+        Some(t) => format!(
+            "; with all delays changed by {} ms.\n",
+            write_signed(1e3 * t, 4)
+        ),
         None => "; no change of all delays within half a period does.\n".to_owned(),
     });
     if let Some(budget) = &told.budget {
@@ -110,7 +114,7 @@ fn table(network: &Network, parts: &[Part]) -> String {
         if x.abs() < 5e-4 {
             "0".to_owned()
         } else {
-            format!("{x:+.3}")
+            write_signed(x, 3)
         }
     };
     for p in parts {
@@ -130,7 +134,7 @@ fn table(network: &Network, parts: &[Part]) -> String {
     let of = |f: fn(&Part) -> f64| signed(parts.iter().map(f).sum());
     table.row(vec![
         "sum".to_owned(),
-        format!("{sum:+.3}"),
+        write_signed(sum, 3),
         of(|p| p.flow),
         of(|p| p.entropy),
         of(|p| p.heat),

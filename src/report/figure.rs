@@ -4,7 +4,9 @@ use super::map::{MapReport, rate};
 use super::{CAUTION, window_text};
 use crate::draw::patches::Patches;
 use crate::draw::text::fixed;
-use crate::draw::{Axis, DesignPoint, DrawError, IsoLines, Quantity, StabilityMap, Words, map};
+use crate::draw::{
+    Axis, Cuts, DesignPoint, DrawError, IsoLines, Quantity, Seam, StabilityMap, Words, map,
+};
 use crate::studies::map::{Axis as Values, Point};
 use crate::studies::regions::{Region, regions};
 use crate::units::{self, Dimension, write_rounded};
@@ -75,6 +77,45 @@ impl MapReport<'_> {
         }
     }
 
+    /// Where the mode followed meets others, and the cut from there, as far as it is shown on either side.
+    fn cuts(&self) -> Cuts {
+        let Some(one) = &self.followed else {
+            return Cuts::default();
+        };
+        let columns = self.map.across.points;
+        let shown = |column: usize, (low, high): (f64, f64)| {
+            let rows = (low.max(0.0).floor() as usize)..=(high.max(0.0).ceil() as usize);
+            let known = |i: usize, j: usize| {
+                let point = self.map.points.get(j * columns + i);
+                i < columns && point.is_some_and(|p| p.leading().is_some())
+            };
+            rows.into_iter()
+                .any(|j| known(column, j) || known(column + 1, j))
+        };
+        let seams = one.over.cuts.iter();
+        let seams: Vec<_> = seams
+            .filter(|c| shown(c.column, (c.from.1, c.to.1)))
+            .collect();
+        let ends = |at: &(f64, f64)| seams.iter().any(|c| [c.from, c.to].contains(at));
+        let points = one.over.exceptional.iter().map(|p| p.at);
+        let points = points
+            .filter(|at| ends(at) || shown(at.0.max(0.0).floor() as usize, (at.1, at.1)))
+            .collect();
+        Cuts {
+            caption: "cut: not one mode across".into(),
+            point_caption: "meets another mode".into(),
+            seams: seams
+                .iter()
+                .map(|cut| Seam {
+                    column: cut.column,
+                    from: cut.from,
+                    to: cut.to,
+                })
+                .collect(),
+            points,
+        }
+    }
+
     /// The map as SVG.
     ///
     /// # Errors
@@ -99,9 +140,13 @@ impl MapReport<'_> {
                 self.growth_outside()
             ),
             Some(one) => format!(
-                "Growth rate of mode {}, followed from point to point: around a meeting with another mode it depends on the \
-                 way taken, and a cut remains. Other modes may grow. {CAUTION}",
-                one.number
+                "Growth rate of mode {} of the design point, followed first along the horizontal axis, then along the vertical \
+                 one{}. Other modes may grow. {CAUTION}",
+                one.number,
+                match one.over.cuts.len() {
+                    0 => "",
+                    _ => "; by another way it is another mode beyond a cut",
+                }
             ),
         };
         let (design_x, design_y) = self.design_values();
@@ -132,6 +177,7 @@ impl MapReport<'_> {
                 values: self.rows(|p| p.leading().map(|m| m.frequency())),
             }),
             patches: self.followed.is_none().then(|| self.patches()),
+            cuts: self.cuts(),
             design_point: self.design_inside().then(|| DesignPoint {
                 x: design_x / x.size,
                 y: design_y / y.size,

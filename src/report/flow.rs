@@ -10,7 +10,7 @@ use crate::gas::State;
 use crate::meanflow::MeanFlow;
 use crate::network::Network;
 use crate::problems::Problem;
-use crate::units::{Dimension, write_rounded};
+use crate::units::{Dimension, write_decimals, write_rounded};
 
 /// One end of an element, in SI.
 #[derive(Clone, Debug, Serialize)]
@@ -127,13 +127,13 @@ impl Flow<'_> {
             table.row(vec![
                 s.element.to_owned(),
                 s.side.to_owned(),
-                format!("{:.3}", s.pressure_pa / 1e3),
-                format!("{:.1}", s.temperature_k),
-                format!("{:.3}", s.velocity_m_s),
+                write_decimals(s.pressure_pa / 1e3, 3),
+                write_decimals(s.temperature_k, 1),
+                write_decimals(s.velocity_m_s, 3),
                 format!("{:.4}", s.mach),
-                format!("{:.1}", s.sound_speed_m_s),
+                write_decimals(s.sound_speed_m_s, 1),
                 format!("{:.4}", s.density_kg_m3),
-                format!("{:.3}", s.area_m2 * 1e4),
+                write_decimals(s.area_m2 * 1e4, 3),
             ]);
         }
         let mut text = format!("{}\n{}\n", self.heading.text(), table.text());
@@ -188,7 +188,7 @@ fn at<'a>(element: &'a str, side: &'static str, state: &State<f64>) -> Station<'
 /// A power in W, kW or MW.
 pub(super) fn power(watts: f64) -> String {
     match watts.abs() {
-        p if p >= 1e6 => format!("{:.3} MW", watts / 1e6),
+        p if p >= 1e6 => format!("{} MW", write_decimals(watts / 1e6, 3)),
         p if p >= 1e3 => format!("{:.2} kW", watts / 1e3),
         _ => format!("{watts:.1} W"),
     }

@@ -3,11 +3,13 @@
 use serde::Serialize;
 
 use super::document::WindowFields;
+use super::map_events::{EventFields, events};
 use super::{Document, Heading, closing, window_text};
 use crate::draw::text::fixed;
 use crate::modes::{Mode, ModeList, Outside, Tendency, Window};
 use crate::network::Network;
 use crate::problems::Problem;
+use crate::studies::branch;
 use crate::studies::cautions::{place, setting};
 use crate::studies::map::{Axis, Map, Point};
 use crate::studies::regions::{Region, regions};
@@ -27,18 +29,20 @@ pub struct MapReport<'a> {
     /// What grows outside the window there.
     pub design_outside: &'a Outside,
     /// The mode followed, on a map of one mode.
-    pub followed: Option<Followed>,
+    pub followed: Option<Followed<'a>>,
     /// What qualifies it.
     pub warnings: &'a [Problem],
 }
 
 /// A mode followed over a map.
 #[derive(Clone, Copy, Debug, PartialEq)]
-pub struct Followed {
+pub struct Followed<'a> {
     /// Its number in the list at the design point, from one.
     pub number: usize,
     /// The mode there.
     pub mode: Mode,
+    /// What becomes of it.
+    pub over: &'a branch::Followed,
 }
 
 #[derive(Clone, Debug, Serialize)]
@@ -109,6 +113,7 @@ struct Body<'a> {
     leading_regions: Vec<RegionFields>,
     points: Counts,
     points_without_answer: Vec<Unanswered<'a>>,
+    events: Vec<EventFields>,
     design_point: Design,
     window: WindowFields,
     growth_excluded_beyond: bool,
@@ -217,6 +222,7 @@ impl<'a> MapReport<'a> {
                 growth_not_excluded: tally.open,
             },
             points_without_answer: self.unanswered(),
+            events: events(map, self.followed.map(|one| one.over)),
             design_point: Design {
                 across: x,
                 up: y,
@@ -334,6 +340,38 @@ impl<'a> MapReport<'a> {
         )
     }
 
+    /// How the mode was followed, and where it meets another.
+    fn cut_words(&self, one: &Followed) -> String {
+        let map = self.map;
+        let across = self.axis(map.across).0;
+        let mut text = format!(
+            "Followed from the design point first along {across}, then along {}; to {} of {} points\n",
+            self.axis(map.up).0,
+            one.over.reached,
+            map.points.len()
+        );
+        for point in &one.over.exceptional {
+            let at = place(
+                self.network,
+                (map.across.knob, map.across.between(point.at.0)),
+                (map.up.knob, map.up.between(point.at.1)),
+            );
+            let told = match point.s {
+                Some(s) => format!(
+                    "It meets another mode at {at}: {:.1} Hz, {} 1/s\n",
+                    s.im / std::f64::consts::TAU,
+                    rate(s.re)
+                ),
+                None => format!("It meets another mode near {at}\n"),
+            };
+            text.push_str(&told);
+        }
+        if !one.over.cuts.is_empty() {
+            text.push_str("From there the map has a cut: beyond, what the mode becomes depends on the way taken.\n");
+        }
+        text
+    }
+
     /// For people.
     pub fn text(&self) -> String {
         let map = self.map;
@@ -367,6 +405,9 @@ impl<'a> MapReport<'a> {
                 mode.frequency(),
                 place(self.network, (map.across.knob, x), (map.up.knob, y))
             ));
+        }
+        if let Some(one) = &self.followed {
+            text.push_str(&self.cut_words(one));
         }
         let (x, y) = self.design_values();
         text.push_str(&format!(

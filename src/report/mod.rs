@@ -9,6 +9,7 @@ mod explain;
 pub mod figure;
 pub mod flow;
 pub mod map;
+mod map_events;
 pub mod modes;
 pub mod problems;
 pub mod profile;
@@ -20,6 +21,7 @@ pub use document::{Document, Remark};
 
 use crate::modes::Window;
 use crate::problems::Problem;
+use crate::units::{Dimension, write_rounded, write_signed};
 
 /// What every report ends with.
 pub const CAUTION: &str = "Predictions are for screening. Combustion oscillations break hardware and \
@@ -57,20 +59,29 @@ fn closing(warnings: &[Problem]) -> String {
 
 /// `20 to 800 Hz, -300 to 300 1/s`.
 fn window_text(window: &Window) -> String {
-    format!(
-        "{} to {} Hz, {} to {} 1/s",
-        short(window.frequency.0),
-        short(window.frequency.1),
-        short(window.growth.0),
-        short(window.growth.1)
-    )
+    format!("{}, {} 1/s", band(window), span_text(window.growth))
 }
 
-/// A number with at most one decimal, where that loses nothing worth telling.
-fn short(x: f64) -> String {
-    let rounded = (x * 10.0).round() / 10.0;
-    // Adding zero takes the sign off a negative zero.
-    format!("{}", rounded + 0.0)
+/// `20 to 800 Hz`.
+fn band(window: &Window) -> String {
+    format!("{} Hz", span_text(window.frequency))
+}
+
+/// Both ends of a span to a thousandth of its width, and to one decimal where they are no huge numbers.
+fn span_text((low, high): (f64, f64)) -> String {
+    let fine = 3.0 - (high - low).log10().floor();
+    let end = |x: f64| {
+        let whole = x.abs().max(f64::MIN_POSITIVE).log10().floor() + 1.0;
+        let digits = (whole + fine).max((whole + 1.0).min(8.0));
+        // Adding zero takes the sign off a negative zero.
+        write_rounded(x + 0.0, Dimension::Number, digits.clamp(2.0, 17.0) as usize)
+    };
+    format!("{} to {}", end(low), end(high))
+}
+
+/// A growth rate with its sign, whole where it is large.
+fn rate(growth: f64) -> String {
+    write_signed(growth, if growth.abs() < 9.95 { 1 } else { 0 })
 }
 
 /// `1 mode`, `3 modes`.
@@ -93,4 +104,31 @@ fn csv_of<R: serde::Serialize>(rows: impl IntoIterator<Item = R>) -> std::io::Re
     writer
         .into_inner()
         .map_err(|e| std::io::Error::other(e.to_string()))
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn both_ends_of_a_window_are_told_apart() {
+        for (span, text) in [
+            ((20.0, 800.0), "20 to 800"),
+            ((-300.0, 300.0), "-300 to 300"),
+            ((0.0, 1e-9), "0 to 1e-9"),
+            ((300.001, 300.002), "300.001 to 300.002"),
+            ((0.25, 1234.567), "0.25 to 1234.6"),
+            ((-0.0, 1.0), "0 to 1"),
+            ((-1e5, 1e5), "-100000 to 100000"),
+            ((0.0, 2.212_345_678e154), "0 to 2.2123457e154"),
+        ] {
+            assert_eq!(span_text(span), text);
+        }
+    }
+
+    #[test]
+    fn growth_rates_carry_a_sign_and_zero_none() {
+        let told = [-217.28, -0.3, -0.04, 0.0, 0.04, 9.96, 45.0].map(rate);
+        assert_eq!(told, ["-217", "-0.3", "0.0", "0.0", "0.0", "+10", "+45"]);
+    }
 }

@@ -13,6 +13,7 @@ use crate::modes::{Mode, ModeList, Outside, Tendency, doubt_in_words};
 use crate::network::Network;
 use crate::numerics::count::Effort;
 use crate::problems::Problem;
+use crate::units::{write_decimals, write_signed};
 
 /// A mode list to report.
 #[derive(Clone, Copy, Debug)]
@@ -246,14 +247,14 @@ impl Modes<'_> {
             "",
         ]);
         let some = |x: Option<f64>, digits: usize| match x {
-            Some(x) => format!("{x:.digits$}"),
+            Some(x) => write_decimals(x, digits),
             None => "none".to_owned(),
         };
         for (i, row) in self.rows().enumerate() {
             table.row(vec![
                 format!("{}", i + 1),
-                format!("{:.3}", row.frequency_hz),
-                format!("{:.3}", row.growth_per_s),
+                write_decimals(row.frequency_hz, 3),
+                write_decimals(row.growth_per_s, 3),
                 row.tendency.to_owned(),
                 format!("{:.0e}", row.error_bound_per_s),
                 some(row.cycle_increment, 4),
@@ -295,29 +296,29 @@ impl Modes<'_> {
         text.push_str(&match (growing, list.leading()) {
             (0, None) => "No mode was found in the window.\n".to_owned(),
             (0, Some(m)) => format!(
-                "No mode found in the window grows; the slowest to decay: {:.3} 1/s at {:.2} Hz.\n",
-                m.growth(),
-                m.frequency()
+                "No mode found in the window grows; the slowest to decay: {} 1/s at {} Hz.\n",
+                write_decimals(m.growth(), 3),
+                write_decimals(m.frequency(), 2)
             ),
             (n, Some(m)) => format!(
-                "{} grow{}; the fastest: {:+.3} 1/s at {:.2} Hz.\n",
+                "{} grow{}; the fastest: {} 1/s at {} Hz.\n",
                 counted(n, "mode"),
                 if n == 1 { "s" } else { "" },
-                m.growth(),
-                m.frequency()
+                write_signed(m.growth(), 3),
+                write_decimals(m.frequency(), 2)
             ),
             (n, None) => format!("{} grow.\n", counted(n, "mode")),
         });
-        let top = list.window.frequency.1;
+        let top = write_decimals(list.window.frequency.1, 0);
         text.push_str(&match &self.outside.reason {
-            None => format!("Growth outside the window is excluded up to {top:.0} Hz, by proof.\n"),
+            None => format!("Growth outside the window is excluded up to {top} Hz, by proof.\n"),
             Some(reason) if self.outside.fastest().is_some() || !self.outside.complete => {
                 format!("Growth outside the window is NOT EXCLUDED: {reason}.\n")
             }
             Some(reason) => format!(
-                "No growth outside the window up to {top:.0} Hz and {:.0} 1/s; faster growth is NOT EXCLUDED: \
+                "No growth outside the window up to {top} Hz and {} 1/s; faster growth is NOT EXCLUDED: \
                  {reason}.\n",
-                self.outside.searched_to
+                write_decimals(self.outside.searched_to, 0)
             ),
         });
         let e = &list.effort;

@@ -3,9 +3,8 @@
 use num_complex::Complex64;
 
 use super::figure::engineers_unit;
-use super::map::rate;
 use super::modes::Modes;
-use super::{CAUTION, counted};
+use super::{CAUTION, counted, rate};
 use crate::draw::{
     Axis, Chain, ChainEnd, Contribution, Contributions, Curve, DrawError, EndSymbol, Passage,
     Plane, ProfileFigure, ProfilePanel, ProfileWords, Symbol, profile,
@@ -17,7 +16,7 @@ use crate::modes::explain::Explained;
 use crate::modes::shapes::{Sample, Shape};
 use crate::modes::{Mode, Tendency};
 use crate::network::{ElementId, Network, StationId, areas};
-use crate::units::{Dimension, write_rounded};
+use crate::units::{Dimension, write_decimals, write_rounded};
 
 /// Steps between two samples of a shape, along the cubic through the complex amplitudes of four of them, so
 /// that a phase that turns quickly beside a node is followed.
@@ -112,7 +111,7 @@ fn name(network: &Network, id: ElementId) -> &str {
 /// `376 Hz grows at +45.6 1/s; driven by main_flame, 58 % of its energy in chamber`.
 fn finding(network: &Network, mode: &Mode, told: &Explained) -> String {
     let of = |verb: &str| match mode.frequency() {
-        f if f > 0.0 => format!("{f:.1} Hz {verb}"),
+        f if f > 0.0 => format!("{} Hz {verb}", write_decimals(f, 1)),
         _ => format!("A mode without oscillation {verb}"),
     };
     let growth = rate(mode.growth());

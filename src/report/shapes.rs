@@ -8,6 +8,7 @@ use crate::modes::explain::Explained;
 use crate::modes::shapes::{Sample, Shape};
 use crate::modes::{Mode, ModeList};
 use crate::network::{ElementId, Network};
+use crate::units::write_decimals;
 
 /// One place, for a largest pressure amplitude of 1 Pa.
 #[derive(Clone, Debug, Serialize)]
@@ -130,7 +131,8 @@ pub(super) fn csv_rows<'a>(
 
 /// The shape of one mode at the stations, for people.
 pub(super) fn text(network: &Network, index: usize, mode: &Mode, shape: Option<&Shape>) -> String {
-    let title = format!("\nShape of mode {}, {:.3} Hz", index + 1, mode.frequency());
+    let frequency = write_decimals(mode.frequency(), 3);
+    let title = format!("\nShape of mode {}, {frequency} Hz", index + 1);
     let Some(shape) = shape else {
         return format!("{title}: the null vector did not settle, or holds no pressure.\n");
     };

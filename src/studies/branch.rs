@@ -1,210 +1,359 @@
-//! One mode followed over a map, from the design point outwards.
+//! One mode followed over a map, and the cut that this leaves.
 //!
-//! The mode of a point is looked for among those of its neighbour, near where the mode of a neighbour already
-//! followed leads (carried on straight where the point beyond that is known too). Of all steps that could be
-//! taken next the clearest is taken first, the one whose nearest candidate is nearest against the second.
-//! Where no candidate is clearly nearer than another the mode is not followed. Around a meeting of two modes no
-//! labels hold for the whole plane: there a cut remains, along which both sides were reached from elsewhere.
+//! Around a point where two modes meet, an exceptional point, they change places, so that no label holds for a
+//! whole plane: what a mode becomes depends on the way taken. So the way is laid down: from the design point first
+//! *across* to the column, along the design value of `up`, then *up* or down the column. That depends
+//! neither on the resolution of the map nor on its extent nor on the number of threads. Two neighbours of a
+//! column are one mode by construction. Two neighbours of a row need not be: where they are not, a *cut*
+//! passes between them. It begins at an exceptional point and runs from there along the columns, away from the
+//! design value of `up`, to another such point or to the rim.
+//!
+//! Between two columns the ties change only in a cell that holds an exceptional point of the mode (an odd
+//! number of them: of two in one cell nothing is seen). It is then found by Newton.
 
-use std::cmp::{Ordering, Reverse};
-use std::collections::BinaryHeap;
+mod ground;
 
 use num_complex::Complex64;
+use rayon::prelude::*;
 
-use super::map::{Axis, Map};
+use super::map::{Map, moves_mean_flow};
+use crate::meanflow::MeanFlow;
 use crate::modes::Mode;
+use crate::network::Network;
+use ground::{Ground, Meeting, Position, Spot};
 
-/// Largest distance of the nearest candidate, over that of the second.
-const CLEAR: f64 = 0.4;
+/// How far outside its cell (in steps) rounding may put a meeting.
+const BESIDE: f64 = 1e-6;
 
-/// A step that could be taken.
-struct Step {
-    doubt: f64,
-    to: usize,
-    mode: Mode,
+/// An exceptional point of the mode followed.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Exceptional {
+    /// Where, in steps of both axes; the middle of its cell where it was not found within it.
+    pub at: (f64, f64),
+    /// The mode there, where found.
+    pub s: Option<Complex64>,
 }
 
-impl PartialEq for Step {
-    fn eq(&self, other: &Self) -> bool {
-        self.cmp(other) == Ordering::Equal
-    }
-}
-impl Eq for Step {}
-impl PartialOrd for Step {
-    fn partial_cmp(&self, other: &Self) -> Option<Ordering> {
-        Some(self.cmp(other))
-    }
-}
-impl Ord for Step {
-    fn cmp(&self, other: &Self) -> Ordering {
-        self.doubt
-            .total_cmp(&other.doubt)
-            .then(self.to.cmp(&other.to))
-    }
+/// A straight piece of the cut, between a column and the next.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Cut {
+    /// The column before it.
+    pub column: usize,
+    /// Its lower end, in steps of both axes.
+    pub from: (f64, f64),
+    /// Its upper end.
+    pub to: (f64, f64),
 }
 
-/// The mode at each point, row by row, that `mode` of the network at `design` leads to; none where it is not
-/// followed. `lists` are the modes of each point.
+/// A mode over a map.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Followed {
+    /// The mode at each point, row by row; none where it was not followed to, or is not in the list of the point.
+    pub modes: Vec<Option<Mode>>,
+    /// Number of points it was followed to, in or outside the window.
+    pub reached: usize,
+    /// By column, upwards.
+    pub cuts: Vec<Cut>,
+    /// By column, upwards.
+    pub exceptional: Vec<Exceptional>,
+}
+
+/// What `mode` of the network as it stands becomes at each point of the map, of whose points `lists` are the
+/// modes. The network lies on the map.
 pub fn follow(
+    network: &Network,
+    mean: &MeanFlow<f64>,
     map: &Map,
     lists: &[Vec<Mode>],
-    design: (f64, f64),
     mode: &Mode,
-) -> Vec<Option<Mode>> {
-    let (columns, rows) = (map.across.points, map.up.points);
-    let mut found: Vec<Option<Mode>> = vec![None; lists.len()];
-    let (i, j) = (nearest(map.across, design.0), nearest(map.up, design.1));
-    let mut open = BinaryHeap::new();
-    let offer = |open: &mut BinaryHeap<Reverse<Step>>, to: usize, guess: Complex64| {
-        let candidates = lists.get(to).map_or(&[][..], Vec::as_slice);
-        if let Some((mode, doubt)) = clearest(candidates, guess, map) {
-            open.push(Reverse(Step { doubt, to, mode }));
+) -> Followed {
+    let axes = [map.across, map.up];
+    let moves = axes.iter().any(|a| moves_mean_flow(network, a.knob));
+    let ground = Ground {
+        network,
+        axes,
+        held: (!moves).then_some(mean),
+    };
+    let design = (
+        map.across.position(network.values[map.across.knob]),
+        map.up.position(network.values[map.up.knob]),
+    );
+    let levels = Levels::new(map.up.points, design.1);
+    let columns = columns(&ground, design, &levels, mode);
+    let between: Vec<(Vec<Cut>, Vec<Exceptional>)> = columns
+        .par_windows(2)
+        .enumerate()
+        .filter_map(|(i, pair)| match pair {
+            [left, right] => Some(Gap::new(&ground, &levels, i, (left, right)).cuts()),
+            _ => None,
+        })
+        .collect();
+    let (cuts, exceptional): (Vec<_>, Vec<_>) = between.into_iter().unzip();
+
+    let mut modes = Vec::with_capacity(lists.len());
+    let mut reached = 0;
+    for (k, list) in lists.iter().enumerate() {
+        let (i, j) = (k % map.across.points, k / map.across.points);
+        let spot = columns
+            .get(i)
+            .and_then(|column| column.get(levels.of_row(j)).copied().flatten());
+        reached += usize::from(spot.is_some());
+        // The certified list has the last word on the value.
+        let in_list = |spot: Spot| {
+            let near = |m: &&Mode| (m.s - spot.s()).norm() <= m.error_bound + spot.zero.error;
+            list.iter().find(near).copied()
+        };
+        modes.push(spot.and_then(in_list));
+    }
+    Followed {
+        modes,
+        reached,
+        cuts: cuts.into_iter().flatten().collect(),
+        exceptional: exceptional.into_iter().flatten().collect(),
+    }
+}
+
+/// The positions at which a column is visited: its rows, and the design value of `up` where it lies
+/// between two of them.
+struct Levels {
+    at: Vec<f64>,
+    base: usize,
+    added: bool,
+}
+
+impl Levels {
+    fn new(rows: usize, design: f64) -> Self {
+        let mut at: Vec<f64> = (0..rows).map(|j| j as f64).collect();
+        let base = at.partition_point(|&v| v < design);
+        let added = at.get(base) != Some(&design);
+        if added {
+            at.insert(base, design);
+        }
+        Levels { at, base, added }
+    }
+
+    fn of_row(&self, row: usize) -> usize {
+        row + usize::from(self.added && row >= self.base)
+    }
+
+    fn position(&self, column: usize, level: usize) -> Option<Position> {
+        Some((column as f64, *self.at.get(level)?))
+    }
+}
+
+/// The mode at each level of each column.
+fn columns(
+    ground: &Ground<'_>,
+    design: Position,
+    levels: &Levels,
+    mode: &Mode,
+) -> Vec<Vec<Option<Spot>>> {
+    let points = ground.axes[0].points;
+    let Some(start) = ground.spot(design, mode.s, mode.s.norm()) else {
+        return vec![vec![None; levels.at.len()]; points];
+    };
+    let mut base = vec![None; points];
+    let first = (design.0.ceil().max(0.0) as usize).min(points);
+    let onward = |base: &mut Vec<Option<Spot>>, columns: &mut dyn Iterator<Item = usize>| {
+        let mut here = start;
+        for i in columns {
+            let Some(there) = ground.carry(&here, (i as f64, design.1)) else {
+                break;
+            };
+            if let Some(slot) = base.get_mut(i) {
+                *slot = Some(there);
+            }
+            here = there;
         }
     };
-    offer(&mut open, j * columns + i, mode.s);
-    while let Some(Reverse(step)) = open.pop() {
-        match found.get_mut(step.to) {
-            Some(slot @ None) => *slot = Some(step.mode),
-            _ => continue,
-        }
-        let (i, j) = ((step.to % columns) as isize, (step.to / columns) as isize);
-        for (di, dj) in [(1, 0), (-1, 0), (0, 1), (0, -1)] {
-            let at = |k: isize| {
-                let (i, j) = (i + k * di, j + k * dj);
-                let inside = i >= 0 && j >= 0 && i < columns as isize && j < rows as isize;
-                inside.then(|| j as usize * columns + i as usize)
+    onward(&mut base, &mut (first..points));
+    onward(&mut base, &mut (0..first).rev());
+    base.into_par_iter()
+        .enumerate()
+        .map(|(i, spot)| column(ground, levels, i, spot))
+        .collect()
+}
+
+/// The mode up and down a column, as far as it can be followed.
+fn column(
+    ground: &Ground<'_>,
+    levels: &Levels,
+    column: usize,
+    base: Option<Spot>,
+) -> Vec<Option<Spot>> {
+    let mut spots = vec![None; levels.at.len()];
+    let Some(start) = base else { return spots };
+    let mut onward = |numbers: &mut dyn Iterator<Item = usize>| {
+        let mut here = start;
+        for l in numbers {
+            let there = levels.position(column, l);
+            let Some(there) = there.and_then(|at| ground.carry(&here, at)) else {
+                break;
             };
-            let Some(to) = at(1).filter(|&k| found.get(k).is_some_and(Option::is_none)) else {
-                continue;
-            };
-            let before = at(-1).and_then(|k| found.get(k).copied().flatten());
-            let guess = before.map_or(step.mode.s, |b| step.mode.s * 2.0 - b.s);
-            offer(&mut open, to, guess);
+            if let Some(slot) = spots.get_mut(l) {
+                *slot = Some(there);
+            }
+            here = there;
+        }
+    };
+    onward(&mut (levels.base..levels.at.len()));
+    onward(&mut (0..levels.base).rev());
+    spots
+}
+
+/// What two neighbours of a row are to each other.
+#[derive(Clone, Copy, Debug, PartialEq)]
+enum Tie {
+    /// The mode is not known at both.
+    Open,
+    /// One mode.
+    Same,
+    /// Two.
+    Other,
+}
+
+/// Where neighbours are two modes: what the left one becomes at the right, and the right one at the left, as
+/// far as that can be said.
+#[derive(Clone, Copy, Debug, Default, PartialEq)]
+struct Crossed {
+    right: Option<Spot>,
+    left: Option<Spot>,
+}
+
+/// Two neighbouring columns.
+struct Gap<'a> {
+    ground: &'a Ground<'a>,
+    levels: &'a Levels,
+    column: usize,
+    left: &'a [Option<Spot>],
+    ties: Vec<Tie>,
+    crossed: Vec<Crossed>,
+}
+
+impl<'a> Gap<'a> {
+    fn new(
+        ground: &'a Ground<'a>,
+        levels: &'a Levels,
+        column: usize,
+        (left, right): (&'a [Option<Spot>], &[Option<Spot>]),
+    ) -> Self {
+        let each = left.iter().zip(right).map(|(a, b)| match (a, b) {
+            (Some(a), Some(b)) => tie(ground, a, b),
+            _ => (Tie::Open, Crossed::default()),
+        });
+        let (ties, crossed) = each.unzip();
+        Gap {
+            ground,
+            levels,
+            column,
+            left,
+            ties,
+            crossed,
         }
     }
-    found
-}
 
-fn nearest(axis: Axis, value: f64) -> usize {
-    let last = axis.points.saturating_sub(1);
-    let share = (value - axis.low) / (axis.high - axis.low);
-    let index = (share * last as f64).round();
-    // A degenerate axis has one point, and any value is nearest to it.
-    if index > 0.0 {
-        (index as usize).min(last)
-    } else {
-        0
-    }
-}
-
-/// The candidate nearest to a guess with its doubt; none where another is about as near. A lone candidate is
-/// held against the size of the window.
-fn clearest(candidates: &[Mode], guess: Complex64, map: &Map) -> Option<(Mode, f64)> {
-    let mut ranked: Vec<(f64, Mode)> = candidates
-        .iter()
-        .map(|m| ((m.s - guess).norm(), *m))
-        .collect();
-    ranked.sort_by(|a, b| a.0.total_cmp(&b.0));
-    let &(near, mode) = ranked.first()?;
-    let window = map.window.rectangle();
-    let size = (window.growth.1 - window.growth.0).min(window.omega.1 - window.omega.0);
-    let second = ranked.get(1).map_or(f64::INFINITY, |r| r.0);
-    let doubt = near / second.min(size);
-    (doubt <= CLEAR).then_some((mode, doubt))
-}
-
-#[cfg(test)]
-mod tests {
-    use super::*;
-    use crate::knobs::KnobId;
-    use crate::modes::Window;
-    use crate::studies::map::Point;
-
-    fn mode(growth: f64, omega: f64) -> Mode {
-        Mode {
-            s: Complex64::new(growth, omega),
-            error_bound: 0.0,
-            multiplicity: 1,
-        }
-    }
-
-    fn plane(columns: usize, rows: usize) -> Map {
-        let axis = |points| Axis {
-            knob: KnobId(0),
-            low: -1.0,
-            high: 1.0,
-            points,
+    /// The cuts between the columns, with the exceptional points at their ends and beside them.
+    fn cuts(&self) -> (Vec<Cut>, Vec<Exceptional>) {
+        let mut cuts = Vec::new();
+        let mut points: Vec<Exceptional> = Vec::new();
+        let mut begun: Option<(Option<Position>, f64)> = None;
+        let middle = self.column as f64 + 0.5;
+        let mut end = |begun: Option<(Option<Position>, f64)>, at: Option<Position>, v: f64| {
+            let Some((from, low)) = begun else { return };
+            // Where only one end is known the cut keeps to its column.
+            let u = from.or(at).map_or(middle, |p| p.0);
+            cuts.push(Cut {
+                column: self.column,
+                from: from.unwrap_or((u, low)),
+                to: at.unwrap_or((u, v)),
+            });
         };
-        Map {
-            across: axis(columns),
-            up: axis(rows),
-            window: Window {
-                frequency: (0.0, 1000.0),
-                growth: (-500.0, 500.0),
-            },
-            points: vec![Point::Certified(Default::default()); columns * rows],
-            lists: None,
-        }
-    }
-
-    #[test]
-    fn a_mode_is_followed_through_a_crossing_of_growth_rates() {
-        // Two modes of different frequency whose growth rates change places: each keeps its name.
-        let map = plane(41, 5);
-        let lists: Vec<Vec<Mode>> = (0..41 * 5)
-            .map(|k| {
-                let x = map.across.value(k % 41);
-                vec![mode(100.0 * x, 2000.0 + 20.0 * x), mode(-100.0 * x, 2400.0)]
-            })
-            .collect();
-        let found = follow(&map, &lists, (-1.0, 0.0), &lists[0][0]);
-        for (k, m) in found.iter().enumerate() {
-            assert_eq!(m.unwrap().s, lists[k][0].s);
-        }
-    }
-
-    #[test]
-    fn around_a_meeting_of_two_modes_a_cut_remains_and_nothing_jumps_elsewhere() {
-        // s = 3000 i + 200 sqrt(x + i y): a branch point at the origin.
-        let map = plane(40, 40);
-        let lists: Vec<Vec<Mode>> = (0..1600)
-            .map(|k| {
-                let z = Complex64::new(map.across.value(k % 40), map.up.value(k / 40)).sqrt();
-                let s = Complex64::new(0.0, 3000.0);
-                [1.0, -1.0]
-                    .map(|sign| s + z * 200.0 * sign)
-                    .map(|s| mode(s.re, s.im))
-                    .to_vec()
-            })
-            .collect();
-        let found = follow(&map, &lists, (1.0, 0.0), &lists[20 * 40 + 39][0]);
-        let known = found.iter().flatten().count();
-        assert!(known > 1500, "{known}");
-        let jumps = (0..1600)
-            .filter(|k| k % 40 < 39)
-            .filter(|&k| match (found[k], found[k + 1]) {
-                (Some(a), Some(b)) => (a.s - b.s).norm() > 100.0,
-                _ => false,
-            })
-            .count();
-        // One cut from the meeting to the rim, at most.
-        assert!(jumps <= 40, "{jumps}");
-    }
-
-    #[test]
-    fn a_mode_that_leaves_the_window_is_not_replaced_by_another() {
-        let map = plane(30, 1);
-        let lists: Vec<Vec<Mode>> = (0..30)
-            .map(|k| {
-                let mut list = vec![mode(-50.0, 4000.0)];
-                if k < 15 {
-                    list.push(mode(20.0 * k as f64, 2000.0));
+        let mut before = Tie::Open;
+        let mut below = 0.0;
+        for (l, (&tie, &v)) in self.ties.iter().zip(&self.levels.at).enumerate() {
+            let lower = l.saturating_sub(1);
+            let met = match (before, tie) {
+                (Tie::Same, Tie::Other) => self.meeting(l, self.spot(l), self.crossed(l).left),
+                (Tie::Other, Tie::Same) => {
+                    self.meeting(l, self.spot(lower), self.crossed(lower).left)
                 }
-                list
-            })
-            .collect();
-        let found = follow(&map, &lists, (-1.0, 0.0), &lists[0][1]);
-        assert!(found[..15].iter().all(|m| m.unwrap().s.im == 2000.0));
-        assert!(found[15..].iter().all(Option::is_none));
+                (Tie::Other, Tie::Other) => self.beside(l),
+                _ => None,
+            };
+            points.extend(met);
+            let at = met.map(|m| m.at);
+            match (before, tie) {
+                (Tie::Other, Tie::Same) => end(begun.take(), at, v),
+                (Tie::Other, Tie::Open) => end(begun.take(), None, below),
+                (Tie::Same | Tie::Open, Tie::Other) => begun = Some((at, v)),
+                _ => {}
+            }
+            (before, below) = (tie, v);
+        }
+        end(begun.take(), None, below);
+        (cuts, points)
     }
+
+    fn spot(&self, level: usize) -> Option<Spot> {
+        self.left.get(level).copied().flatten()
+    }
+
+    fn crossed(&self, level: usize) -> Crossed {
+        self.crossed.get(level).copied().unwrap_or_default()
+    }
+
+    /// The exceptional point in the cell below a level, of two modes of its left side.
+    fn meeting(&self, level: usize, a: Option<Spot>, b: Option<Spot>) -> Option<Exceptional> {
+        let upper = *self.levels.at.get(level)?;
+        let lower = *self.levels.at.get(level.checked_sub(1)?)?;
+        let column = self.column as f64;
+        let middle = (column + 0.5, 0.5 * (lower + upper));
+        let a = a?;
+        let s = b.map_or(a.s(), |b| 0.5 * (a.s() + b.s()));
+        let within = |m: &Meeting| {
+            m.at.0 >= column - BESIDE
+                && m.at.0 <= column + 1.0 + BESIDE
+                && m.at.1 >= lower - BESIDE
+                && m.at.1 <= upper + BESIDE
+        };
+        let met = self.ground.meeting(middle, s).filter(within);
+        Some(Exceptional {
+            at: met.map_or(middle, |m| m.at),
+            s: met.map(|m| m.s),
+        })
+    }
+
+    /// An exceptional point of the other modes at a cut, in the cell below a level: the mode that one side
+    /// becomes on the other does not go on as it does a level higher.
+    fn beside(&self, level: usize) -> Option<Exceptional> {
+        let (before, here) = (self.crossed(level.checked_sub(1)?), self.crossed(level));
+        let changed = |a: Option<Spot>, b: Option<Spot>| {
+            let (a, b) = (a?, b?);
+            if a.leads_to(&b) {
+                return None;
+            }
+            let there = self.ground.carry(&a, b.at)?;
+            (!there.is(&b)).then_some((there, b))
+        };
+        let (a, b) =
+            changed(before.left, here.left).or_else(|| changed(before.right, here.right))?;
+        self.meeting(level, Some(a), Some(b))
+    }
+}
+
+fn tie(ground: &Ground<'_>, a: &Spot, b: &Spot) -> (Tie, Crossed) {
+    let same = (Tie::Same, Crossed::default());
+    if a.leads_to(b) {
+        return same;
+    }
+    let right = ground.carry(a, b.at);
+    if right.is_some_and(|right| right.is(b)) {
+        return same;
+    }
+    let left = ground.carry(b, a.at);
+    if left.is_some_and(|left| left.is(a)) {
+        return same;
+    }
+    // On a line through an exceptional point neither way is open; the neighbours are not tied then.
+    (Tie::Other, Crossed { right, left })
 }

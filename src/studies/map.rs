@@ -44,6 +44,32 @@ impl Axis {
         }
     }
 
+    /// The value at a position in steps from the first.
+    pub fn between(&self, position: f64) -> f64 {
+        let index = position.round();
+        if index == position && index >= 0.0 {
+            return self.value(index as usize);
+        }
+        self.low + self.step() * position
+    }
+
+    /// What the value changes in a step.
+    pub fn step(&self) -> f64 {
+        (self.high - self.low) / self.points.saturating_sub(1).max(1) as f64
+    }
+
+    /// The position of a value in steps from the first.
+    pub fn position(&self, value: f64) -> f64 {
+        let position = (value - self.low) / self.step();
+        let index = position.round();
+        // A value of the axis lies on its point, not beside it by rounding.
+        if index >= 0.0 && self.value(index as usize) == value {
+            index
+        } else {
+            position
+        }
+    }
+
     /// Every value in order.
     pub fn values(&self) -> Vec<f64> {
         (0..self.points).map(|i| self.value(i)).collect()
@@ -154,11 +180,11 @@ impl Map {
 impl Map {
     /// The same map of one mode alone, as it was followed.
     #[must_use]
-    pub fn of_one(mut self, followed: Vec<Option<Mode>>) -> Map {
+    pub fn of_one(mut self, followed: &[Option<Mode>]) -> Map {
         for (point, mode) in self.points.iter_mut().zip(followed) {
             match point {
                 Point::Certified(found) | Point::Doubtful { found, .. } => {
-                    found.leading = mode;
+                    found.leading = *mode;
                     found.outside = None;
                 }
                 Point::Failed(_) => {}

@@ -3,6 +3,10 @@
 //! The largest growth rate is continuous over a plane; the frequency of the mode that has it jumps where
 //! another mode takes the lead. Two neighbours belong to one region where their frequencies differ by little, or by
 //! no more than several times as much as on either side of them along the same line.
+//!
+//! Ties of modes from point to point (see [`branch`](super::branch)) would not give regions: around a meeting of two
+//! modes they lead from one to the other, so all points led by either would be one region. What is wanted
+//! here is where the frequency that is heard jumps, and that can be seen from the leading modes alone.
 
 use super::map::Map;
 use crate::modes::Mode;

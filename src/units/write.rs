@@ -51,6 +51,35 @@ pub fn write_rounded(value: f64, dimension: Dimension, digits: usize) -> String 
     in_unit(&format!("{value:.places$e}"), value, dimension)
 }
 
+/// From here on the digits before the point say nothing, and the number is written with an exponent.
+const BEYOND: f64 = 1e9;
+
+/// A number for a sentence or a table, to so many decimals: a hyphen for a minus, no negative zero,
+/// with an exponent where it is huge.
+pub fn write_decimals(value: f64, decimals: usize) -> String {
+    if value.abs() >= BEYOND {
+        return format!("{value:.3e}");
+    }
+    let text = format!("{value:.decimals$}");
+    match text.strip_prefix('-') {
+        Some(digits) if is_zero(digits) => digits.to_owned(),
+        _ => text,
+    }
+}
+
+/// The same with its sign, which zero has none of.
+pub fn write_signed(value: f64, decimals: usize) -> String {
+    let text = write_decimals(value, decimals);
+    match text.as_str() {
+        t if t.starts_with('-') || is_zero(t) => text,
+        t => format!("+{t}"),
+    }
+}
+
+fn is_zero(digits: &str) -> bool {
+    digits.bytes().all(|b| matches!(b, b'0' | b'.'))
+}
+
 fn in_unit(scientific: &str, value: f64, dimension: Dimension) -> String {
     let units = shown(dimension);
     // Zero in the first unit, as `0 m`.

@@ -12,6 +12,7 @@
 use super::complex::Cx;
 use crate::numerics::analytic::{Region, TAYLOR};
 use crate::numerics::dual::Real;
+use crate::numerics::number::{Bounding, Number, Over};
 
 /// One contribution to a measure of delays: normally distributed about `delay`.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -138,15 +139,16 @@ impl<T: Real> Law<T> {
     }
 
     /// The first `N` Taylor coefficients of `F` about `s`.
-    #[inline]
-    pub fn taylor<const N: usize>(&self, s: Cx<T>) -> [Cx<T>; N] {
+    #[inline(always)]
+    pub fn taylor<V: Over<T>, const N: usize>(&self, s: Cx<V>) -> [Cx<V>; N] {
+        let zero = T::from(0.0);
         match self {
             Law::Delays(delays) => {
-                let mut sum = [Cx::real(T::from(0.0)); N];
+                let mut sum = [Cx::from_real(zero, zero); N];
                 for d in delays {
-                    let part: [Cx<T>; N] = exponential(s, d.delay, d.spread);
+                    let part: [Cx<V>; N] = exponential(s, d.delay, d.spread);
                     for (a, b) in sum.iter_mut().zip(part) {
-                        *a = *a + b.scale(d.weight);
+                        *a = b.scale_add(d.weight, *a);
                     }
                 }
                 sum
@@ -155,13 +157,14 @@ impl<T: Real> Law<T> {
                 coefficients: [a, b, c],
                 delay,
             } => {
+                let real = |x: T| Cx::from_real(x, zero);
                 let sc = s.scale(*c);
-                let mut p = [Cx::real(T::from(0.0)); N];
+                let mut p = [real(zero); N];
                 for (k, slot) in p.iter_mut().enumerate() {
                     *slot = match k {
-                        0 => Cx::real(*a) + s * (Cx::real(*b) + sc),
-                        1 => Cx::real(*b) + sc + sc,
-                        2 => Cx::real(*c),
+                        0 => real(*a) + s * (real(*b) + sc),
+                        1 => real(*b) + sc + sc,
+                        2 => real(*c),
                         _ => *slot,
                     };
                 }
@@ -172,16 +175,23 @@ impl<T: Real> Law<T> {
                 }
             }
             Law::Complex { re, im, delay } => {
-                point_delay(s, *delay).map(|e: Cx<T>| e * Cx::new(*re, *im))
+                let constant = Cx::new(V::constant(*re), V::constant(*im));
+                {
+                    let mut e: [Cx<V>; N] = point_delay(s, *delay);
+                    for e in &mut e {
+                        *e = *e * constant;
+                    }
+                    e
+                }
             }
         }
     }
 }
 
 /// Taylor coefficients of `exp(-s t)`.
-#[inline]
-pub fn point_delay<T: Real, const N: usize>(s: Cx<T>, t: T) -> [Cx<T>; N] {
-    let mut e = [(-s).scale(t).exp(); N];
+#[inline(always)]
+pub fn point_delay<T: Real, V: Over<T>, const N: usize>(s: Cx<V>, t: T) -> [Cx<V>; N] {
+    let mut e = [s.scale(-t).exp(); N];
     for k in 1..N {
         e[k] = e[k - 1].scale(-t / k as f64);
     }
@@ -189,18 +199,19 @@ pub fn point_delay<T: Real, const N: usize>(s: Cx<T>, t: T) -> [Cx<T>; N] {
 }
 
 /// Taylor coefficients of `exp(g)`, `g = -s t + s^2 d^2/2`, by `k e_k = sum_j j g_j e_{k-j}`.
-fn exponential<T: Real, const N: usize>(s: Cx<T>, t: T, d: T) -> [Cx<T>; N] {
+#[inline(always)]
+fn exponential<T: Real, V: Over<T>, const N: usize>(s: Cx<V>, t: T, d: T) -> [Cx<V>; N] {
     if d.is_exactly_zero() {
         return point_delay(s, t);
     }
     let half = d * d * 0.5;
-    let g0 = (-s).scale(t) + (s * s).scale(half);
-    let g1 = Cx::real(-t) + s.scale(half * 2.0);
+    let g0 = (s * s).scale_add(half, s.scale(-t));
+    let g1 = s.scale_add(half * 2.0, Cx::from_real(-t, T::from(0.0)));
     let mut e = [g0.exp(); N];
     for k in 1..N {
         let mut next = g1 * e[k - 1];
         if k >= 2 {
-            next = next + e[k - 2].scale(half * 2.0);
+            next = e[k - 2].scale_add(half * 2.0, next);
         }
         e[k] = next.scale(T::from(1.0 / k as f64));
     }
@@ -208,15 +219,17 @@ fn exponential<T: Real, const N: usize>(s: Cx<T>, t: T, d: T) -> [Cx<T>; N] {
 }
 
 /// Product of two Taylor series.
-#[inline]
-pub fn product<T: Real, const N: usize>(a: &[Cx<T>; N], b: &[Cx<T>; N]) -> [Cx<T>; N] {
-    std::array::from_fn(|k| {
+#[inline(always)]
+pub fn product<V: Number, const N: usize>(a: &[Cx<V>; N], b: &[Cx<V>; N]) -> [Cx<V>; N] {
+    let mut c = *b;
+    for k in 0..N {
         let mut sum = a[0] * b[k];
         for j in 1..=k {
             sum = sum + a[j] * b[k - j];
         }
-        sum
-    })
+        c[k] = sum;
+    }
+    c
 }
 
 /// Bounds of `|F^(k)|/k!`, `k = 0..TAYLOR`, over a region.
@@ -227,14 +240,16 @@ pub fn product<T: Real, const N: usize>(a: &[Cx<T>; N], b: &[Cx<T>; N]) -> [Cx<T
 /// the lesser of the two counts.
 impl Law<f64> {
     /// The bounds.
-    pub fn majorant(&self, region: &Region) -> [f64; TAYLOR] {
+    #[inline(always)]
+    pub fn majorant<V: Bounding>(&self, region: &Region<V>) -> [V; TAYLOR] {
+        let real = V::constant;
         match self {
             Law::Delays(delays) => {
-                let mut sum = [0.0; TAYLOR];
+                let mut sum = [real(0.0); TAYLOR];
                 for d in delays {
                     let part = spread_majorant(region, d.delay, d.spread);
                     for (a, b) in sum.iter_mut().zip(part) {
-                        *a += d.weight.abs() * b;
+                        *a = b.scaled_add(d.weight.abs(), *a);
                     }
                 }
                 sum
@@ -244,73 +259,100 @@ impl Law<f64> {
                 delay,
             } => {
                 let r = region.modulus;
-                let mut p = [0.0; TAYLOR];
-                p[0] = a.abs() + r * (b.abs() + r * c.abs());
-                p[1] = b.abs() + 2.0 * r * c.abs();
-                p[2] = c.abs();
+                let [a, b, c] = [a.abs(), b.abs(), c.abs()];
+                let mut p = [real(0.0); TAYLOR];
+                p[0] = r.scaled_add(c, real(b)).mul_add(r, real(a));
+                p[1] = r.scaled_add(2.0 * c, real(b));
+                p[2] = real(c);
                 real_product(&p, &delay_majorant(region, *delay))
             }
             Law::Complex { re, im, delay } => {
-                delay_majorant(region, *delay).map(|e| e * re.hypot(*im))
+                let size = re.hypot(*im);
+                delay_majorant(region, *delay).map(|e| e.scaled(size))
             }
         }
     }
 }
 
 /// Bounds for `exp(-s t)`, `t >= 0`.
-#[inline]
-pub fn delay_majorant(region: &Region, t: f64) -> [f64; TAYLOR] {
-    let mut e = [(-region.growth.0 * t).exp(); TAYLOR];
+#[inline(always)]
+pub fn delay_majorant<V: Bounding>(region: &Region<V>, t: f64) -> [V; TAYLOR] {
+    let mut e = [region.growth.0.scaled(-t).exp(); TAYLOR];
     for k in 1..TAYLOR {
-        e[k] = e[k - 1] * t / k as f64;
+        e[k] = e[k - 1].scaled(t / k as f64);
     }
     e
 }
 
-fn spread_majorant(region: &Region, t: f64, d: f64) -> [f64; TAYLOR] {
+#[inline(always)]
+fn spread_majorant<V: Bounding>(region: &Region<V>, t: f64, d: f64) -> [V; TAYLOR] {
     if d == 0.0 {
         return delay_majorant(region, t);
     }
-    let edge = |sigma: f64| {
-        // exp(-sigma t) times a normal density is a shifted normal density: mean m, same spread.
-        let m = t - sigma * d * d;
-        let scale = (-sigma * t + 0.5 * (sigma * d).powi(2)).exp();
-        let (m2, d2) = (m * m, d * d);
-        let second = m2 + d2;
-        let fourth = m2 * m2 + 6.0 * m2 * d2 + 3.0 * d2 * d2;
-        // Odd absolute moments by Cauchy-Schwarz from the even ones.
-        [
-            scale,
-            scale * second.sqrt(),
-            scale * second / 2.0,
-            scale * (second * fourth).sqrt() / 6.0,
-            scale * fourth / 24.0,
-        ]
-    };
-    let (a, b) = (edge(region.growth.0), edge(region.growth.1));
+    let a = shifted_moments(region.growth.0, t, d);
+    let b = shifted_moments(region.growth.1, t, d);
     let faded = faded_majorant(region, t, d);
-    std::array::from_fn(|k| a[k].max(b[k]).min(faded[k]))
+    let mut least = a;
+    for k in 0..TAYLOR {
+        least[k] = a[k].max(b[k]).min(faded[k]);
+    }
+    least
+}
+
+/// `exp(-sigma t)` times a normal density is a shifted normal density: mean `t - sigma d^2`, same spread.
+/// Odd absolute moments by Cauchy-Schwarz from the even ones.
+#[inline(always)]
+fn shifted_moments<V: Bounding>(sigma: V, t: f64, d: f64) -> [V; TAYLOR] {
+    let d2 = d * d;
+    let m = sigma.scaled_add(-d2, V::constant(t));
+    let scale = (sigma * sigma).scaled_add(0.5 * d2, sigma.scaled(-t)).exp();
+    let m2 = m * m;
+    let second = m2 + V::constant(d2);
+    let fourth = m2.mul_add(m2 + V::constant(6.0 * d2), V::constant(3.0 * d2 * d2));
+    [
+        scale,
+        scale * second.sqrt(),
+        (scale * second).scaled(0.5),
+        (scale * (second * fourth).sqrt()).scaled(1.0 / 6.0),
+        (scale * fourth).scaled(1.0 / 24.0),
+    ]
 }
 
 /// From `g = -s t + s^2 d^2/2`: the greatest `|exp(g)|`, and `k e_k <= |g'| e_{k-1} + d^2 e_{k-2}`.
-fn faded_majorant(region: &Region, t: f64, d: f64) -> [f64; TAYLOR] {
+#[inline(always)]
+fn faded_majorant<V: Bounding>(region: &Region<V>, t: f64, d: f64) -> [V; TAYLOR] {
     let (d2, (low, high)) = (d * d, region.growth);
-    let exponent =
-        |sigma: f64| -sigma * t + 0.5 * (sigma - region.omega) * (sigma + region.omega) * d2;
-    let real = (t - low * d2).abs().max((t - high * d2).abs());
-    let slope = real.hypot(region.modulus * d2);
+    let exponent = |sigma: V| {
+        let squares = (sigma - region.omega) * (sigma + region.omega);
+        squares.scaled_add(0.5 * d2, sigma.scaled(-t))
+    };
+    let slope_at = |sigma: V| sigma.scaled_add(-d2, V::constant(t)).abs();
+    let real = slope_at(low).max(slope_at(high));
+    let imaginary = region.modulus.scaled(d2);
+    let slope = real.mul_add(real, imaginary * imaginary).sqrt();
     let mut e = [exponent(low).max(exponent(high)).exp(); TAYLOR];
     for k in 1..TAYLOR {
-        let before = if k >= 2 { e[k - 2] * d2 } else { 0.0 };
-        e[k] = (slope * e[k - 1] + before) / k as f64;
+        let mut next = slope * e[k - 1];
+        if k >= 2 {
+            next = e[k - 2].scaled_add(d2, next);
+        }
+        e[k] = next.scaled(1.0 / k as f64);
     }
     e
 }
 
 /// Product of two series of bounds.
-#[inline]
-pub fn real_product(a: &[f64; TAYLOR], b: &[f64; TAYLOR]) -> [f64; TAYLOR] {
-    std::array::from_fn(|k| (0..=k).map(|j| a[j] * b[k - j]).sum())
+#[inline(always)]
+pub fn real_product<V: Number>(a: &[V; TAYLOR], b: &[V; TAYLOR]) -> [V; TAYLOR] {
+    let mut c = *b;
+    for k in 0..TAYLOR {
+        let mut sum = a[0] * b[k];
+        for j in 1..=k {
+            sum = a[j].mul_add(b[k - j], sum);
+        }
+        c[k] = sum;
+    }
+    c
 }
 
 #[cfg(test)]

@@ -96,6 +96,10 @@ impl Arithmetic<f64> for Split {
         self.add_scaled(a, 1.0, b)
     }
 
+    fn scaled(&self, k: f64, x: Parts) -> Parts {
+        self.add_scaled(self.zero(), k, x)
+    }
+
     fn add_scaled(&self, mut sum: Parts, k: f64, x: Parts) -> Parts {
         sum.degree = sum.degree.max(x.degree);
         for i in 0..=x.degree {
@@ -119,6 +123,12 @@ impl Arithmetic<f64> for Split {
             }
         }
         sum
+    }
+
+    type Delay = Parts;
+
+    fn delayed(&self, e: Parts, _: f64, x: Parts) -> Parts {
+        self.product(e, x)
     }
 
     fn delay(&self, t: f64) -> Parts {

@@ -9,13 +9,21 @@
 //! in `s` over numbers or duals, and the *majorant*, in which every coefficient is replaced by its
 //! modulus and every law by a bound of its derivatives, so that the result bounds `|D^(k)|/k!`.
 
+mod arithmetic;
+mod eight;
+mod writer;
+
 use num_complex::Complex64;
 
 use super::complex::Cx;
 use super::exterior::Dense;
-use super::law::{self, Law};
-use crate::numerics::analytic::{Analytic, Region, Rounding, TAYLOR};
+use super::law::Law;
+use crate::numerics::analytic::Rounding;
 use crate::numerics::dual::Real;
+use arithmetic::Taylor;
+
+pub(super) use arithmetic::Arithmetic;
+pub use writer::Writer;
 
 /// Most slots the vector may have.
 pub const MOST_SLOTS: usize = 64;
@@ -50,90 +58,6 @@ pub struct Tape<T> {
     symmetric: bool,
 }
 
-/// Arithmetic the tape is run in.
-pub(super) trait Arithmetic<T> {
-    type Element: Copy;
-    fn zero(&self) -> Self::Element;
-    fn one(&self) -> Self::Element;
-    fn add(&self, a: Self::Element, b: Self::Element) -> Self::Element;
-    fn add_scaled(&self, sum: Self::Element, k: T, x: Self::Element) -> Self::Element;
-    fn product(&self, a: Self::Element, b: Self::Element) -> Self::Element;
-    fn delay(&self, t: T) -> Self::Element;
-    fn law(&self, law: &Law<T>) -> Self::Element;
-}
-
-/// Taylor series of order `N - 1` about a point.
-struct Taylor<T, const N: usize>(Cx<T>);
-
-impl<T: Real, const N: usize> Arithmetic<T> for Taylor<T, N> {
-    type Element = [Cx<T>; N];
-    #[inline]
-    fn zero(&self) -> Self::Element {
-        [Cx::real(T::from(0.0)); N]
-    }
-    #[inline]
-    fn one(&self) -> Self::Element {
-        let mut one = self.zero();
-        one[0] = Cx::real(T::from(1.0));
-        one
-    }
-    #[inline]
-    fn add(&self, a: Self::Element, b: Self::Element) -> Self::Element {
-        std::array::from_fn(|i| a[i] + b[i])
-    }
-    #[inline]
-    fn add_scaled(&self, sum: Self::Element, k: T, x: Self::Element) -> Self::Element {
-        std::array::from_fn(|i| sum[i] + x[i].scale(k))
-    }
-    #[inline]
-    fn product(&self, a: Self::Element, b: Self::Element) -> Self::Element {
-        law::product(&a, &b)
-    }
-    #[inline]
-    fn delay(&self, t: T) -> Self::Element {
-        law::point_delay(self.0, t)
-    }
-    #[inline]
-    fn law(&self, law: &Law<T>) -> Self::Element {
-        law.taylor(self.0)
-    }
-}
-
-/// Bounds over a region.
-struct Majorant<'a>(&'a Region);
-
-impl Arithmetic<f64> for Majorant<'_> {
-    type Element = [f64; TAYLOR];
-    fn zero(&self) -> Self::Element {
-        [0.0; TAYLOR]
-    }
-    fn one(&self) -> Self::Element {
-        let mut one = [0.0; TAYLOR];
-        one[0] = 1.0;
-        one
-    }
-    #[inline]
-    fn add(&self, a: Self::Element, b: Self::Element) -> Self::Element {
-        std::array::from_fn(|i| a[i] + b[i])
-    }
-    #[inline]
-    fn add_scaled(&self, sum: Self::Element, k: f64, x: Self::Element) -> Self::Element {
-        std::array::from_fn(|i| sum[i] + k.abs() * x[i])
-    }
-    #[inline]
-    fn product(&self, a: Self::Element, b: Self::Element) -> Self::Element {
-        law::real_product(&a, &b)
-    }
-    #[inline]
-    fn delay(&self, t: f64) -> Self::Element {
-        law::delay_majorant(self.0, t)
-    }
-    #[inline]
-    fn law(&self, law: &Law<f64>) -> Self::Element {
-        law.majorant(self.0)
-    }
-}
-
 impl<T: Real> Sparse<T> {
     fn of(m: &Dense<T>) -> Self {
         let mut sparse = Sparse {
@@ -147,22 +71,19 @@ impl<T: Real> Sparse<T> {
         }
         sparse
     }
-
-    fn rows(&self) -> impl Iterator<Item = &[(u8, T)]> {
-        let mut from = 0;
-        self.ends.iter().map(move |&end| {
-            let row = &self.entries[from..end];
-            from = end;
-            row
-        })
-    }
 }
 
 /// `row . v`. The sum is held apart from the vectors, so that it can stay in registers.
-#[inline]
+#[inline(always)]
 fn dot<T: Real, A: Arithmetic<T>>(arithmetic: &A, row: &[(u8, T)], v: &[A::Element]) -> A::Element {
-    let add = |sum, &(j, k): &(u8, T)| arithmetic.add_scaled(sum, k, v[usize::from(j)]);
-    row.iter().fold(arithmetic.zero(), add)
+    let Some((&(j, k), rest)) = row.split_first() else {
+        return arithmetic.zero();
+    };
+    let mut sum = arithmetic.scaled(k, v[usize::from(j)]);
+    for &(j, k) in rest {
+        sum = arithmetic.add_scaled(sum, k, v[usize::from(j)]);
+    }
+    sum
 }
 
 impl<T: Copy> Sparse<T> {
@@ -200,6 +121,7 @@ impl<T: Copy> Tape<T> {
 }
 
 impl<T: Real> Tape<T> {
+    #[inline(always)]
     pub(super) fn run<A: Arithmetic<T>>(&self, arithmetic: &A) -> A::Element {
         match self.width {
             0..=2 => self.run_in::<A, 2>(arithmetic),
@@ -209,6 +131,7 @@ impl<T: Real> Tape<T> {
         }
     }
 
+    #[inline(always)]
     fn run_in<A: Arithmetic<T>, const W: usize>(&self, arithmetic: &A) -> A::Element {
         let (mut one, mut other) = ([arithmetic.zero(); W], [arithmetic.zero(); W]);
         let (mut v, mut next) = (&mut one, &mut other);
@@ -219,20 +142,24 @@ impl<T: Real> Tape<T> {
                     let e = arithmetic.delay(*delay);
                     for &i in slots {
                         let i = usize::from(i);
-                        v[i] = arithmetic.product(e, v[i]);
+                        v[i] = arithmetic.delayed(e, *delay, v[i]);
                     }
                 }
                 Op::Map { constant, lawful } => {
-                    for (n, row) in next.iter_mut().zip(constant.rows()) {
-                        *n = dot(arithmetic, row, v);
+                    let mut from = 0;
+                    for (n, &end) in next.iter_mut().zip(&constant.ends) {
+                        *n = dot(arithmetic, &constant.entries[from..end], v);
+                        from = end;
                     }
                     for (law, part) in lawful {
                         let f = arithmetic.law(law);
-                        for (n, row) in next.iter_mut().zip(part.rows()) {
-                            if !row.is_empty() {
-                                let x = dot(arithmetic, row, v);
+                        let mut from = 0;
+                        for (n, &end) in next.iter_mut().zip(&part.ends) {
+                            if end > from {
+                                let x = dot(arithmetic, &part.entries[from..end], v);
                                 *n = arithmetic.add(*n, arithmetic.product(f, x));
                             }
+                            from = end;
                         }
                     }
                     std::mem::swap(&mut v, &mut next);
@@ -262,183 +189,4 @@ impl<T: Real> Tape<T> {
     pub fn taylor_at<const N: usize>(&self, s: Complex64) -> [Cx<T>; N] {
         self.run(&Taylor(Cx::constant(s)))
     }
-}
-
-impl Analytic for Tape<f64> {
-    fn value_and_slope(&self, s: Complex64) -> (Complex64, Complex64) {
-        let [d, slope] = self.taylor_at::<2>(s);
-        (d.value(), slope.value())
-    }
-
-    fn taylor(&self, s: Complex64) -> [Complex64; 4] {
-        self.taylor_at::<4>(s).map(Cx::value)
-    }
-
-    fn bound(&self, region: &Region) -> [f64; TAYLOR] {
-        self.run(&Majorant(region))
-    }
-
-    fn rounding(&self) -> Rounding {
-        self.rounding
-    }
-
-    fn is_symmetric(&self) -> bool {
-        self.symmetric
-    }
-}
-
-/// Writes a tape, joining what can be joined.
-pub struct Writer<T> {
-    ops: Vec<Pending<T>>,
-    too_wide: bool,
-}
-
-enum Pending<T> {
-    Scale(Vec<(T, Vec<usize>)>),
-    Map {
-        constant: Dense<T>,
-        lawful: Vec<(Law<T>, Dense<T>)>,
-    },
-}
-
-impl<T: Real> Default for Writer<T> {
-    /// An empty program.
-    fn default() -> Self {
-        Writer {
-            ops: Vec::new(),
-            too_wide: false,
-        }
-    }
-}
-
-impl<T: Real> Writer<T> {
-    /// `v_i -> exp(-s t_i) v_i` with one delay for each slot.
-    pub fn scale(&mut self, delays: &[T]) {
-        let mut groups: Vec<(T, Vec<usize>)> = Vec::new();
-        for (i, &t) in delays.iter().enumerate() {
-            if t.is_exactly_zero() {
-                continue;
-            }
-            match groups.iter_mut().find(|(d, _)| (*d - t).is_exactly_zero()) {
-                Some((_, slots)) => slots.push(i),
-                None => groups.push((t, vec![i])),
-            }
-        }
-        if let Some(Pending::Scale(last)) = self.ops.last_mut()
-            && last.len() == groups.len()
-            && last.iter().zip(&groups).all(|(a, b)| a.1 == b.1)
-        {
-            for (a, b) in last.iter_mut().zip(groups) {
-                a.0 += b.0;
-            }
-            return;
-        }
-        if !groups.is_empty() {
-            self.ops.push(Pending::Scale(groups));
-        }
-    }
-
-    /// `v -> (C + sum F_k B_k) v`.
-    pub fn map(&mut self, constant: Dense<T>, lawful: Vec<(Law<T>, Dense<T>)>) {
-        self.too_wide |= constant.len() > MOST_SLOTS;
-        if let Some(Pending::Map {
-            constant: c,
-            lawful: l,
-        }) = self.ops.last_mut()
-        {
-            if l.is_empty() {
-                let before = std::mem::take(c);
-                *l = lawful
-                    .into_iter()
-                    .map(|(f, b)| (f, matrix_product(&b, &before)))
-                    .collect();
-                *c = matrix_product(&constant, &before);
-                return;
-            }
-            if lawful.is_empty() {
-                *c = matrix_product(&constant, c);
-                for (_, b) in l.iter_mut() {
-                    *b = matrix_product(&constant, b);
-                }
-                return;
-            }
-        }
-        self.ops.push(Pending::Map { constant, lawful });
-    }
-
-    /// The program; `None` where the vector would be longer than [`MOST_SLOTS`].
-    pub fn finish(self) -> Option<Tape<T>> {
-        if self.too_wide {
-            return None;
-        }
-        let mut tape = Tape {
-            ops: Vec::with_capacity(self.ops.len()),
-            width: 1,
-            rounding: Rounding {
-                values: 0.0,
-                arguments: 2.0,
-            },
-            symmetric: true,
-        };
-        for op in self.ops {
-            match op {
-                Pending::Scale(groups) => {
-                    for (delay, slots) in groups {
-                        // exp, sine and cosine to 1 ulp each and one complex product.
-                        tape.rounding.values += 8.0;
-                        tape.ops.push(Op::Scale {
-                            delay,
-                            slots: slots.iter().map(|&i| i as u8).collect(),
-                        });
-                    }
-                }
-                Pending::Map { constant, lawful } => {
-                    tape.width = tape.width.max(constant.len());
-                    let terms = |m: &Dense<T>| {
-                        m.iter()
-                            .map(|r| r.iter().filter(|x| !x.is_exactly_zero()).count())
-                            .max()
-                            .unwrap_or(0) as f64
-                    };
-                    // Laws of one map lie on parallel paths: the longest counts, sums add one each.
-                    let of_laws = lawful
-                        .iter()
-                        .map(|(f, b)| f.operations() + terms(b))
-                        .fold(0.0, f64::max);
-                    tape.rounding.values +=
-                        (2.0 + terms(&constant)).max(of_laws) + 1.0 + lawful.len() as f64;
-                    tape.symmetric &= lawful.iter().all(|(f, _)| f.is_symmetric());
-                    tape.ops.push(Op::Map {
-                        constant: Sparse::of(&constant),
-                        lawful: lawful
-                            .into_iter()
-                            .map(|(f, b)| (f, Sparse::of(&b)))
-                            .collect(),
-                    });
-                }
-            }
-        }
-        // First-order error analysis: a margin for the terms of second order.
-        tape.rounding.values *= 1.1;
-        Some(tape)
-    }
-}
-
-fn matrix_product<T: Real>(a: &Dense<T>, b: &Dense<T>) -> Dense<T> {
-    let columns = b.first().map_or(0, Vec::len);
-    a.iter()
-        .map(|row| {
-            (0..columns)
-                .map(|j| {
-                    let mut sum = T::from(0.0);
-                    for (&x, line) in row.iter().zip(b) {
-                        if !x.is_exactly_zero() && !line[j].is_exactly_zero() {
-                            sum += x * line[j];
-                        }
-                    }
-                    sum
-                })
-                .collect()
-        })
-        .collect()
 }

@@ -122,19 +122,23 @@ pub fn one_problem(text: &str, sets: &[&str], told: &Told<'_>) {
     let folder = tempfile::tempdir().unwrap();
     let path = folder.path().join("rig.toml");
     std::fs::write(&path, &text).unwrap();
-    let sets: Vec<&str> = sets.iter().flat_map(|s| ["--set", s]).collect();
-    told_by_the_program(&path, &sets, problem);
+    let options: Vec<&str> = sets.iter().flat_map(|s| ["--set", s]).collect();
+    // A mistake in an override is one of the command line, unless only the flow shows it.
+    let mistyped = input::read(&path, &[]).is_ok()
+        && in_set.is_some()
+        && input::parse("rig.toml", &text, &sets).is_err();
+    told_by_the_program(&path, &options, problem, if mistyped { 2 } else { 1 });
 }
 
 /// The program refuses the file with this problem only, and prints nothing that looks like a result.
-fn told_by_the_program(path: &Path, sets: &[&str], problem: &Problem) {
+fn told_by_the_program(path: &Path, sets: &[&str], problem: &Problem, expected: i32) {
     let place = problem.place.as_deref().unwrap();
     let source = match place.source.as_str() {
         "rig.toml" => path.display().to_string(),
         other => other.to_owned(),
     };
     let ran = run("modes", path, sets);
-    assert_eq!(ran.code, Some(1), "{}", ran.stderr);
+    assert_eq!(ran.code, Some(expected), "{}", ran.stderr);
     assert_eq!(ran.stdout, "");
     let head = format!(
         "{source}:{}:{}  error  `{}`\n",
@@ -160,7 +164,7 @@ fn told_by_the_program(path: &Path, sets: &[&str], problem: &Problem) {
         assert!(there.starts_with(&marked), "{}", ran.stderr);
     }
     let (value, code) = json("modes", path, sets);
-    assert_eq!(code, Some(1));
+    assert_eq!(code, Some(expected));
     assert_eq!(value["schema"], "stillflame/problems");
     let found = value["problems"].as_array().unwrap();
     assert_eq!(found.len(), 1, "{value}");

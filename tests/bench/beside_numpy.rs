@@ -12,21 +12,20 @@
 //! NumPy runs on one core; its map is told twice, searched at each point and followed along the delay.
 //! Neither proves anything: its steps along the window's edge are short, not bounded.
 
+mod machine;
 mod rigs;
 
-use std::error::Error;
 use std::hint::black_box;
 use std::path::PathBuf;
 use std::process::Command;
 use std::time::Instant;
 
+use machine::{Outcome, environment, file, load, processor, run};
 use num_complex::Complex64;
-use rigs::{POINTS, Rig, file};
+use rigs::{POINTS, Rig};
 use serde::Deserialize;
 use stillflame::modes::{self, Mode, ModeList, Scan};
 use stillflame::numerics::analytic::Analytic;
-
-type Outcome<T> = Result<T, Box<dyn Error>>;
 
 /// Largest relative distance between modes found here and there.
 const AGREE: f64 = 1e-8;
@@ -87,57 +86,12 @@ fn main() -> Outcome<()> {
     Ok(())
 }
 
-/// The Python of a virtual environment with what the script needs.
-fn environment() -> Outcome<PathBuf> {
-    let target = std::env::var_os("CARGO_TARGET_DIR").map_or_else(|| file("target"), PathBuf::from);
-    let folder = target.join("yardstick-venv");
-    run(Command::new("python3").args(["-m", "venv"]).arg(&folder))?;
-    let requirements = file("tests/yardstick/requirements.txt");
-    run(Command::new(folder.join("bin/pip"))
-        .args(["install", "--quiet", "--disable-pip-version-check", "-r"])
-        .arg(requirements))?;
-    Ok(folder.join("bin/python"))
-}
-
-fn run(command: &mut Command) -> Outcome<Vec<u8>> {
-    let output = command.output().map_err(|e| format!("{command:?}: {e}"))?;
-    if !output.status.success() {
-        let said = String::from_utf8_lossy(&output.stderr);
-        return Err(format!("{command:?} ended with {}:\n{said}", output.status).into());
-    }
-    Ok(output.stdout)
-}
-
 fn numpy(python: &PathBuf, chain: &str) -> Outcome<Numpy> {
     let told = run(Command::new(python)
         .arg(file("tests/yardstick/chains_numpy.py"))
         .arg("--chain")
         .arg(file(&format!("tests/yardstick/chains/{chain}.json"))))?;
     Ok(serde_json::from_slice(&told)?)
-}
-
-/// What the machine calls its processor.
-fn processor() -> String {
-    let told = std::fs::read_to_string("/proc/cpuinfo").unwrap_or_default();
-    let field = |key: &str| {
-        let line = told.lines().find(|l| l.starts_with(key))?;
-        Some(line.split_once(':')?.1.trim().to_owned())
-    };
-    let flags = field("flags").unwrap_or_default();
-    let has = |wanted: &&str| flags.split(' ').any(|f| f == *wanted);
-    let vectors: Vec<&str> = ["sse2", "avx2", "fma", "avx512f"]
-        .into_iter()
-        .filter(has)
-        .collect();
-    let name = field("model name").unwrap_or_else(|| std::env::consts::ARCH.to_owned());
-    format!("{name} ({})", vectors.join(", "))
-}
-
-/// How many processes wanted a core in the last minute: above the number of cores times are too long.
-fn load() -> String {
-    let told = std::fs::read_to_string("/proc/loadavg").unwrap_or_default();
-    let last_minute = told.split(' ').next().unwrap_or_default();
-    format!("load {last_minute}")
 }
 
 fn compare(rig: &Rig, numpy: &Numpy, cores: usize) -> Outcome<()> {

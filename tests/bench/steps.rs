@@ -5,16 +5,21 @@
 //! cargo bench --bench steps -- "mode list"  # those whose name holds the words
 //! ```
 
+#[path = "../common/mod.rs"]
+mod common;
 mod rigs;
 
 use std::hint::black_box;
-use std::time::Duration;
+use std::time::{Duration, Instant};
 
+use common::heater;
 use criterion::measurement::WallTime;
-use criterion::{BenchmarkGroup, Criterion, SamplingMode, criterion_group, criterion_main};
+use criterion::{
+    BenchmarkGroup, Criterion, SamplingMode, Throughput, criterion_group, criterion_main,
+};
 use num_complex::Complex64;
 use rigs::{POINTS, Rig};
-use stillflame::modes::{self, Scan};
+use stillflame::modes::{self, Scan, Solved};
 use stillflame::numerics::analytic::{Analytic, Region};
 use stillflame::numerics::count::Walker;
 
@@ -44,6 +49,23 @@ fn values(c: &mut Criterion) {
         let mut next = points.iter().cycle();
         group.bench_function(rig.name, |b| {
             b.iter(|| next.next().map(|&s| tape.value_and_slope(black_box(s))));
+        });
+    });
+}
+
+/// 1024 points at once: a thousandth of the time is that of a point.
+fn values_in_lanes(c: &mut Criterion) {
+    each(c, "D and slope at 1024 points", |group, rig| {
+        let tape = &rig.solved.acoustics.characteristic.tape;
+        let points = rig.points(1024);
+        let mut found = Vec::with_capacity(points.len());
+        group.throughput(Throughput::Elements(points.len() as u64));
+        group.bench_function(rig.name, |b| {
+            b.iter(|| {
+                found.clear();
+                tape.values_and_slopes(black_box(&points), &mut found);
+                found.last().copied()
+            });
         });
     });
 }
@@ -84,6 +106,34 @@ fn list(c: &mut Criterion) {
             });
         });
     });
+}
+
+/// Lists of a heater in an open tube at and beside its exceptional points: all in turn, and the one
+/// that takes most work.
+fn exceptional(c: &mut Criterion) {
+    let points = heater::points();
+    let all: Vec<Solved> = points
+        .iter()
+        .flat_map(|p| p.beside.iter().map(|b| heater::solved(&p.x_f, b)))
+        .collect();
+    let find = |solved: &Solved| {
+        let list = modes::find(black_box(solved), heater::WINDOW, Scan::Whole);
+        assert!(list.complete());
+        list
+    };
+    let slowest = all.iter().max_by_key(|solved| {
+        let begun = Instant::now();
+        for _ in 0..5 {
+            find(solved);
+        }
+        begun.elapsed()
+    });
+    let slowest = slowest.expect("points");
+    let mut group = c.benchmark_group("list beside an exceptional point");
+    let mut next = all.iter().cycle();
+    group.bench_function("all in turn", |b| b.iter(|| next.next().map(find)));
+    group.bench_function("the slowest", |b| b.iter(|| find(slowest)));
+    group.finish();
 }
 
 /// From a network to `D(s)`: mean flow, balances, elimination.
@@ -129,5 +179,16 @@ fn map(c: &mut Criterion) {
     });
 }
 
-criterion_group!(steps, values, bounds, count, list, solve, point, map);
+criterion_group!(
+    steps,
+    values,
+    values_in_lanes,
+    bounds,
+    count,
+    list,
+    exceptional,
+    solve,
+    point,
+    map
+);
 criterion_main!(steps);

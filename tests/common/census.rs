@@ -12,7 +12,7 @@ use stillflame::flame::ResponseLaw;
 use stillflame::waves::law::Law;
 use stillflame::waves::primitive::Step;
 
-use super::random::Drawn;
+use crate::common::random::Drawn;
 
 macro_rules! named {
     ($all:ident, $name:ident, $type:ty, { $($pattern:pat => $word:literal),* $(,)? }) => {

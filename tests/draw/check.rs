@@ -76,6 +76,17 @@ pub fn check_drawing(name: &str, svg: &str) {
             );
         }
     }
+    // Running text at the left margin leaves room for a viewer whose font is a tenth wider.
+    let texts = document.descendants().filter(|n| n.has_tag_name("text"));
+    for (node, (string, corners)) in texts.zip(text_corners(&document)) {
+        let running =
+            node.attribute("text-anchor").is_none() && node.attribute("transform").is_none();
+        let (left, right) = (corners[0].0, corners[1].0);
+        assert!(
+            !(running && left < 15.0) || left + 1.08 * (right - left) <= w,
+            "{name}: {string:?} reaches {right:.1} of {w}"
+        );
+    }
     let attributes = document.descendants().flat_map(|n| n.attributes());
     for a in attributes.filter(|a| !matches!(a.name(), "href" | "aria-label")) {
         assert!(

@@ -12,7 +12,8 @@ use figures::{
 use proptest::prelude::*;
 use roxmltree::Document;
 use stillflame::draw::{
-    DrawError, LineFigure, Scale, StabilityMap, contour, field::Field, lines, locus, map, text,
+    Cuts, DrawError, LineFigure, Scale, Seam, StabilityMap, contour, field::Field, lines, locus,
+    map, text,
 };
 
 #[test]
@@ -84,6 +85,58 @@ fn hatch_and_quiet_fill_stand_exactly_where_they_are_needed() {
             if absent { 2 } else { 0 },
             "{name}: quiet fill"
         );
+    }
+}
+
+/// From the last trusted sample to the next nothing is known: a curve ends where the hatching begins.
+#[test]
+fn hatching_of_a_sweep_meets_the_curves() {
+    let mut figure = sweep();
+    let count = figure.x_values.len();
+    for untrusted in [0..1, 3..4, 40..52, count - 2..count] {
+        figure.certified = (0..count).map(|i| !untrusted.contains(&i)).collect();
+        for series in figure.panels.iter_mut().flat_map(|p| &mut p.series) {
+            series.values = (0..count)
+                .map(|i| (!untrusted.contains(&i)).then_some(1.0 + i as f64))
+                .collect();
+        }
+        let svg = lines::render(&figure).unwrap();
+        let document = Document::parse(&svg).unwrap();
+        let paths = || document.descendants().filter(|n| n.has_tag_name("path"));
+        let hatched = paths()
+            .find(|n| n.attribute("fill").is_some_and(|f| f.ends_with("-hatch)")))
+            .and_then(|n| n.attribute("d"))
+            .unwrap();
+        // `M left top H right ...`
+        let numbers: Vec<f64> = hatched
+            .split(|c: char| !(c.is_ascii_digit() || c == '.'))
+            .filter_map(|n| n.parse().ok())
+            .collect();
+        let (left, right) = (numbers[0], numbers[2]);
+        let curve = paths()
+            .find(|n| n.attribute("stroke-width") == Some("1.9"))
+            .and_then(|n| n.attribute("d"))
+            .unwrap();
+        // Each stretch begins at `M x y`; the one behind the hatching at its right edge.
+        let starts: Vec<f64> = curve
+            .split('M')
+            .filter_map(|run| run.split(' ').next()?.parse().ok())
+            .collect();
+        let first = if untrusted.start == 0 { 0 } else { 1 };
+        match starts.get(first) {
+            Some(start) => assert!((start - right).abs() < 0.2, "{untrusted:?} {start} {right}"),
+            None => assert_eq!(untrusted.end, count),
+        }
+        // The left edge by the scale between the first sample and the right edge.
+        if untrusted.start > 0 && untrusted.end < count {
+            let x = &figure.x_values;
+            let part = (x[untrusted.start - 1] - x[0]) / (x[untrusted.end] - x[0]);
+            let expected = starts[0] + part * (right - starts[0]);
+            assert!(
+                (left - expected).abs() < 0.3,
+                "{untrusted:?} {left} {expected}"
+            );
+        }
     }
 }
 
@@ -159,6 +212,97 @@ fn lines_stop_at_holes() {
 }
 
 #[test]
+fn on_either_side_of_a_cut_the_field_comes_from_its_own_side() {
+    // Two planes that do not meet, parted at column 4.3 from row 2.4 upwards; below they are one.
+    let axis = samples(0.0, 9.0, 10);
+    let left = |x: f64, y: f64| 1.0 + 0.5 * x + y;
+    let right = |x: f64, y: f64| -20.0 - 0.25 * x + 2.0 * y;
+    let values = rows(&axis, &axis, |x, y| {
+        let far = x > 4.3 && y > 2.4;
+        Some(if far { right(x, y) } else { left(x, y) })
+    });
+    let seams = [Seam {
+        column: 4,
+        from: (4.3, 2.4),
+        to: (4.3, 9.0),
+    }];
+    let field = Field::new(&values).cut(&seams);
+    for v in [4.2, 5.0, 6.9, 8.5] {
+        for u in [3.5, 4.0, 4.1, 4.299] {
+            assert!(
+                (field.at(u, v).unwrap() - left(u, v)).abs() < 1e-9,
+                "{u} {v}"
+            );
+        }
+        for u in [4.301, 4.7, 5.0, 5.5] {
+            assert!(
+                (field.at(u, v).unwrap() - right(u, v)).abs() < 1e-9,
+                "{u} {v}"
+            );
+        }
+    }
+    // Lines end at the cut: none runs along it.
+    for level in [-14.0, -11.0, 5.0, 8.0] {
+        let found = contour::lines(&field, level, 4, |_, _| false);
+        for pair in found.iter().flat_map(|l| l.windows(2)) {
+            let across = (pair[0].0 < 4.3) != (pair[1].0 < 4.3);
+            assert!(
+                !across || pair[0].1.min(pair[1].1) < 3.0,
+                "{level}: {pair:?}"
+            );
+        }
+    }
+}
+
+#[test]
+fn a_cut_and_its_points_are_drawn_with_their_legend() {
+    let mut figure = full();
+    let plain = map::render(&figure).unwrap();
+    figure.cuts = Cuts {
+        caption: "a cut".into(),
+        point_caption: "a point".into(),
+        seams: vec![Seam {
+            column: 60,
+            from: (60.4, 20.0),
+            to: (60.4, 199.0),
+        }],
+        points: vec![(60.4, 20.0)],
+    };
+    let svg = map::render(&figure).unwrap();
+    check_drawing("cut", &svg);
+    assert!(svg.contains("a cut") && svg.contains("a point"));
+    assert!(svg.len() < 200_000, "{} bytes", svg.len());
+    assert!(!plain.contains("stroke-width=\"4.2\"") && svg.contains("stroke-width=\"4.2\""));
+    figure.cuts.points[0].1 = f64::NAN;
+    assert!(matches!(
+        map::render(&figure),
+        Err(DrawError::NotFinite { .. })
+    ));
+}
+
+#[test]
+fn of_two_by_two_points_each_is_a_quarter_of_the_figure() {
+    // However different the values are: one of four grows, a quarter of the figure shows it.
+    for strong in [0.1, 75.0, 1e4] {
+        for corner in 0..4 {
+            let value = |k: usize| Some(if k == corner { strong } else { -8.0 });
+            let values: Rows = vec![vec![value(0), value(1)], vec![value(2), value(3)]];
+            let field = Field::new(&values);
+            let place = |k: i32| (f64::from(k) + 0.5) / 100.0;
+            let grows = |(i, j)| field.at(place(i), place(j)).unwrap() > 0.0;
+            let all = (0..100).flat_map(|i| (0..100).map(move |j| (i, j)));
+            assert_eq!(all.filter(|p| grows(*p)).count(), 2500);
+            let lines = contour::lines(&field, 0.0, 65, |_, _| false);
+            let [line] = lines.as_slice() else {
+                panic!("{lines:?}");
+            };
+            let near = |x: f64| (x - 0.5).abs() < 0.02;
+            assert!(line.iter().all(|p| near(p.0) || near(p.1)));
+        }
+    }
+}
+
+#[test]
 fn contradictory_arrays_are_refused_with_their_place() {
     let refused = |change: &dyn Fn(&mut StabilityMap)| {
         let mut figure = base(4, 3);
@@ -205,6 +349,16 @@ fn numbers_carry_a_true_minus_and_equal_precision() {
         text::tidy("at -3 °C, low-swirl\n  burner"),
         "at −3 °C, low-swirl burner"
     );
+    // A sign that stands alone stays with its number, and no word parts behind a sign.
+    let wrapped = |text, limit| text::wrap(text, text::Weight::Regular, 10.0, limit, 9);
+    assert_eq!(wrapped("falls by − 5 Hz", 50.0), ["falls by", "− 5 Hz"]);
+    for limit in 12..90 {
+        let lines = wrapped("ab−12−34−56−78", f64::from(limit));
+        assert!(
+            lines.iter().rev().skip(1).all(|l| !l.ends_with('−')),
+            "{lines:?}"
+        );
+    }
     for c in "AZaz09ÀÿαωΔΩ−°×–¹²³⁻₀…≤√".chars() {
         assert!(text::covers(c), "{c}");
     }
@@ -231,6 +385,24 @@ proptest! {
     fn wrapped_lines_fit(words in "[A-Za-z0-9 äé−]{0,200}", limit in 20.0..300.0f64) {
         for line in text::wrap(&words, text::Weight::Regular, 11.0, limit, 4) {
             prop_assert!(text::width(&line, text::Weight::Regular, 11.0) <= limit);
+        }
+    }
+
+    #[test]
+    fn a_number_stays_with_its_unit(
+        quantities in proptest::collection::vec((-999.0..999.0f64, 0..6usize, "[a-z]{1,9}"), 1..12),
+        limit in 120.0..400.0f64,
+    ) {
+        let units = ["Hz", "1/s", "ms", "%", "J/(kg K)", "K,"];
+        let words = quantities.iter().map(|(x, unit, word)| {
+            format!("{word} {} {}", text::fixed(*x, 2), units[*unit])
+        });
+        let sentence = words.collect::<Vec<_>>().join(" ");
+        let lines = text::wrap(&sentence, text::Weight::Semibold, 11.0, limit, 99);
+        prop_assert_eq!(lines.join(" "), sentence);
+        for line in &lines {
+            let last = line.rsplit(' ').next().unwrap();
+            prop_assert!(last.replace('−', "-").parse::<f64>().is_err() && last != "J/(kg", "{}", line);
         }
     }
 

@@ -73,6 +73,8 @@ def reference_interface(network, k, reference):
     if reference is None:
         return k
     name, _, side = reference.partition(".")
+    if name in ("feed", "exit"):
+        return 0 if name == "feed" else len(network["element"])
     index = next(i for i, e in enumerate(network["element"]) if e["name"] == name)
     return index if side == "in" else index + 1
 

@@ -2,6 +2,7 @@
 
     python witness.py --self-check            closed-form cases of tests/data, and M -> 0
     python witness.py --solve FILE...         modes of network files
+    python witness.py --json FILE... [--jobs 2]   the same, one JSON object a line
     python witness.py --make 50 [--jobs 2]    write ../data/witness_modes.json
 
 exp(s t), s = sigma + i omega. Written from the conventions and balances of the physics alone; it shares no code
@@ -263,11 +264,23 @@ def reduction_error(network, stations):
     return max(abs(r / ratios[0] - 1) for r in ratios)
 
 
+def solve_to_json(name):
+    """One line of --json: modes, or why there are none."""
+    mp.dps = assembly.LINEARISING_DIGITS
+    try:
+        _, _, modes, figures = solve(Path(name).read_text())
+    except Exception as problem:  # whatever it cannot do is told, and ends no other network
+        return json.dumps({"file": name, "problem": f"{type(problem).__name__}: {problem}"})
+    listed = [[float(mp.re(s)), float(mp.im(s)), m] for s, m in modes]
+    return json.dumps({"file": name, "modes": listed, "how": figures["how"]})
+
+
 def main():
     parser = argparse.ArgumentParser(description=__doc__, formatter_class=argparse.RawDescriptionHelpFormatter)
     parser.add_argument("--self-check", action="store_true")
     parser.add_argument("--make", type=int, metavar="COUNT")
     parser.add_argument("--solve", nargs="+", metavar="FILE")
+    parser.add_argument("--json", nargs="+", metavar="FILE")
     parser.add_argument("--jobs", type=int, default=2)
     options = parser.parse_args()
     if options.self_check:
@@ -277,6 +290,10 @@ def main():
         print(f"{name}: {figures}")
         for s, m in modes:
             print(f"  {mp.nstr(mp.im(s) / (2 * mp.pi), 12)} Hz  {mp.nstr(mp.re(s), 12)} 1/s  x{m}")
+    if options.json:
+        with Pool(options.jobs) as pool:
+            for line in pool.imap_unordered(solve_to_json, options.json):
+                print(line, flush=True)
     if options.make:
         make(options.make, options.jobs)
 

@@ -9,8 +9,7 @@ use crate::draw::{
     locus,
 };
 use crate::report::figure::{engineers_unit, label};
-use crate::report::map::rate;
-use crate::report::{CAUTION, counted, window_text};
+use crate::report::{CAUTION, counted, rate, window_text};
 use crate::studies::path::{Parameter, Spacing};
 use crate::studies::sweep::{Branch, Kind, Place, State, Sweep};
 

@@ -1,14 +1,13 @@
 //! A sweep in words: its finding, its branches and its events.
 
 use super::{SweepReport, edge};
-use crate::draw::text::fixed;
 use crate::modes::Tendency;
-use crate::report::map::{percent, rate};
+use crate::report::map::percent;
 use crate::report::table::{Lean, Table};
-use crate::report::{closing, counted, window_text};
+use crate::report::{band, closing, counted, rate, window_text};
 use crate::studies::path::{Parameter, Spacing};
 use crate::studies::sweep::{Event, Kind};
-use crate::units::{Dimension, write_rounded};
+use crate::units::{Dimension, write_decimals, write_rounded};
 
 /// What happens at an event, for people.
 fn happens(event: &Event) -> String {
@@ -49,19 +48,22 @@ impl SweepReport<'_> {
         let (complete, not_certified, failed) = sweep.tally();
         let stretches = &sweep.unstable;
         let length: f64 = stretches.iter().map(|(a, b)| b - a).sum();
+        let band = band(&sweep.window);
         let mut text = match stretches.as_slice() {
             _ if complete == 0 => "No point of the sweep is certified".to_owned(),
             [] if complete == sweep.points.len() => {
-                "No mode in the window grows on the sweep".to_owned()
+                format!("No mode in {band} grows on the sweep")
             }
-            [] => "No mode grows where the sweep is certified".to_owned(),
-            [(a, b)] if *a <= 0.0 && *b >= 1.0 => "Unstable over the whole sweep".to_owned(),
+            [] => format!("No mode in {band} grows where the sweep is certified"),
+            [(a, b)] if *a <= 0.0 && *b >= 1.0 => {
+                format!("Unstable over the whole sweep in {band}")
+            }
             few if few.len() <= 3 => {
                 let parts: Vec<String> = few.iter().map(|s| self.stretch(*s)).collect();
-                format!("Unstable {}{}", self.of_what(), joined(&parts))
+                format!("Unstable {}{}, in {band}", self.of_what(), joined(&parts))
             }
             many => format!(
-                "Unstable over {:.0} % of the sweep, in {} stretches",
+                "Unstable over {:.0} % of the sweep, in {} stretches, in {band}",
                 100.0 * length,
                 many.len()
             ),
@@ -70,7 +72,7 @@ impl SweepReport<'_> {
             text.push_str(&format!(
                 "; fastest {} 1/s and {} Hz at {}",
                 rate(fastest.s.re),
-                fixed(fastest.s.im / std::f64::consts::TAU, 0),
+                write_decimals(fastest.s.im / std::f64::consts::TAU, 0),
                 self.told(fastest.u, 3)
             ));
         }
@@ -111,17 +113,15 @@ impl SweepReport<'_> {
         let sweep = self.sweep;
         let (complete, not_certified, failed) = sweep.tally();
         let mut text = format!("{}\n{}.\n\n", self.heading.text(), self.finding());
-        let steps = match sweep.path.spacing {
-            Spacing::Linear => "equal steps",
-            Spacing::Geometric => "equal ratios",
+        let steps = match (sweep.points.len().saturating_sub(1), sweep.path.spacing) {
+            (1, _) => "1 step".to_owned(),
+            (n, Spacing::Linear) => format!("{n} equal steps"),
+            (n, Spacing::Geometric) => format!("{n} equal ratios"),
         };
         let mut label = "Sweep  ";
         if sweep.path.parameter == Parameter::Factor {
-            let last = sweep.points.len().saturating_sub(1);
             let (from, to) = (self.told(0.0, 6), self.told(1.0, 6));
-            text.push_str(&format!(
-                "{label} factor from {from} to {to} in {last} {steps}\n"
-            ));
+            text.push_str(&format!("{label} factor from {from} to {to} in {steps}\n"));
             label = "       ";
         }
         for (name, dimension, from, to) in self.knobs() {
@@ -131,8 +131,7 @@ impl SweepReport<'_> {
             );
             text.push_str(&format!("{label} {name} from {from} to {to}"));
             if label == "Sweep  " {
-                let last = sweep.points.len().saturating_sub(1);
-                text.push_str(&format!(" in {last} {steps}"));
+                text.push_str(&format!(" in {steps}"));
             }
             text.push('\n');
             label = "       ";
@@ -210,11 +209,11 @@ impl SweepReport<'_> {
                 (i + 1).to_string(),
                 self.told(first.u, 5),
                 self.told(last.u, 5),
-                format!("{:.2}", frequencies().fold(f64::INFINITY, f64::min)),
-                format!("{:.2}", frequencies().fold(0.0, f64::max)),
-                format!("{:.3}", greatest.s.re),
+                write_decimals(frequencies().fold(f64::INFINITY, f64::min), 2),
+                write_decimals(frequencies().fold(0.0, f64::max), 2),
+                write_decimals(greatest.s.re, 3),
                 self.told(greatest.u, 5),
-                format!("{:.2}", hz(greatest.s)),
+                write_decimals(hz(greatest.s), 2),
                 unstable,
             ]);
         }
@@ -243,8 +242,8 @@ impl SweepReport<'_> {
             table.row(vec![
                 self.told(event.u, 6),
                 branch.to_string(),
-                format!("{:.3}", event.s.im / std::f64::consts::TAU),
-                fixed(event.s.re, 3).replace('\u{2212}', "-"),
+                write_decimals(event.s.im / std::f64::consts::TAU, 3),
+                write_decimals(event.s.re, 3),
                 happens(event),
             ]);
         }
@@ -271,17 +270,24 @@ impl SweepReport<'_> {
         let Some(u) = self.design_at() else {
             return "The network as its file states it does not lie on the sweep.\n".to_owned();
         };
+        let band = band(&self.sweep.window);
         let mode = match self.design.leading() {
-            None => "no mode in the window".to_owned(),
+            None if self.design.complete() => {
+                format!("no mode in {}", window_text(&self.sweep.window))
+            }
+            None => format!(
+                "no mode was found in {}, and the list is not certified",
+                window_text(&self.sweep.window)
+            ),
             Some(m) => format!(
-                "the leading mode {} at {} 1/s and {:.1} Hz",
+                "the leading mode in {band} {} at {} 1/s and {} Hz",
                 match m.tendency() {
                     Tendency::Grows => "grows",
                     Tendency::Neutral => "is neutral",
                     Tendency::Decays => "decays",
                 },
                 rate(m.growth()),
-                m.frequency()
+                write_decimals(m.frequency(), 1)
             ),
         };
         format!("Design point at {}: {mode}.\n", self.told(u, 5))

@@ -1,0 +1,160 @@
+//! A tape as an analytic function: one place at a time, or eight and sixteen.
+
+use num_complex::Complex64;
+
+use super::Tape;
+use super::arithmetic::{Majorant, Taylor};
+use crate::numerics::analytic::{Analytic, Region, Rounding, TAYLOR};
+use crate::numerics::lanes::{Both, Job, LANES, Lanes, on_lanes};
+use crate::waves::complex::Cx;
+
+impl Analytic for Tape<f64> {
+    fn value_and_slope(&self, s: Complex64) -> (Complex64, Complex64) {
+        let [d, slope] = self.taylor_at::<2>(s);
+        (d.value(), slope.value())
+    }
+
+    fn taylor(&self, s: Complex64) -> [Complex64; 4] {
+        self.taylor_at::<4>(s).map(Cx::value)
+    }
+
+    fn bound(&self, region: &Region) -> [f64; TAYLOR] {
+        self.run(&Majorant(region))
+    }
+
+    fn values_and_slopes(&self, at: &[Complex64], to: &mut Vec<(Complex64, Complex64)>) {
+        on_lanes(Slopes { tape: self, at, to });
+    }
+
+    fn bounds(&self, over: &[Region], to: &mut Vec<[f64; TAYLOR]>) {
+        on_lanes(Bounds {
+            tape: self,
+            over,
+            to,
+        });
+    }
+
+    fn rounding(&self) -> Rounding {
+        self.rounding
+    }
+
+    fn is_symmetric(&self) -> bool {
+        self.symmetric
+    }
+}
+
+/// Eight or fewer things, the last of fewer repeated.
+#[inline(always)]
+fn filled<X: Copy>(from: &[X]) -> Option<[X; LANES]> {
+    if let Ok(eight) = from.try_into() {
+        return Some(eight);
+    }
+    let last = from.last()?;
+    let mut eight = [*last; LANES];
+    for (to, x) in eight.iter_mut().zip(from) {
+        *to = *x;
+    }
+    Some(eight)
+}
+
+#[inline(always)]
+fn gathered<L: Lanes, X>(from: &[X; LANES], coordinate: impl Fn(&X) -> f64) -> L {
+    let mut eight = [0.0; LANES];
+    for (to, x) in eight.iter_mut().zip(from) {
+        *to = coordinate(x);
+    }
+    L::load(&eight)
+}
+
+#[inline(always)]
+fn scattered<L: Lanes>(x: L) -> [f64; LANES] {
+    let mut eight = [0.0; LANES];
+    x.store(&mut eight);
+    eight
+}
+
+/// Values and slopes.
+struct Slopes<'a> {
+    tape: &'a Tape<f64>,
+    at: &'a [Complex64],
+    to: &'a mut Vec<(Complex64, Complex64)>,
+}
+
+#[inline(always)]
+fn place<L: Lanes>(at: &[Complex64; LANES]) -> Cx<L> {
+    Cx::new(gathered(at, |s| s.re), gathered(at, |s| s.im))
+}
+
+#[inline(always)]
+fn append<L: Lanes>(d: Cx<L>, slope: Cx<L>, number: usize, to: &mut Vec<(Complex64, Complex64)>) {
+    let zero = Complex64::new(0.0, 0.0);
+    let mut eight = [(zero, zero); LANES];
+    let (re, im) = (scattered(d.re), scattered(d.im));
+    let (slope_re, slope_im) = (scattered(slope.re), scattered(slope.im));
+    for i in 0..LANES {
+        eight[i].0 = Complex64::new(re[i], im[i]);
+        eight[i].1 = Complex64::new(slope_re[i], slope_im[i]);
+    }
+    to.extend_from_slice(&eight[..number.min(LANES)]);
+}
+
+impl Job for Slopes<'_> {
+    type Output = ();
+    #[inline(always)]
+    fn run<L: Lanes>(self) {
+        self.to.reserve(self.at.len());
+        let mut sixteens = self.at.chunks_exact(2 * LANES);
+        for sixteen in &mut sixteens {
+            let (a, b) = sixteen.split_at(LANES);
+            let (Some(a), Some(b)) = (filled(a), filled(b)) else {
+                continue;
+            };
+            let (a, b) = (place::<L>(&a), place::<L>(&b));
+            let s = Cx::new(Both(a.re, b.re), Both(a.im, b.im));
+            let [d, slope] = self.tape.run(&Taylor::<Both<L>, 2>(s));
+            let part = |x: Cx<Both<L>>| (Cx::new(x.re.0, x.im.0), Cx::new(x.re.1, x.im.1));
+            let (d, slope) = (part(d), part(slope));
+            append(d.0, slope.0, LANES, self.to);
+            append(d.1, slope.1, LANES, self.to);
+        }
+        for eight in sixteens.remainder().chunks(LANES) {
+            if let Some(at) = filled(eight) {
+                let [d, slope] = self.tape.run(&Taylor::<L, 2>(place(&at)));
+                append(d, slope, eight.len(), self.to);
+            }
+        }
+    }
+}
+
+/// Bounds.
+struct Bounds<'a> {
+    tape: &'a Tape<f64>,
+    over: &'a [Region],
+    to: &'a mut Vec<[f64; TAYLOR]>,
+}
+
+impl Job for Bounds<'_> {
+    type Output = ();
+    #[inline(always)]
+    fn run<L: Lanes>(self) {
+        for over in self.over.chunks(LANES) {
+            let Some(eight) = filled(over) else { continue };
+            let region = Region {
+                growth: (
+                    gathered::<L, _>(&eight, |r| r.growth.0),
+                    gathered(&eight, |r| r.growth.1),
+                ),
+                modulus: gathered(&eight, |r| r.modulus),
+                omega: gathered(&eight, |r| r.omega),
+            };
+            let found = self.tape.run(&Majorant(&region));
+            let mut bounds = [[0.0; TAYLOR]; LANES];
+            for (k, orders) in found.into_iter().enumerate() {
+                for (bound, x) in bounds.iter_mut().zip(scattered(orders)) {
+                    bound[k] = x;
+                }
+            }
+            self.to.extend_from_slice(&bounds[..over.len()]);
+        }
+    }
+}
