@@ -64,7 +64,7 @@ pub struct Evidence {
 const TOLD: f64 = 5.0;
 
 /// Fewest independent observations a verdict is based on.
-const FEWEST: f64 = 8.0;
+const FEWEST: f64 = 4.0;
 
 /// Deviations by which the ratio of noise stays above the turning point.
 const DEVIATIONS: f64 = 2.0;

@@ -63,7 +63,7 @@ fn decay_rates_lie_in_their_intervals_and_intervals_are_near_the_bound() {
             }
             widths.sort_by(f64::total_cmp);
             let median = widths.get(widths.len() / 2).copied().unwrap_or(f64::NAN);
-            let clear = bound.share > 0.9 && bound.separation > 1.0;
+            let clear = bound.share > 0.85 && bound.separation > 1.0;
             println!(
                 "{name:16} {:7.2} Hz {:7.2} 1/s share {:.2} apart {:5.2}: seen {seen:3} frequency {near:3} decay {held:3} width {median:.2} of the bound {:.1} %{}",
                 bound.frequency,

@@ -74,10 +74,10 @@ pub fn record(rig: &Rig, seconds: f64, seed: u64) -> Record {
     play::play(&rig.parts, &["p".to_owned()], &sound(seconds, seed))
 }
 
-/// A term `Re[C exp(s |t|)]` of the autocovariance, and whether its parameters are asked of the record.
+/// A term `Re[C exp(s |t|)]` of the autocovariance, and whether it is a mode that decays.
 struct Term {
     parameters: [f64; 4],
-    asked: bool,
+    decays: bool,
 }
 
 /// Autocovariance of a part, from the state it is played by.
@@ -98,7 +98,7 @@ fn terms(rig: &Rig, sound: &Sound) -> Vec<Term> {
             let odd = h.dot(&(turn * steady * h));
             Term {
                 parameters: [nu, w / TAU, even, -odd],
-                asked: true,
+                decays: true,
             }
         } else {
             // Small changes of the cycle's amplitude decay at twice the growth rate.
@@ -106,7 +106,7 @@ fn terms(rig: &Rig, sound: &Sound) -> Vec<Term> {
             let square = density / (4.0 * p.s.re) * at.norm_sqr() / 2.0;
             Term {
                 parameters: [2.0 * p.s.re, w / TAU, square, 0.0],
-                asked: false,
+                decays: false,
             }
         }
     };
@@ -142,35 +142,29 @@ pub struct Bound {
     pub separation: f64,
 }
 
-/// Cramer-Rao bounds from the Fisher information of a Gaussian record (Whittle 1953) with all parameters of the modes that decay and
-/// the sensor's noise unknown, cycles known.
+/// Cramer-Rao bounds from the Fisher information of a Gaussian record (Whittle 1953) with all parameters unknown: those of the modes,
+/// of how a cycle's amplitude wavers and of the sensor's noise.
 pub fn bounds(rig: &Rig, sound: &Sound, low: f64, high: f64) -> Vec<Bound> {
     let terms = terms(rig, sound);
     let mut all: Vec<f64> = terms.iter().flat_map(|t| t.parameters).collect();
     all.push(sound.sensor_noise.powi(2));
-    let asked: Vec<usize> = (0..all.len())
-        .filter(|i| terms.get(i / 4).is_none_or(|t| t.asked))
-        .collect();
     let (n, width) = (6000, (high - low) / 6000.0);
-    let u = DMatrix::from_fn(n, asked.len(), |j, i| {
+    let u = DMatrix::from_fn(n, all.len(), |j, i| {
         let f = low + (j as f64 + 0.5) * width;
-        let size = 1e-6 * all[asked[i]].abs().max(1e-3);
+        let size = 1e-6 * all[i].abs().max(1e-3);
         let moved = |by: f64| {
             let mut other = all.clone();
-            other[asked[i]] += by;
+            other[i] += by;
             density(&other, f)
         };
         (moved(size) - moved(-size)) / (2.0 * size * density(&all, f))
     });
     let sizes: Vec<f64> = u.column_iter().map(|c| c.norm()).collect();
-    let scaled = DMatrix::from_fn(n, asked.len(), |j, i| u[(j, i)] / sizes[i]);
+    let scaled = DMatrix::from_fn(n, all.len(), |j, i| u[(j, i)] / sizes[i]);
     let information = scaled.tr_mul(&scaled) * (width * sound.duration);
     let inverse = information.try_inverse().unwrap();
-    let deviation = |parameter: usize| {
-        let i = asked.iter().position(|a| *a == parameter).unwrap();
-        inverse[(i, i)].sqrt() / sizes[i]
-    };
-    let modes = terms.iter().enumerate().filter(|(_, t)| t.asked);
+    let deviation = |parameter: usize| inverse[(parameter, parameter)].sqrt() / sizes[parameter];
+    let modes = terms.iter().enumerate().filter(|(_, t)| t.decays);
     modes
         .map(|(k, t)| {
             let [decay, frequency, ..] = t.parameters;

@@ -324,13 +324,40 @@ impl Score {
     }
 }
 
+/// Another fit that describes the spectrum, for what it says of resonances both have, in the order of the fit chosen.
+pub(super) struct Other {
+    /// Akaike's criterion.
+    criterion: f64,
+    resonances: Vec<Resonance>,
+}
+
+fn criterion(data: &Data, fit: &Fitted) -> f64 {
+    2.0 * fit.q / data.inflation() + 2.0 * (EACH * fit.model.resonances.len()) as f64
+}
+
+impl Other {
+    pub(super) fn new(data: &Data, fit: &Fitted) -> Other {
+        Other {
+            criterion: criterion(data, fit),
+            resonances: fit.model.resonances.clone(),
+        }
+    }
+
+    /// Leaves out a resonance that the fit chosen has given up.
+    pub(super) fn forget(&mut self, k: usize) {
+        if k < self.resonances.len() {
+            self.resonances.remove(k);
+        }
+    }
+}
+
 /// Spread of a parameter between fits that describe the spectrum about as well, as a mean square about the fit chosen: each
-/// weighs `exp(-AIC/2)` against it (Burnham & Anderson 2002, Model Selection and Multimodel Inference). Fits share their first
-/// resonances with the one chosen, in order; where a resonance has become another one in a fit, that fit does not speak of it.
+/// weighs `exp(-AIC/2)` against it (Burnham & Anderson 2002, Model Selection and Multimodel Inference). Where a resonance has
+/// become another one in a fit, that fit does not speak of it.
 pub(super) fn between(
     data: &Data,
     chosen: &Fitted,
-    others: &[Fitted],
+    others: &[Other],
     k: usize,
     parameter: usize,
 ) -> f64 {
@@ -343,19 +370,16 @@ pub(super) fn between(
     let Some(own) = chosen.model.resonances.get(k) else {
         return 0.0;
     };
-    let criterion =
-        |f: &Fitted| 2.0 * f.q / data.inflation() + 2.0 * (EACH * f.model.resonances.len()) as f64;
+    let best = criterion(data, chosen);
     let (mut sum, mut weights) = (0.0, 1.0);
     for other in others {
-        let Some(r) = other.model.resonances.get(k) else {
+        let Some(r) = other.resonances.get(k) else {
             continue;
         };
         let same = (r.frequency() - own.frequency()).abs() < own.decay() / PI
             && (r.decay() / own.decay()).ln().abs() < 0.7;
         if same {
-            let weight = (0.5 * (criterion(chosen) - criterion(other)))
-                .min(0.0)
-                .exp();
+            let weight = (0.5 * (best - other.criterion)).min(0.0).exp();
             sum += weight * (value(r) - value(own)).powi(2);
             weights += weight;
         }

@@ -74,6 +74,12 @@ const FIRST: usize = 3;
 /// Least part of the power at its own frequency a resonance has to be called a peak.
 const LEAST_SHARE: f64 = 0.5;
 
+/// The part from which on it need not make a maximum: a shoulder is enough.
+const ALONE: f64 = 0.7;
+
+/// Most damping ratio of a peak; above, a resonance is taken for background.
+const MOST_DAMPING: f64 = 0.6;
+
 /// Finds and fits the peaks of a channel.
 ///
 /// # Errors
@@ -150,11 +156,28 @@ fn told(data: &Data, chosen: &Chosen) -> Peaks {
                 let between = fit::between(data, fitted, &chosen.others, k, parameter);
                 (covariance[(at, at)].max(0.0) + between).sqrt()
             };
+            let at = EACH * k + 2;
+            if r.c.re <= normal_quantile() * covariance[(at, at)].max(0.0).sqrt() {
+                continue;
+            }
             if let Some(peak) = peak(data, fitted, r, deviation) {
                 peaks.push(peak);
             }
         }
     }
+    // What surrounds a stronger, narrower peak at the same place is its foot: a cycle's amplitude wavers too.
+    let is_foot = |p: &Peak, of: &Peak| {
+        let off = (p.frequency.value - of.frequency.value).abs();
+        of.rms.value > p.rms.value
+            && of.width.value < p.width.value
+            && off < (0.5 * p.width.value).max(2.0 * data.bins.width())
+    };
+    let feet: Vec<bool> = peaks
+        .iter()
+        .map(|p| peaks.iter().any(|of| is_foot(p, of)))
+        .collect();
+    let mut feet = feet.into_iter();
+    peaks.retain(|_| !feet.next().unwrap_or(false));
     peaks.sort_by(|a, b| a.frequency.value.total_cmp(&b.frequency.value));
     Peaks {
         peaks,
@@ -168,8 +191,8 @@ fn told(data: &Data, chosen: &Chosen) -> Peaks {
     }
 }
 
-/// A resonance as a peak; `None` where it is none: it has less than half of the power at its frequency, no
-/// maximum of the fit is near, or its power is not told from zero.
+/// A resonance as a peak; `None` where it is none: it has less than half of the power at its frequency, makes neither a
+/// maximum nor a shoulder, or is damped too much.
 fn peak(
     data: &Data,
     fitted: &Fitted,
@@ -179,20 +202,16 @@ fn peak(
     let (bins, z) = (data.bins, normal_quantile());
     let (nu, f, c) = (r.decay(), r.frequency(), r.c.re);
     let at = ((f - bins.frequency(0)) / bins.width()).round();
-    if at < 0.0 || at >= bins.count() as f64 || c <= z * deviation(2) {
+    if at < 0.0 || at >= bins.count() as f64 || nu > MOST_DAMPING * r.s.norm() {
         return None;
     }
     let at = at as usize;
     let line = bins.line(r.s).value[at];
     let share = (r.c * line).re / fitted.mean[at];
     let reach = (nu / std::f64::consts::PI / bins.width()).ceil().max(2.0) as usize;
-    let near = at.saturating_sub(reach)..(at + reach + 1).min(bins.count());
-    let maximum = near.clone().skip(1).any(|j| {
-        j + 1 < near.end
-            && fitted.mean[j] >= fitted.mean[j - 1]
-            && fitted.mean[j] >= fitted.mean[j + 1]
-    });
-    if share < LEAST_SHARE || !maximum {
+    let near = &fitted.mean[at.saturating_sub(reach)..(at + reach + 1).min(bins.count())];
+    let maximum = near.windows(3).any(|m| m[1] >= m[0] && m[1] >= m[2]);
+    if share < LEAST_SHARE || (share < ALONE && !maximum) {
         return None;
     }
     let spread = (z * deviation(0)).exp();

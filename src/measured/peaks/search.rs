@@ -5,7 +5,7 @@ use std::f64::consts::{PI, TAU};
 
 use num_complex::Complex64;
 
-use super::fit::{Data, Fitted, Model, Resonance, Score, minimise};
+use super::fit::{Data, EACH, Fitted, Model, Other, Resonance, Score, covariance, minimise};
 
 /// Gain in twice the log-likelihood a resonance must bring where it could lie at `places` places side by side: its four
 /// parameters alone bring 4 by chance at one place, and the best of many brings more.
@@ -22,6 +22,9 @@ fn least_hidden_gain(places: f64) -> f64 {
 /// Narrowest hidden resonance looked for (bins), and how many of the best places a fit is started from.
 const HIDDEN_NARROWEST: f64 = 12.0;
 const STARTS: usize = 4;
+
+/// Deviation of a mean square over its value from which on a resonance is put to the test.
+const LEAST_DOUBT: f64 = 0.4;
 
 /// Candidates refused one after the other before the search ends.
 const REFUSALS: usize = 3;
@@ -49,7 +52,7 @@ struct Candidate {
 /// The fit chosen, and others that describe the spectrum about as well.
 pub(super) struct Chosen {
     pub(super) fitted: Fitted,
-    pub(super) others: Vec<Fitted>,
+    pub(super) others: Vec<Other>,
 }
 
 /// Fits as many resonances as the spectrum asks for, at most `most`.
@@ -88,19 +91,62 @@ pub(super) fn search(data: &Data, most: usize) -> Option<Chosen> {
         let Some(next) = found.pop() else {
             break;
         };
-        others.append(&mut found);
+        others.extend(found.iter().map(|f| Other::new(data, f)));
         let width = next.model.resonances.last().map_or(1.0, |r| r.decay() / PI);
         let places = n as f64 * data.bins.width() / width;
         if 2.0 * (best.q - next.q) / inflation <= least_hidden_gain(places) {
-            others.push(next);
+            others.push(Other::new(data, &next));
             break;
         }
-        others.push(std::mem::replace(&mut best, next));
+        others.push(Other::new(data, &best));
+        best = next;
     }
+    best = minimise(data, best, LAST_STEPS, 1e-7);
+    prune(data, &mut best, &mut others);
     Some(Chosen {
         fitted: minimise(data, best, LAST_STEPS, 1e-7),
         others,
     })
+}
+
+/// Takes out, weakest first, resonances whose mean square is not told from zero and that the likelihood hardly misses:
+/// two that share one peak between them, or one that was overtaken by a later one.
+fn prune(data: &Data, best: &mut Fitted, others: &mut [Other]) {
+    let mut kept: Vec<Resonance> = Vec::new();
+    for _ in 0..best.model.resonances.len() {
+        let Some(covariance) = covariance(data, best) else {
+            return;
+        };
+        let doubt = |(k, r): (usize, &Resonance)| {
+            let at = EACH * k + 2;
+            (k, covariance[(at, at)].max(0.0).sqrt() / r.c.re)
+        };
+        let resonances = &best.model.resonances;
+        let weakest = resonances
+            .iter()
+            .enumerate()
+            .filter(|(_, r)| !kept.iter().any(|k| k.frequency() == r.frequency()))
+            .map(doubt)
+            .filter(|(_, doubt)| *doubt > LEAST_DOUBT)
+            .max_by(|a, b| a.1.total_cmp(&b.1));
+        let Some((k, _)) = weakest else { return };
+        let mut model = best.model.clone();
+        let gone = model.resonances.remove(k);
+        let Some(without) = Fitted::of(data, model) else {
+            kept.push(gone);
+            continue;
+        };
+        let without = minimise(data, without, LAST_STEPS, 1e-3);
+        let places = data.bins.width() * data.power.len() as f64 * PI / gone.decay();
+        if 2.0 * (without.q - best.q) / data.inflation() < least_hidden_gain(places) {
+            *best = without;
+            for other in others.iter_mut() {
+                other.forget(k);
+            }
+        } else {
+            kept.push(gone);
+        }
+    }
 }
 
 /// Fits with a resonance more where one promises most, by the score of its mean square beside all other parameters: finds
