@@ -21,6 +21,7 @@ mod level;
 pub mod microphones;
 pub mod nature;
 pub mod peaks;
+pub mod reading;
 pub mod response;
 
 mod record;
