@@ -8,7 +8,7 @@
 //! [`modes`] counts the zeros in a window by the argument principle, finds them, encloses each in a disc
 //! that holds no other, and says whether both agree ([`numerics`], which knows no acoustics).
 //! [`studies`] ask this at every point of a plane, [`report`] and [`draw`] tell the answers, and [`cli`]
-//! is the command line.
+//! is the command line. [`measured`] takes records of a rig and tells what is in them, without a network.
 //!
 //! # Conventions
 //!

@@ -1,4 +1,4 @@
-//! A network's response to noise, played as records of pressure and velocity. SYNTHETIC: no rig was measured.
+//! A network's response to noise, played as records of pressure. SYNTHETIC: no rig was measured.
 //!
 //! Each certified mode `s = sigma + i w` with shape `p(x)` is an oscillator of complex amplitude `a`, and
 //!

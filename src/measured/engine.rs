@@ -219,11 +219,6 @@ impl<S: Sink> Engine<S> {
         &self.weights
     }
 
-    /// Most segments handed to a sink between two calls of what is done between batches.
-    pub(super) fn batch(&self) -> usize {
-        self.batch
-    }
-
     pub(super) fn samples(&self) -> usize {
         self.samples
     }
@@ -237,7 +232,7 @@ impl<S: Sink> Engine<S> {
     pub(super) fn feed(
         &mut self,
         blocks: &[&[f64]],
-        mut between: impl FnMut(&mut [&mut S], usize),
+        mut between: impl FnMut(&mut [&mut S]),
     ) -> Result<(), Problem> {
         let length = blocks.first().map_or(0, |b| b.len());
         if blocks.len() != self.lanes.len() || blocks.iter().any(|b| b.len() != length) {
@@ -266,8 +261,8 @@ impl<S: Sink> Engine<S> {
         Ok(())
     }
 
-    /// Works off the segments still pending and gives back what was accumulated.
-    pub(super) fn finish(&mut self, mut between: impl FnMut(&mut [&mut S], usize)) {
+    /// Works off the segments still pending.
+    pub(super) fn finish(&mut self, mut between: impl FnMut(&mut [&mut S])) {
         self.work(&mut between);
     }
 
@@ -275,7 +270,7 @@ impl<S: Sink> Engine<S> {
         self.lanes.into_iter().map(|l| l.sink).collect()
     }
 
-    fn work(&mut self, between: &mut impl FnMut(&mut [&mut S], usize)) {
+    fn work(&mut self, between: &mut impl FnMut(&mut [&mut S])) {
         let pending = self.lanes.first().map_or(0, |l| l.pending.len());
         let count = self.plan.segments_in(pending);
         if count == 0 {
@@ -287,6 +282,6 @@ impl<S: Sink> Engine<S> {
             .for_each(|lane| lane.work(plan, weights, fft.as_ref()));
         self.segments += count;
         let mut sinks: Vec<&mut S> = self.lanes.iter_mut().map(|l| &mut l.sink).collect();
-        between(&mut sinks, count);
+        between(&mut sinks);
     }
 }

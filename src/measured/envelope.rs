@@ -114,7 +114,7 @@ impl Envelopes {
     /// # Errors
     /// Where the blocks do not fit the channels.
     pub fn feed(&mut self, blocks: &[&[f64]]) -> Result<(), Problem> {
-        self.engine.feed(blocks, |_, _| ())
+        self.engine.feed(blocks, |_| ())
     }
 
     /// The statistics at every bin of every channel.
@@ -122,7 +122,7 @@ impl Envelopes {
     /// # Errors
     /// Where there were fewer than four segments.
     pub fn finish(mut self) -> Result<Vec<Vec<Envelope>>, Problem> {
-        self.engine.finish(|_, _| ());
+        self.engine.finish(|_| ());
         let plan = *self.engine.plan();
         if self.engine.segments() < 4 {
             return Err(too_short(&plan, self.engine.samples(), 4));

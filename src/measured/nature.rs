@@ -60,14 +60,22 @@ pub struct Evidence {
     pub bandwidth: f64,
 }
 
-/// Gain in log-likelihood from which on the envelope is called steady: by chance one in about 500 noisy records.
-const TOLD: f64 = 5.0;
+/// Gain in log-likelihood from which on the envelope is called steady. Noise reaches it by chance less than once in ten thousand
+/// records (a chi-square variate of one degree of freedom above 16).
+const TOLD: f64 = 8.0;
 
 /// Fewest independent observations a verdict is based on.
 const FEWEST: f64 = 4.0;
 
 /// Deviations by which the ratio of noise stays above the turning point.
-const DEVIATIONS: f64 = 2.0;
+const DEVIATIONS: f64 = 3.0;
+
+/// Spread of the squared envelope (relative, a variance) below which it hardly moves during the record. A resonance that noise
+/// moves so little in the time `T` would have to decay no faster than `spread/(4 T)`.
+const STEADY: f64 = 0.05;
+
+/// Quality factor no column of gas comes near (common practice: hundreds at most).
+const HIGHEST_QUALITY: f64 = 1e6;
 
 /// Weighs the evidence for a peak: `envelopes` are those of its channel at one or more segment lengths,
 /// `others` the frequencies of the other peaks (Hz), `resolution` that of the spectrum the peak was found in (Hz). Of the
@@ -102,7 +110,12 @@ fn judge(e: &Envelope, width_in_resolutions: f64) -> Evidence {
     let gain = independent * gain_for(e.ratio);
     // Of n exponential observations the ratio spreads by 2/sqrt(n) (delta method).
     let spread = 2.0 / independent.sqrt();
-    let verdict = if independent < FEWEST {
+    let duration = e.segments as f64 * e.step;
+    let steadiness = (e.ratio - 1.0).max(f64::EPSILON);
+    let quality = PI * e.frequency * 4.0 * duration / steadiness;
+    let verdict = if steadiness < STEADY && quality > HIGHEST_QUALITY {
+        Verdict::Cycle
+    } else if independent < FEWEST {
         Verdict::Undecided
     } else if e.ratio < FRAC_PI_2 && gain > TOLD {
         Verdict::Cycle

@@ -72,7 +72,7 @@ impl Spectrogram {
     /// # Errors
     /// Where the blocks do not fit the channels.
     pub fn feed(&mut self, blocks: &[&[f64]]) -> Result<(), Problem> {
-        self.engine.feed(blocks, |_, _| ())
+        self.engine.feed(blocks, |_| ())
     }
 
     /// The rows of every channel.
@@ -80,7 +80,7 @@ impl Spectrogram {
     /// # Errors
     /// Where the record filled no row.
     pub fn finish(mut self) -> Result<Vec<Vec<Row>>, Problem> {
-        self.engine.finish(|_, _| ());
+        self.engine.finish(|_| ());
         let (plan, per_row) = (*self.engine.plan(), self.per_row);
         if self.engine.segments() < per_row {
             return Err(too_short(&plan, self.engine.samples(), per_row));

@@ -90,11 +90,6 @@ impl Welch {
         Welch::new(plan, channels, &pairs)
     }
 
-    /// Most segments whose transforms are kept at a time, for each channel of a pair.
-    pub fn batch(&self) -> usize {
-        self.engine.batch()
-    }
-
     /// Takes the next samples: `blocks[i]` of channel `i`, all of one length.
     ///
     /// # Errors
@@ -102,7 +97,7 @@ impl Welch {
     pub fn feed(&mut self, blocks: &[&[f64]]) -> Result<(), Problem> {
         let (pairs, bins) = (&mut self.pairs, self.engine.plan().bins());
         self.engine
-            .feed(blocks, |powers, _| cross(pairs, powers, bins))
+            .feed(blocks, |powers| cross(pairs, powers, bins))
     }
 
     /// Ends the record; samples that fill no segment are left out.
@@ -111,7 +106,7 @@ impl Welch {
     /// Where the record filled no segment.
     pub fn finish(mut self) -> Result<Spectra, Problem> {
         let (pairs, bins) = (&mut self.pairs, self.engine.plan().bins());
-        self.engine.finish(|powers, _| cross(pairs, powers, bins));
+        self.engine.finish(|powers| cross(pairs, powers, bins));
         let (plan, samples) = (*self.engine.plan(), self.engine.samples());
         let count = self.engine.segments();
         if count == 0 {

@@ -1,30 +1,57 @@
 //! Frequencies and decay rates from synthetic records of every rig, over many seeds.
 
-use rayon::prelude::*;
-use stillflame::measured::peaks::{Peak, Search, find};
-use stillflame::measured::{Plan, Spectra, Welch};
+use std::sync::OnceLock;
 
+use rayon::prelude::*;
+use stillflame::measured::nature::Evidence;
+use stillflame::measured::peaks::{Peak, Peaks, Search, find};
+use stillflame::measured::{Plan, Welch};
+
+use crate::nature;
 use crate::rigs::{self, Bound, NAMES, RATE, Rig};
 
-const SECONDS: f64 = 60.0;
+pub const SECONDS: f64 = 60.0;
 const SEEDS: u64 = 100;
 const LOW: f64 = 10.0;
 
-pub fn spectra(rig: &Rig, seconds: f64, seed: u64) -> Spectra {
+/// What was found in one record.
+#[derive(Debug)]
+pub struct Heard {
+    pub peaks: Peaks,
+    pub evidence: Vec<Evidence>,
+}
+
+pub fn hear(rig: &Rig, seconds: f64, seed: u64) -> Heard {
     let record = rigs::record(rig, seconds, seed);
     // Segments of a thirty-second of the record.
     let segment = record.len() / 64 * 2;
     let mut welch = Welch::new(Plan::hann(RATE, segment), 1, &[]).unwrap();
     welch.feed(&record.blocks()).unwrap();
-    welch.finish().unwrap()
-}
-
-pub fn search(rig: &Rig) -> Search {
-    Search {
+    let spectra = welch.finish().unwrap();
+    let search = Search {
         low: LOW,
         high: 1.15 * rig.top,
         most: 20,
-    }
+    };
+    let peaks = find(&spectra, 0, search).unwrap();
+    let evidence = nature::evidence(&record, &spectra, &peaks.peaks);
+    Heard { peaks, evidence }
+}
+
+/// A minute of each rig, once for every seed.
+pub fn minute() -> &'static [(&'static str, Rig, Vec<Heard>)] {
+    static HEARD: OnceLock<Vec<(&'static str, Rig, Vec<Heard>)>> = OnceLock::new();
+    HEARD.get_or_init(|| {
+        // Other seeds than those the method was tried on: `STILLFLAME_FIRST_SEED=1000`.
+        let first = std::env::var("STILLFLAME_FIRST_SEED").map_or(0, |s| s.parse().unwrap());
+        let all = NAMES.iter().map(|name| {
+            let rig = rigs::rig(name);
+            let seeds = (first..first + SEEDS).into_par_iter();
+            let heard = seeds.map(|seed| hear(&rig, SECONDS, seed)).collect();
+            (*name, rig, heard)
+        });
+        all.collect()
+    })
 }
 
 /// The peak that stands for a mode: the nearest, within a full width at half power.
@@ -40,19 +67,14 @@ fn nearest<'a>(peaks: &'a [Peak], bound: &Bound) -> Option<&'a Peak> {
 fn decay_rates_lie_in_their_intervals_and_intervals_are_near_the_bound() {
     let mut faults = Vec::new();
     let mut judged = 0;
-    for name in NAMES {
-        let rig = rigs::rig(name);
+    for (name, rig, heard) in minute() {
         let sound = rigs::sound(SECONDS, 0);
-        let found: Vec<_> = (0..SEEDS)
-            .into_par_iter()
-            .map(|seed| find(&spectra(&rig, SECONDS, seed), 0, search(&rig)).unwrap())
-            .collect();
-        let misfit = found.iter().map(|p| p.misfit).sum::<f64>() / SEEDS as f64;
+        let misfit = heard.iter().map(|h| h.peaks.misfit).sum::<f64>() / SEEDS as f64;
         assert!((misfit - 1.0).abs() < 0.1, "{name}: {misfit}");
-        for bound in rigs::bounds(&rig, &sound, LOW, 1.15 * rig.top) {
+        for bound in rigs::bounds(rig, &sound, LOW, 1.15 * rig.top) {
             let (mut seen, mut near, mut held, mut widths) = (0, 0, 0, Vec::new());
-            for peaks in &found {
-                let Some(peak) = nearest(&peaks.peaks, &bound) else {
+            for found in heard {
+                let Some(peak) = nearest(&found.peaks.peaks, &bound) else {
                     continue;
                 };
                 seen += 1;
@@ -63,7 +85,7 @@ fn decay_rates_lie_in_their_intervals_and_intervals_are_near_the_bound() {
             }
             widths.sort_by(f64::total_cmp);
             let median = widths.get(widths.len() / 2).copied().unwrap_or(f64::NAN);
-            let clear = bound.share > 0.85 && bound.separation > 1.0;
+            let clear = bound.share > 0.75 && bound.separation > 1.0;
             println!(
                 "{name:16} {:7.2} Hz {:7.2} 1/s share {:.2} apart {:5.2}: seen {seen:3} frequency {near:3} decay {held:3} width {median:.2} of the bound {:.1} %{}",
                 bound.frequency,
@@ -82,5 +104,5 @@ fn decay_rates_lie_in_their_intervals_and_intervals_are_near_the_bound() {
         }
     }
     assert!(faults.is_empty(), "{}", faults.join("\n"));
-    assert!(judged >= 10, "{judged}");
+    assert!(judged >= 15, "{judged}");
 }

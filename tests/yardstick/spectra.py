@@ -2,6 +2,7 @@
 
     cargo test --release --test signals
     python spectra.py TARGET/tmp/signals/spectra.json
+    python spectra.py --time SAMPLES SEGMENT            # timing opponent of the bench beside_scipy
 
 The records are made anew here from their recipe: a linear congruential generator and two tones.
 Every value must agree to 1e-10: a power relative to itself, a cross-spectrum to the root of the
@@ -11,6 +12,7 @@ alone (zero frequency of a boxcar less its mean) and are left out.
 
 import json
 import sys
+import time
 
 import numpy as np
 from scipy import signal
@@ -66,5 +68,17 @@ def compare(path):
     return worst <= 1e-10 and len(told["cases"]) > 0
 
 
+def clock(samples, segment):
+    """Seconds scipy takes for four channels of `tests/bench/beside_scipy.rs`, and the first's density."""
+    k = np.arange(samples)
+    channels = np.array([(k * k * c) % 1009 / 1009.0 - 0.5 for c in range(1, 5)])
+    began = time.perf_counter()
+    _, density = signal.welch(channels, fs=25600.0, nperseg=segment)
+    print(json.dumps({"seconds": time.perf_counter() - began, "density": density[0].tolist()}))
+
+
 if __name__ == "__main__":
+    if sys.argv[1] == "--time":
+        clock(int(sys.argv[2]), int(sys.argv[3]))
+        sys.exit(0)
     sys.exit(0 if compare(sys.argv[1]) else 1)

@@ -1,15 +1,21 @@
 //! Fit of several resonances on a floor to an averaged spectrum, by likelihood.
 //!
-//! An estimate `P_j` of mean `M_j` averaged over `n_d` records has a gamma density; the parameters are those of the
-//! least
+//! An estimate `P_j` of mean `M_j` averaged over `n_d` records has a gamma density of shape `n_d`, so that minus its logarithm is
+//! `n_d (P_j/M_j + ln M_j)` and a constant. The parameters are those of the least
 //!
 //! ```text
-//! Q = sum_j (P_j/M_j + ln M_j) + ...,   M_j = floor + sum_k Re[C_k L_j(s_k)]
+//! Q = sum_j (P_j/M_j + ln M_j) + (K/2) sum_k (Im C_k/(0.5 Re C_k))^2,   M_j = floor + sum_k Re[C_k L_j(s_k)]
 //! ```
 //!
-//! and of `Im C/Re C` a normal deviate of spread [`ASYMMETRY`] (Whittle 1953; with `M_j` the exact mean of the estimate as in Sykulski et al. 2019, Biometrika 106, 251). With
-//! `u_j = dM_j/M_j` the Fisher matrix is `F = sum u_j u_j^T`; neighbouring bins are correlated by `kappa_{|i-j|}`,
-//! so the covariance of the parameters is `F^-1 (sum_ij kappa_{|i-j|} u_i u_j^T) F^-1`.
+//! (Whittle 1953; with `M_j` the exact mean of the estimate: Sykulski et al. 2019, Biometrika 106, 251). Neighbouring bins are
+//! correlated by `kappa_{|i-j|}`, relative to their means; a sum over bins has the information of as many independent
+//! ones over `K = sum kappa`. The second term of `Q` is what is known of the asymmetries beforehand (`ASYMMETRY`).
+//!
+//! With `u_j = dM_j/M_j` and `B` the second derivative of the second term, the covariance of the parameters is
+//!
+//! ```text
+//! (F + B)^-1 (sum_ij kappa_{|i-j|} u_i u_j^T + K B) (F + B)^-1,   F = sum_j u_j u_j^T
+//! ```
 
 use std::f64::consts::{PI, TAU};
 

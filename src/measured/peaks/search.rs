@@ -23,6 +23,9 @@ fn least_hidden_gain(places: f64) -> f64 {
 const HIDDEN_NARROWEST: f64 = 12.0;
 const STARTS: usize = 4;
 
+/// Reach of the window about a line (bins).
+pub(super) const LOBE: f64 = 4.0;
+
 /// Deviation of a mean square over its value from which on a resonance is put to the test.
 const LEAST_DOUBT: f64 = 0.4;
 
@@ -212,6 +215,15 @@ fn strongest(data: &Data, fitted: &Fitted, refused: &[(usize, f64)]) -> Option<C
         .zip(&fitted.mean)
         .map(|(p, m)| p / m - 1.0)
         .collect();
+    // Lines the window does not resolve: what differs from the fit within its lobe is not another one.
+    let lines: Vec<f64> = fitted
+        .model
+        .resonances
+        .iter()
+        .filter(|r| r.decay() < PI * data.bins.width())
+        .map(|r| (r.frequency() - data.bins.frequency(0)) / data.bins.width())
+        .collect();
+    let beside_a_line = |bin: usize| lines.iter().any(|l| (l - bin as f64).abs() <= LOBE);
     let mut best: Option<Candidate> = None;
     let mut width = NARROWEST;
     while width < n as f64 / 4.0 {
@@ -223,7 +235,7 @@ fn strongest(data: &Data, fitted: &Fitted, refused: &[(usize, f64)]) -> Option<C
         let stride = (half / 2.0).floor().max(1.0) as usize;
         for bin in (0..n).step_by(stride) {
             let near = |(b, w): &(usize, f64)| (b.abs_diff(bin) as f64) < 2.0 * w.max(width);
-            if refused.iter().any(near) {
+            if refused.iter().any(near) || (width < 2.0 * LOBE && beside_a_line(bin)) {
                 continue;
             }
             let (mut sum, mut squares) = (0.0, 0.0);
