@@ -12,6 +12,8 @@ mod play;
 use std::error::Error;
 use std::io::Write;
 use std::path::Path;
+use std::process::ExitCode;
+use std::str::FromStr;
 
 use stillflame::modes::{self, Scan, shapes};
 use stillflame::units::{self, Dimension};
@@ -21,6 +23,12 @@ struct Wanted {
     network: String,
     positions: Vec<f64>,
     sound: play::Sound,
+}
+
+fn number<T: FromStr>(key: &str, value: &str) -> Result<T, String> {
+    value
+        .parse()
+        .map_err(|_| format!("{key} wants a number, not `{value}`"))
 }
 
 fn wanted() -> Result<Wanted, Box<dyn Error>> {
@@ -43,9 +51,9 @@ fn wanted() -> Result<Wanted, Box<dyn Error>> {
     while let Some(key) = arguments.next() {
         let value = arguments.next().ok_or(format!("{key} wants a value"))?;
         match key.as_str() {
-            "--seconds" => all.sound.duration = value.parse()?,
-            "--rate" => all.sound.rate_hz = value.parse()?,
-            "--seed" => all.sound.seed = value.parse()?,
+            "--seconds" => all.sound.duration = number(&key, &value)?,
+            "--rate" => all.sound.rate_hz = number(&key, &value)?,
+            "--seed" => all.sound.seed = number(&key, &value)?,
             "--at" => {
                 let place = units::parse(&value, Dimension::Length).map_err(|e| e.to_string())?;
                 all.positions.push(place);
@@ -53,10 +61,24 @@ fn wanted() -> Result<Wanted, Box<dyn Error>> {
             _ => return Err(format!("{key} is none of --seconds, --rate, --seed, --at").into()),
         }
     }
+    let counts = [all.sound.rate_hz, all.sound.duration];
+    if counts.iter().any(|x| !(x.is_finite() && *x > 0.0)) {
+        return Err("--rate and --seconds are positive numbers".into());
+    }
     Ok(all)
 }
 
-fn main() -> Result<(), Box<dyn Error>> {
+fn main() -> ExitCode {
+    match run() {
+        Ok(()) => ExitCode::SUCCESS,
+        Err(e) => {
+            eprintln!("{e}");
+            ExitCode::FAILURE
+        }
+    }
+}
+
+fn run() -> Result<(), Box<dyn Error>> {
     let mut wanted = wanted()?;
     let network = input::read(Path::new(&wanted.network), &[])?.network;
     let solved = modes::solve(&network)?;
@@ -76,6 +98,12 @@ fn main() -> Result<(), Box<dyn Error>> {
     }
     if let Some(x) = wanted.positions.iter().find(|x| !(0.0..=end).contains(*x)) {
         return Err(format!("a sensor at {x} m lies outside the ducts, 0 to {end:.3} m").into());
+    }
+    let highest = list.modes.iter().map(|m| m.frequency()).fold(0.0, f64::max);
+    if wanted.sound.rate_hz <= 2.0 * highest {
+        return Err(
+            format!("a mode at {highest:.0} Hz wants more than two samples a period").into(),
+        );
     }
     let names: Vec<String> = (1..=wanted.positions.len())
         .map(|i| format!("p{i}"))

@@ -181,11 +181,7 @@ pub(super) fn sub_table<'d>(
 }
 
 /// The tables of a list that need not be there.
-fn sub_list<'d>(
-    reader: &mut Reader,
-    fields: &mut Fields<'d>,
-    key: &'static str,
-) -> Vec<&'d Node> {
+fn sub_list<'d>(reader: &mut Reader, fields: &mut Fields<'d>, key: &'static str) -> Vec<&'d Node> {
     let Some(Entry { node, mark, .. }) = fields.entry(reader, key) else {
         return Vec::new();
     };

@@ -22,7 +22,8 @@ pub(super) fn read(reader: &mut Reader, items: &[&Node], elements: &[Element]) -
         }
         let Value::Table(table) = &item.value else {
             let what = format!("a table belongs here, and this is {}", item.value.noun());
-            let problem = Problem::error(number, what).hint("write each sensor under its own [[sensor]]");
+            let problem =
+                Problem::error(number, what).hint("write each sensor under its own [[sensor]]");
             reader.report(&item.mark, problem);
             continue;
         };
@@ -43,23 +44,30 @@ fn name(
 ) -> String {
     let Some(entry) = table.get("name") else {
         let problem = Problem::error(format!("{number}.name"), "a sensor needs a name");
-        reader.report_subject(problem.hint("give it that of its channel in the record: name = \"p1\", say"));
+        reader.report_subject(
+            problem.hint("give it that of its channel in the record: name = \"p1\", say"),
+        );
         return number.to_owned();
     };
     // Anything but text is reported when the table is read.
     let Value::Text(name) = &entry.node.value else {
         return number.to_owned();
     };
-    let what = if name.trim().is_empty() || name.contains(['.', '=']) || name.contains(char::is_control) {
-        format!("`{}` cannot be a name", shown(name))
-    } else if before.iter().any(|s| s.name == *name) || elements.iter().any(|e| e.name == *name) {
-        format!("`{}` names another sensor or element already", shown(name))
-    } else {
-        reader.sources.name(name, &entry.node.mark);
-        return name.clone();
-    };
+    let what =
+        if name.trim().is_empty() || name.contains(['.', '=']) || name.contains(char::is_control) {
+            format!("`{}` cannot be a name", shown(name))
+        } else if before.iter().any(|s| s.name == *name) || elements.iter().any(|e| e.name == *name)
+        {
+            format!("`{}` names another sensor or element already", shown(name))
+        } else {
+            reader.sources.name(name, &entry.node.mark);
+            return name.clone();
+        };
     let problem = Problem::error(format!("{number}.name"), what);
-    reader.report(&entry.node.mark, problem.hint("give it a name of its own, without a dot or `=`"));
+    reader.report(
+        &entry.node.mark,
+        problem.hint("give it a name of its own, without a dot or `=`"),
+    );
     number.to_owned()
 }
 
@@ -72,14 +80,20 @@ fn sensor(
     let mut fields = Fields::new(table, &name, "a sensor");
     fields.text(reader, "name");
     if !fields.states("element") {
-        let problem = Problem::error(fields.subject("element"), "a sensor needs `element`, the one it sits in");
+        let problem = Problem::error(
+            fields.subject("element"),
+            "a sensor needs `element`, the one it sits in",
+        );
         fields.missing(&["element"], problem.hint("such as element = \"chamber\""));
     }
     let element = fields.text(reader, "element").and_then(|(text, mark)| {
         let at = elements.iter().position(|e| e.name == text);
         if at.is_none() {
             let names = || elements.iter().map(|e| e.name.as_str());
-            let problem = Problem::error(format!("{name}.element"), format!("nothing is named `{}`", shown(text)));
+            let problem = Problem::error(
+                format!("{name}.element"),
+                format!("nothing is named `{}`", shown(text)),
+            );
             let hint = match nearest(text, names()) {
                 Some(meant) => format!("did you mean \"{meant}\"?"),
                 None => format!("name one of {}", listed(names().take(20))),
@@ -89,15 +103,20 @@ fn sensor(
         at
     });
     let distance = fields.required(reader, KNOBS, "distance");
-    let recess = ["recess_length", "recess_diameter", "recess_volume", "recess_temperature"]
-        .iter()
-        .any(|key| fields.states(key))
-        .then(|| Recess {
-            length: fields.required(reader, KNOBS, "recess_length"),
-            diameter: fields.required(reader, KNOBS, "recess_diameter"),
-            volume: fields.required(reader, KNOBS, "recess_volume"),
-            temperature: fields.required(reader, KNOBS, "recess_temperature"),
-        });
+    let recess = [
+        "recess_length",
+        "recess_diameter",
+        "recess_volume",
+        "recess_temperature",
+    ]
+    .iter()
+    .any(|key| fields.states(key))
+    .then(|| Recess {
+        length: fields.required(reader, KNOBS, "recess_length"),
+        diameter: fields.required(reader, KNOBS, "recess_diameter"),
+        volume: fields.required(reader, KNOBS, "recess_volume"),
+        temperature: fields.required(reader, KNOBS, "recess_temperature"),
+    });
     if recess.is_none() {
         // Known keys all the same, for hints on misspelt ones.
         for key in ["recess_length", "recess_diameter", "recess_temperature"] {
@@ -122,12 +141,20 @@ fn sensor(
         let m = |x: f64| write_rounded(x, Dimension::Length, 6);
         let (what, hint) = if length > 0.0 {
             (
-                format!("{} from its inlet lies outside `{}`, which is {} long", m(at), owner.name, m(length)),
+                format!(
+                    "{} from its inlet lies outside `{}`, which is {} long",
+                    m(at),
+                    owner.name,
+                    m(length)
+                ),
                 "count the distance from the inlet of the element the sensor sits in".to_owned(),
             )
         } else {
             (
-                format!("`{}` has no length along which a sensor could sit", owner.name),
+                format!(
+                    "`{}` has no length along which a sensor could sit",
+                    owner.name
+                ),
                 "write distance = \"0 m\", or name the duct beside it".to_owned(),
             )
         };

@@ -5,9 +5,10 @@ use std::sync::OnceLock;
 use rayon::prelude::*;
 use stillflame::measured::nature::Evidence;
 use stillflame::measured::peaks::{Peak, Peaks, Search, find};
-use stillflame::measured::{Plan, Welch};
+use stillflame::measured::{Plan, Spectra, Welch, Window};
 
 use crate::nature;
+use crate::play::Noise;
 use crate::rigs::{self, Bound, NAMES, RATE, Rig};
 
 pub const SECONDS: f64 = 60.0;
@@ -105,4 +106,72 @@ fn decay_rates_lie_in_their_intervals_and_intervals_are_near_the_bound() {
     }
     assert!(faults.is_empty(), "{}", faults.join("\n"));
     assert!(judged >= 15, "{judged}");
+}
+
+fn noise(seed: u64, n: usize) -> Vec<f64> {
+    let mut noise = Noise::new(seed);
+    (0..n).map(|_| noise.next()).collect()
+}
+
+const BAND: Search = Search {
+    low: LOW,
+    high: 1000.0,
+    most: 20,
+};
+
+fn spectra(plan: Plan, samples: &[f64]) -> Spectra {
+    let mut welch = Welch::new(plan, 1, &[]).unwrap();
+    welch.feed(&[samples]).unwrap();
+    welch.finish().unwrap()
+}
+
+/// In white noise there is next to nothing to find.
+#[test]
+fn white_noise_has_no_peaks() {
+    let found: Vec<Peaks> = (0..40)
+        .into_par_iter()
+        .map(|seed| {
+            find(
+                &spectra(Plan::hann(RATE, 4096), &noise(seed, 1 << 17)),
+                0,
+                BAND,
+            )
+            .unwrap()
+        })
+        .collect();
+    let peaks = found.iter().map(|p| p.peaks.len()).sum::<usize>();
+    assert!(peaks <= 2, "{peaks}");
+    for p in &found {
+        assert!((p.misfit - 1.0).abs() < 0.3, "{}", p.misfit);
+        // One-sided density of unit variance.
+        let mean = p.fitted.iter().sum::<f64>() / p.fitted.len() as f64;
+        assert!((mean * RATE / 2.0 - 1.0).abs() < 0.05, "{mean}");
+    }
+}
+
+#[test]
+fn what_cannot_be_fitted_is_refused_in_words() {
+    let x = noise(1, 1 << 15);
+    let hann = Plan::hann(RATE, 1024);
+    let refused = |s: &Spectra, search: Search| find(s, 0, search).unwrap_err().what;
+    let boxcar = Plan {
+        window: Window::Boxcar,
+        ..hann
+    };
+    assert!(refused(&spectra(boxcar, &x), BAND).contains("boxcar"));
+    assert!(refused(&spectra(Plan::hann(RATE, 1 << 14), &x), BAND).contains("averages"));
+    let narrow = Search {
+        low: 500.0,
+        high: 510.0,
+        ..BAND
+    };
+    assert!(refused(&spectra(hann, &x), narrow).contains("bins"));
+    let empty = Search {
+        low: f64::NAN,
+        high: f64::NAN,
+        ..BAND
+    };
+    assert!(refused(&spectra(hann, &x), empty).contains("bins"));
+    assert!(refused(&spectra(hann, &vec![3.0; 1 << 15]), BAND).contains("constant"));
+    assert!(find(&spectra(hann, &x), 7, BAND).is_err());
 }

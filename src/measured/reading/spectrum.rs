@@ -86,11 +86,10 @@ fn reading(text: &str) -> Option<(Quantity, Line, Reading)> {
             Some(rest) => (rest, true),
             None => (rest, false),
         };
-        let rest = rest.trim();
-        let reference = rest.strip_prefix("re").map_or("20 uPa", str::trim);
-        if rest.is_empty() && !text.starts_with("dB(") && text != "dB" && !per_hertz {
-            return None;
-        }
+        let reference = match rest.trim() {
+            "" => "20 uPa",
+            rest => rest.strip_prefix("re ")?.trim(),
+        };
         let digits =
             reference.find(|c: char| !c.is_ascii_digit() && c != '.' && c != 'e' && c != '-')?;
         let (number, unit) = reference.split_at(digits);

@@ -195,7 +195,7 @@ mod tests {
     #[test]
     fn fields_are_read_by_column_and_by_word() {
         let mut out = Vec::new();
-        parse(" -1.00000E+00 2.50000E+00-3.00000E-01", &[13; 6], &mut out).unwrap();
+        parse(" -1.00000E+00  2.50000E+00 -3.0000E-01", &[13; 6], &mut out).unwrap();
         assert_eq!(out, [-1.0, 2.5, -0.3]);
         out.clear();
         parse("  1.5D+01 2", &[20; 4], &mut out).unwrap();
