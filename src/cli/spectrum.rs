@@ -26,7 +26,7 @@ use crate::units::{self, Dimension};
 /// column is a frequency is taken for a spectrum, of which the maxima are told.
 #[derive(Clone, Debug, Args)]
 #[command(
-    after_help = "Example:\n  stillflame spectrum examples/records/swirl_rig.wav --names \"p1, p2\" \\\n    --calibration \"p1 = 4 kPa\" --calibration \"p2 = 4 kPa\" --out results"
+    after_help = "Example:\n  stillflame spectrum examples/records/swirl_rig.wav --network networks/swirl_rig.toml \\\n    --names \"p1, p2\" --calibration \"p1 = 1 kPa\" --calibration \"p2 = 1 kPa\" --out results"
 )]
 pub(super) struct Arguments {
     /// The record (CSV, WAV or universal file)

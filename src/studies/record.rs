@@ -45,6 +45,9 @@ const BAND: (f64, f64) = (10.0, 1000.0);
 /// Part of the sampling rate up to which a record is trusted: the filters before a converter need the rest (common practice).
 const TRUSTED: f64 = 1.0 / 2.56;
 
+/// Part of a bin that is rounding.
+const EDGE: f64 = 1e-6;
+
 /// Most resonances fitted in a spectrum.
 const RESONANCES: usize = 20;
 
@@ -113,8 +116,9 @@ impl Survey {
     /// Bins of the spectra within the band.
     pub fn bins(&self) -> std::ops::Range<usize> {
         let width = self.spectra.plan().bin_width();
-        let first = (self.band.0 / width).ceil() as usize;
-        let last = (self.band.1 / width).floor() as usize;
+        // A bin at the very edge belongs to the band whatever the rounding.
+        let first = (self.band.0 / width - EDGE).ceil() as usize;
+        let last = (self.band.1 / width + EDGE).floor() as usize;
         first.max(1)..(last + 1).min(self.spectra.plan().bins())
     }
 
@@ -386,8 +390,9 @@ fn remarks(spectra: &Spectra, channels: &[Studied]) -> Vec<Problem> {
                 .hint("record for longer, or ask for wider bins with --bin-width"),
         );
     }
-    for channel in channels {
+    for (i, channel) in channels.iter().enumerate() {
         let Ok(peaks) = &channel.peaks else { continue };
+        found.extend(misjudged(spectra, i, channel, peaks));
         if !(0.7..1.4).contains(&peaks.misfit) {
             let what = format!(
                 "the fit describes its spectrum poorly: scatter about it is {:.2} times that of chance",
@@ -396,6 +401,46 @@ fn remarks(spectra: &Spectra, channels: &[Studied]) -> Vec<Problem> {
             found.push(
                 Problem::warning(channel.signal.name.as_str(), what)
                     .hint("the record may drift: look at the spectrogram, and take a steady stretch with --span"),
+            );
+        }
+    }
+    found
+}
+
+/// Ratio of fitted to measured power about a peak beyond which its amplitude is not to be trusted, either way.
+const MISJUDGED: f64 = 1.33;
+
+/// Bins on either side of a peak that its power is summed over, at least.
+const ABOUT: f64 = 3.0;
+
+/// Peaks about which the fit has another power than the estimate: a tone far purer than a noisy record's lines, most often.
+fn misjudged(spectra: &Spectra, channel: usize, studied: &Studied, peaks: &Peaks) -> Vec<Problem> {
+    let width = spectra.plan().bin_width();
+    let density = spectra.density(channel);
+    let mut found = Vec::new();
+    for peak in &peaks.peaks {
+        let f = peak.frequency.value;
+        let reach = (ABOUT * width).max(2.0 * peak.width.value);
+        let (mut measured, mut fitted) = (0.0, 0.0);
+        for (at, fit) in peaks.frequency.iter().zip(&peaks.fitted) {
+            if (at - f).abs() <= reach {
+                fitted += fit;
+                measured += density
+                    .get((at / width).round() as usize)
+                    .copied()
+                    .unwrap_or(0.0);
+            }
+        }
+        let ratio = fitted / measured;
+        if !(1.0 / MISJUDGED..MISJUDGED).contains(&ratio) {
+            let what = format!(
+                "about {f:.2} Hz the fit has {ratio:.2} times the power that is there, {:.4} {} rms: its amplitude and width are not to be trusted",
+                (measured * width).sqrt(),
+                studied.signal.quantity.unit()
+            );
+            found.push(
+                Problem::warning(studied.signal.name.as_str(), what)
+                    .hint("a tone without noise has no width to fit; read its amplitude off a flat-top window"),
             );
         }
     }

@@ -9,6 +9,9 @@ use crate::problems::Problem;
 /// Part of a step by which a time may be off its place before it is told, beside the quantum.
 const JITTER: f64 = 0.1;
 
+/// Relative distance to which a sampling rate is known at best: no converter's clock keeps it better.
+const KNOWN: f64 = 1e-9;
+
 /// Relative difference of the mean rate that is no longer the clock's.
 const WRONG: f64 = 1e-3;
 
@@ -48,13 +51,13 @@ pub(super) fn rate(times: &[f64], quantum: f64) -> Option<f64> {
     // Where a step is missing the mean says nothing; the median does.
     let longest = steps.last().copied().unwrap_or(median);
     let whole = longest < 1.5 * median + quantum;
-    let mean = steps.iter().sum::<f64>() / steps.len() as f64;
+    let mean = (times.last()? - times.first()?) / steps.len() as f64;
     let (step, span) = if whole {
         (mean, mean * steps.len() as f64)
     } else {
         (median, median)
     };
-    let slack = (quantum / span).max(4.0 * f64::EPSILON);
+    let slack = (quantum / span).max(KNOWN);
     Some(roundest(1.0 / step, slack))
 }
 

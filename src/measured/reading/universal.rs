@@ -263,6 +263,7 @@ fn scan(path: &Path, name: &str, warnings: &mut Vec<Problem>) -> Result<Vec<Data
         }
         let function = header::read(storage, &head, first, place_of, name)?;
         let (at, line) = (base + lines.bytes(), line0 + lines.number() + 1);
+        let mut closed = false;
         let there = match storage {
             Storage::Binary { bytes, .. } => {
                 let size = if function.double { 8 } else { 4 };
@@ -284,15 +285,20 @@ fn scan(path: &Path, name: &str, warnings: &mut Vec<Problem>) -> Result<Vec<Data
                 let there = bytes.min(length.saturating_sub(at));
                 (base, line0) = (at + there, line - 1);
                 lines = from(base).map_err(fail)?;
+                while !closed && next(&mut lines)? {
+                    closed = lines.text().trim() == "-1";
+                    if !closed && !lines.text().trim().is_empty() {
+                        break;
+                    }
+                }
                 there / size
             }
             Storage::Text => {
                 let mut count = 0_u64;
                 let pattern = pattern(&function);
-                let mut ended = false;
                 while next(&mut lines)? {
-                    if lines.text().trim() == "-1" {
-                        ended = true;
+                    closed = lines.text().trim() == "-1";
+                    if closed {
                         break;
                     }
                     // What has no line end may be cut within a number.
@@ -300,15 +306,13 @@ fn scan(path: &Path, name: &str, warnings: &mut Vec<Problem>) -> Result<Vec<Data
                         count += values_in(lines.text(), pattern);
                     }
                 }
-                if !ended {
-                    warnings.push(Problem::warning(
-                        function.name.as_str(),
-                        "the file ends without the line `-1` that closes its dataset",
-                    ));
-                }
                 if function.even { count } else { count / 2 }
             }
         };
+        if !closed {
+            let what = "the line `-1` that closes its dataset does not follow its values";
+            warnings.push(Problem::warning(function.name.as_str(), what));
+        }
         found.push(Dataset {
             function,
             at,

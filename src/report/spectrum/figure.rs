@@ -394,8 +394,11 @@ impl SpectrumReport<'_> {
             title: format!("{} over time", studied.signal.name),
             subtitle: self.subtitle(),
             footnote: format!(
-                "Each column is the mean of {}, {} window of {} s, overlap {:.0} %, resolution {} Hz. {CAUTION}",
-                counted(*per_row, "segment"),
+                "{}: {} window of {} s, overlap {:.0} %, resolution {} Hz. {CAUTION}",
+                match *per_row {
+                    1 => "Each column is one segment".to_owned(),
+                    n => format!("Each column is the mean of {}", counted(n, "segment")),
+                },
                 plan.window.noun(),
                 significant(plan.segment as f64 / plan.rate_hz, 3),
                 100.0 * plan.overlap as f64 / plan.segment as f64,
