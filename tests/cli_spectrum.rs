@@ -162,6 +162,35 @@ fn a_pure_tone_is_told_right_or_warned_of() {
     assert!((rms - 1.0).abs() < 0.05 || warned, "{rms} {value:#}");
 }
 
+/// Noise clipped hard has a steady envelope and must not pass for a cycle.
+#[test]
+fn a_clipped_channel_is_not_weighed() {
+    let folder = tempfile::tempdir().unwrap();
+    let path = record(folder.path(), 20.0);
+    let text = std::fs::read_to_string(&path).unwrap();
+    let clipped = text.lines().map(|line| match line.split_once(',') {
+        Some((t, rest)) if !line.starts_with(['#', 't']) => {
+            let (p1, p2) = rest.split_once(',').unwrap();
+            let p1: f64 = p1.parse().unwrap();
+            format!("{t},{},{p2}\n", p1.clamp(-40.0, 40.0))
+        }
+        _ => format!("{line}\n"),
+    });
+    std::fs::write(&path, clipped.collect::<String>()).unwrap();
+    let (value, code) = json(&[path.to_str().unwrap(), "--frequency", "50 to 600 Hz"]);
+    assert_eq!(code, Some(0));
+    assert!(value["channels"][0]["clipped_samples"].as_u64().unwrap() > 1000);
+    for peak in value["channels"][0]["peaks"].as_array().unwrap() {
+        assert!(peak["evidence"].is_null(), "{peak}");
+    }
+    assert!(value["channels"][1]["peaks"][1]["evidence"]["verdict"] == "self-sustained cycle");
+    let told = value["warnings"].to_string();
+    assert!(
+        told.contains("is clipped") && told.contains("upper limit 40"),
+        "{told}"
+    );
+}
+
 /// A recess as in a closed quarter-wave line: the amplitudes of the wall are lower than those of the sensor.
 #[test]
 fn a_recess_of_the_network_is_taken_out() {

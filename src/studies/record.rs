@@ -48,6 +48,9 @@ const TRUSTED: f64 = 1.0 / 2.56;
 /// Part of a bin that is rounding.
 const EDGE: f64 = 1e-6;
 
+/// Part of the samples of a channel that may be clipped before noise and cycle are not told apart.
+const CLIPPED: f64 = 1e-3;
+
 /// Most resonances fitted in a spectrum.
 const RESONANCES: usize = 20;
 
@@ -198,6 +201,11 @@ pub fn survey(
         high: band.1,
         most: RESONANCES,
     };
+    let cut_off = |i: usize| {
+        clipped
+            .get(i)
+            .is_some_and(|n| *n as f64 > CLIPPED * samples as f64)
+    };
     let found: Vec<_> = (0..count)
         .into_par_iter()
         .map(|i| {
@@ -206,6 +214,8 @@ pub fn survey(
             }
             let found = peaks::find(&spectra, i, search);
             let evidence = match &found {
+                // A clipped envelope is steady whatever drives it.
+                Ok(found) if cut_off(i) => vec![None; found.peaks.len()],
                 Ok(found) => evidence(found, &banks, i, spectra.plan().resolution()),
                 Err(_) => Vec::new(),
             };
@@ -220,8 +230,10 @@ pub fn survey(
         .zip(corrections)
         .zip(found);
     for ((((signal, level), clipped), correction), (peaks, evidence)) in parts {
-        if let Err(problem) = &peaks {
-            let mut problem = problem.clone();
+        // That a channel is constant has been told.
+        if let Err(mut problem) = peaks.as_ref().map_err(Clone::clone)
+            && !level.constant()
+        {
             problem.severity = crate::problems::Severity::Warning;
             problem.what = format!("no peaks are fitted: {}", problem.what);
             problem.subject.clone_from(&signal.name);

@@ -120,7 +120,7 @@ impl Health {
                     time(extreme.first),
                 );
                 found.push(Problem::warning(name, what).hint(
-                    "amplitudes are too low and harmonics false; record again with a larger range",
+                    "amplitudes are too low, harmonics false, and noise looks like a cycle; record again with a larger range",
                 ));
             }
         }

@@ -67,6 +67,9 @@ impl SpectrumReport<'_> {
             else {
                 continue;
             };
+            if first.level.constant() || second.level.constant() {
+                continue;
+            }
             let Some(rows) = self.related(a, b) else {
                 continue;
             };

@@ -269,8 +269,9 @@ impl SpectrumReport<'_> {
     /// Where the figure cannot be drawn.
     pub fn coherence_svg(&self) -> Result<Option<String>, DrawError> {
         let survey = self.survey;
+        let constant = |i: usize| survey.channels.get(i).is_none_or(|c| c.level.constant());
         let pairs: Vec<_> = (survey.pairs.iter())
-            .filter(|(a, _)| *a == 0)
+            .filter(|(a, b)| *a == 0 && !constant(*a) && !constant(*b))
             .filter_map(|&(a, b)| Some((a, b, self.related(a, b)?)))
             .take(MOST_PAIRS)
             .collect();

@@ -24,8 +24,10 @@ pub struct Maximum {
 /// Least power over the median about a maximum for it to be told (10 dB).
 const LEAST: f64 = 10.0;
 
-/// Bins on either side that the median is of.
+/// Reach on either side that the median is of: part of the frequency, at least so many bins, and values looked at.
+const REACH: f64 = 0.25;
 const ABOUT: usize = 40;
+const LOOKED_AT: usize = 200;
 
 /// The maxima within a band, by falling power, at most `most`, and then by frequency.
 pub fn maxima(
@@ -44,9 +46,7 @@ pub fn maxima(
         .filter(|&i| (low..=high).contains(&frequency[i]))
         .filter(|&i| power[i] > power[i - 1] && power[i] >= power[i + 1])
         .filter_map(|i| {
-            let mut about = power[i.saturating_sub(ABOUT)..(i + ABOUT + 1).min(n)].to_vec();
-            about.sort_by(f64::total_cmp);
-            let median = about[about.len() / 2];
+            let median = median_about(frequency, &power, i, n);
             let prominence = power[i] / median.max(f64::MIN_POSITIVE);
             if prominence < LEAST {
                 return None;
@@ -69,6 +69,21 @@ pub fn maxima(
     found.truncate(most);
     found.sort_by(|a, b| a.frequency.total_cmp(&b.frequency));
     found
+}
+
+/// The median of the power about a bin.
+fn median_about(frequency: &[f64], power: &[f64], i: usize, n: usize) -> f64 {
+    let far = REACH * frequency[i];
+    let from = frequency.partition_point(|f| *f < frequency[i] - far);
+    let to = frequency.partition_point(|f| *f <= frequency[i] + far);
+    let (from, to) = (
+        from.min(i.saturating_sub(ABOUT)),
+        to.max(i + ABOUT + 1).min(n),
+    );
+    let every = (to - from).div_ceil(LOOKED_AT).max(1);
+    let mut about: Vec<f64> = power[from..to].iter().copied().step_by(every).collect();
+    about.sort_by(f64::total_cmp);
+    about[about.len() / 2]
 }
 
 /// The top of the parabola through the logarithms of three bins.
