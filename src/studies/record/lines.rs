@@ -24,6 +24,9 @@ pub struct Maximum {
 /// Least power over the median about a maximum for it to be told (10 dB).
 const LEAST: f64 = 10.0;
 
+/// Part of its power to which a spectrum must fall between a maximum and a higher one for the two to be two (6 dB).
+const VALLEY: f64 = 0.25;
+
 /// Reach on either side that the median is of: part of the frequency, at least so many bins, and values looked at.
 const REACH: f64 = 0.25;
 const ABOUT: usize = 40;
@@ -42,7 +45,7 @@ pub fn maxima(
         Line::Rms => values.iter().map(|x| x * x).collect(),
     };
     let n = power.len().min(frequency.len());
-    let mut found: Vec<Maximum> = (1..n.saturating_sub(1))
+    let mut found: Vec<(usize, Maximum)> = (1..n.saturating_sub(1))
         .filter(|&i| (low..=high).contains(&frequency[i]))
         .filter(|&i| power[i] > power[i - 1] && power[i] >= power[i + 1])
         .filter_map(|i| {
@@ -52,7 +55,7 @@ pub fn maxima(
                 return None;
             }
             let width = half(frequency, &power, i, n);
-            Some(Maximum {
+            let told = Maximum {
                 frequency: vertex(frequency, &power, i),
                 height: values[i],
                 rms: match (line, width) {
@@ -62,11 +65,23 @@ pub fn maxima(
                 },
                 width,
                 prominence,
-            })
+            };
+            Some((i, told))
         })
         .collect();
-    found.sort_by(|a, b| b.prominence.total_cmp(&a.prominence));
-    found.truncate(most);
+    found.sort_by(|a, b| b.1.prominence.total_cmp(&a.1.prominence));
+    // The bins on top of a broad peak wag: its highest stands for it.
+    let mut kept: Vec<(usize, Maximum)> = Vec::new();
+    for (i, m) in found {
+        let joined = |(k, _): &(usize, Maximum)| {
+            let between = power.get(i.min(*k)..=i.max(*k)).unwrap_or_default();
+            between.iter().all(|p| *p > VALLEY * power[i])
+        };
+        if kept.len() < most && !kept.iter().any(joined) {
+            kept.push((i, m));
+        }
+    }
+    let mut found: Vec<Maximum> = kept.into_iter().map(|(_, m)| m).collect();
     found.sort_by(|a, b| a.frequency.total_cmp(&b.frequency));
     found
 }
@@ -125,6 +140,15 @@ mod tests {
             .collect();
         let found = maxima(&frequency, &density, Line::Density, (10.0, 450.0), 5);
         assert_eq!(found.len(), 1);
+        let wagging: Vec<f64> = density
+            .iter()
+            .enumerate()
+            .map(|(i, d)| d * (1.0 + 0.1 * f64::from(i as u32 * 7919 % 17 % 5)))
+            .collect();
+        assert_eq!(
+            maxima(&frequency, &wagging, Line::Density, (10.0, 450.0), 5).len(),
+            1
+        );
         let m = found[0];
         assert!((m.frequency - f0).abs() < 0.02, "{m:?}");
         assert!((m.width.unwrap() / (2.0 * h) - 1.0).abs() < 0.01);
