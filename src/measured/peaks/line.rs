@@ -175,4 +175,32 @@ mod tests {
             }
         }
     }
+
+    /// Full width at half power of a resonance with a decay rate of 40 1/s: 12.7323 Hz, computed with numpy 2.4.6
+    /// (`tests/data/signal_checks.json`, `lorentzian`), `nu/pi` exactly; to 1e-4.
+    #[test]
+    fn a_resolved_line_is_as_wide_as_published() {
+        let (rate, n) = (4096.0, 1 << 17);
+        let width = rate / n as f64;
+        let first = (700.0 / width) as usize;
+        let bins = Bins::new(rate, n, first, 6400);
+        let values = bins.line(Complex64::new(-40.0, TAU * 800.0)).value;
+        let top = values.iter().map(|v| v.re).fold(0.0, f64::max);
+        let ends: Vec<f64> = values
+            .windows(2)
+            .enumerate()
+            .filter(|(_, w)| (w[0].re - 0.5 * top) * (w[1].re - 0.5 * top) <= 0.0)
+            .map(|(i, w)| {
+                let part = (0.5 * top - w[0].re) / (w[1].re - w[0].re);
+                bins.frequency(i) + part * width
+            })
+            .collect();
+        assert_eq!(ends.len(), 2);
+        let got = ends[1] - ends[0];
+        assert!((got / 12.732_300 - 1.0).abs() < 1e-4, "{got}");
+        assert!(
+            (got / (40.0 / std::f64::consts::PI) - 1.0).abs() < 1e-4,
+            "{got}"
+        );
+    }
 }
