@@ -6,7 +6,7 @@
 
 use std::ops::{Index, IndexMut};
 
-use crate::numerics::dual::{Dual, Real};
+use crate::numerics::dual::{Dual, Grad, Real};
 use crate::units::Dimension;
 
 /// Index of one number in a network's [`Values`].
@@ -92,6 +92,17 @@ impl Values<f64> {
     /// The same numbers as duals, derivative one at `knob`.
     pub fn seeded(&self, knob: KnobId) -> Values<Dual> {
         self.seeded_along(&[(knob, 1.0)])
+    }
+
+    /// The same numbers with a direction for each knob named, and the derivative given along it.
+    pub fn seeded_each<const N: usize>(&self, knobs: [(KnobId, f64); N]) -> Values<Grad<f64, N>> {
+        let mut v: Values<Grad<f64, N>> = self.lift();
+        for (direction, (knob, slope)) in knobs.into_iter().enumerate() {
+            if let Some(x) = v.0.get_mut(knob.0) {
+                x.d[direction] += slope;
+            }
+        }
+        v
     }
 
     /// The same numbers as duals, with the derivative given at each knob named: along a direction.

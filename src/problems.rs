@@ -43,6 +43,8 @@ pub struct Problem {
     pub hint: Option<String>,
     /// Where it stands, once the input layer has looked it up.
     pub place: Option<Box<Place>>,
+    /// Whether it lies in how the numbers of a network go together, each of which it may have.
+    pub of_whole: bool,
 }
 
 impl Problem {
@@ -54,6 +56,7 @@ impl Problem {
             what: what.into(),
             hint: None,
             place: None,
+            of_whole: false,
         }
     }
 
@@ -69,6 +72,13 @@ impl Problem {
     #[must_use]
     pub fn hint(mut self, hint: impl Into<String>) -> Self {
         self.hint = Some(hint.into());
+        self
+    }
+
+    /// The same problem as one of the network as a whole.
+    #[must_use]
+    pub fn of_whole(mut self) -> Self {
+        self.of_whole = true;
         self
     }
 

@@ -424,3 +424,50 @@ fn growth_between_the_points_of_a_sweep_is_not_called_excluded() {
             .contains("NOT EXCLUDED")
     );
 }
+
+/// A list without a count says nothing of growth outside, however that search came out.
+#[test]
+fn without_a_count_growth_outside_is_not_called_excluded() {
+    let wide = ["--growth", "-1e5 to 1e5 1/s"];
+    let (value, code) = json("modes", &network("swirl_rig"), &wide);
+    assert_eq!(code, Some(1));
+    assert!(value["expected"].is_null());
+    assert_eq!(value["growth_excluded_beyond"], false);
+    assert!(value["growth_not_excluded_because"].is_string());
+    let text = run("modes", &network("swirl_rig"), &wide).stdout;
+    assert!(!text.contains("is excluded") && text.contains("NOT EXCLUDED"));
+    // With one it is.
+    let (value, _) = json("modes", &network("swirl_rig"), &[]);
+    assert_eq!(value["growth_excluded_beyond"], true);
+    assert!(value["growth_not_excluded_because"].is_null());
+}
+
+/// Beyond the growth rate up to which was searched, a response with a spread has modes ahead of its cause: a sweep
+/// does not follow into there, and what it calls unstable is what its points know of.
+#[test]
+fn growth_beyond_what_was_searched_is_not_told_as_unstable() {
+    let vary = "main_flame.delay = 0.5 ms to 10 ms";
+    let more = ["--vary", vary, "--points", "41"];
+    let (value, code) = json("sweep", &network("twenty_elements"), &more);
+    assert_eq!(code, Some(0));
+    assert!(
+        value["growth_outside_window_per_s"]
+            .as_array()
+            .unwrap()
+            .iter()
+            .all(Value::is_null)
+    );
+    for branch in value["branches"].as_array().unwrap() {
+        assert!(
+            branch["largest_growth_per_s"].as_f64().unwrap() < 0.0,
+            "{branch}"
+        );
+    }
+    assert!(
+        value["unstable"].as_array().unwrap().is_empty(),
+        "{}",
+        value["unstable"]
+    );
+    assert!(value["finding"].as_str().unwrap().starts_with("No mode"));
+    assert_eq!(value["growth_excluded_beyond"], false);
+}

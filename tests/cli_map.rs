@@ -207,7 +207,7 @@ fn a_point_without_mean_flow_is_marked_and_counted() {
     all.extend(["--out", folder.path().to_str().unwrap()]);
     run("map", &network("swirl_rig"), &all);
     let svg = std::fs::read_to_string(folder.path().join("swirl_rig_map.svg")).unwrap();
-    assert!(svg.contains("not certified, or no mean flow"));
+    assert!(svg.contains(">no mean flow<"));
     // Each point without an answer is listed with its reason.
     let (value, _) = json(
         "map",
@@ -417,4 +417,61 @@ fn a_mode_that_is_not_there_is_wrong_usage() {
     let ran = run("map", &network("swirl_rig"), &all);
     assert_eq!(ran.code, Some(2));
     assert!(ran.stderr.contains("outside the map"), "{}", ran.stderr);
+}
+
+#[test]
+fn a_map_of_one_mode_tells_where_it_is_outside_the_window_from_where_it_is_not_followed_to() {
+    let folder = tempfile::tempdir().unwrap();
+    let mut all = arguments(DELAY, INDEX, "20x20");
+    let out = folder.path().to_str().unwrap();
+    all.extend(["--mode", "2", "--out", out]);
+    let (value, code) = json("map", &network("swirl_rig"), &all);
+    assert_eq!(code, Some(0));
+    let growth = rows(&value, "largest_growth_per_s");
+    let (mut outside, mut unreached) = (0, 0);
+    for (known, reached) in growth.iter().zip(value["followed_to"].as_array().unwrap()) {
+        for (known, reached) in known.iter().zip(reached.as_array().unwrap()) {
+            match (known, reached.as_bool().unwrap()) {
+                (None, true) => outside += 1,
+                (None, false) => unreached += 1,
+                (Some(_), reached) => assert!(reached),
+            }
+        }
+    }
+    assert!(outside > 20 && unreached > 5, "{outside} {unreached}");
+    // Other modes grow outside the window at short delays.
+    assert_eq!(value["growth_excluded_beyond"], false);
+    let told = value["growth_outside"].as_str().unwrap();
+    assert!(!told.contains("excluded"), "{told}");
+    let read = |name: &str| std::fs::read_to_string(folder.path().join(name)).unwrap();
+    let svg = read("swirl_rig_map_mode_2.svg");
+    assert!(svg.contains("outside the window") && svg.contains("not followed so far"));
+    let csv = read("swirl_rig_map_mode_2.csv");
+    assert!(csv.lines().next().unwrap().ends_with(",failed,followed_to"));
+    let lines = csv.lines().filter(|l| l.ends_with(",false,false")).count();
+    assert_eq!(lines, unreached);
+    // A map of the largest growth rate follows nothing.
+    let (value, _) = json(
+        "map",
+        &network("swirl_rig"),
+        &arguments(DELAY, INDEX, "2x2"),
+    );
+    assert!(value["followed_to"].is_null());
+}
+
+/// At short delays and small gains an intrinsic mode lies thousands of 1/s left of the window and moves too fast to be
+/// tied; that is no meeting.
+#[test]
+fn meetings_of_one_mode_are_found_and_lie_near_the_window() {
+    let mut all = arguments(DELAY, INDEX, "200x40");
+    all.extend(["--mode", "4"]);
+    let (value, _) = json("map", &network("swirl_rig"), &all);
+    let meetings = of_kind(&value, "exceptional_point");
+    assert!(meetings.len() >= 4, "{meetings:?}");
+    for meeting in meetings {
+        let at = |field: &str| meeting[field].as_f64().unwrap();
+        // A quarter of the width of -300 to 300 1/s and of 20 to 800 Hz.
+        assert!(at("growth_per_s").abs() <= 450.0, "{meeting}");
+        assert!((-175.0..=995.0).contains(&at("frequency_hz")), "{meeting}");
+    }
 }

@@ -390,6 +390,14 @@ fn the_headline_and_the_design_line_name_the_band() {
 }
 
 /// A terminal and a script read one minus sign, and no zero has any.
+/// A plane about every network as it stands.
+const PLANE: [&str; 4] = [
+    "--across",
+    "feed.temperature = 250 K to 800 K",
+    "--up",
+    "main_flame.burnt_temperature = 1400 K to 2200 K",
+];
+
 #[test]
 fn numbers_in_words_have_one_minus_sign() {
     let neutral = ["--set", "main_flame.interaction_index = 0"];
@@ -408,6 +416,11 @@ fn numbers_in_words_have_one_minus_sign() {
                     "--points",
                     "5",
                 ],
+            ),
+            ("map", [&PLANE[..], &["--points", "3x3"]].concat()),
+            (
+                "map",
+                [&PLANE[..], &["--points", "2x2", "--mode", "1"]].concat(),
             ),
         ] {
             // The flame of this network answers by numbered responses.

@@ -47,7 +47,7 @@ fn ulp(x: f64) -> f64 {
 
 /// Values to forty digits by mpmath (tests/yardstick/lanes.py), as the nearest double and the rest.
 #[test]
-fn elementary_functions_are_right_to_two_units_in_the_last_place() {
+fn elementary_functions_are_as_right_as_the_rounding_counts_on() {
     let rows: Vec<(String, f64, f64, f64)> = csv::Reader::from_path(
         std::path::Path::new(env!("CARGO_MANIFEST_DIR")).join("tests/data/lanes.csv"),
     )
@@ -67,8 +67,10 @@ fn elementary_functions_are_right_to_two_units_in_the_last_place() {
             assert!(found.iter().all(|v| v.to_bits() == found[0].to_bits()));
             let off = ((found[0] - nearest) - left).abs() / ulp(*nearest);
             worst[which] = worst[which].max(off);
+            // What the rounding of a program counts on (waves::tape).
+            let allowed = if name == "exp" { 1.0 } else { 1.5 };
             assert!(
-                off <= 2.0,
+                off <= allowed,
                 "{name} {x} on {level:?}: {} not {nearest}, {off} ulp",
                 found[0]
             );

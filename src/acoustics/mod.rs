@@ -12,7 +12,7 @@ use crate::elements::{Kind, Sensed};
 use crate::gas::State;
 use crate::meanflow::MeanFlow;
 use crate::network::{ElementId, Layout, Network};
-use crate::numerics::dual::{Dual, Real};
+use crate::numerics::dual::{Grad, Real};
 use crate::problems::{Problem, Problems};
 use crate::waves::front::{self, Characteristic, EliminationError};
 use crate::waves::primitive::{Chain, Plane, Step};
@@ -26,14 +26,14 @@ pub struct Acoustics<T> {
     pub characteristic: Characteristic<T>,
 }
 
-impl Acoustics<Dual> {
-    /// Taylor coefficients `D^(k)/k!` at `s`, orders 0 to `N - 1`, each with its derivative along the direction
+impl<const M: usize> Acoustics<Grad<f64, M>> {
+    /// Taylor coefficients `D^(k)/k!` at `s`, orders 0 to `N - 1`, each with its derivative along every direction
     /// the network is seeded in.
-    pub fn taylor<const N: usize>(&self, s: Complex64) -> [(Complex64, Complex64); N] {
+    pub fn taylor<const N: usize>(&self, s: Complex64) -> [(Complex64, [Complex64; M]); N] {
         let tape = &self.characteristic.tape;
         tape.taylor_at::<N>(s).map(|c| {
-            let derivative = Complex64::new(c.re.d[0], c.im.d[0]);
-            (c.value(), derivative)
+            let derivative = |i: usize| Complex64::new(c.re.d[i], c.im.d[i]);
+            (c.value(), std::array::from_fn(derivative))
         })
     }
 }

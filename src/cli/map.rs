@@ -56,7 +56,7 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
     case.narrow(&arguments.window);
     let network = &case.network;
     let (across, up) = plane::axes(network, &arguments.across, &arguments.up, arguments.points)?;
-    plane::check(network, across, up)?;
+    case.sound(cautions::refusals(network, across, up))?;
     let solved = case.solve()?;
     let window = case.window(&solved.mean)?;
     let design = modes::find(&solved, window, Scan::Whole);

@@ -56,8 +56,9 @@ enum Asked {
 const AFTER_HELP: &str = "\
 Exit codes:
   0    done
-  1    the network has problems, the computation failed, or a mode list is not proved complete
-  2    wrong usage: an option, or a name or value given with one, is mistaken
+  1    the network has problems, be it by values given with options; the computation failed; or a mode
+       list is not proved complete
+  2    wrong usage: an option, or a name, unit or value given with one, is mistaken in itself
   3    with --fail-on-growth, some mode grows
   130  interrupted
 
@@ -127,10 +128,12 @@ impl Failure {
         }
     }
 
-    /// A network could not be read: the command line is at fault where every error stands in it.
+    /// A network could not be read: the command line is at fault where every error stands in it and is one of
+    /// what was given there alone, not of what that makes of the network.
     fn of_reading(problems: Vec<Problem>) -> Self {
         let mut errors = problems.iter().filter(|p| p.severity == Severity::Error);
-        let in_option = |p: &Problem| p.place.as_ref().is_some_and(|p| p.source == OVERRIDE);
+        let in_option =
+            |p: &Problem| !p.of_whole && p.place.as_ref().is_some_and(|p| p.source == OVERRIDE);
         match errors.all(in_option) {
             true => Failure::usage(problems),
             false => Failure::input(problems),

@@ -128,6 +128,14 @@ impl Case {
         Failure::input(self.placed(problems))
     }
 
+    /// Whether the network makes sense wherever it is to be computed.
+    pub fn sound(&self, refusals: Vec<Problem>) -> Result<(), Failure> {
+        match refusals.is_empty() {
+            true => Ok(()),
+            false => Err(Failure::input(self.placed(refusals))),
+        }
+    }
+
     /// Problems with the place of their subject, where it has one.
     pub fn placed(&self, mut problems: Vec<Problem>) -> Vec<Problem> {
         for problem in problems.iter_mut().filter(|p| p.place.is_none()) {

@@ -7,7 +7,6 @@ use crate::network::Network;
 use crate::network::values::out_of_range;
 use crate::problems::Problem;
 use crate::studies::path::{Parameter, Path, Run, Spacing};
-use crate::studies::sweep::cautions;
 use crate::units::Dimension;
 
 /// Fewest and most points of a sweep.
@@ -75,19 +74,13 @@ impl Wanted<'_> {
                 .hint("write --vary \"main_flame.delay = 1 ms to 8 ms\", or --scale \"*.delay = 0.8 to 1.2\"");
             return Err(Failure::usage([problem]));
         };
-        let path = Path {
+        Ok(Path {
             parameter,
             values,
             knobs,
             spacing: self.spacing,
             points: self.points,
-        };
-        let refusals = cautions::refusals(network, &path);
-        if refusals.is_empty() {
-            Ok(path)
-        } else {
-            Err(Failure::usage(refusals))
-        }
+        })
     }
 
     fn varied(&self, network: &Network, written: Written<'_>) -> Result<Read, Box<Problem>> {

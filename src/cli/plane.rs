@@ -5,7 +5,6 @@ use crate::knobs::{Knob, KnobId};
 use crate::network::values::out_of_range;
 use crate::network::{Layout, Network};
 use crate::problems::{Place, Problem, listed, nearest};
-use crate::studies::cautions;
 use crate::studies::map::Axis;
 use crate::units::{Dimension, parse_span};
 
@@ -74,16 +73,6 @@ pub(super) fn axes(
         ]));
     }
     Ok((across, up))
-}
-
-/// Whether the network makes sense over the whole plane.
-pub(super) fn check(network: &Network, across: Axis, up: Axis) -> Result<(), Failure> {
-    let refusals = cautions::refusals(network, across, up);
-    if refusals.is_empty() {
-        Ok(())
-    } else {
-        Err(Failure::usage(refusals))
-    }
 }
 
 /// A name and a span as written.

@@ -66,6 +66,7 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
         points: arguments.points,
     }
     .path(network)?;
+    case.sound(cautions::refusals(network, &path))?;
     let solved = case.solve()?;
     let window = case.window(&solved.mean)?;
     let design = modes::find(&solved, window, Scan::Whole);

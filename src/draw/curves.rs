@@ -56,7 +56,9 @@ impl Curves {
                 lines,
             });
         }
-        if let Some(second) = map.frequency.as_ref().filter(|_| !steps) {
+        // Of two samples cut apart, lines would be drawn from one alone.
+        let coarse = steps || field.columns < 3 || field.height() < 3;
+        if let Some(second) = map.frequency.as_ref().filter(|_| !coarse) {
             let unit = &second.unit;
             let second = Field::new(&second.values).cut(&map.cuts.seams);
             let (levels, jump) = second_levels(&second);

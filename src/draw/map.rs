@@ -13,7 +13,7 @@ use super::patches::{self, Patches};
 use super::sheet::{Sheet, ends, index_of};
 use super::style::{
     CUT_CORE, NEUTRAL_HALO, absent_style, cut_style, hatch_style, neutral_style, patch_style,
-    patterns, second_style,
+    patterns, second_style, unreached_style,
 };
 use super::svg::{Point, Rect, Svg, Text, px};
 use super::text::{Weight, fit, tidy, width};
@@ -63,6 +63,8 @@ pub struct Words {
     pub uncertified: String,
     /// Certified points without a value.
     pub absent: String,
+    /// Points where no value was sought.
+    pub unreached: String,
 }
 
 impl Default for Words {
@@ -71,6 +73,7 @@ impl Default for Words {
             zero: "neutral".into(),
             uncertified: "not certified".into(),
             absent: "no mode in the window".into(),
+            unreached: "not reached".into(),
         }
     }
 }
@@ -98,6 +101,8 @@ pub struct StabilityMap {
     pub values: Vec<Vec<Option<f64>>>,
     /// Whether the answer at a point is trusted; same shape as `values`.
     pub certified: Vec<Vec<bool>>,
+    /// Whether a value was sought at a point; same shape as `values`, or empty where it was at all.
+    pub reached: Vec<Vec<bool>>,
     /// Optional second field.
     pub frequency: Option<IsoLines>,
     /// Optional patches of samples that belong together.
@@ -141,9 +146,16 @@ pub fn render(map: &StabilityMap) -> Result<String, DrawError> {
             wanted(certified, field.sample(i, j).is_some())
         }
     };
-    let absent = sheet.outline(flags(|certified, known| certified && !known), false);
+    let is_reached = |i: usize, j: usize| {
+        let row = map.reached.get(j);
+        row.and_then(|r| r.get(i)).copied().unwrap_or(true)
+    };
+    let empty = flags(|certified, known| certified && !known);
+    let absent = sheet.outline(|i, j| empty(i, j) && is_reached(i, j), false);
+    let unreached = sheet.outline(|i, j| empty(i, j) && !is_reached(i, j), false);
     let doubtful = sheet.outline(flags(|certified, _| !certified), true);
     svg.path(&absent, &absent_style());
+    svg.path(&unreached, &unreached_style());
     frame::grid(&mut svg, plot, &x_ticks, &y_ticks, 0.11);
 
     let curves = Curves::of(&field, &limit, map, &sheet);
@@ -208,8 +220,7 @@ pub fn render(map: &StabilityMap) -> Result<String, DrawError> {
         !curves.neutral.is_empty(),
         labels.iter().any(|l| l.second),
         parted,
-        !doubtful.is_empty(),
-        !absent.is_empty(),
+        [&doubtful, &absent, &unreached].map(|data| !data.is_empty()),
     );
     let below = frame::legend(
         &mut svg,
@@ -243,6 +254,7 @@ fn spread_single(map: &StabilityMap) -> StabilityMap {
     let (column, row) = (map.x_values.len() == 1, map.y_values.len() == 1);
     doubled(&mut map.values, column, row);
     doubled(&mut map.certified, column, row);
+    doubled(&mut map.reached, column, row);
     if let Some(second) = &mut map.frequency {
         doubled(&mut second.values, column, row);
     }
@@ -256,6 +268,9 @@ fn check(map: &StabilityMap) -> Result<(), DrawError> {
     let (nx, ny) = (map.x_values.len(), map.y_values.len());
     check_shape("values", &map.values, nx, ny)?;
     check_shape("certified", &map.certified, nx, ny)?;
+    if !map.reached.is_empty() {
+        check_shape("reached", &map.reached, nx, ny)?;
+    }
     check_finite("values", &map.values)?;
     if let Some(frequency) = &map.frequency {
         check_shape("frequency", &frequency.values, nx, ny)?;
@@ -379,8 +394,7 @@ fn legend_entries(
     neutral: bool,
     second: bool,
     parted: bool,
-    doubtful: bool,
-    absent: bool,
+    [doubtful, absent, unreached]: [bool; 3],
 ) -> Vec<Entry> {
     let mut entries = Vec::new();
     let mut add = |swatch: Swatch, label: &str| {
@@ -416,6 +430,9 @@ fn legend_entries(
     }
     if absent {
         add(Swatch::Patch(vec![absent_style()]), &map.words.absent);
+    }
+    if unreached {
+        add(Swatch::Patch(vec![unreached_style()]), &map.words.unreached);
     }
     entries
 }

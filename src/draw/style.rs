@@ -58,15 +58,25 @@ pub(super) fn absent_style() -> String {
     )
 }
 
+pub(super) fn unreached_style() -> String {
+    format!(
+        "fill=\"{}\" stroke=\"#8b9098\" stroke-width=\".8\"",
+        Svg::url("unreached")
+    )
+}
+
 pub(super) fn patterns(svg: &mut Svg) {
     svg.define(&format!(
         "<pattern id=\"{}\" width=\"5\" height=\"5\" patternUnits=\"userSpaceOnUse\" \
          patternTransform=\"rotate(45)\"><path d=\"M0 2.5H5\" stroke=\"{INK}\"/></pattern>\
          <pattern id=\"{}\" width=\"7\" height=\"7\" patternUnits=\"userSpaceOnUse\">\
          <path d=\"M0 0H7V7H0Z\" fill=\"#f1f1f1\"/><circle cx=\"2\" cy=\"2\" r=\".8\" fill=\"#9a9ea6\"/>\
-         <circle cx=\"5.5\" cy=\"5.5\" r=\".8\" fill=\"#9a9ea6\"/></pattern>",
+         <circle cx=\"5.5\" cy=\"5.5\" r=\".8\" fill=\"#9a9ea6\"/></pattern>\
+         <pattern id=\"{}\" width=\"6\" height=\"6\" patternUnits=\"userSpaceOnUse\">\
+         <path d=\"M0 0H6V6H0Z\" fill=\"#fff\"/><path d=\"M0 3H6\" stroke=\"#8b9098\"/></pattern>",
         Svg::id("hatch"),
         Svg::id("absent"),
+        Svg::id("unreached"),
     ));
 }
 

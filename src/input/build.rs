@@ -121,7 +121,7 @@ fn assemble(
     };
     let whole = areas::check(&network, &sections).into_iter();
     for problem in whole.chain(values::choked_without_flow(&network)) {
-        reader.report_subject(problem);
+        reader.report_subject(problem.of_whole());
     }
     network
 }

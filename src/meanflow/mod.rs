@@ -39,6 +39,18 @@ pub struct MeanFlow<T> {
     pub warnings: Vec<Problem>,
 }
 
+impl MeanFlow<f64> {
+    /// The same flow in another number type, as constants.
+    pub fn lift<T: Real>(&self) -> MeanFlow<T> {
+        MeanFlow {
+            states: self.states.iter().map(State::lift).collect(),
+            throat_area: self.throat_area.map(T::from),
+            heat_release: self.heat_release.iter().map(|h| h.map(T::from)).collect(),
+            warnings: self.warnings.clone(),
+        }
+    }
+}
+
 impl<T> MeanFlow<T> {
     /// The state at a station.
     pub fn state(&self, station: StationId) -> Option<&State<T>> {

@@ -13,7 +13,7 @@ use std::sync::Arc;
 
 use crate::elements::{Element, Kind, Section};
 use crate::knobs::{Knob, KnobId, Values};
-use crate::numerics::dual::Dual;
+use crate::numerics::dual::{Dual, Grad};
 
 /// Index of an element in [`Layout::elements`].
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
@@ -127,6 +127,14 @@ impl Network<f64> {
     /// The same network as duals, derivative one at `knob`.
     pub fn seeded(&self, knob: KnobId) -> Network<Dual> {
         self.seeded_along(&[(knob, 1.0)])
+    }
+
+    /// The same network with a direction for each knob named, and the derivative given along it.
+    pub fn seeded_each<const N: usize>(&self, knobs: [(KnobId, f64); N]) -> Network<Grad<f64, N>> {
+        Network {
+            layout: Arc::clone(&self.layout),
+            values: self.values.seeded_each(knobs),
+        }
     }
 
     /// The same network as duals, with the derivative given at each knob named.

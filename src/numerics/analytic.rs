@@ -21,7 +21,7 @@ impl Region {
     pub fn segment(a: Complex64, b: Complex64) -> Self {
         Region {
             growth: (a.re.min(b.re), a.re.max(b.re)),
-            modulus: a.norm().max(b.norm()),
+            modulus: modulus(a).max(modulus(b)),
             omega: if a.im * b.im > 0.0 {
                 a.im.abs().min(b.im.abs())
             } else {
@@ -34,9 +34,33 @@ impl Region {
     pub fn disc(centre: Complex64, radius: f64) -> Self {
         Region {
             growth: (centre.re - radius, centre.re + radius),
-            modulus: centre.norm() + radius,
+            modulus: modulus(centre) + radius,
             omega: (centre.im.abs() - radius).max(0.0),
         }
+    }
+}
+
+/// Modulus, without the care that only numbers near the ends of the range need.
+#[inline]
+pub fn modulus(z: Complex64) -> f64 {
+    let square = z.norm_sqr();
+    if square > 1e-280 && square < 1e280 {
+        square.sqrt()
+    } else {
+        z.norm()
+    }
+}
+
+/// `a/b` where `|b|^2` overflows or underflows too.
+#[inline]
+pub fn quotient(a: Complex64, b: Complex64) -> Complex64 {
+    let square = b.norm_sqr();
+    if square > 1e-280 && square < 1e280 {
+        let unit = b.conj() / square;
+        a * unit
+    } else {
+        let size = b.norm();
+        (a / size) / (b / size)
     }
 }
 

@@ -14,7 +14,7 @@
 
 use num_complex::Complex64;
 
-use super::analytic::{Analytic, Region, Rounding, TAYLOR};
+use super::analytic::{Analytic, Region, Rounding, TAYLOR, modulus};
 
 /// Work done.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
@@ -100,23 +100,54 @@ struct Sample {
     moduli: [f64; 3],
 }
 
+/// A piece of the contour: its ends, its bounds by index, and how often it was halved.
+#[derive(Clone, Copy)]
+struct Segment {
+    a: Sample,
+    b: Sample,
+    bound: usize,
+    depth: u32,
+}
+
+/// What a segment tells.
+enum Told {
+    /// The phase along it changes by the principal difference: crossings of the negative real axis.
+    Clear(i64),
+    /// It is to be halved.
+    Open,
+}
+
 /// Most halvings of one segment before a zero is taken to lie on it.
 const DEEPEST: u32 = 60;
+
+/// Most segments halved together: rounding, not zeros, keeps so many open.
+const MOST_OPEN: usize = 200_000;
 
 /// Distance from a zero within which a point of the contour is on it, over the modulus, where rounding
 /// stops the walk.
 const BESIDE: f64 = 1e-5;
 
-/// Ratio of the moduli between which segments share a bound.
-const WIDENING: f64 = 1.5;
-
 /// Walks contours of one function.
+///
+/// A contour is walked level by level: all its points at once, then the middles of all segments that are to be
+/// halved, so that values and bounds are asked for in batches.
 pub struct Walker<'f, F: ?Sized> {
     f: &'f F,
     rounding: Rounding,
-    cached: Option<(Region, [f64; TAYLOR])>,
+    work: Work,
     /// Work done so far.
     pub effort: Effort,
+}
+
+/// Memory of a walk, used again by the next.
+#[derive(Default)]
+struct Work {
+    places: Vec<Complex64>,
+    values: Vec<(Complex64, Complex64)>,
+    regions: Vec<Region>,
+    bounds: Vec<[f64; TAYLOR]>,
+    segments: Vec<Segment>,
+    open: Vec<Segment>,
 }
 
 impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
@@ -125,7 +156,7 @@ impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
         Walker {
             f,
             rounding: f.rounding(),
-            cached: None,
+            work: Work::default(),
             effort: Effort::default(),
         }
     }
@@ -165,135 +196,238 @@ impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
     /// First and last value along a polygon, and how often the negative real axis is crossed
     /// counterclockwise less clockwise.
     fn path(&mut self, corners: &[Complex64]) -> Result<(Complex64, Complex64, i64), CountError> {
-        let mut crossings = 0;
-        let mut here = self.sample(corners[0])?;
-        let first = here.value;
-        for pair in corners.windows(2) {
-            crossings += self.edge(&mut here, pair[1])?;
-        }
-        Ok((first, here.value, crossings))
+        let mut work = std::mem::take(&mut self.work);
+        let told = self.walk(&mut work, corners);
+        self.work = work;
+        told
     }
 
-    fn sample(&mut self, s: Complex64) -> Result<Sample, CountError> {
-        self.effort.evaluations += 1;
-        let (value, slope) = self.f.value_and_slope(s);
-        if !(value.is_finite() && slope.is_finite()) {
-            return Err(CountError::Overflow { at: s });
-        }
-        Ok(Sample {
-            s,
-            value,
-            slope,
-            moduli: [s.norm(), value.norm(), slope.norm()],
-        })
-    }
-
-    /// Bounds for a segment; its region is widened in steps, so that neighbours share an evaluation.
-    fn bound(&mut self, a: Complex64, b: Complex64) -> Result<[f64; TAYLOR], CountError> {
-        let mut region = Region::segment(a, b);
-        let power = |exponent: f64| WIDENING.powf(exponent);
-        region.modulus = power(region.modulus.max(1.0).log(WIDENING).ceil());
-        region.omega = match region.omega {
-            below if below < 1.0 => 0.0,
-            omega => power(omega.log(WIDENING).floor()),
-        };
-        if let Some((cached, bounds)) = self.cached
-            && cached == region
-        {
-            return Ok(bounds);
-        }
-        self.effort.bounds += 1;
-        let bounds = self.f.bound(&region);
-        if !bounds.iter().all(|b| b.is_finite()) {
-            // Delays grow to the left.
-            let at = if b.re < a.re { b } else { a };
-            return Err(CountError::Overflow { at });
-        }
-        self.cached = Some((region, bounds));
-        Ok(bounds)
-    }
-
-    fn edge(&mut self, here: &mut Sample, to: Complex64) -> Result<i64, CountError> {
-        let mut crossings = 0;
-        let from = here.s;
-        let length = (to - from).norm();
-        if length == 0.0 {
-            return Ok(0);
-        }
-        let b = self.bound(from, to)?;
-        let step = 1.8 * b[0] / b[1].max(f64::MIN_POSITIVE);
-        let parts = (length / step).ceil().clamp(1.0, 1e6) as usize;
-        for i in 1..=parts {
-            let s = if i == parts {
-                to
-            } else {
-                from + (to - from) * (i as f64 / parts as f64)
-            };
-            let next = self.sample(s)?;
-            let bounds = self.bound(here.s, next.s)?;
-            crossings += self.segment(*here, next, &bounds, 0)?;
-            *here = next;
-        }
-        Ok(crossings)
-    }
-
-    fn segment(
+    fn walk(
         &mut self,
-        a: Sample,
-        b: Sample,
-        bounds: &[f64; TAYLOR],
-        depth: u32,
-    ) -> Result<i64, CountError> {
-        let h = (b.s - a.s).norm();
+        work: &mut Work,
+        corners: &[Complex64],
+    ) -> Result<(Complex64, Complex64, i64), CountError> {
+        self.place(work, corners)?;
+        self.evaluate(work)?;
+        let sample = |i: usize| Sample::of(work.places[i], work.values[i]);
+        let last = work.places.len() - 1;
+        let (first, end) = (sample(0), sample(last));
+        work.regions.clear();
+        work.segments.clear();
+        let mut a = first;
+        for i in 1..=last {
+            let b = sample(i);
+            let region = widened(&a, &b);
+            if work.regions.last() != Some(&region) {
+                work.regions.push(region);
+            }
+            let bound = work.regions.len() - 1;
+            work.segments.push(Segment {
+                a,
+                b,
+                bound,
+                depth: 0,
+            });
+            a = b;
+        }
+        self.bounds(work)?;
+        let mut crossings = 0;
+        while !work.segments.is_empty() {
+            work.open.clear();
+            work.places.clear();
+            for segment in &work.segments {
+                match self.judge(segment, &work.bounds[segment.bound])? {
+                    Told::Clear(n) => crossings += n,
+                    Told::Open => {
+                        work.open.push(*segment);
+                        work.places.push((segment.a.s + segment.b.s) * 0.5);
+                    }
+                }
+            }
+            if let (Some(open), true) = (work.open.first(), work.open.len() > MOST_OPEN) {
+                return Err(CountError::Drowned { near: open.a.s });
+            }
+            work.segments.clear();
+            self.effort.refinements += work.open.len();
+            self.evaluate(work)?;
+            for (i, segment) in work.open.iter().enumerate() {
+                let middle = Sample::of(work.places[i], work.values[i]);
+                self.held(segment, &middle, &work.bounds[segment.bound])?;
+                for (a, b) in [(segment.a, middle), (middle, segment.b)] {
+                    work.segments.push(Segment {
+                        a,
+                        b,
+                        depth: segment.depth + 1,
+                        ..*segment
+                    });
+                }
+            }
+        }
+        Ok((first.value, end.value, crossings))
+    }
+
+    /// The points of a polygon, its edges cut by the scale on which the function may vary along them.
+    fn place(&mut self, work: &mut Work, corners: &[Complex64]) -> Result<(), CountError> {
+        work.regions.clear();
+        let edges = || corners.iter().zip(corners.iter().skip(1));
+        work.regions.extend(edges().map(|(a, b)| {
+            let (a, b) = (Sample::at(*a), Sample::at(*b));
+            widened(&a, &b)
+        }));
+        self.bounds(work)?;
+        work.places.clear();
+        work.places.extend(corners.first());
+        for ((&from, &to), b) in edges().zip(&work.bounds) {
+            let length = (to - from).norm();
+            if length == 0.0 {
+                continue;
+            }
+            let step = 1.8 * b[0] / b[1].max(f64::MIN_POSITIVE);
+            let parts = (length / step).ceil().clamp(1.0, 1e6) as usize;
+            let inner = (1..parts).map(|i| from + (to - from) * (i as f64 / parts as f64));
+            work.places.extend(inner.chain([to]));
+        }
+        Ok(())
+    }
+
+    /// Values at the places.
+    fn evaluate(&mut self, work: &mut Work) -> Result<(), CountError> {
+        self.effort.evaluations += work.places.len();
+        work.values.clear();
+        self.f.values_and_slopes(&work.places, &mut work.values);
+        for (&at, (value, slope)) in work.places.iter().zip(&work.values) {
+            if !(value.is_finite() && slope.is_finite()) {
+                return Err(CountError::Overflow { at });
+            }
+        }
+        Ok(())
+    }
+
+    /// Bounds over the regions.
+    fn bounds(&mut self, work: &mut Work) -> Result<(), CountError> {
+        self.effort.bounds += work.regions.len();
+        work.bounds.clear();
+        self.f.bounds(&work.regions, &mut work.bounds);
+        for (region, bounds) in work.regions.iter().zip(&work.bounds) {
+            if !bounds.iter().all(|b| b.is_finite()) {
+                // Delays grow to the left.
+                let at = Complex64::new(region.growth.0, region.omega);
+                return Err(CountError::Overflow { at });
+            }
+        }
+        Ok(())
+    }
+
+    fn judge(&self, segment: &Segment, bounds: &[f64; TAYLOR]) -> Result<Told, CountError> {
+        let Segment { a, b, depth, .. } = segment;
+        let h = modulus(b.s - a.s);
         let along = (b.s - a.s) / h;
         let ([sa, va, _], [sb, vb, _]) = (a.moduli, b.moduli);
         let modulus = sa.max(sb);
         let floor = self.rounding.floor(bounds, modulus, 0);
         let slope_floor = self.rounding.floor(bounds, modulus, 1);
-        for p in [&a, &b] {
+        for p in [a, b] {
             let [_, value, slope] = p.moduli;
             if value > bounds[0] + floor || slope > bounds[1] + slope_floor {
                 return Err(CountError::BoundContradicted { at: p.s });
             }
         }
-        let remainder = bounds[4] * h.powi(4) / 16.0;
+        let h2 = h * h;
+        let remainder = bounds[4] * (h2 * h2) / 16.0;
         let noise = floor + slope_floor * h / 3.0;
         if va > floor && vb > floor {
-            let control = [
-                a.value,
-                a.value + a.slope * along * (h / 3.0),
-                b.value - b.slope * along * (h / 3.0),
-                b.value,
-            ];
             let (from, to) = (a.value / va, b.value / vb);
             let bisector = from + to;
-            let size = bisector.norm();
-            let clear = |p: &Complex64| (p * bisector.conj()).re > (remainder + noise) * size;
-            if size > 1e-9 && control.iter().all(clear) {
-                return Ok(crossing(from, to));
+            let size = bisector.norm_sqr().sqrt();
+            let third = along * (h / 3.0);
+            let needed = (remainder + noise) * size;
+            let clear = |p: Complex64| p.re * bisector.re + p.im * bisector.im > needed;
+            if size > 1e-9
+                && clear(a.value)
+                && clear(b.value)
+                && clear(a.value + a.slope * third)
+                && clear(b.value - b.slope * third)
+            {
+                return Ok(Told::Clear(crossing(from, to)));
             }
         }
-        if depth >= DEEPEST || h <= 4.0 * f64::EPSILON * modulus {
+        // A value within rounding of zero stays the end of a segment however often that is halved.
+        let lost = va <= floor || vb <= floor;
+        if lost || *depth >= DEEPEST || h <= 4.0 * f64::EPSILON * modulus {
             let p = if va < vb { a } else { b };
-            let [_, value, slope] = p.moduli;
-            // Beside a zero the slope tells where it lies.
-            let found = slope > 2.0 * slope_floor && value + floor < BESIDE * modulus * slope;
-            return Err(if found {
-                CountError::OnContour { near: p.s }
-            } else {
-                CountError::Drowned { near: p.s }
-            });
+            return Err(stopped(p, floor, slope_floor, modulus));
         }
-        self.effort.refinements += 1;
-        let middle = self.sample((a.s + b.s) * 0.5)?;
-        // The interpolant's own value there: a bound that is contradicted is a bound that is wrong.
+        Ok(Told::Open)
+    }
+
+    /// Holds the value in the middle of a segment against its interpolant's own there: a bound that is
+    /// contradicted is a bound that is wrong.
+    fn held(
+        &self,
+        segment: &Segment,
+        middle: &Sample,
+        bounds: &[f64; TAYLOR],
+    ) -> Result<(), CountError> {
+        let Segment { a, b, .. } = segment;
+        let h = modulus(b.s - a.s);
+        let along = (b.s - a.s) / h;
+        let farthest = a.moduli[0].max(b.moduli[0]);
+        let floor = self.rounding.floor(bounds, farthest, 0);
+        let slope_floor = self.rounding.floor(bounds, farthest, 1);
+        let remainder = bounds[4] * h.powi(4) / 16.0;
         let hermite = (a.value + b.value) * 0.5 + (a.slope - b.slope) * along * (h / 8.0);
-        if (middle.value - hermite).norm() > remainder + 3.0 * floor + slope_floor * h {
+        if modulus(middle.value - hermite) > remainder + 3.0 * floor + slope_floor * h {
             return Err(CountError::BoundContradicted { at: middle.s });
         }
-        Ok(self.segment(a, middle, bounds, depth + 1)?
-            + self.segment(middle, b, bounds, depth + 1)?)
+        Ok(())
     }
+}
+
+/// Why the walk ends at a point: beside a zero the slope tells where it lies.
+fn stopped(p: &Sample, floor: f64, slope_floor: f64, modulus: f64) -> CountError {
+    let [_, value, slope] = p.moduli;
+    if slope > 2.0 * slope_floor && value + floor < BESIDE * modulus * slope {
+        CountError::OnContour { near: p.s }
+    } else {
+        CountError::Drowned { near: p.s }
+    }
+}
+
+impl Sample {
+    fn of(s: Complex64, (value, slope): (Complex64, Complex64)) -> Self {
+        Sample {
+            s,
+            value,
+            slope,
+            moduli: [modulus(s), modulus(value), modulus(slope)],
+        }
+    }
+
+    /// A place without its values.
+    fn at(s: Complex64) -> Self {
+        let zero = Complex64::new(0.0, 0.0);
+        Sample::of(s, (zero, zero))
+    }
+}
+
+/// The region of a segment, widened to numbers of few digits so that neighbours share an evaluation of
+/// the bounds.
+fn widened(a: &Sample, b: &Sample) -> Region {
+    let mut region = Region::segment(a.s, b.s);
+    region.modulus = rounded(region.modulus.max(1.0), true);
+    region.omega = match region.omega {
+        below if below < 1.0 => 0.0,
+        omega => rounded(omega, false),
+    };
+    region
+}
+
+/// The next number of the form `2^k` or `1.5 2^k`, at least or at most `x >= 1`.
+fn rounded(x: f64, up: bool) -> f64 {
+    const HALF: u64 = 1 << 51;
+    let bits = x.to_bits();
+    let up = if up { HALF - 1 } else { 0 };
+    f64::from_bits((bits + up) & !(HALF - 1))
 }
 
 /// Crossing of the negative real axis between two directions less than half a turn apart:

@@ -35,6 +35,8 @@ pub trait Real:
     fn chain(self, value: Self::Scalar, derivative: Self::Scalar) -> Self;
     /// The number type of the derivatives' coefficients.
     type Scalar: Copy;
+    /// Whether it carries derivatives.
+    const DERIVATIVES: bool;
     /// Square root.
     fn sqrt(self) -> Self;
     /// Exponential.
@@ -71,6 +73,7 @@ pub trait Real:
 
 impl Real for f64 {
     type Scalar = f64;
+    const DERIVATIVES: bool = false;
     fn value(self) -> f64 {
         self
     }
@@ -261,6 +264,7 @@ impl<T: Real, const N: usize> SubAssign for Grad<T, N> {
 
 impl<T: Real, const N: usize> Real for Grad<T, N> {
     type Scalar = T;
+    const DERIVATIVES: bool = true;
     fn value(self) -> f64 {
         self.v.value()
     }

@@ -143,6 +143,7 @@ impl<T: Real> SubAssign for Fine<T> {
 /// Sums, products and quotients are fine; functions have working precision.
 impl<T: Real> Real for Fine<T> {
     type Scalar = T::Scalar;
+    const DERIVATIVES: bool = T::DERIVATIVES;
     fn value(self) -> f64 {
         self.v.value()
     }

@@ -9,7 +9,8 @@
 
 use num_complex::Complex64;
 
-use super::analytic::{Analytic, Region};
+pub use super::analytic::quotient;
+use super::analytic::{Analytic, Region, Rounding, TAYLOR, modulus};
 
 /// A disc with a known number of zeros.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -38,100 +39,260 @@ pub fn scale<F: Analytic + ?Sized>(f: &F, z: Complex64) -> f64 {
     b[0] / b[1].max(f64::MIN_POSITIVE)
 }
 
-/// `a/b` where `|b|^2` overflows or underflows too.
-pub fn quotient(a: Complex64, b: Complex64) -> Complex64 {
-    let size = b.norm();
-    (a / size) / (b / size)
+/// Newton from many starts at once.
+///
+/// Each goes on until its step is at rounding level or no longer shrinks; it comes to nothing where it leaves `reach`
+/// about its start or does not settle.
+pub struct Newton {
+    runs: Vec<Run>,
+    reached: Vec<Option<Complex64>>,
+    active: Vec<usize>,
+    places: Vec<Complex64>,
+    values: Vec<(Complex64, Complex64)>,
 }
 
-/// Newton from `z` until the step is at rounding level or no longer shrinks. `None` where it leaves
-/// `reach` about the start or does not settle.
+#[derive(Clone, Copy)]
+struct Run {
+    start: Complex64,
+    z: Complex64,
+    last: f64,
+    steps: usize,
+}
+
+/// Most steps.
+const MOST_STEPS: usize = 40;
+
+/// Steps after which each must be shorter than the one before by a fifth: towards two zeros that all but coincide they
+/// are halved, towards one they do better.
+const FREE_STEPS: usize = 6;
+
+impl Default for Newton {
+    /// With no memory yet.
+    fn default() -> Self {
+        Newton {
+            runs: Vec::new(),
+            reached: Vec::new(),
+            active: Vec::new(),
+            places: Vec::new(),
+            values: Vec::new(),
+        }
+    }
+}
+
+impl Newton {
+    /// What is reached from each start, in their order.
+    pub fn run<F: Analytic + ?Sized>(
+        &mut self,
+        f: &F,
+        starts: &[Complex64],
+        reach: f64,
+        evaluations: &mut usize,
+    ) -> &[Option<Complex64>] {
+        let last = f64::INFINITY;
+        self.runs.clear();
+        let begin = |&start: &Complex64| Run {
+            start,
+            z: start,
+            last,
+            steps: 0,
+        };
+        self.runs.extend(starts.iter().map(begin));
+        self.reached.clear();
+        self.reached.resize(starts.len(), None);
+        self.active.clear();
+        self.active.extend(0..starts.len());
+        for _ in 0..MOST_STEPS {
+            if self.active.is_empty() {
+                break;
+            }
+            *evaluations += self.active.len();
+            let (runs, reached) = (&mut self.runs, &mut self.reached);
+            self.places.clear();
+            self.places.extend(self.active.iter().map(|&i| runs[i].z));
+            self.values.clear();
+            f.values_and_slopes(&self.places, &mut self.values);
+            let mut values = self.values.iter();
+            self.active.retain(|&i| {
+                let Some(&(value, slope)) = values.next() else {
+                    return false;
+                };
+                match runs[i].step(value, slope, reach) {
+                    Step::On => true,
+                    Step::Done(z) => {
+                        reached[i] = z;
+                        false
+                    }
+                }
+            });
+        }
+        for &i in &self.active {
+            let run = &self.runs[i];
+            let near = run.last <= 1e-6 * (modulus(run.z) + reach);
+            self.reached[i] = near.then_some(run.z);
+        }
+        &self.reached
+    }
+}
+
+enum Step {
+    On,
+    Done(Option<Complex64>),
+}
+
+impl Run {
+    fn step(&mut self, value: Complex64, slope: Complex64, reach: f64) -> Step {
+        let step = quotient(value, slope);
+        if !step.is_finite() {
+            return Step::Done((value.norm() == 0.0).then_some(self.z));
+        }
+        let (size, far) = (modulus(step), modulus(self.z));
+        let settled = size <= 8.0 * f64::EPSILON * far;
+        // Rounding noise: a step already small that grows again.
+        let noise = size >= self.last && self.last <= 1e-9 * (far + reach);
+        if noise {
+            return Step::Done(Some(self.z));
+        }
+        self.steps += 1;
+        if self.steps > FREE_STEPS && size > 0.8 * self.last {
+            return Step::Done(None);
+        }
+        self.z -= step;
+        if settled {
+            return Step::Done(Some(self.z));
+        }
+        if (self.z - self.start).norm_sqr() > reach * reach {
+            return Step::Done(None);
+        }
+        self.last = size;
+        Step::On
+    }
+}
+
+/// Newton from one start.
 pub fn newton<F: Analytic + ?Sized>(
     f: &F,
     start: Complex64,
     reach: f64,
     evaluations: &mut usize,
 ) -> Option<Complex64> {
-    let mut z = start;
-    let mut last = f64::INFINITY;
-    for _ in 0..40 {
+    let mut run = Run {
+        start,
+        z: start,
+        last: f64::INFINITY,
+        steps: 0,
+    };
+    for _ in 0..MOST_STEPS {
         *evaluations += 1;
-        let (value, slope) = f.value_and_slope(z);
-        let step = quotient(value, slope);
-        if !step.is_finite() {
-            return (value.norm() == 0.0).then_some(z);
+        let (value, slope) = f.value_and_slope(run.z);
+        if let Step::Done(reached) = run.step(value, slope, reach) {
+            return reached;
         }
-        let size = step.norm();
-        let settled = size <= 8.0 * f64::EPSILON * z.norm();
-        // Rounding noise: a step already small that grows again.
-        let noise = size >= last && last <= 1e-9 * (z.norm() + reach);
-        if noise {
-            return Some(z);
-        }
-        z -= step;
-        if settled {
-            return Some(z);
-        }
-        if (z - start).norm_sqr() > reach * reach {
-            return None;
-        }
-        last = size;
     }
-    (last <= 1e-6 * (z.norm() + reach)).then_some(z)
+    (run.last <= 1e-6 * (modulus(run.z) + reach)).then_some(run.z)
 }
 
 /// Proves one zero near `z`, which Newton has reached, in a disc no larger than `reach`.
 pub fn simple<F: Analytic + ?Sized>(f: &F, z: Complex64, reach: f64) -> Option<Zero> {
+    let proved = simples(f, &[z], reach);
+    proved.into_iter().next().flatten()
+}
+
+/// The same for many places at once, in their order.
+pub fn simples<F: Analytic + ?Sized>(f: &F, at: &[Complex64], reach: f64) -> Vec<Option<Zero>> {
     let rounding = f.rounding();
-    let (value, slope) = f.value_and_slope(z);
-    let (widest, mut reach) = (reach, reach);
-    let mut best: Option<(f64, f64)> = None;
-    let mut settled = false;
+    let mut values = Vec::with_capacity(at.len());
+    f.values_and_slopes(at, &mut values);
+    let begin = |(&z, &(value, slope)): (&Complex64, &(Complex64, Complex64))| Proof {
+        z,
+        far: modulus(z),
+        value: modulus(value),
+        slope: modulus(slope),
+        reach,
+        best: None,
+        settled: false,
+    };
+    let mut proofs: Vec<Proof> = at.iter().zip(&values).map(begin).collect();
+    let (mut regions, mut bounds) = (Vec::new(), Vec::new());
     // A smaller disc has a smaller bound; the widest proof wins.
     for _ in 0..12 {
-        if best.is_some_and(|(_, outer)| reach <= outer) {
+        regions.clear();
+        let open = proofs.iter().filter(|p| p.is_open());
+        regions.extend(open.map(|p| Region::disc(p.z, p.reach)));
+        if regions.is_empty() {
             break;
         }
-        let bounds = f.bound(&Region::disc(z, reach));
-        let floor = |order| rounding.floor(&bounds, z.norm(), order);
-        let (e, a) = (value.norm() + floor(0), slope.norm() - floor(1));
+        bounds.clear();
+        f.bounds(&regions, &mut bounds);
+        let open = proofs.iter_mut().filter(|p| p.is_open());
+        for (proof, bounds) in open.zip(&bounds) {
+            proof.narrow(&rounding, bounds);
+        }
+    }
+    proofs.iter().map(|p| p.told(f, &rounding, reach)).collect()
+}
+
+/// A proof of one zero in the making.
+struct Proof {
+    z: Complex64,
+    far: f64,
+    value: f64,
+    slope: f64,
+    /// The next disc tried.
+    reach: f64,
+    /// The least and the greatest radius proved so far.
+    best: Option<(f64, f64)>,
+    settled: bool,
+}
+
+impl Proof {
+    fn is_open(&self) -> bool {
+        self.best.is_none_or(|(_, outer)| self.reach > outer)
+    }
+
+    fn narrow(&mut self, rounding: &Rounding, bounds: &[f64; TAYLOR]) {
+        let floor = |order| rounding.floor(bounds, self.far, order);
+        let (e, a) = (self.value + floor(0), self.slope - floor(1));
         // Divided by the slope: its square may overflow where it does not.
         let (e, curvature) = (e / a, bounds[2] / a);
         let root = 1.0 - 4.0 * curvature * e;
         if a > 0.0 && root > 0.0 {
             let sum = 1.0 + root.sqrt();
             let inner = 2.0 * e / sum;
-            let outer = if 2.0 * curvature * reach > sum {
+            let outer = if 2.0 * curvature * self.reach > sum {
                 sum / (2.0 * curvature)
             } else {
-                reach
+                self.reach
             };
-            if inner < outer && best.is_none_or(|(_, o)| outer > o) {
-                best = Some((inner, outer));
-                settled = value.norm() <= 2.0 * floor(0);
+            if inner < outer && self.best.is_none_or(|(_, o)| outer > o) {
+                self.best = Some((inner, outer));
+                self.settled = self.value <= 2.0 * floor(0);
             }
-            if outer < reach {
+            if outer < self.reach {
                 // The bound, not the reach, limits the disc: shrink towards where both meet.
-                reach = 1.5 * outer;
-                continue;
+                self.reach = 1.5 * outer;
+                return;
             }
         }
-        reach *= 0.25;
+        self.reach *= 0.25;
     }
-    if best.is_none() {
-        best = outweighed(f, z, widest, 1);
-        let here = f.bound(&Region::disc(z, 0.0));
-        settled = value.norm() <= 2.0 * rounding.floor(&here, z.norm(), 0);
+
+    fn told<F: Analytic + ?Sized>(&self, f: &F, rounding: &Rounding, widest: f64) -> Option<Zero> {
+        let (mut best, mut settled) = (self.best, self.settled);
+        if best.is_none() {
+            best = outweighed(f, self.z, widest, 1);
+            let here = f.bound(&Region::disc(self.z, 0.0));
+            settled = self.value <= 2.0 * rounding.floor(&here, self.far, 0);
+        }
+        let (error, radius) = best?;
+        Some(Zero {
+            at: self.z,
+            error,
+            radius,
+            multiplicity: 1,
+            real: false,
+            settled,
+        })
     }
-    let (error, radius) = best?;
-    Some(Zero {
-        at: z,
-        error,
-        radius,
-        multiplicity: 1,
-        real: false,
-        settled,
-    })
 }
 
 /// Proves two zeros near `z` and tells them apart where rounding allows.

@@ -5,7 +5,7 @@
 
 use num_complex::Complex64;
 
-use super::analytic::Analytic;
+use super::analytic::{Analytic, modulus};
 use super::isolate::{self, Zero};
 
 /// What became of a candidate.
@@ -60,19 +60,54 @@ impl<'f, F: Analytic + ?Sized> Ledger<'f, F> {
 
     /// Offers a point that Newton has reached.
     pub fn offer(&mut self, z: Complex64) -> Entry {
-        let z = if self.symmetric && z.im < 0.0 {
+        let z = self.folded(z);
+        if self.knows(z) {
+            return Entry::Known;
+        }
+        let proved = isolate::simple(self.f, z, self.reach);
+        self.take(z, proved)
+    }
+
+    /// Offers many, in their order; whether any of them is new. Where many lie near one another some are proved
+    /// to no purpose.
+    pub fn offer_all(&mut self, reached: impl Iterator<Item = Complex64>) -> bool {
+        let mut fresh: Vec<Complex64> = Vec::new();
+        for z in reached {
+            let z = self.folded(z);
+            // Newton from two starts reaches one zero to within rounding.
+            let same = |other: &Complex64| modulus(other - z) <= 1e-11 * modulus(z);
+            if !fresh.iter().any(same) && !self.knows(z) {
+                fresh.push(z);
+            }
+        }
+        if fresh.is_empty() {
+            return false;
+        }
+        let proofs = isolate::simples(self.f, &fresh, self.reach);
+        let mut any = false;
+        for (z, proved) in fresh.into_iter().zip(proofs) {
+            any |= !self.knows(z) && self.take(z, proved) == Entry::New;
+        }
+        any
+    }
+
+    fn folded(&self, z: Complex64) -> Complex64 {
+        if self.symmetric && z.im < 0.0 {
             z.conj()
         } else {
             z
-        };
-        if self
-            .zeros
-            .iter()
-            .any(|k| (k.at - z).norm() + k.error < k.radius)
-        {
-            return Entry::Known;
         }
-        let proved = match isolate::simple(self.f, z, self.reach) {
+    }
+
+    /// Whether a listed disc holds `z` so deep that it is the zero in it.
+    fn knows(&self, z: Complex64) -> bool {
+        let holds = |k: &Zero| modulus(k.at - z) + k.error < k.radius;
+        self.zeros.iter().any(holds)
+    }
+
+    /// Enters what is proved near `z`, or the pair that may be.
+    fn take(&mut self, z: Complex64, simple: Option<Zero>) -> Entry {
+        let proved = match simple {
             Some(zero) => vec![zero],
             None => match isolate::pair(self.f, z, self.reach, &mut self.evaluations) {
                 Some(zeros) => zeros,

@@ -4,6 +4,7 @@ pub mod analytic;
 pub mod count;
 pub mod dual;
 pub mod fine;
+mod hunt;
 pub mod isolate;
 pub mod lanes;
 pub mod ledger;

@@ -15,9 +15,9 @@ use num_complex::Complex64;
 
 use super::analytic::Analytic;
 use super::count::{CountError, Effort, Rectangle, Walker};
+use super::hunt::Hunt;
 use super::isolate::{self, Zero};
-use super::ledger::{Entry, Ledger};
-use super::starts;
+use super::ledger::Ledger;
 
 /// Why a list is not certified.
 #[derive(Clone, Copy, Debug, PartialEq, thiserror::Error)]
@@ -169,7 +169,8 @@ fn pad_by(window: &Rectangle, pad: f64, symmetric: bool) -> Rectangle {
     }
 }
 
-fn count<F: Analytic + ?Sized>(
+/// Zeros in a rectangle.
+pub(super) fn count<F: Analytic + ?Sized>(
     walker: &mut Walker<'_, F>,
     r: &Rectangle,
     symmetric: bool,
@@ -267,226 +268,5 @@ fn on_or_above(zero: &Zero, on_axis: bool) -> Zero {
         at: Complex64::new(zero.at.re, zero.at.im + below),
         error: zero.error + below,
         ..*zero
-    }
-}
-
-struct Hunt<'a, F: ?Sized> {
-    f: &'a F,
-    padded: &'a Rectangle,
-    count: i64,
-    symmetric: bool,
-    pitch: f64,
-    scan: Scan,
-    starts: &'a [Complex64],
-}
-
-impl<F: Analytic + ?Sized> Hunt<'_, F> {
-    fn run(&self, ledger: &mut Ledger<'_, F>, walker: &mut Walker<'_, F>) {
-        for &start in self.starts {
-            if self.counted(ledger) {
-                return;
-            }
-            if self.padded.holds(start, self.pitch) != Some(false) {
-                self.approach(ledger, walker, start);
-            }
-        }
-        if self.counted(ledger) {
-            return;
-        }
-        self.scan(ledger, walker, starts::grid(self.padded, self.pitch));
-        if self.weight(ledger) < self.count {
-            let rim = starts::rim(self.padded, self.pitch, self.symmetric);
-            self.scan(ledger, walker, rim);
-        }
-        if self.weight(ledger) >= self.count {
-            return;
-        }
-        walker.effort.fallbacks += 1;
-        self.deflated(ledger, walker, 0.5 * self.pitch);
-        if self.weight(ledger) >= self.count {
-            return;
-        }
-        let whole = Cell {
-            r: *self.padded,
-            half: self.symmetric,
-        };
-        self.subdivide(ledger, walker, whole, self.count, 0);
-    }
-
-    fn inside(&self, zero: &Zero) -> bool {
-        let mut z = zero.at;
-        if self.symmetric {
-            z.im = z.im.max(zero.error);
-        }
-        self.padded.holds(z, zero.error) != Some(false)
-    }
-
-    fn weight(&self, ledger: &Ledger<'_, F>) -> i64 {
-        ledger
-            .zeros()
-            .iter()
-            .filter(|z| self.inside(z))
-            .map(|z| ledger.weight(z))
-            .sum()
-    }
-
-    /// Whether nothing more is to be looked for.
-    fn counted(&self, ledger: &Ledger<'_, F>) -> bool {
-        self.scan == Scan::UntilCounted && self.weight(ledger) >= self.count
-    }
-
-    fn scan(
-        &self,
-        ledger: &mut Ledger<'_, F>,
-        walker: &mut Walker<'_, F>,
-        starts: impl Iterator<Item = Complex64>,
-    ) {
-        let pitch = self.pitch;
-        for start in starts {
-            walker.effort.evaluations += 1;
-            let (value, slope) = self.f.value_and_slope(start);
-            let step = isolate::quotient(value, slope);
-            if !step.is_finite() || step.norm_sqr() > (1.2 * pitch).powi(2) {
-                continue;
-            }
-            if self.approach(ledger, walker, start - step) == Entry::New && self.counted(ledger) {
-                return;
-            }
-        }
-    }
-
-    /// Newton from a guess that no listed disc holds.
-    fn approach(
-        &self,
-        ledger: &mut Ledger<'_, F>,
-        walker: &mut Walker<'_, F>,
-        guess: Complex64,
-    ) -> Entry {
-        if ledger.covers(guess) {
-            return Entry::Known;
-        }
-        let evaluations = &mut walker.effort.evaluations;
-        match isolate::newton(self.f, guess, 4.0 * self.pitch, evaluations) {
-            Some(z) => ledger.offer(z),
-            None => Entry::Unproven,
-        }
-    }
-
-    /// Newton on `f` divided by its known zeros: `step = 1/(f'/f - sum m/(s - z))`.
-    fn deflated(&self, ledger: &mut Ledger<'_, F>, walker: &mut Walker<'_, F>, pitch: f64) {
-        for start in starts::grid(self.padded, pitch) {
-            let mut z = start;
-            for _ in 0..25 {
-                walker.effort.evaluations += 1;
-                let (value, slope) = self.f.value_and_slope(z);
-                let mut rate = isolate::quotient(slope, value);
-                for k in ledger.zeros() {
-                    let m = f64::from(k.multiplicity);
-                    rate -= m / (z - k.at);
-                    if self.symmetric && !k.real {
-                        rate -= m / (z - k.at.conj());
-                    }
-                }
-                let step = rate.inv();
-                if !step.is_finite() || (z - step - start).norm() > 6.0 * pitch {
-                    break;
-                }
-                z -= step;
-                if step.norm() < 1e-6 * pitch {
-                    let evaluations = &mut walker.effort.evaluations;
-                    let reached = isolate::newton(self.f, z, pitch, evaluations).unwrap_or(z);
-                    if ledger.offer(reached) == Entry::New && self.weight(ledger) >= self.count {
-                        return;
-                    }
-                    break;
-                }
-            }
-        }
-    }
-
-    fn subdivide(
-        &self,
-        ledger: &mut Ledger<'_, F>,
-        walker: &mut Walker<'_, F>,
-        cell: Cell,
-        count: i64,
-        depth: usize,
-    ) {
-        let known: i64 = ledger
-            .zeros()
-            .iter()
-            .filter(|z| cell.r.holds(z.at, 0.0) != Some(false))
-            .map(|z| {
-                if cell.half {
-                    ledger.weight(z)
-                } else {
-                    i64::from(z.multiplicity)
-                }
-            })
-            .sum();
-        if count <= known || depth > 60 {
-            return;
-        }
-        let middle = cell.middle();
-        let reach = (cell.r.growth.1 - cell.r.growth.0).hypot(cell.r.omega.1 - cell.r.omega.0);
-        let evaluations = &mut walker.effort.evaluations;
-        let before = self.weight(ledger);
-        let reached = isolate::newton(self.f, middle, reach, evaluations);
-        ledger.offer(reached.unwrap_or(middle));
-        if reached.is_none() && reach < 1e-3 * self.pitch {
-            // Slow convergence on a small cell: two zeros nearly coincide; their middle is offered.
-            ledger.offer(middle);
-        }
-        if count <= known + self.weight(ledger) - before {
-            return;
-        }
-        for fraction in [0.5, 0.4683, 0.5391, 0.4219] {
-            let (a, b) = cell.split(fraction);
-            if let (Ok(na), Ok(nb)) = (a.count(walker), b.count(walker)) {
-                let weight_of_b = if cell.half && !b.half { 2 * nb } else { nb };
-                if na + weight_of_b == count {
-                    self.subdivide(ledger, walker, a, na, depth + 1);
-                    self.subdivide(ledger, walker, b, nb, depth + 1);
-                    return;
-                }
-            }
-        }
-    }
-}
-
-/// A rectangle; `half` where it stands on the real axis and is counted with its mirror image.
-#[derive(Clone, Copy)]
-struct Cell {
-    r: Rectangle,
-    half: bool,
-}
-
-impl Cell {
-    fn middle(&self) -> Complex64 {
-        Complex64::new(
-            0.5 * (self.r.growth.0 + self.r.growth.1),
-            0.5 * (self.r.omega.0 + self.r.omega.1),
-        )
-    }
-
-    fn count<F: Analytic + ?Sized>(&self, walker: &mut Walker<'_, F>) -> Result<i64, CountError> {
-        count(walker, &self.r, self.half)
-    }
-
-    /// Halves the longer side; the first part keeps the real axis.
-    fn split(&self, fraction: f64) -> (Cell, Cell) {
-        let (mut a, mut b) = (*self, *self);
-        let (g, w) = (self.r.growth, self.r.omega);
-        if g.1 - g.0 > w.1 - w.0 {
-            let cut = g.0 + fraction * (g.1 - g.0);
-            a.r.growth.1 = cut;
-            b.r.growth.0 = cut;
-        } else {
-            let cut = w.0 + fraction * (w.1 - w.0);
-            a.r.omega.1 = cut;
-            b.r.omega.0 = cut;
-            b.half = false;
-        }
-        (a, b)
     }
 }

@@ -1,15 +1,17 @@
 //! A stability map as a figure: units for its axes and words for its labels.
 
-use super::map::{MapReport, rate};
-use super::{CAUTION, window_text};
+use super::map::MapReport;
+use super::map_events::NOT_FOLLOWED;
+use super::{CAUTION, rate, window_text};
 use crate::draw::patches::Patches;
-use crate::draw::text::fixed;
 use crate::draw::{
     Axis, Cuts, DesignPoint, DrawError, IsoLines, Quantity, Seam, StabilityMap, Words, map,
 };
+use crate::modes::{Mode, Tendency};
+use crate::studies::branch::Cut;
 use crate::studies::map::{Axis as Values, Point};
 use crate::studies::regions::{Region, regions};
-use crate::units::{self, Dimension, write_rounded};
+use crate::units::{self, Dimension, write_decimals, write_rounded};
 
 /// The unit an engineer writes a quantity of that size in, and its size in SI.
 pub(super) fn engineers_unit(dimension: Dimension, largest: f64) -> (String, f64) {
@@ -39,6 +41,14 @@ pub(super) fn label(name: &str) -> String {
     }
 }
 
+/// A growth rate as it is drawn: a neutral mode has none, where rounding would scatter signs along an edge.
+fn drawn(mode: &Mode) -> f64 {
+    match mode.tendency() {
+        Tendency::Neutral => 0.0,
+        Tendency::Grows | Tendency::Decays => mode.growth(),
+    }
+}
+
 struct Scaled {
     axis: Axis,
     values: Vec<f64>,
@@ -63,7 +73,7 @@ impl MapReport<'_> {
         let columns = self.map.across.points.max(1);
         let name = |r: &Region| {
             let (low, high) = r.frequency;
-            let (low, high) = (fixed(low, 0), fixed(high, 0));
+            let (low, high) = (write_decimals(low, 0), write_decimals(high, 0));
             if low == high {
                 format!("{low} Hz")
             } else {
@@ -77,41 +87,64 @@ impl MapReport<'_> {
         }
     }
 
+    /// The rows between whose samples a cut passes, on a side with something shown.
+    fn rows_beside(&self, cut: &Cut) -> Vec<usize> {
+        let columns = self.map.across.points;
+        let known = |i: usize, j: usize| {
+            let point = self.map.points.get(j * columns + i);
+            i < columns && point.is_some_and(|p| p.leading().is_some())
+        };
+        let (low, high) = (cut.from.1.max(0.0), cut.to.1.max(0.0));
+        ((low.floor() as usize)..=(high.ceil() as usize))
+            .filter(|j| known(cut.column, *j) || known(cut.column + 1, *j))
+            .collect()
+    }
+
+    /// The pieces of a cut with something shown beside them.
+    fn shown(&self, cut: &Cut) -> Vec<Seam> {
+        let ((u0, v0), (u1, v1)) = (cut.from, cut.to);
+        let at = |v: f64| {
+            let share = if v1 > v0 { (v - v0) / (v1 - v0) } else { 0.0 };
+            (u0 + share * (u1 - u0), v)
+        };
+        let piece = |run: &[usize]| {
+            // A sample is drawn half a step about its place.
+            let low = *run.first()? as f64 - 0.5;
+            let high = *run.last()? as f64 + 0.5;
+            (low < v1 && high > v0).then(|| Seam {
+                column: cut.column,
+                from: if low > v0 { at(low) } else { cut.from },
+                to: if high < v1 { at(high) } else { cut.to },
+            })
+        };
+        let rows = self.rows_beside(cut);
+        let runs = rows.chunk_by(|a, b| a + 1 == *b);
+        runs.filter_map(piece).collect()
+    }
+
     /// Where the mode followed meets others, and the cut from there, as far as it is shown on either side.
     fn cuts(&self) -> Cuts {
         let Some(one) = &self.followed else {
             return Cuts::default();
         };
-        let columns = self.map.across.points;
-        let shown = |column: usize, (low, high): (f64, f64)| {
-            let rows = (low.max(0.0).floor() as usize)..=(high.max(0.0).ceil() as usize);
-            let known = |i: usize, j: usize| {
-                let point = self.map.points.get(j * columns + i);
-                i < columns && point.is_some_and(|p| p.leading().is_some())
-            };
-            rows.into_iter()
-                .any(|j| known(column, j) || known(column + 1, j))
-        };
-        let seams = one.over.cuts.iter();
-        let seams: Vec<_> = seams
-            .filter(|c| shown(c.column, (c.from.1, c.to.1)))
+        let seams: Vec<Seam> = (one.over.cuts.iter())
+            .flat_map(|cut| self.shown(cut))
             .collect();
         let ends = |at: &(f64, f64)| seams.iter().any(|c| [c.from, c.to].contains(at));
+        let beside = |at: (f64, f64)| {
+            let place = Cut {
+                column: at.0.max(0.0).floor() as usize,
+                from: at,
+                to: at,
+            };
+            !self.rows_beside(&place).is_empty()
+        };
         let points = one.over.exceptional.iter().map(|p| p.at);
-        let points = points
-            .filter(|at| ends(at) || shown(at.0.max(0.0).floor() as usize, (at.1, at.1)))
-            .collect();
+        let points = points.filter(|at| ends(at) || beside(*at)).collect();
         Cuts {
             caption: "cut: not one mode across".into(),
             point_caption: "meets another mode".into(),
-            seams: seams
-                .iter()
-                .map(|cut| Seam {
-                    column: cut.column,
-                    from: cut.from,
-                    to: cut.to,
-                })
-                .collect(),
+            seams,
             points,
         }
     }
@@ -141,11 +174,15 @@ impl MapReport<'_> {
             ),
             Some(one) => format!(
                 "Growth rate of mode {} of the design point, followed first along the horizontal axis, then along the vertical \
-                 one{}. Other modes may grow. {CAUTION}",
+                 one{}. {}Other modes may grow. {CAUTION}",
                 one.number,
                 match one.over.cuts.len() {
                     0 => "",
                     _ => "; by another way it is another mode beyond a cut",
+                },
+                match one.over.reached.iter().all(|r| *r) {
+                    true => String::new(),
+                    false => format!("{NOT_FOLLOWED}. "),
                 }
             ),
         };
@@ -169,8 +206,9 @@ impl MapReport<'_> {
                 above: "grows".into(),
                 below: "decays".into(),
             },
-            values: self.rows(|p| p.fastest().map(|m| m.growth())),
+            values: self.rows(|p| p.fastest().map(|m| drawn(&m))),
             certified: self.rows(Point::complete),
+            reached: self.reached().unwrap_or_default(),
             frequency: self.followed.map(|_| IsoLines {
                 label: "Frequency".into(),
                 unit: "Hz".into(),
@@ -184,14 +222,16 @@ impl MapReport<'_> {
                 label: design,
             }),
             words: Words {
-                uncertified: match tally.failed {
-                    0 => "not certified".into(),
+                uncertified: match (tally.doubtful, tally.failed) {
+                    (_, 0) => "not certified".into(),
+                    (0, _) => "no mean flow".into(),
                     _ => "not certified, or no mean flow".into(),
                 },
                 absent: match self.followed {
                     None => Words::default().absent,
-                    Some(_) => "not followed, or outside the window".into(),
+                    Some(_) => "outside the window".into(),
                 },
+                unreached: "not followed so far".into(),
                 ..Words::default()
             },
             x: x.axis,

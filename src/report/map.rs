@@ -4,8 +4,7 @@ use serde::Serialize;
 
 use super::document::WindowFields;
 use super::map_events::{EventFields, events};
-use super::{Document, Heading, closing, window_text};
-use crate::draw::text::fixed;
+use super::{Document, Heading, closing, counted, rate, window_text};
 use crate::modes::{Mode, ModeList, Outside, Tendency, Window};
 use crate::network::Network;
 use crate::problems::Problem;
@@ -13,7 +12,7 @@ use crate::studies::branch;
 use crate::studies::cautions::{place, setting};
 use crate::studies::map::{Axis, Map, Point};
 use crate::studies::regions::{Region, regions};
-use crate::units::{Dimension, write_rounded};
+use crate::units::{Dimension, write_decimals, write_rounded};
 
 /// A map to report.
 #[derive(Clone, Copy, Debug)]
@@ -99,6 +98,7 @@ struct Unanswered<'a> {
 struct Body<'a> {
     finding: String,
     followed_mode: Option<usize>,
+    followed_to: Option<Vec<Vec<bool>>>,
     across_knob: &'a str,
     across_unit: &'static str,
     across: Vec<f64>,
@@ -152,6 +152,10 @@ impl<'a> MapReport<'a> {
 
     /// What the map says of growth outside its window, in a sentence.
     pub(super) fn growth_outside(&self) -> String {
+        if self.followed.is_some() {
+            return "A map of one mode tells of no other, and of no growth outside the window."
+                .to_owned();
+        }
         let tally = self.map.tally();
         let known = (tally.outside, tally.open, tally.searched_to);
         growth_outside(&self.map.window, known, "is shown as well")
@@ -163,6 +167,13 @@ impl<'a> MapReport<'a> {
             .rows()
             .map(|row| row.iter().map(&f).collect())
             .collect()
+    }
+
+    /// Whether the mode followed was followed to each point, in or outside the window.
+    pub(super) fn reached(&self) -> Option<Vec<Vec<bool>>> {
+        let reached = self.followed?.over.reached.as_slice();
+        let columns = self.map.across.points.max(1);
+        Some(reached.chunks(columns).map(<[_]>::to_vec).collect())
     }
 
     fn unanswered(&self) -> Vec<Unanswered<'a>> {
@@ -200,6 +211,7 @@ impl<'a> MapReport<'a> {
         let body = Body {
             finding: self.finding(),
             followed_mode: self.followed.map(|one| one.number),
+            followed_to: self.reached(),
             across_knob,
             across_unit: across.si_unit(),
             across: map.across.values(),
@@ -233,7 +245,9 @@ impl<'a> MapReport<'a> {
                 growth_outside_window_per_s: self.design_outside.fastest().map(|m| m.growth()),
             },
             window: (&map.window).into(),
-            growth_excluded_beyond: tally.outside == 0 && tally.open == 0,
+            growth_excluded_beyond: self.followed.is_none()
+                && tally.outside == 0
+                && tally.open == 0,
             growth_outside: self.growth_outside(),
         };
         Document::new("stillflame/map", &self.heading, body, self.warnings).to_json()
@@ -244,6 +258,7 @@ impl<'a> MapReport<'a> {
     /// # Errors
     /// Where a row cannot be written.
     pub fn csv(&self) -> std::io::Result<Vec<u8>> {
+        let reached = self.followed.map(|one| one.over.reached.as_slice());
         let named = |axis| {
             let (name, dimension): (&str, Dimension) = self.axis(axis);
             match dimension.si_unit() {
@@ -252,20 +267,24 @@ impl<'a> MapReport<'a> {
             }
         };
         let mut writer = csv::Writer::from_writer(Vec::new());
-        writer.write_record([
-            named(self.map.across).as_str(),
-            named(self.map.up).as_str(),
-            "largest_growth_per_s",
-            "frequency_hz_there",
-            "error_bound_per_s",
-            "growth_outside_window_per_s",
-            "complete",
-            "failed",
-        ])?;
+        let mut head = vec![named(self.map.across), named(self.map.up)];
+        head.extend(
+            [
+                "largest_growth_per_s",
+                "frequency_hz_there",
+                "error_bound_per_s",
+                "growth_outside_window_per_s",
+                "complete",
+                "failed",
+            ]
+            .map(str::to_owned),
+        );
+        head.extend(reached.map(|_| "followed_to".to_owned()));
+        writer.write_record(head)?;
         let number = |x: Option<f64>| x.map_or(String::new(), |x| x.to_string());
-        for (x, y, point) in self.map.placed() {
+        for (k, (x, y, point)) in self.map.placed().enumerate() {
             let mode = point.leading();
-            writer.write_record([
+            let mut row = vec![
                 x.to_string(),
                 y.to_string(),
                 number(mode.map(|m| m.growth())),
@@ -274,7 +293,9 @@ impl<'a> MapReport<'a> {
                 number(point.outside().map(|m| m.growth())),
                 point.complete().to_string(),
                 matches!(point, Point::Failed(_)).to_string(),
-            ])?;
+            ];
+            row.extend(reached.map(|r| r.get(k).is_some_and(|r| *r).to_string()));
+            writer.write_record(row)?;
         }
         writer
             .into_inner()
@@ -291,8 +312,9 @@ impl<'a> MapReport<'a> {
                 n => format!("grows at {} of the points", percent(n, tally.points)),
             };
             return format!(
-                "The mode of {:.0} Hz {over}; there, at the design point, it is at {} 1/s",
-                one.mode.frequency(),
+                "Mode {}, {} Hz and {} 1/s at the design point, {over}",
+                one.number,
+                write_decimals(one.mode.frequency(), 0),
                 rate(one.mode.growth())
             );
         }
@@ -336,40 +358,8 @@ impl<'a> MapReport<'a> {
         format!(
             "the design point {verb} at {} 1/s and {} Hz{certified}",
             rate(mode.growth()),
-            fixed(mode.frequency(), 0)
+            write_decimals(mode.frequency(), 0)
         )
-    }
-
-    /// How the mode was followed, and where it meets another.
-    fn cut_words(&self, one: &Followed) -> String {
-        let map = self.map;
-        let across = self.axis(map.across).0;
-        let mut text = format!(
-            "Followed from the design point first along {across}, then along {}; to {} of {} points\n",
-            self.axis(map.up).0,
-            one.over.reached,
-            map.points.len()
-        );
-        for point in &one.over.exceptional {
-            let at = place(
-                self.network,
-                (map.across.knob, map.across.between(point.at.0)),
-                (map.up.knob, map.up.between(point.at.1)),
-            );
-            let told = match point.s {
-                Some(s) => format!(
-                    "It meets another mode at {at}: {:.1} Hz, {} 1/s\n",
-                    s.im / std::f64::consts::TAU,
-                    rate(s.re)
-                ),
-                None => format!("It meets another mode near {at}\n"),
-            };
-            text.push_str(&told);
-        }
-        if !one.over.cuts.is_empty() {
-            text.push_str("From there the map has a cut: beyond, what the mode becomes depends on the way taken.\n");
-        }
-        text
     }
 
     /// For people.
@@ -379,10 +369,10 @@ impl<'a> MapReport<'a> {
         let range = |axis: Axis| {
             let (name, dimension) = self.axis(axis);
             format!(
-                "{name} from {} to {} in {} steps",
+                "{name} from {} to {} at {} values",
                 write_rounded(axis.low, dimension, 6),
                 write_rounded(axis.high, dimension, 6),
-                axis.points.saturating_sub(1)
+                axis.points
             )
         };
         let mut text = format!(
@@ -400,9 +390,9 @@ impl<'a> MapReport<'a> {
         ));
         if let Some((x, y, mode)) = tally.greatest {
             text.push_str(&format!(
-                "Largest growth rate: {} 1/s at {:.1} Hz, at {}\n",
+                "Largest growth rate: {} 1/s at {} Hz, at {}\n",
                 rate(mode.growth()),
-                mode.frequency(),
+                write_decimals(mode.frequency(), 1),
                 place(self.network, (map.across.knob, x), (map.up.knob, y))
             ));
         }
@@ -428,32 +418,24 @@ pub(super) fn growth_outside(
     (outside, open, searched_to): (usize, usize, Option<f64>),
     seen: &str,
 ) -> String {
-    let top = window.frequency.1;
+    let top = write_decimals(window.frequency.1, 0);
     match (open, searched_to) {
         (0, _) if outside == 0 => {
-            format!(
-                "At each point growth outside the window is excluded up to {top:.0} Hz, by proof."
-            )
+            format!("At each point growth outside the window is excluded up to {top} Hz, by proof.")
         }
         (0, _) => format!(
-            "Growth outside the window {seen}; more of it up to {top:.0} Hz is excluded at each point, by proof."
+            "Growth outside the window {seen}; more of it up to {top} Hz is excluded at each point, by proof."
         ),
         (open, Some(to)) if to > window.growth.1 => format!(
-            "Growth outside the window was searched up to {top:.0} Hz and at least {to:.0} 1/s; beyond, \
-             it is not excluded at {open} points."
+            "Growth outside the window was searched up to {top} Hz and at least {} 1/s; beyond, \
+             it is not excluded at {}.",
+            write_decimals(to, 0),
+            counted(open, "point")
         ),
-        (open, _) => format!("Growth outside the window is not excluded at {open} points."),
-    }
-}
-
-/// A growth rate with its sign, whole where it is large.
-pub(super) fn rate(growth: f64) -> String {
-    let digits = if growth.abs() < 9.95 { 1 } else { 0 };
-    let text = fixed(growth, digits);
-    if growth > 0.0 {
-        format!("+{text}")
-    } else {
-        text
+        (open, _) => format!(
+            "Growth outside the window is not excluded at {}.",
+            counted(open, "point")
+        ),
     }
 }
 

@@ -1,9 +1,13 @@
-//! What a map tells beside its arrays, as a list of events.
+//! What a map tells beside its arrays: a list of events, and words on the mode followed.
 
 use serde::Serialize;
 
+use super::map::{self, MapReport};
+use super::rate;
 use crate::studies::branch::Followed;
+use crate::studies::cautions::place;
 use crate::studies::map::{Map, Point};
+use crate::units::write_decimals;
 
 /// Something at a point of the plane, or along a line on it.
 #[derive(Clone, Debug, Serialize)]
@@ -59,4 +63,47 @@ pub(super) fn events(map: &Map, followed: Option<&Followed>) -> Vec<EventFields>
         ..plain("cut", value(cut.from))
     }));
     events
+}
+
+/// Why a mode is not followed to all points.
+pub(super) const NOT_FOLLOWED: &str = "It is followed until it stops oscillating, meets another mode on the way, or there is no mean flow";
+
+impl MapReport<'_> {
+    /// How the mode was followed, and where it meets another.
+    pub(super) fn cut_words(&self, one: &map::Followed<'_>) -> String {
+        let map = self.map;
+        let across = self.axis(map.across).0;
+        let mut text = format!(
+            "Followed from the design point first along {across}, then along {}; to {} of {} points\n",
+            self.axis(map.up).0,
+            one.over.reached.iter().filter(|r| **r).count(),
+            map.points.len()
+        );
+        if one.over.reached.iter().any(|r| !r) {
+            text.push_str(&format!("{NOT_FOLLOWED}.\n"));
+        }
+        for point in &one.over.exceptional {
+            let at = place(
+                self.network,
+                (map.across.knob, map.across.between(point.at.0)),
+                (map.up.knob, map.up.between(point.at.1)),
+            );
+            let told = match point.s {
+                Some(s) => format!(
+                    "It meets another mode at {at}: {} Hz, {} 1/s\n",
+                    write_decimals(s.im / std::f64::consts::TAU, 1),
+                    rate(s.re)
+                ),
+                None => format!("It meets another mode near {at}\n"),
+            };
+            text.push_str(&told);
+        }
+        if !one.over.cuts.is_empty() {
+            text.push_str(
+                "From there the map has a cut: beyond, what the mode becomes depends on the way taken.\n\
+                 Meetings farther outside the window than a quarter of its width are not listed.\n",
+            );
+        }
+        text
+    }
 }

@@ -147,6 +147,13 @@ impl Modes<'_> {
         weights.sum()
     }
 
+    /// Why growth outside the window is not excluded, where it is not. Without a count nothing is said of it.
+    fn not_excluded(&self) -> Option<&str> {
+        let uncounted = "no count was reached in the window itself";
+        let uncounted = self.list.expected.is_none().then_some(uncounted);
+        self.outside.reason.as_deref().or(uncounted)
+    }
+
     /// As JSON.
     ///
     /// # Errors
@@ -171,8 +178,8 @@ impl Modes<'_> {
             window: (&self.list.window).into(),
             modes: self.rows().enumerate().map(entry).collect(),
             effort: (&self.list.effort).into(),
-            growth_excluded_beyond: self.outside.excluded(),
-            growth_not_excluded_because: self.outside.reason.as_deref(),
+            growth_excluded_beyond: self.not_excluded().is_none(),
+            growth_not_excluded_because: self.not_excluded(),
             growth_searched_to_per_s: self.outside.searched_to,
             outside_window: self.outside.modes().map(Into::into).collect(),
         };
@@ -310,9 +317,10 @@ impl Modes<'_> {
             (n, None) => format!("{} grow.\n", counted(n, "mode")),
         });
         let top = write_decimals(list.window.frequency.1, 0);
-        text.push_str(&match &self.outside.reason {
+        let searched = self.outside.complete && self.outside.reason.is_some();
+        text.push_str(&match self.not_excluded() {
             None => format!("Growth outside the window is excluded up to {top} Hz, by proof.\n"),
-            Some(reason) if self.outside.fastest().is_some() || !self.outside.complete => {
+            Some(reason) if self.outside.fastest().is_some() || !searched => {
                 format!("Growth outside the window is NOT EXCLUDED: {reason}.\n")
             }
             Some(reason) => format!(

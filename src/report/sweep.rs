@@ -187,8 +187,8 @@ impl<'a> SweepReport<'a> {
         match self.sweep.grows_through_an_edge() {
             0 => said,
             n => format!(
-                "{said} Growing modes pass an edge of the window {}; unstable stretches count them outside as \
-                 well.",
+                "{said} Between points it is NOT EXCLUDED: growing modes pass an edge of the window {}; unstable \
+                 stretches count them outside as well.",
                 times(n)
             ),
         }

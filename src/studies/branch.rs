@@ -9,19 +9,28 @@
 //! design value of `up`, to another such point or to the rim.
 //!
 //! Between two columns the ties change only in a cell that holds an exceptional point of the mode (an odd
-//! number of them: of two in one cell nothing is seen). It is then found by Newton.
+//! number of them: of two in one cell nothing is seen). It is then found by Newton. Neighbours that cannot be tied
+//! either way are told apart only where such a point is found beside them.
+//!
+//! Cuts are looked for where the mode lies within the window's own width of it, and exceptional points are kept
+//! where it lies within a quarter of that: farther out nothing of either is to be seen on the map.
 
 mod ground;
+
+use std::f64::consts::TAU;
 
 use num_complex::Complex64;
 use rayon::prelude::*;
 
 use super::map::{Map, moves_mean_flow};
 use crate::meanflow::MeanFlow;
-use crate::modes::Mode;
+use crate::modes::{Mode, Window};
 use crate::network::Network;
 use ground::{Ground, Meeting, Position, Spot};
 
+/// How far outside the window cuts are looked for, and exceptional points kept, over the window's width.
+const LOOKED: f64 = 1.0;
+const KEPT: f64 = 0.25;
 /// How far outside its cell (in steps) rounding may put a meeting.
 const BESIDE: f64 = 1e-6;
 
@@ -50,8 +59,8 @@ pub struct Cut {
 pub struct Followed {
     /// The mode at each point, row by row; none where it was not followed to, or is not in the list of the point.
     pub modes: Vec<Option<Mode>>,
-    /// Number of points it was followed to, in or outside the window.
-    pub reached: usize,
+    /// The points it was followed to, in or outside the window.
+    pub reached: Vec<bool>,
     /// By column, upwards.
     pub cuts: Vec<Cut>,
     /// By column, upwards.
@@ -72,32 +81,36 @@ pub fn follow(
     let ground = Ground {
         network,
         axes,
-        held: (!moves).then_some(mean),
+        held: (!moves).then(|| mean.lift()),
     };
     let design = (
         map.across.position(network.values[map.across.knob]),
         map.up.position(network.values[map.up.knob]),
     );
+    let near = |s: Complex64, room: f64| near(&map.window, s, room);
     let levels = Levels::new(map.up.points, design.1);
     let columns = columns(&ground, design, &levels, mode);
     let between: Vec<(Vec<Cut>, Vec<Exceptional>)> = columns
         .par_windows(2)
         .enumerate()
         .filter_map(|(i, pair)| match pair {
-            [left, right] => Some(Gap::new(&ground, &levels, i, (left, right)).cuts()),
+            [left, right] => {
+                let looked = |s: Complex64| near(s, LOOKED);
+                Some(Gap::new(&ground, &levels, i, (left, right), looked).cuts())
+            }
             _ => None,
         })
         .collect();
     let (cuts, exceptional): (Vec<_>, Vec<_>) = between.into_iter().unzip();
 
     let mut modes = Vec::with_capacity(lists.len());
-    let mut reached = 0;
+    let mut reached = Vec::with_capacity(lists.len());
     for (k, list) in lists.iter().enumerate() {
         let (i, j) = (k % map.across.points, k / map.across.points);
         let spot = columns
             .get(i)
             .and_then(|column| column.get(levels.of_row(j)).copied().flatten());
-        reached += usize::from(spot.is_some());
+        reached.push(spot.is_some());
         // The certified list has the last word on the value.
         let in_list = |spot: Spot| {
             let near = |m: &&Mode| (m.s - spot.s()).norm() <= m.error_bound + spot.zero.error;
@@ -109,8 +122,21 @@ pub fn follow(
         modes,
         reached,
         cuts: cuts.into_iter().flatten().collect(),
-        exceptional: exceptional.into_iter().flatten().collect(),
+        exceptional: exceptional
+            .into_iter()
+            .flatten()
+            .filter(|e| e.s.is_none_or(|s| near(s, KEPT)))
+            .collect(),
     }
+}
+
+/// Whether a mode lies in a window, or outside by no more than `room` of its width.
+fn near(window: &Window, s: Complex64, room: f64) -> bool {
+    let within = |x: f64, (low, high): (f64, f64)| {
+        let room = room * (high - low);
+        (low - room..=high + room).contains(&x)
+    };
+    within(s.re, window.growth) && within(s.im / TAU, window.frequency)
 }
 
 /// The positions at which a column is visited: its rows, and the design value of `up` where it lies
@@ -204,8 +230,10 @@ fn column(
 /// What two neighbours of a row are to each other.
 #[derive(Clone, Copy, Debug, PartialEq)]
 enum Tie {
-    /// The mode is not known at both.
+    /// The mode is not known at both, or lies far outside the window.
     Open,
+    /// Neither leads to the other, nor to any mode.
+    Undecided,
     /// One mode.
     Same,
     /// Two.
@@ -236,20 +264,36 @@ impl<'a> Gap<'a> {
         levels: &'a Levels,
         column: usize,
         (left, right): (&'a [Option<Spot>], &[Option<Spot>]),
+        looked: impl Fn(Complex64) -> bool,
     ) -> Self {
         let each = left.iter().zip(right).map(|(a, b)| match (a, b) {
-            (Some(a), Some(b)) => tie(ground, a, b),
+            (Some(a), Some(b)) if looked(a.s()) || looked(b.s()) => tie(ground, a, b),
             _ => (Tie::Open, Crossed::default()),
         });
         let (ties, crossed) = each.unzip();
-        Gap {
+        let mut gap = Gap {
             ground,
             levels,
             column,
             left,
             ties,
             crossed,
-        }
+        };
+        let decided = |(level, tie): (usize, &Tie)| match tie {
+            Tie::Undecided if gap.parted(level) => Tie::Other,
+            Tie::Undecided => Tie::Open,
+            tie => *tie,
+        };
+        gap.ties = gap.ties.iter().enumerate().map(decided).collect();
+        gap
+    }
+
+    /// Whether the mode meets another in a cell beside a level.
+    fn parted(&self, level: usize) -> bool {
+        let spot = self.spot(level);
+        let cells = [level, level + 1];
+        let met = cells.map(|cell| self.meeting(cell, spot, None));
+        met.into_iter().flatten().any(|met| met.s.is_some())
     }
 
     /// The cuts between the columns, with the exceptional points at their ends and beside them.
@@ -354,6 +398,10 @@ fn tie(ground: &Ground<'_>, a: &Spot, b: &Spot) -> (Tie, Crossed) {
     if left.is_some_and(|left| left.is(a)) {
         return same;
     }
-    // On a line through an exceptional point neither way is open; the neighbours are not tied then.
-    (Tie::Other, Crossed { right, left })
+    // On a line through an exceptional point neither way is open.
+    let tie = match (left, right) {
+        (None, None) => Tie::Undecided,
+        _ => Tie::Other,
+    };
+    (tie, Crossed { right, left })
 }

@@ -8,7 +8,7 @@ use crate::meanflow::{self, MeanFlow};
 use crate::modes::{Mode, Window, validity};
 use crate::network::{Network, areas, values};
 use crate::problems::Problem;
-use crate::units::{Dimension, write_rounded};
+use crate::units::{Dimension, write_decimals, write_rounded, write_signed};
 
 /// The numbers of the network at a point of the plane.
 fn at(network: &Network, (across, x): (Axis, f64), (up, y): (Axis, f64)) -> Network {
@@ -148,9 +148,10 @@ fn extrapolated(network: &Network, map: &Map) -> Vec<Problem> {
         };
         let name = network.layout.knobs.get(delay.0);
         let what = format!(
-            "at {count} of {} points growth or decay rate times delay exceeds 1 ({product:.1} at {}): a response \
+            "at {count} of {} points growth or decay rate times delay exceeds 1 ({} at {}): a response \
              known from steady forcing is extrapolated there",
             map.points.len(),
+            write_rounded(product, Dimension::Number, 3),
             place(network, (map.across.knob, x), (map.up.knob, y))
         );
         let name = name.map_or("network", |k| k.name.as_str());
@@ -261,10 +262,10 @@ pub(super) fn outside<P>(
     }
     let (at, fastest) = fastest?;
     let what = format!(
-        "at {count} of {total} points a mode grows outside the window; the fastest, at {}: {:.0} 1/s at {:.1} Hz",
+        "at {count} of {total} points a mode grows outside the window; the fastest, at {}: {} 1/s at {} Hz",
         place(at),
-        fastest.growth(),
-        fastest.frequency()
+        write_signed(fastest.growth(), 0),
+        write_decimals(fastest.frequency(), 1)
     );
     let (low, high) = window.growth;
     let subject = if (low..=high).contains(&fastest.growth()) {

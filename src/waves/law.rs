@@ -132,9 +132,9 @@ impl<T: Real> Law<T> {
     /// Number of rounded operations behind one value, for the rounding floor.
     pub fn operations(&self) -> f64 {
         match self {
-            Law::Delays(d) => 8.0 + 4.0 * d.len() as f64,
-            Law::Polynomial { .. } => 16.0,
-            Law::Complex { .. } => 10.0,
+            Law::Delays(d) => 9.0 + 4.0 * d.len() as f64,
+            Law::Polynomial { .. } => 17.0,
+            Law::Complex { .. } => 11.0,
         }
     }
 

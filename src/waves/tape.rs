@@ -37,6 +37,17 @@ struct Sparse<T> {
     entries: Vec<(u8, T)>,
 }
 
+/// What a law is multiplied by.
+#[derive(Clone, Debug, PartialEq)]
+enum Part<T> {
+    Matrix(Sparse<T>),
+    /// A column times a row, both without their zeros: the law is multiplied by one number.
+    Outer {
+        column: Vec<(u8, T)>,
+        row: Vec<(u8, T)>,
+    },
+}
+
 #[derive(Clone, Debug, PartialEq)]
 enum Op<T> {
     Scale {
@@ -45,7 +56,7 @@ enum Op<T> {
     },
     Map {
         constant: Sparse<T>,
-        lawful: Vec<(Law<T>, Sparse<T>)>,
+        lawful: Vec<(Law<T>, Part<T>)>,
     },
 }
 
@@ -95,6 +106,59 @@ impl<T: Copy> Sparse<T> {
     }
 }
 
+impl<T: Copy> Part<T> {
+    fn map<U>(&self, f: impl Fn(T) -> U + Copy) -> Part<U> {
+        let list = |list: &[(u8, T)]| list.iter().map(|&(i, x)| (i, f(x))).collect();
+        match self {
+            Part::Matrix(m) => Part::Matrix(m.map(f)),
+            Part::Outer { column, row } => Part::Outer {
+                column: list(column),
+                row: list(row),
+            },
+        }
+    }
+}
+
+impl<T: Real> Part<T> {
+    /// A matrix, as a column times a row where it is one. Numbers with derivatives stay a matrix: values may be
+    /// proportional where derivatives are not.
+    fn of(m: &Dense<T>) -> Self {
+        match outer(m).filter(|_| !T::DERIVATIVES) {
+            Some((column, row)) => Part::Outer { column, row },
+            None => Part::Matrix(Sparse::of(m)),
+        }
+    }
+}
+
+/// Column and row of a matrix of rank one, to rounding; the row is its longest.
+#[allow(clippy::type_complexity, reason = "two lists of one kind")]
+fn outer<T: Real>(m: &Dense<T>) -> Option<(Vec<(u8, T)>, Vec<(u8, T)>)> {
+    let size = |x: &T| x.value().abs();
+    let longest = |row: &&Vec<T>| row.iter().map(size).fold(0.0, f64::max);
+    let first = m.iter().max_by(|a, b| longest(a).total_cmp(&longest(b)))?;
+    let by_size = |a: &(usize, &T), b: &(usize, &T)| size(a.1).total_cmp(&size(b.1));
+    let (pivot, &head) = first.iter().enumerate().max_by(by_size)?;
+    if head.is_exactly_zero() {
+        return None;
+    }
+    let mut column = Vec::with_capacity(m.len());
+    for (i, row) in m.iter().enumerate() {
+        let k = *row.get(pivot)? / head;
+        let off = |(x, y): (&T, &T)| (*x - k * *y).value().abs() > 4.0 * f64::EPSILON * size(x);
+        if row.iter().zip(first).any(off) {
+            return None;
+        }
+        if !k.is_exactly_zero() {
+            column.push((i as u8, k));
+        }
+    }
+    let used = first
+        .iter()
+        .enumerate()
+        .filter(|(_, x)| !x.is_exactly_zero());
+    Some((column, used.map(|(j, &x)| (j as u8, x)).collect()))
+}
+
 impl<T: Copy> Tape<T> {
     /// The same program with each number replaced by `f` of it.
     pub fn map<U>(&self, f: impl Fn(T) -> U + Copy) -> Tape<U> {
@@ -107,7 +171,7 @@ impl<T: Copy> Tape<T> {
                 constant: constant.map(f),
                 lawful: lawful
                     .iter()
-                    .map(|(law, b)| (law.map(|x| f(*x)), b.map(f)))
+                    .map(|(law, part)| (law.map(|x| f(*x)), part.map(f)))
                     .collect(),
             },
         };
@@ -152,14 +216,26 @@ impl<T: Real> Tape<T> {
                         from = end;
                     }
                     for (law, part) in lawful {
-                        let f = arithmetic.law(law);
-                        let mut from = 0;
-                        for (n, &end) in next.iter_mut().zip(&part.ends) {
-                            if end > from {
-                                let x = dot(arithmetic, &part.entries[from..end], v);
-                                *n = arithmetic.add(*n, arithmetic.product(f, x));
+                        match part {
+                            Part::Outer { column, row } => {
+                                let heard = dot(arithmetic, row, v);
+                                let answer = arithmetic.answer(law, heard);
+                                for &(i, k) in column {
+                                    let n = &mut next[usize::from(i)];
+                                    *n = arithmetic.add_scaled(*n, k, answer);
+                                }
                             }
-                            from = end;
+                            Part::Matrix(part) => {
+                                let f = arithmetic.law(law);
+                                let mut from = 0;
+                                for (n, &end) in next.iter_mut().zip(&part.ends) {
+                                    if end > from {
+                                        let x = dot(arithmetic, &part.entries[from..end], v);
+                                        *n = arithmetic.add(*n, arithmetic.product(f, x));
+                                    }
+                                    from = end;
+                                }
+                            }
                         }
                     }
                     std::mem::swap(&mut v, &mut next);

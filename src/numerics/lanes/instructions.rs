@@ -58,8 +58,14 @@ pub fn on_lanes_of<J: Job>(wanted: Level, job: J) -> J::Output {
         #[cfg(target_arch = "x86_64")]
         // SAFETY: as above; whatever has AVX-512 has AVX2 and FMA as well.
         Level::Avx2 => unsafe { x86::on_avx2(job) },
-        _ => job.run::<Plain>(),
+        _ => on_plain(job),
     }
+}
+
+/// Apart, so that its memory on the stack is not that of the others.
+#[inline(never)]
+fn on_plain<J: Job>(job: J) -> J::Output {
+    job.run::<Plain>()
 }
 
 /// Operators and traits of a type of lanes by its own functions.

@@ -12,6 +12,7 @@ use crate::report::figure::{engineers_unit, label};
 use crate::report::{CAUTION, counted, rate, window_text};
 use crate::studies::path::{Parameter, Spacing};
 use crate::studies::sweep::{Branch, Kind, Place, State, Sweep};
+use crate::units::write_decimals;
 
 /// Positions between two neighbours of a trail, for smooth curves.
 const FINE: u32 = 3;
@@ -92,12 +93,11 @@ impl SweepReport<'_> {
         };
         if path.parameter == Parameter::Factor {
             let names: Vec<String> = self.knobs().map(|(name, ..)| label(name)).collect();
-            let label = match names.as_slice() {
-                few if few.len() <= 3 => {
-                    let few: Vec<String> = few.iter().map(|n| lower(n)).collect();
-                    format!("Factor on {}", joined(&few))
-                }
-                many => format!("Factor on {} numbers", many.len()),
+            let few: Vec<String> = names.iter().map(|n| lower(n)).collect();
+            let label = match format!("Factor on {}", joined(&few)) {
+                // More would not fit below the axis.
+                label if label.len() <= 80 => label,
+                _ => format!("Factor on {}", counted(names.len(), "number")),
             };
             let unit = String::new();
             return (Axis { label, unit, scale }, 1.0);
@@ -134,10 +134,11 @@ impl SweepReport<'_> {
         let low = frequencies().fold(f64::INFINITY, f64::min);
         let high = frequencies().fold(0.0, f64::max);
         let number = index + 1;
+        let hz = |x: f64| write_decimals(x, 0);
         if high.round() > low.round() {
-            format!("{number}: {low:.0} to {high:.0} Hz")
+            format!("{number}: {} to {} Hz", hz(low), hz(high))
         } else {
-            format!("{number}: {low:.0} Hz")
+            format!("{number}: {} Hz", hz(low))
         }
     }
 

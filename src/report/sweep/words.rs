@@ -60,7 +60,11 @@ impl SweepReport<'_> {
             }
             few if few.len() <= 3 => {
                 let parts: Vec<String> = few.iter().map(|s| self.stretch(*s)).collect();
-                format!("Unstable {}{}, in {band}", self.of_what(), joined(&parts))
+                let of_what = match self.of_what() {
+                    what if what.is_empty() => what,
+                    what => format!("for {what}"),
+                };
+                format!("Unstable {of_what}{}, in {band}", joined(&parts))
             }
             many => format!(
                 "Unstable over {:.0} % of the sweep, in {} stretches, in {band}",
@@ -70,9 +74,10 @@ impl SweepReport<'_> {
         };
         if let Some(fastest) = sweep.fastest.filter(|_| !stretches.is_empty()) {
             text.push_str(&format!(
-                "; fastest {} 1/s and {} Hz at {}",
+                "; fastest {} 1/s and {} Hz at {}{}",
                 rate(fastest.s.re),
                 write_decimals(fastest.s.im / std::f64::consts::TAU, 0),
+                self.of_what(),
                 self.told(fastest.u, 3)
             ));
         }
@@ -89,14 +94,14 @@ impl SweepReport<'_> {
         text
     }
 
-    /// `for interaction index `; nothing where the unit says what is meant.
+    /// `interaction index `; nothing where the unit says what is meant.
     fn of_what(&self) -> String {
         let (name, dimension) = self.parameter();
         if dimension != Dimension::Number {
             return String::new();
         }
         let key = name.rsplit('.').next().unwrap_or(name);
-        format!("for {} ", key.replace('_', " "))
+        format!("{} ", key.replace('_', " "))
     }
 
     /// `from 2.31 ms to 4 ms`, `up to 4 ms`, `from 2.31 ms on`.

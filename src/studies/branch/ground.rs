@@ -18,7 +18,7 @@ use crate::acoustics::{self, Acoustics};
 use crate::meanflow::{self, MeanFlow};
 use crate::network::Network;
 use crate::numerics::analytic::Analytic;
-use crate::numerics::dual::Dual;
+use crate::numerics::dual::Grad;
 use crate::numerics::isolate::{self, Zero};
 use crate::studies::map::Axis;
 
@@ -28,6 +28,8 @@ const MOST_CHANGE: f64 = 0.5;
 const LINEAR: f64 = 0.5;
 /// Ratio of a radius tried to the one before.
 const SHRINK: f64 = 0.75;
+/// Largest radius tried, over how far Newton may go.
+const ROOM: f64 = 2.0;
 /// Places on the rim.
 const PLACES: usize = 12;
 /// Shortest step.
@@ -88,48 +90,41 @@ pub(super) struct Meeting {
     pub s: Complex64,
 }
 
+/// A number with its derivatives by a step along each axis.
+pub(super) type OnPlane = Grad<f64, 2>;
+
 /// The network over a plane.
 pub(super) struct Ground<'a> {
     pub network: &'a Network,
     pub axes: [Axis; 2],
     /// The mean flow, where nothing on the plane moves it.
-    pub held: Option<&'a MeanFlow<f64>>,
+    pub held: Option<MeanFlow<OnPlane>>,
 }
 
 impl Ground<'_> {
-    fn at(&self, position: Position) -> Network {
+    fn at(&self, position: Position) -> Option<Acoustics<OnPlane>> {
         let mut here = self.network.clone();
         for (axis, p) in self.axes.iter().zip([position.0, position.1]) {
             here.values[axis.knob] = axis.between(p);
         }
-        here
-    }
-
-    fn along(&self, here: &Network, axis: Axis) -> Option<Acoustics<Dual>> {
-        let dual = here.seeded_along(&[(axis.knob, axis.step())]);
-        acoustics::assemble(&dual, &meanflow::solve(&dual).ok()?).ok()
+        let here = here.seeded_each(self.axes.map(|axis| (axis.knob, axis.step())));
+        match &self.held {
+            Some(mean) => acoustics::assemble(&here, mean),
+            None => meanflow::solve(&here).and_then(|mean| acoustics::assemble(&here, &mean)),
+        }
+        .ok()
     }
 
     /// The mode that Newton reaches from a guess within `reach`, proved to be one.
     pub fn spot(&self, at: Position, guess: Complex64, reach: f64) -> Option<Spot> {
-        let here = self.at(at);
-        let acoustics = match self.held {
-            Some(mean) => acoustics::assemble(&here, mean),
-            None => meanflow::solve(&here).and_then(|mean| acoustics::assemble(&here, &mean)),
-        };
-        let acoustics = acoustics.ok()?;
-        let f = &acoustics.characteristic.tape;
+        let along = self.at(at)?;
+        let f = &along.characteristic.tape.map(|x| x.v);
         let z = isolate::newton(f, guess, reach, &mut 0)?;
         let zero = isolate::simple(f, z, isolate::scale(f, z))?;
-        let rho = lone(f, &zero)?;
-        let mut velocity = [Complex64::default(); 2];
-        let mut change = [0.0; 2];
-        for (k, axis) in self.axes.iter().enumerate() {
-            let along = self.along(&here, *axis)?;
-            let [(_, moved), (slope, _)] = along.taylor(zero.at);
-            velocity[k] = -moved / slope;
-            change[k] = on_rim(&along, zero.at, rho);
-        }
+        let rho = lone(f, &zero, ROOM * reach)?;
+        let [(_, moved), (slope, _)] = along.taylor(zero.at);
+        let velocity = moved.map(|moved| -isolate::quotient(moved, slope));
+        let change = on_rim(&along, zero.at, rho);
         let usable = velocity.iter().all(|v| v.is_finite()) && change.iter().all(|c| c.is_finite());
         usable.then_some(Spot {
             at,
@@ -180,10 +175,8 @@ impl Ground<'_> {
         let mut here = Meeting { at: start, s };
         let mut last = f64::INFINITY;
         for _ in 0..MOST_ITERATES {
-            let network = self.at(here.at);
-            let [x, y] = self.axes.map(|axis| self.along(&network, axis));
-            let [(d, d_x), (d_s, d_sx), (half, _)] = x?.taylor(here.s);
-            let [(_, d_y), (_, d_sy)] = y?.taylor(here.s);
+            let along = self.at(here.at)?;
+            let [(d, [d_x, d_y]), (d_s, [d_sx, d_sy]), (half, _)] = along.taylor(here.s);
             let d_ss = half * 2.0;
             let ratio = isolate::quotient(d_s, d_ss);
             let (value, a, b) = (d - d_s * ratio, d_x - d_sx * ratio, d_y - d_sy * ratio);
@@ -212,29 +205,40 @@ impl Ground<'_> {
 }
 
 /// Places on the circle of radius `rho` about zero.
-fn rim(rho: f64) -> impl Iterator<Item = Complex64> {
+fn rim(rho: f64) -> [Complex64; PLACES] {
     let turn = |k| std::f64::consts::TAU * k as f64 / PLACES as f64;
-    (0..PLACES).map(move |k| Complex64::from_polar(rho, turn(k)))
+    std::array::from_fn(|k| Complex64::from_polar(rho, turn(k)))
 }
 
-/// The radius of a disc about a mode that holds no other.
-fn lone(f: &impl Analytic, zero: &Zero) -> Option<f64> {
+/// The radius of a disc about a mode that holds no other, `most` at most.
+fn lone(f: &impl Analytic, zero: &Zero, most: f64) -> Option<f64> {
     let (_, slope) = f.value_and_slope(zero.at);
-    let linear = |h: Complex64| {
-        let (value, _) = f.value_and_slope(zero.at + h);
-        (isolate::quotient(value, slope * h) - 1.0).norm() < LINEAR
+    let mut values = Vec::with_capacity(PLACES);
+    let mut linear = |rho: &f64| {
+        let places = rim(*rho).map(|h| zero.at + h);
+        values.clear();
+        f.values_and_slopes(&places, &mut values);
+        let mut parts = rim(*rho).into_iter().zip(&values);
+        parts.all(|(h, (value, _))| (isolate::quotient(*value, slope * h) - 1.0).norm() < LINEAR)
     };
-    let tried = std::iter::successors(Some(0.5 * zero.at.norm()), |rho| Some(SHRINK * rho));
+    let widest = most.min(0.5 * zero.at.norm());
+    let tried = std::iter::successors(Some(widest), |rho| Some(SHRINK * rho));
     let mut large = tried.take_while(|rho| *rho > 2.0 * zero.error);
-    large.find(|rho| rim(*rho).all(linear))
+    large.find(|rho| linear(rho))
 }
 
-/// The largest `|D_p/D|` on the circle of radius `rho` about `s`.
-fn on_rim(along: &Acoustics<Dual>, s: Complex64, rho: f64) -> f64 {
-    let changes = rim(rho).map(|h| {
+/// The largest `|D_p/D|` on the circle of radius `rho` about `s`, along each axis.
+fn on_rim(along: &Acoustics<OnPlane>, s: Complex64, rho: f64) -> [f64; 2] {
+    let mut most = [0.0; 2];
+    for h in rim(rho) {
         let [(value, moved)] = along.taylor(s + h);
-        isolate::quotient(moved, value).norm()
-    });
-    // `max` alone would pass over what is no number.
-    changes.fold(0.0, |a: f64, b| if b.is_nan() { b } else { a.max(b) })
+        for (most, moved) in most.iter_mut().zip(moved) {
+            let change = isolate::quotient(moved, value).norm();
+            // `max` alone would pass over what is no number.
+            if change > *most || change.is_nan() {
+                *most = change;
+            }
+        }
+    }
+    most
 }

@@ -6,7 +6,7 @@
 use super::follow::Edge;
 use super::reading::neutral;
 use super::sample::{Ground, Sample};
-use super::{Branch, Event, Fastest, Sweep, Woven, add, weave};
+use super::{Branch, Event, Fastest, Place, Sweep, Woven, add, weave};
 use crate::modes::Window;
 
 use rayon::prelude::*;
@@ -17,7 +17,7 @@ const ROOM: f64 = 0.25;
 
 /// Finds the unstable stretches of a sweep and its fastest mode.
 pub(super) fn judge(ground: &Ground<'_>, sweep: &mut Sweep) {
-    let (stretches, fastest) = of(&sweep.branches, &sweep.events, |_, _| true);
+    let (stretches, fastest) = of(&sweep.branches, &sweep.events, |_| true, |_| true);
     let mut all = stretches;
     sweep.fastest = fastest;
     let window = window_of_growth(sweep);
@@ -29,9 +29,18 @@ pub(super) fn judge(ground: &Ground<'_>, sweep: &mut Sweep) {
         .collect();
     let woven: Woven = weave(&wide, &samples);
     let asked = ground.window.rectangle();
-    let (stretches, fastest) = of(&woven.branches, &woven.events, |s, error| {
-        asked.holds(s, error) == Some(false)
-    });
+    // What lies beyond the growth rate searched at the points about it is no more known of than at those.
+    let searched = |u: f64| {
+        let after = sweep.points.partition_point(|p| p.u < u);
+        let about = [after.checked_sub(1), Some(after)].into_iter().flatten();
+        let about = about.filter_map(|i| sweep.points.get(i));
+        about
+            .map(|p| p.outside.searched_to)
+            .fold(f64::MIN, f64::max)
+    };
+    let known = |p: &Place| p.s.re <= searched(p.u);
+    let outside = |p: &Place| asked.holds(p.s, p.error) == Some(false);
+    let (stretches, fastest) = of(&woven.branches, &woven.events, known, outside);
     all.extend(stretches);
     let outside = fastest.map(|f| Fastest { branch: None, ..f });
     let at_points = sweep.points.iter().filter_map(|p| {
@@ -57,17 +66,22 @@ pub(super) fn judge(ground: &Ground<'_>, sweep: &mut Sweep) {
     add(&mut sweep.effort, &woven.effort);
 }
 
-/// The stretches over which branches grow, and the fastest of the places that `count`.
+/// The stretches over which branches grow that are anywhere `known`, and the fastest of the places of these that
+/// `count`.
 fn of(
     branches: &[Branch],
     events: &[Event],
-    count: impl Fn(num_complex::Complex64, f64) -> bool,
+    known: impl Fn(&Place) -> bool,
+    count: impl Fn(&Place) -> bool,
 ) -> (Vec<(f64, f64)>, Option<Fastest>) {
     let mut stretches = Vec::new();
     let mut fastest: Option<Fastest> = None;
     for (i, branch) in branches.iter().enumerate() {
+        if !branch.trace.iter().any(&known) {
+            continue;
+        }
         stretches.extend(branch.growing(neutral(events, Some(i))));
-        for place in branch.trace.iter().filter(|p| count(p.s, p.error)) {
+        for place in branch.trace.iter().filter(|p| known(p) && count(p)) {
             if fastest.is_none_or(|f| f.s.re < place.s.re) {
                 fastest = Some(Fastest {
                     u: place.u,

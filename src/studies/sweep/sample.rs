@@ -95,13 +95,13 @@ impl Live {
 
     /// `ds/du` of a simple mode.
     pub fn velocity(&self, s: Complex64) -> Complex64 {
-        let [(_, derivative), (slope, _)] = self.along.taylor(s);
+        let [(_, [derivative]), (slope, _)] = self.along.taylor(s);
         finite(-derivative / slope)
     }
 
     /// `dm/du` of the middle of two.
     fn velocity_of_middle(&self, s: Complex64) -> Complex64 {
-        let [_, (_, derivative), (second, _)] = self.along.taylor(s);
+        let [_, (_, [derivative]), (second, _)] = self.along.taylor(s);
         finite(-derivative / (second * 2.0))
     }
 

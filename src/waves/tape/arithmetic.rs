@@ -8,7 +8,7 @@ use crate::waves::law::{self, Law};
 
 /// Arithmetic the tape is run in. Everything is to be inlined always: only so is it compiled for the
 /// instruction set of the lanes it is run in.
-pub(in crate::waves) trait Arithmetic<T> {
+pub(in crate::waves) trait Arithmetic<T: Real> {
     type Element: Copy;
     fn zero(&self) -> Self::Element;
     fn one(&self) -> Self::Element;
@@ -22,6 +22,19 @@ pub(in crate::waves) trait Arithmetic<T> {
     /// `exp(-s t) x`.
     fn delayed(&self, e: Self::Delay, t: T, x: Self::Element) -> Self::Element;
     fn law(&self, law: &Law<T>) -> Self::Element;
+    /// `F(s) x`.
+    #[inline(always)]
+    fn answer(&self, law: &Law<T>, x: Self::Element) -> Self::Element {
+        match law {
+            Law::Delays(delays) => match delays.as_slice() {
+                [one] if one.spread.is_exactly_zero() => {
+                    self.delayed(self.delay(one.delay), one.delay, self.scaled(one.weight, x))
+                }
+                _ => self.product(self.law(law), x),
+            },
+            _ => self.product(self.law(law), x),
+        }
+    }
 }
 
 /// Taylor series of order `N - 1` about a point, or about several points at once.

@@ -2,8 +2,8 @@
 
 use num_complex::Complex64;
 
-use super::Tape;
 use super::arithmetic::{Majorant, Taylor};
+use super::{MOST_SLOTS, Tape};
 use crate::numerics::analytic::{Analytic, Region, Rounding, TAYLOR};
 use crate::numerics::lanes::{Both, Job, LANES, Lanes, on_lanes};
 use crate::waves::complex::Cx;
@@ -23,15 +23,25 @@ impl Analytic for Tape<f64> {
     }
 
     fn values_and_slopes(&self, at: &[Complex64], to: &mut Vec<(Complex64, Complex64)>) {
-        on_lanes(Slopes { tape: self, at, to });
+        let tape = self;
+        match self.width {
+            0..=2 => on_lanes(Slopes::<2> { tape, at, to }),
+            3..=4 => on_lanes(Slopes::<4> { tape, at, to }),
+            5..=8 => on_lanes(Slopes::<8> { tape, at, to }),
+            9..=16 => on_lanes(Slopes::<16> { tape, at, to }),
+            _ => on_lanes(Slopes::<MOST_SLOTS> { tape, at, to }),
+        }
     }
 
     fn bounds(&self, over: &[Region], to: &mut Vec<[f64; TAYLOR]>) {
-        on_lanes(Bounds {
-            tape: self,
-            over,
-            to,
-        });
+        let tape = self;
+        match self.width {
+            0..=2 => on_lanes(Bounds::<2> { tape, over, to }),
+            3..=4 => on_lanes(Bounds::<4> { tape, over, to }),
+            5..=8 => on_lanes(Bounds::<8> { tape, over, to }),
+            9..=16 => on_lanes(Bounds::<16> { tape, over, to }),
+            _ => on_lanes(Bounds::<MOST_SLOTS> { tape, over, to }),
+        }
     }
 
     fn rounding(&self) -> Rounding {
@@ -73,8 +83,8 @@ fn scattered<L: Lanes>(x: L) -> [f64; LANES] {
     eight
 }
 
-/// Values and slopes.
-struct Slopes<'a> {
+/// Values and slopes, of a tape on at most `W` slots.
+struct Slopes<'a, const W: usize> {
     tape: &'a Tape<f64>,
     at: &'a [Complex64],
     to: &'a mut Vec<(Complex64, Complex64)>,
@@ -98,7 +108,7 @@ fn append<L: Lanes>(d: Cx<L>, slope: Cx<L>, number: usize, to: &mut Vec<(Complex
     to.extend_from_slice(&eight[..number.min(LANES)]);
 }
 
-impl Job for Slopes<'_> {
+impl<const W: usize> Job for Slopes<'_, W> {
     type Output = ();
     #[inline(always)]
     fn run<L: Lanes>(self) {
@@ -111,7 +121,7 @@ impl Job for Slopes<'_> {
             };
             let (a, b) = (place::<L>(&a), place::<L>(&b));
             let s = Cx::new(Both(a.re, b.re), Both(a.im, b.im));
-            let [d, slope] = self.tape.run(&Taylor::<Both<L>, 2>(s));
+            let [d, slope] = self.tape.run_in::<_, W>(&Taylor::<Both<L>, 2>(s));
             let part = |x: Cx<Both<L>>| (Cx::new(x.re.0, x.im.0), Cx::new(x.re.1, x.im.1));
             let (d, slope) = (part(d), part(slope));
             append(d.0, slope.0, LANES, self.to);
@@ -119,21 +129,21 @@ impl Job for Slopes<'_> {
         }
         for eight in sixteens.remainder().chunks(LANES) {
             if let Some(at) = filled(eight) {
-                let [d, slope] = self.tape.run(&Taylor::<L, 2>(place(&at)));
+                let [d, slope] = self.tape.run_in::<_, W>(&Taylor::<L, 2>(place(&at)));
                 append(d, slope, eight.len(), self.to);
             }
         }
     }
 }
 
-/// Bounds.
-struct Bounds<'a> {
+/// Bounds, of a tape on at most `W` slots.
+struct Bounds<'a, const W: usize> {
     tape: &'a Tape<f64>,
     over: &'a [Region],
     to: &'a mut Vec<[f64; TAYLOR]>,
 }
 
-impl Job for Bounds<'_> {
+impl<const W: usize> Job for Bounds<'_, W> {
     type Output = ();
     #[inline(always)]
     fn run<L: Lanes>(self) {
@@ -147,7 +157,7 @@ impl Job for Bounds<'_> {
                 modulus: gathered(&eight, |r| r.modulus),
                 omega: gathered(&eight, |r| r.omega),
             };
-            let found = self.tape.run(&Majorant(&region));
+            let found = self.tape.run_in::<_, W>(&Majorant(&region));
             let mut bounds = [[0.0; TAYLOR]; LANES];
             for (k, orders) in found.into_iter().enumerate() {
                 for (bound, x) in bounds.iter_mut().zip(scattered(orders)) {

@@ -1,6 +1,6 @@
 //! From the steps of an elimination to a tape.
 
-use super::{MOST_SLOTS, Op, Sparse, Tape};
+use super::{MOST_SLOTS, Op, Part, Sparse, Tape};
 use crate::numerics::analytic::Rounding;
 use crate::numerics::dual::Real;
 use crate::waves::exterior::Dense;
@@ -103,8 +103,9 @@ impl<T: Real> Writer<T> {
             match op {
                 Pending::Scale(groups) => {
                     for (delay, slots) in groups {
-                        // exp, sine and cosine to 1 ulp each and one complex product.
-                        tape.rounding.values += 8.0;
+                        // exp to 1 ulp, sine and cosine to 1.5 (1 ulp is two roundings), their product, and one
+                        // complex product.
+                        tape.rounding.values += 9.0;
                         tape.ops.push(Op::Scale {
                             delay,
                             slots: slots.iter().map(|&i| i as u8).collect(),
@@ -119,20 +120,18 @@ impl<T: Real> Writer<T> {
                             .max()
                             .unwrap_or(0) as f64
                     };
-                    // Laws of one map lie on parallel paths: the longest counts, sums add one each.
+                    // Laws of one map lie on parallel paths: the longest counts, sums add one each. A column
+                    // times a row is right to two roundings, and is multiplied once more.
                     let of_laws = lawful
                         .iter()
-                        .map(|(f, b)| f.operations() + terms(b))
+                        .map(|(f, b)| f.operations() + terms(b) + 3.0)
                         .fold(0.0, f64::max);
                     tape.rounding.values +=
                         (2.0 + terms(&constant)).max(of_laws) + 1.0 + lawful.len() as f64;
                     tape.symmetric &= lawful.iter().all(|(f, _)| f.is_symmetric());
                     tape.ops.push(Op::Map {
                         constant: Sparse::of(&constant),
-                        lawful: lawful
-                            .into_iter()
-                            .map(|(f, b)| (f, Sparse::of(&b)))
-                            .collect(),
+                        lawful: lawful.into_iter().map(|(f, b)| (f, Part::of(&b))).collect(),
                     });
                 }
             }
