@@ -85,6 +85,13 @@ fn the_example_of_every_verb_runs_as_it_stands() {
                 let file = file.unwrap();
                 std::fs::copy(file.path(), networks.join(file.file_name())).unwrap();
             }
+            let records = scratch.path().join("examples/records");
+            std::fs::create_dir_all(&records).unwrap();
+            let shipped = Path::new(env!("CARGO_MANIFEST_DIR")).join("examples/records");
+            for file in std::fs::read_dir(shipped).unwrap() {
+                let file = file.unwrap();
+                std::fs::copy(file.path(), records.join(file.file_name())).unwrap();
+            }
             let ran = Command::new("sh")
                 .args(["-c", &command])
                 .current_dir(scratch.path())

@@ -37,8 +37,8 @@ const ANSWERING: &[(&str, &[&str])] = &[
     ),
 ];
 
-/// Verbs without one.
-const SILENT: &[&str] = &["completions", "manual", "help"];
+/// Verbs without one, and one that asks for a record and is tried in `cli_spectrum.rs`.
+const SILENT: &[&str] = &["completions", "manual", "help", "spectrum"];
 
 /// Changes that call for warnings, where the verb takes them.
 const CHANGES: &[&[&str]] = &[

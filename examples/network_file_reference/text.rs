@@ -25,6 +25,7 @@ pub const TABLES: &[(&str, &[KnobSpec])] = &[
     ("flame", flame::KNOBS),
     ("response", stillflame::flame::KNOBS),
     ("exit", EXIT_KNOBS),
+    ("sensor", stillflame::network::sensors::KNOBS),
 ];
 
 /// What the page shows where `page.md` leaves something out.

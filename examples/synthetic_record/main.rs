@@ -4,10 +4,11 @@
 //! cargo run --release --example synthetic_record -- networks/swirl_rig.toml --seconds 10 --at "0.2 m" --at "0.9 m" > record.csv
 //! ```
 //!
-//! `--at` is a distance from the feed along the ducts, repeatable; without it there is one sensor at the middle. The model is
+//! `--wav FILE` writes a WAV file of 16 bits instead. `--at` is a distance from the feed along the ducts, repeatable; without it there is one sensor at the middle. The model is
 //! told in `play.rs`.
 
 mod play;
+mod wav;
 
 use std::error::Error;
 use std::io::Write;
@@ -23,6 +24,7 @@ struct Wanted {
     network: String,
     positions: Vec<f64>,
     sound: play::Sound,
+    wav: Option<String>,
 }
 
 fn number<T: FromStr>(key: &str, value: &str) -> Result<T, String> {
@@ -39,6 +41,7 @@ fn wanted() -> Result<Wanted, Box<dyn Error>> {
     let mut all = Wanted {
         network,
         positions: Vec::new(),
+        wav: None,
         sound: play::Sound {
             rate_hz: 8192.0,
             duration: 10.0,
@@ -54,11 +57,16 @@ fn wanted() -> Result<Wanted, Box<dyn Error>> {
             "--seconds" => all.sound.duration = number(&key, &value)?,
             "--rate" => all.sound.rate_hz = number(&key, &value)?,
             "--seed" => all.sound.seed = number(&key, &value)?,
+            "--wav" => all.wav = Some(value),
             "--at" => {
                 let place = units::parse(&value, Dimension::Length).map_err(|e| e.to_string())?;
                 all.positions.push(place);
             }
-            _ => return Err(format!("{key} is none of --seconds, --rate, --seed, --at").into()),
+            _ => {
+                return Err(
+                    format!("{key} is none of --seconds, --rate, --seed, --at, --wav").into(),
+                );
+            }
         }
     }
     let counts = [all.sound.rate_hz, all.sound.duration];
@@ -110,7 +118,17 @@ fn run() -> Result<(), Box<dyn Error>> {
         .collect();
     let parts = play::parts(&shaped, &wanted.positions);
     let record = play::play(&parts, &names, &wanted.sound);
-    write(&wanted, &network.layout.title, &parts, &record)?;
+    let title = &network.layout.title;
+    let Some(path) = &wanted.wav else {
+        return Ok(write(&wanted, title, &parts, &record)?);
+    };
+    let comment = format!(
+        "SYNTHETIC record, computed and not measured: {title}; full scale is {} Pa",
+        wav::full_scale(&record)
+    );
+    let mut file = std::io::BufWriter::new(std::fs::File::create(path)?);
+    wav::write(&mut file, &record, &comment)?;
+    file.flush()?;
     Ok(())
 }
 

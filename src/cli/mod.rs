@@ -15,6 +15,7 @@ mod output;
 mod path;
 mod plane;
 mod progress;
+mod spectrum;
 mod sweep;
 mod usage;
 
@@ -47,6 +48,8 @@ enum Asked {
     #[command(flatten)]
     Network(Verb),
     #[command(flatten)]
+    Record(OfRecord),
+    #[command(flatten)]
     Companion(Companion),
 }
 
@@ -69,6 +72,12 @@ enum Verb {
     Modes(modes::Arguments),
     Sweep(sweep::Arguments),
     Map(map::Arguments),
+}
+
+/// Verbs that begin with a record.
+#[derive(Debug, Subcommand)]
+enum OfRecord {
+    Spectrum(Box<spectrum::Arguments>),
 }
 
 /// How a run ended; the exit code.
@@ -192,17 +201,31 @@ pub fn run(cli: &Cli) -> Status {
     interrupt::install();
     let verb = match &cli.asked {
         Asked::Network(verb) => verb,
+        Asked::Record(OfRecord::Spectrum(arguments)) => {
+            let network = arguments.network.as_ref();
+            let network = network.map_or(String::new(), |p| p.display().to_string());
+            return end(of_record(arguments), arguments.json, &network);
+        }
         Asked::Companion(companion) => return accompany(companion),
     };
     let common = verb.common();
-    match attempt(verb) {
+    end(
+        attempt(verb),
+        common.json,
+        &common.network.display().to_string(),
+    )
+}
+
+/// The exit code, problems told.
+fn end(attempted: Result<Status, Failure>, json: bool, network: &str) -> Status {
+    match attempted {
         Ok(status) => status,
         Err(Failure {
             status,
             problems: found,
         }) => {
-            if common.json {
-                let refusal = document::refusal(&common.network.display().to_string(), &found);
+            if json {
+                let refusal = document::refusal(network, &found);
                 // Where standard output is broken as well, the problems are on standard error.
                 if let Ok(json) = refusal {
                     let _ = output::print(&json);
@@ -231,12 +254,25 @@ fn attempt(verb: &Verb) -> Result<Status, Failure> {
     let common = verb.common();
     let case = Case::load(common)?;
     let destination = verb.destination()?;
-    let answer = verb.answer(case)?;
+    deliver(verb.answer(case)?, destination, common.json)
+}
+
+fn of_record(arguments: &spectrum::Arguments) -> Result<Status, Failure> {
+    let destination = arguments.out.clone().map(Destination::open).transpose()?;
+    deliver(spectrum::answer(arguments)?, destination, arguments.json)
+}
+
+/// Writes the files, then prints the answer.
+fn deliver(
+    answer: Answer,
+    destination: Option<Destination>,
+    json: bool,
+) -> Result<Status, Failure> {
     let mut text = answer.text;
     if let Some(destination) = destination {
         for path in destination.write(&answer.files)? {
             let line = format!("Wrote {}\n", path.display());
-            if common.json {
+            if json {
                 tell(&line);
             } else {
                 text.push_str(&line);

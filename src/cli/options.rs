@@ -47,9 +47,9 @@ pub(super) struct WindowArguments {
 }
 
 /// Lowest and highest value in SI.
-type Range = (f64, f64);
+pub(super) type Range = (f64, f64);
 
-fn frequency(text: &str) -> Result<Range, String> {
+pub(super) fn frequency(text: &str) -> Result<Range, String> {
     let range = span(text, Dimension::Frequency)?;
     if range.0 < 0.0 {
         return Err("a window has no negative frequency; start at 0 Hz".to_owned());

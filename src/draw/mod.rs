@@ -5,7 +5,7 @@
 //! pure function of its input: equal input, equal bytes.
 //!
 //! ```text
-//! map, lines, locus, profile   the figures
+//! map, lines, locus, profile, waterfall   the figures
 //!   frame               title, plot rectangle, axes, legend, footnote
 //!   raster, contour     a sampled field as an embedded image, its level lines
 //!   region, label       outlines of marked cells, places for labels
@@ -46,6 +46,7 @@ mod svg;
 
 mod tags;
 pub mod text;
+pub mod waterfall;
 
 pub use axis::{Axis, Scale};
 pub use chain::{Chain, ChainEnd, EndSymbol, Passage, Plane, Symbol};
@@ -56,6 +57,7 @@ pub use locus::{Locus, Trail};
 pub use map::{DesignPoint, IsoLines, Quantity, StabilityMap, Words};
 pub use mark::{Mark, Spot};
 pub use profile::{Curve, ProfileFigure, ProfilePanel, ProfileWords};
+pub use waterfall::Waterfall;
 
 /// Why a figure cannot be drawn: its arrays contradict each other.
 #[derive(Debug, Clone, PartialEq, thiserror::Error)]

@@ -26,8 +26,18 @@ pub(super) fn data_uri(
             Some(value) => u8::try_from(limit.entry(value) + 1).unwrap_or(u8::MAX),
         }));
     }
+    image_uri(&pixels, palette, width, height)
+}
+
+/// An image of palette entries counted from one, by rows from the top, as a data URI.
+pub(super) fn image_uri(
+    pixels: &[u8],
+    palette: &[Rgb],
+    width: usize,
+    height: usize,
+) -> Result<String, DrawError> {
     let bytes =
-        encode(&pixels, palette, width, height).map_err(|e| DrawError::Image(e.to_string()))?;
+        encode(pixels, palette, width, height).map_err(|e| DrawError::Image(e.to_string()))?;
     Ok(format!("data:image/png;base64,{}", STANDARD.encode(bytes)))
 }
 

@@ -5,10 +5,11 @@ use std::sync::Arc;
 
 use super::document::{Entry, Mark, Node, Table, Value};
 use super::fields::{Fields, Reader, shown};
-use super::{elements, ends, references};
+use super::{elements, ends, references, sensors};
 use crate::elements::ends::{Exit, ExitEnd, Feed, FeedEnd, FeedFlow};
 use crate::elements::{Element, GasChoice, Kind, Section, duct};
 use crate::knobs::Values;
+use crate::network::sensors::Sensor;
 use crate::network::{ElementId, FARTHEST, Layout, Link, Network, Search, areas, values};
 use crate::problems::Problem;
 use crate::units::{self, Dimension, QuantityError};
@@ -17,7 +18,7 @@ use crate::units::{self, Dimension, QuantityError};
 const MOST_ELEMENTS: usize = 10_000;
 
 /// Names an element may not have: they name something else.
-const RESERVED: &[&str] = &["feed", "exit", "search", "title", "element"];
+const RESERVED: &[&str] = &["feed", "exit", "search", "title", "element", "sensor"];
 
 /// Reads a whole document. What could not be read is NaN in the network and a problem in the
 /// reader; with any error there, the network is fit for further checks only.
@@ -65,6 +66,7 @@ pub(super) fn network(reader: &mut Reader, root: &Table) -> Network<f64> {
         }
     };
     let inner = element_list(reader, &mut fields);
+    let listed = sub_list(reader, &mut fields, "sensor");
     fields.finish(reader);
 
     let mut elements = vec![Element {
@@ -77,14 +79,15 @@ pub(super) fn network(reader: &mut Reader, root: &Table) -> Network<f64> {
         name: "exit".to_owned(),
         kind: Kind::Exit(exit),
     });
-    assemble(reader, title, search, elements, empty)
+    let sensors = sensors::read(reader, &listed, &elements);
+    assemble(reader, title, (search, sensors), elements, empty)
 }
 
 /// Joins the elements to a chain and checks what only the whole can tell.
 fn assemble(
     reader: &mut Reader,
     title: String,
-    search: Search,
+    (search, sensors): (Search, Vec<Sensor>),
     elements: Vec<Element>,
     empty: bool,
 ) -> Network<f64> {
@@ -110,6 +113,7 @@ fn assemble(
         station_sections: sections.iter().copied().flatten().collect(),
         knobs: std::mem::take(&mut reader.knobs),
         search,
+        sensors,
     };
     let network = Network {
         layout: Arc::new(layout),
@@ -172,6 +176,23 @@ pub(super) fn sub_table<'d>(
                 Problem::error(fields.subject(key), what).hint(hint),
             );
             Found::Wrong
+        }
+    }
+}
+
+/// The tables of a list that need not be there.
+fn sub_list<'d>(reader: &mut Reader, fields: &mut Fields<'d>, key: &'static str) -> Vec<&'d Node> {
+    let Some(Entry { node, mark, .. }) = fields.entry(reader, key) else {
+        return Vec::new();
+    };
+    match &node.value {
+        Value::List(items) => items.iter().collect(),
+        Value::Unread => Vec::new(),
+        other => {
+            let what = format!("a list belongs here, and this is {}", other.noun());
+            let hint = format!("write each under its own [[{key}]]");
+            reader.report(mark, Problem::error(key, what).hint(hint));
+            Vec::new()
         }
     }
 }

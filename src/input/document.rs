@@ -113,7 +113,9 @@ impl Table {
                     };
                     let rest = t.name_at(start)?;
                     Some(match t.get("name").map(|e| &e.node.value) {
-                        Some(Value::Text(name)) if entry.key == "element" => {
+                        Some(Value::Text(name))
+                            if entry.key == "element" || entry.key == "sensor" =>
+                        {
                             format!("{name}.{rest}")
                         }
                         _ => format!("{}.{}.{rest}", entry.key, i + 1),

@@ -13,6 +13,7 @@ mod file;
 mod overrides;
 mod references;
 mod remarks;
+mod sensors;
 mod sources;
 mod syntax;
 

@@ -139,8 +139,9 @@ fn lay(root: &mut Table, path: &[Step<'_>], node: Node) -> Laid {
             // No table in the file: that is told when the file is read.
             None => Ok(()),
         },
-        "element" => fail(
-            "an override names an element by its own name".to_owned(),
+        "element" | "sensor" => fail(
+            format!("an override names a {first} by its own name")
+                .replace("a element", "an element"),
             "write chamber.length, say".to_owned(),
         ),
         _ => {
@@ -155,8 +156,20 @@ fn lay(root: &mut Table, path: &[Step<'_>], node: Node) -> Laid {
                 Some(Value::List(items)) => items.as_mut_slice(),
                 _ => &mut [],
             };
-            let names: Vec<String> = items.iter().filter_map(named).collect();
             let wanted = Some((*first).to_owned());
+            if !items.iter().any(|n| named(n) == wanted)
+                && let Some(Value::List(sensors)) =
+                    root.get_mut("sensor").map(|e| &mut e.node.value)
+                && let Some(Value::Table(table)) =
+                    (sensors.iter_mut().find(|n| named(n) == wanted)).map(|n| &mut n.value)
+            {
+                return descend(table, first, rest, mark, node);
+            }
+            let items = match root.get_mut("element").map(|e| &mut e.node.value) {
+                Some(Value::List(items)) => items.as_mut_slice(),
+                _ => &mut [],
+            };
+            let names: Vec<String> = items.iter().filter_map(named).collect();
             let element = items.iter_mut().find(|n| named(n) == wanted);
             match element.map(|n| &mut n.value) {
                 Some(Value::Table(table)) => in_element(table, first, rest, mark, node),

@@ -181,6 +181,7 @@ impl Rig {
             .collect::<Vec<_>>();
         let (sections, _) = areas::assign(&self.elements, &links, |_| true);
         let layout = Layout {
+            sensors: Vec::new(),
             title: "test chain".to_owned(),
             elements: self.elements,
             links,

@@ -21,6 +21,8 @@ mod level;
 pub mod microphones;
 pub mod nature;
 pub mod peaks;
+pub mod reading;
+pub mod recess;
 pub mod response;
 
 mod record;
@@ -35,7 +37,7 @@ pub use engine::{Detrend, Plan};
 pub use envelope::{Envelope, Envelopes};
 pub use level::Level;
 pub use record::{Channel, Quantity, Record};
-pub use spectra::{Scaling, Spectra};
+pub use spectra::{Relation, Scaling, Spectra};
 pub use spectrogram::{Row, Spectrogram};
 pub use welch::Welch;
 pub use window::Window;

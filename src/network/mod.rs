@@ -6,6 +6,7 @@
 
 pub mod areas;
 pub mod responses;
+pub mod sensors;
 pub mod values;
 
 use std::sync::Arc;
@@ -46,6 +47,8 @@ pub struct Layout {
     pub knobs: Vec<Knob>,
     /// The window the file asks for.
     pub search: Search,
+    /// Where sensors sit, in the order of the file.
+    pub sensors: Vec<sensors::Sensor>,
 }
 
 /// A window in the plane of frequency and growth rate as a file states it; what is not stated is

@@ -14,6 +14,7 @@ pub mod modes;
 pub mod problems;
 pub mod profile;
 pub mod shapes;
+pub mod spectrum;
 pub mod sweep;
 mod table;
 

@@ -4,5 +4,6 @@ pub mod branch;
 pub mod cautions;
 pub mod map;
 pub mod path;
+pub mod record;
 pub mod regions;
 pub mod sweep;

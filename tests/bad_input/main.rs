@@ -9,6 +9,7 @@ mod cli;
 mod flows;
 mod mutations;
 mod overrides;
+mod sensors;
 mod syntax;
 mod values;
 mod whole;

@@ -5,7 +5,7 @@ use crate::input::document::Value;
 use crate::problems::{Problem, listed, nearest};
 
 /// Keys of the whole file.
-const TOP: &[&str] = &["title", "search", "feed", "element", "exit"];
+const TOP: &[&str] = &["title", "search", "feed", "element", "sensor", "exit"];
 
 /// Most unknown keys told of one table.
 const MOST: usize = 20;
@@ -57,6 +57,7 @@ impl Fields<'_> {
                         "write it above the first [table]: what stands below one belongs to it"
                     }
                     "element" => "write each element under its own [[element]]",
+                    "sensor" => "write each sensor under its own [[sensor]]",
                     _ => "write it as a table of its own, under its header in brackets",
                 };
                 if !broken {
