@@ -1,7 +1,7 @@
 //! Eight numbers at once.
 //!
 //! An arithmetic written over [`Lanes`] is compiled once for each instruction set of
-//! [`instructions`] and run on the best one the processor has ([`on_lanes`]). Exponential, sine
+//! `instructions` and run on the best one the processor has ([`on_lanes`]). Exponential, sine
 //! and cosine are written once too, over those operations:
 //!
 //! - `exp x = 2^n exp r`, `n` the whole number nearest to `x/ln 2`, `|r| <= ln 2/2`, by a minimax polynomial

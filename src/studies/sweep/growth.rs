@@ -7,13 +7,17 @@ use super::follow::Edge;
 use super::reading::neutral;
 use super::sample::{Ground, Sample};
 use super::{Branch, Event, Fastest, Place, Sweep, Woven, add, weave};
-use crate::modes::Window;
+use crate::modes::{Tendency, Window};
 
 use rayon::prelude::*;
 
 /// How far the window of growth reaches below zero and beyond the growth rate searched at the points, over
 /// the height of the window asked for.
 const ROOM: f64 = 0.25;
+
+/// The least of that over the highest angular frequency: modes that decay at the points and grow between them must be
+/// in it, however flat the window asked for.
+const LEAST_ROOM: f64 = 0.05;
 
 /// Finds the unstable stretches of a sweep and its fastest mode.
 pub(super) fn judge(ground: &Ground<'_>, sweep: &mut Sweep) {
@@ -59,11 +63,26 @@ pub(super) fn judge(ground: &Ground<'_>, sweep: &mut Sweep) {
             all.push((u(i.saturating_sub(1)), u(i + 1)));
         }
     }
+    all.extend(in_doubt(&woven, known));
     sweep.unstable = joined(all);
     for sample in &samples {
         add(&mut sweep.effort, &sample.effort);
     }
     add(&mut sweep.effort, &woven.effort);
+}
+
+/// Steps over which modes move too fast to be followed and at an end of which some mode grows: nothing says that it does
+/// not all along.
+fn in_doubt(woven: &Woven, known: impl Fn(&Place) -> bool) -> Vec<(f64, f64)> {
+    let places = woven.branches.iter().flat_map(|b| &b.trace);
+    let grows = places.filter(|p| p.tendency() == Tendency::Grows && known(p));
+    let mut at: Vec<f64> = grows.map(|p| p.u).collect();
+    at.sort_by(f64::total_cmp);
+    let any = |(from, to): &&(f64, f64)| {
+        let first = at.partition_point(|u| u < from);
+        at.get(first).is_some_and(|u| u <= to)
+    };
+    woven.unresolved.iter().filter(any).copied().collect()
 }
 
 /// The stretches over which branches grow that are anywhere `known`, and the fastest of the places of these that
@@ -96,7 +115,8 @@ fn of(
 
 fn window_of_growth(sweep: &Sweep) -> Window {
     let (low, high) = sweep.window.growth;
-    let room = ROOM * (high - low);
+    let least = LEAST_ROOM * sweep.window.rectangle().omega.1;
+    let room = (ROOM * (high - low)).max(least);
     let searched = sweep.points.iter().map(|p| p.outside.searched_to);
     Window {
         frequency: (0.0, sweep.window.frequency.1),
