@@ -70,6 +70,7 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
     let solved = case.solve()?;
     let window = case.window(&solved.mean)?;
     let design = modes::find(&solved, window, Scan::Whole);
+    let design_outside = modes::outside(&solved, window);
 
     let bar = progress::bar(path.points);
     let watch = || {
@@ -98,6 +99,7 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
         network,
         sweep: &sweep,
         design: &design,
+        design_outside: &design_outside,
         warnings: &warnings,
     };
     let drawn = |svg: Result<String, crate::draw::DrawError>| {

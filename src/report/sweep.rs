@@ -8,7 +8,7 @@ use serde::Serialize;
 use super::document::WindowFields;
 use super::map::growth_outside;
 use super::{Document, Heading};
-use crate::modes::ModeList;
+use crate::modes::{self, ModeList};
 use crate::network::Network;
 use crate::problems::Problem;
 use crate::studies::path::{Parameter, Spacing};
@@ -26,6 +26,8 @@ pub struct SweepReport<'a> {
     pub sweep: &'a Sweep,
     /// The modes as the file states the network: at the design value.
     pub design: &'a ModeList,
+    /// What grows outside the window at the design value.
+    pub design_outside: &'a modes::Outside,
     /// What qualifies it.
     pub warnings: &'a [Problem],
 }
@@ -81,6 +83,7 @@ struct Design {
     complete: bool,
     growth_per_s: Option<f64>,
     frequency_hz: Option<f64>,
+    growth_outside_window_per_s: Option<f64>,
 }
 
 #[derive(Clone, Debug, Serialize)]
@@ -158,6 +161,12 @@ impl<'a> SweepReport<'a> {
             let knob = layout.knobs.get(id.0)?;
             Some((knob.name.as_str(), knob.spec.dimension, run.from, run.to))
         })
+    }
+
+    /// The fastest mode that grows outside the window at the design value.
+    pub(super) fn design_growing_outside(&self) -> Option<&modes::Mode> {
+        let fastest = self.design_outside.fastest();
+        fastest.filter(|m| m.tendency() == modes::Tendency::Grows)
     }
 
     /// The design position on the path.
@@ -249,6 +258,7 @@ impl<'a> SweepReport<'a> {
                 complete: self.design.complete(),
                 growth_per_s: leading.map(|m| m.growth()),
                 frequency_hz: leading.map(|m| m.frequency()),
+                growth_outside_window_per_s: self.design_growing_outside().map(|m| m.growth()),
             },
             counts: Counts {
                 total: sweep.points.len(),

@@ -193,6 +193,8 @@ pub struct Sweep {
     /// Stretches over which some mode grows, in the window or outside up to its highest frequency, in order
     /// and apart.
     pub unstable: Vec<(f64, f64)>,
+    /// Modes that grow outside the window up to its highest frequency, over the stretches where they do.
+    pub growing_outside: Vec<Branch>,
     /// The mode of largest growth rate found, in the window or outside up to its highest frequency.
     pub fastest: Option<Fastest>,
     /// Work done on the lists of all points, those in between among them.
@@ -249,6 +251,7 @@ pub fn sweep(
         between: woven.between,
         unresolved: growth::joined(woven.unresolved),
         unstable: Vec::new(),
+        growing_outside: Vec::new(),
         fastest: None,
         effort,
     };

@@ -53,16 +53,26 @@ impl Cast {
             named.sort_unstable();
         }
         let fast = "modes too fast to be followed";
-        let crowd_name = match (others.len(), pieces.len()) {
-            (0, 0) => String::new(),
-            (0, _) => fast.to_owned(),
-            (n, 0) => format!("{} of less growth", counted(n, "other mode")),
-            (n, _) => format!("{} of less growth, and {fast}", counted(n, "other mode")),
-        };
+        let mut names = Vec::new();
+        if !others.is_empty() {
+            names.push(format!(
+                "{} of less growth",
+                counted(others.len(), "other mode")
+            ));
+        }
+        if !pieces.is_empty() {
+            names.push(fast.to_owned());
+        }
+        let outside = sweep.growing_outside.iter().take(MOST_PIECES);
+        if !sweep.growing_outside.is_empty() {
+            names.push("growth outside the window".to_owned());
+        }
+        let crowd_name = names.join("; ");
         let every = pieces.len().div_ceil(MOST_PIECES).max(1);
         let branch = |i: &usize| sweep.branches.get(*i);
         let thinned = pieces.iter().step_by(every).filter_map(branch);
         let crowd = others.iter().filter_map(branch).flat_map(smooth);
+        let crowd = crowd.chain(outside.flat_map(smooth));
         let crowd = crowd.chain(thinned.map(|b| b.trace.clone())).collect();
         Cast {
             named,

@@ -295,7 +295,14 @@ impl SweepReport<'_> {
                 write_decimals(m.frequency(), 1)
             ),
         };
-        format!("Design point at {}: {mode}.\n", self.told(u, 5))
+        let outside = self.design_growing_outside().map_or(String::new(), |m| {
+            format!(
+                "; outside, a mode grows at {} 1/s and {} Hz",
+                rate(m.growth()),
+                write_decimals(m.frequency(), 1)
+            )
+        });
+        format!("Design point at {}: {mode}{outside}.\n", self.told(u, 5))
     }
 }
 

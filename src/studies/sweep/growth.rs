@@ -44,6 +44,9 @@ pub(super) fn judge(ground: &Ground<'_>, sweep: &mut Sweep) {
     };
     let known = |p: &Place| p.s.re <= searched(p.u);
     let outside = |p: &Place| asked.holds(p.s, p.error) == Some(false);
+    let grows_outside = |p: &Place| outside(p) && known(p) && p.tendency() == Tendency::Grows;
+    let runs = woven.branches.iter().flat_map(|b| runs(b, grows_outside));
+    sweep.growing_outside = runs.collect();
     let (stretches, fastest) = of(&woven.branches, &woven.events, known, outside);
     all.extend(stretches);
     let outside = fastest.map(|f| Fastest { branch: None, ..f });
@@ -69,6 +72,28 @@ pub(super) fn judge(ground: &Ground<'_>, sweep: &mut Sweep) {
         add(&mut sweep.effort, &sample.effort);
     }
     add(&mut sweep.effort, &woven.effort);
+}
+
+/// The stretches of a branch at whose places something holds, each with the place before and the one behind.
+fn runs(branch: &Branch, holds: impl Fn(&Place) -> bool) -> Vec<Branch> {
+    let trace = &branch.trace;
+    let mut runs: Vec<Branch> = Vec::new();
+    let mut last = None;
+    for i in (0..trace.len()).filter(|i| trace.get(*i).is_some_and(&holds)) {
+        let goes_on = last.is_some_and(|last| last + 1 == i);
+        let from = if goes_on { i } else { i.saturating_sub(1) };
+        if !goes_on {
+            runs.push(Branch::default());
+        }
+        if let Some(run) = runs.last_mut() {
+            let seen = run.trace.last().map_or(f64::MIN, |p| p.u);
+            let places = trace.iter().take(i + 2).skip(from);
+            run.trace.extend(places.filter(|p| p.u > seen));
+        }
+        last = Some(i);
+    }
+    runs.retain(|run| run.trace.len() > 1);
+    runs
 }
 
 /// Steps over which modes move too fast to be followed and at an end of which some mode grows: nothing says that it does
