@@ -4,7 +4,7 @@ use std::f64::consts::TAU;
 
 use stillflame::meanflow;
 use stillflame::modes::Window;
-use stillflame::studies::sweep::{Edge, cautions};
+use stillflame::studies::sweep::{Branch, Edge, cautions};
 
 use crate::ground::{check, network, path, sweep};
 
@@ -25,6 +25,14 @@ fn unstable_stretches_do_not_depend_on_the_window_of_growth_or_the_points() {
         );
         check(&found);
         assert!(found.unresolved.is_empty());
+        // What grows outside is known as such, with the place before and the one behind.
+        let outside = &found.growing_outside;
+        assert_eq!(
+            outside.is_empty(),
+            growth == (-300.0, 300.0) && lowest == 0.0
+        );
+        let grows = |b: &Branch| b.trace.iter().any(|p| p.s.re > 0.0);
+        assert!(outside.iter().all(|b| b.trace.len() > 1 && grows(b)));
         (found.unstable, found.fastest.unwrap().s)
     };
     let (all, fastest) = stretches((-300.0, 300.0), 0.0, 141);
