@@ -9,8 +9,7 @@
 
 use num_complex::Complex64;
 
-pub use super::analytic::quotient;
-use super::analytic::{Analytic, Region, Rounding, TAYLOR, modulus};
+use super::analytic::{Analytic, Region, Rounding, TAYLOR, modulus, quotient};
 
 /// A disc with a known number of zeros.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -43,6 +42,7 @@ pub fn scale<F: Analytic + ?Sized>(f: &F, z: Complex64) -> f64 {
 ///
 /// Each goes on until its step is at rounding level or no longer shrinks; it comes to nothing where it leaves `reach`
 /// about its start or does not settle.
+#[derive(Default)]
 pub struct Newton {
     runs: Vec<Run>,
     reached: Vec<Option<Complex64>>,
@@ -65,19 +65,6 @@ const MOST_STEPS: usize = 40;
 /// Steps after which each must be shorter than the one before by a fifth: towards two zeros that all but coincide they
 /// are halved, towards one they do better.
 const FREE_STEPS: usize = 6;
-
-impl Default for Newton {
-    /// With no memory yet.
-    fn default() -> Self {
-        Newton {
-            runs: Vec::new(),
-            reached: Vec::new(),
-            active: Vec::new(),
-            places: Vec::new(),
-            values: Vec::new(),
-        }
-    }
-}
 
 impl Newton {
     /// What is reached from each start, in their order.

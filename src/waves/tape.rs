@@ -37,14 +37,17 @@ struct Sparse<T> {
     entries: Vec<(u8, T)>,
 }
 
+/// Slots and their coefficients, without zeros.
+type Entries<T> = Vec<(u8, T)>;
+
 /// What a law is multiplied by.
 #[derive(Clone, Debug, PartialEq)]
 enum Part<T> {
     Matrix(Sparse<T>),
     /// A column times a row, both without their zeros: the law is multiplied by one number.
     Outer {
-        column: Vec<(u8, T)>,
-        row: Vec<(u8, T)>,
+        column: Entries<T>,
+        row: Entries<T>,
     },
 }
 
@@ -131,8 +134,7 @@ impl<T: Real> Part<T> {
 }
 
 /// Column and row of a matrix of rank one, to rounding; the row is its longest.
-#[allow(clippy::type_complexity, reason = "two lists of one kind")]
-fn outer<T: Real>(m: &Dense<T>) -> Option<(Vec<(u8, T)>, Vec<(u8, T)>)> {
+fn outer<T: Real>(m: &Dense<T>) -> Option<(Entries<T>, Entries<T>)> {
     let size = |x: &T| x.value().abs();
     let longest = |row: &&Vec<T>| row.iter().map(size).fold(0.0, f64::max);
     let first = m.iter().max_by(|a, b| longest(a).total_cmp(&longest(b)))?;

@@ -17,7 +17,7 @@ use num_complex::Complex64;
 use crate::acoustics::{self, Acoustics};
 use crate::meanflow::{self, MeanFlow};
 use crate::network::Network;
-use crate::numerics::analytic::Analytic;
+use crate::numerics::analytic::{Analytic, quotient};
 use crate::numerics::dual::Grad;
 use crate::numerics::isolate::{self, Zero};
 use crate::studies::map::Axis;
@@ -123,7 +123,7 @@ impl Ground<'_> {
         let zero = isolate::simple(f, z, isolate::scale(f, z))?;
         let rho = lone(f, &zero, ROOM * reach)?;
         let [(_, moved), (slope, _)] = along.taylor(zero.at);
-        let velocity = moved.map(|moved| -isolate::quotient(moved, slope));
+        let velocity = moved.map(|moved| -quotient(moved, slope));
         let change = on_rim(&along, zero.at, rho);
         let usable = velocity.iter().all(|v| v.is_finite()) && change.iter().all(|c| c.is_finite());
         usable.then_some(Spot {
@@ -178,12 +178,12 @@ impl Ground<'_> {
             let along = self.at(here.at)?;
             let [(d, [d_x, d_y]), (d_s, [d_sx, d_sy]), (half, _)] = along.taylor(here.s);
             let d_ss = half * 2.0;
-            let ratio = isolate::quotient(d_s, d_ss);
+            let ratio = quotient(d_s, d_ss);
             let (value, a, b) = (d - d_s * ratio, d_x - d_sx * ratio, d_y - d_sy * ratio);
             let determinant = a.re * b.im - a.im * b.re;
             let dx = (b.re * value.im - b.im * value.re) / determinant;
             let dy = (a.im * value.re - a.re * value.im) / determinant;
-            let ds = -ratio - isolate::quotient(d_sx * dx + d_sy * dy, d_ss);
+            let ds = -ratio - quotient(d_sx * dx + d_sy * dy, d_ss);
             let size = dx.hypot(dy);
 
             if !(size.is_finite() && ds.is_finite()) {
@@ -219,7 +219,7 @@ fn lone(f: &impl Analytic, zero: &Zero, most: f64) -> Option<f64> {
         values.clear();
         f.values_and_slopes(&places, &mut values);
         let mut parts = rim(*rho).into_iter().zip(&values);
-        parts.all(|(h, (value, _))| (isolate::quotient(*value, slope * h) - 1.0).norm() < LINEAR)
+        parts.all(|(h, (value, _))| (quotient(*value, slope * h) - 1.0).norm() < LINEAR)
     };
     let widest = most.min(0.5 * zero.at.norm());
     let tried = std::iter::successors(Some(widest), |rho| Some(SHRINK * rho));
@@ -233,7 +233,7 @@ fn on_rim(along: &Acoustics<OnPlane>, s: Complex64, rho: f64) -> [f64; 2] {
     for h in rim(rho) {
         let [(value, moved)] = along.taylor(s + h);
         for (most, moved) in most.iter_mut().zip(moved) {
-            let change = isolate::quotient(moved, value).norm();
+            let change = quotient(moved, value).norm();
             // `max` alone would pass over what is no number.
             if change > *most || change.is_nan() {
                 *most = change;
