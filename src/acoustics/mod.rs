@@ -47,12 +47,47 @@ pub fn assemble<T: Real>(
     network: &Network<T>,
     mean: &MeanFlow<T>,
 ) -> Result<Acoustics<T>, Problems> {
-    let chain = lower(network, mean)?;
+    eliminated(network, lower(network, mean)?)
+}
+
+fn eliminated<T: Real>(network: &Network<T>, chain: Chain<T>) -> Result<Acoustics<T>, Problems> {
     let characteristic = front::eliminate(&chain).map_err(|e| told(&e, network))?;
     Ok(Acoustics {
         chain,
         characteristic,
     })
+}
+
+/// The same, from the acoustics of a network like this one: where only numbers of laws differ (a response, a storage, a
+/// reflection, carried entropy) they are put in place of the old ones and nothing is eliminated again.
+///
+/// # Errors
+/// As for [`assemble`].
+pub fn assemble_like(
+    before: Acoustics<f64>,
+    network: &Network,
+    mean: &MeanFlow<f64>,
+) -> Result<Acoustics<f64>, Problems> {
+    let chain = lower(network, mean)?;
+    if !chain.same_but_for_laws(&before.chain) {
+        return eliminated(network, chain);
+    }
+    let Characteristic {
+        tape,
+        joints,
+        closed_late,
+    } = before.characteristic;
+    match tape.with_laws_of(&chain) {
+        Some(tape) => Ok(Acoustics {
+            chain,
+            characteristic: Characteristic {
+                tape,
+                joints,
+                closed_late,
+            },
+        }),
+        None => eliminated(network, chain),
+    }
 }
 
 fn told<T>(error: &EliminationError, network: &Network<T>) -> Problems {

@@ -123,9 +123,9 @@ impl<N: Real> Crossing<N> {
         number: impl Fn(KnobId) -> N,
     ) -> Result<State<N>, Failure> {
         let corrections = implicit::corrections::<N>();
-        // The step after a step of `d` is of the order of `d^2`. A carried derivative divides by the
-        // slope, which then must be the root's own.
-        let tolerance = if corrections == 0 { 1e-7 } else { 1e-12 };
+        // The step after a step of `d` is of the order of `d^2`: to rounding, which waves that grow along
+        // the network magnify. A carried derivative divides by the slope, which then must be the root's own.
+        let tolerance = if corrections == 0 { 1e-9 } else { 1e-12 };
         let plain = self.map(|x| Dual::constant(x.value()));
         let plain_number = |k| Dual::constant(number(k).value());
         let root = newton(tolerance, pressure, temperature, |p, guess| {

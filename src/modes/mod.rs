@@ -19,7 +19,7 @@ use crate::numerics::zeros::{self, Doubt};
 use crate::problems::{Problem, Problems};
 use crate::units::{write_decimals, write_signed};
 
-pub use outside::{Outside, outside, outside_from};
+pub use outside::{Outside, find_all_from, outside};
 pub use window::{Window, cut_on};
 
 /// One mode: `p'(x, t) = Re[p(x) exp(s t)]`.
@@ -146,6 +146,10 @@ pub fn find_from(
 ) -> ModeList {
     let tape = &acoustics.characteristic.tape;
     let found = zeros::search_from(tape, &window.rectangle(), scan, starts);
+    listed(window, found)
+}
+
+fn listed(window: Window, found: zeros::Search) -> ModeList {
     let modes = found
         .zeros
         .iter()

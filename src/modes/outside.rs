@@ -9,9 +9,10 @@ use std::f64::consts::TAU;
 
 use num_complex::Complex64;
 
-use super::{Mode, Solved, Tendency, Window, doubt_in_words, find_from};
+use super::{Mode, ModeList, Solved, Tendency, Window, doubt_in_words, find_from, listed};
 use crate::acoustics::Acoustics;
-use crate::numerics::zeros::{Doubt, Scan};
+use crate::numerics::count::Rectangle;
+use crate::numerics::zeros::{self, Doubt, Scan};
 use crate::units::{write_decimals, write_signed};
 use crate::waves::tail::{self, Unbounded};
 
@@ -73,50 +74,124 @@ const FAR: f64 = 2e4;
 
 /// Looks outside a window.
 pub fn outside(solved: &Solved, window: Window) -> Outside {
-    outside_from(&solved.acoustics, window, window.growth.1, &[])
+    let acoustics = &solved.acoustics;
+    let beyond = Beyond::sought(acoustics, window, window.growth.1);
+    looked_for(acoustics, window, beyond, &[])
 }
 
-/// The same, trying the proof first at a growth rate `start`, and `starts` for zeros: what a network much
-/// like this one had.
-pub fn outside_from(
+/// The modes in a window and those outside, from one search where that proves both complete. The proof of growth outside is
+/// tried first at a growth rate `start`, zeros are expected at `starts`: what a network much like this one had.
+pub fn find_all_from(
     acoustics: &Acoustics<f64>,
     window: Window,
     start: f64,
     starts: &[Complex64],
-) -> Outside {
+) -> (ModeList, Outside) {
+    let beyond = Beyond::sought(acoustics, window, start);
+    let mut windows = vec![window];
+    windows.extend(strips(window, beyond.searched_to).into_iter().flatten());
+    let rectangles: Vec<Rectangle> = windows.iter().map(Window::rectangle).collect();
+    let mut whole = window.rectangle();
+    for r in &rectangles {
+        whole.growth.0 = whole.growth.0.min(r.growth.0);
+        whole.growth.1 = whole.growth.1.max(r.growth.1);
+        whole.omega.0 = whole.omega.0.min(r.omega.0);
+    }
     let tape = &acoustics.characteristic.tape;
+    let scan = Scan::UntilCounted;
+    let found = zeros::search_parts(tape, &whole, &rectangles, scan, starts);
+    if !found.iter().flat_map(|f| &f.doubts).all(on_edge) {
+        // What is missing may lie in any part.
+        let list = find_from(acoustics, window, scan, starts);
+        return (list, looked_for(acoustics, window, beyond, starts));
+    }
+    let mut lists = windows.into_iter().zip(found).map(|(w, f)| listed(w, f));
+    let inside = lists.next();
+    let outside = judged(window, beyond, lists);
+    let inside = inside.unwrap_or_else(|| listed(window, zeros::Search::default()));
+    (inside, outside)
+}
+
+/// How far to the right of a window is searched, and whether nothing lies beyond.
+struct Beyond {
+    searched_to: f64,
+    proved: bool,
+    reason: Option<String>,
+}
+
+impl Beyond {
+    fn sought(acoustics: &Acoustics<f64>, window: Window, start: f64) -> Beyond {
+        let tape = &acoustics.characteristic.tape;
+        let (low, high) = window.growth;
+        let from = high.max(start);
+        let clear = tail::clear_beyond(tape, from, TAU * window.frequency.1, LIMIT);
+        let strip = high + REACH * (high - low);
+        Beyond {
+            searched_to: match clear {
+                Ok(growth) => growth,
+                Err(Some(Unbounded::Spread(turn))) => turn.min(FAR).max(strip),
+                Err(_) => strip,
+            },
+            proved: clear.is_ok(),
+            reason: clear.err().map(in_words),
+        }
+    }
+}
+
+/// Most windows searched outside one.
+const STRIPS: usize = 3;
+
+/// The windows searched outside one: right of it, below, and left.
+fn strips(window: Window, searched_to: f64) -> [Option<Window>; STRIPS] {
+    let (low, high) = window.growth;
+    let (lowest, highest) = window.frequency;
+    let strip = |growth: (f64, f64), frequency: (f64, f64)| {
+        let some = growth.1 > growth.0 && frequency.1 > frequency.0;
+        some.then_some(Window { frequency, growth })
+    };
+    [
+        strip((high, searched_to), (0.0, highest)),
+        strip((0.0, high), (0.0, lowest)),
+        strip((0.0, low), window.frequency),
+    ]
+}
+
+/// Searches each of them.
+fn looked_for(
+    acoustics: &Acoustics<f64>,
+    window: Window,
+    beyond: Beyond,
+    starts: &[Complex64],
+) -> Outside {
+    let look = |strip| find_from(acoustics, strip, Scan::UntilCounted, starts);
+    let lists = strips(window, beyond.searched_to)
+        .into_iter()
+        .flatten()
+        .map(look);
+    judged(window, beyond, lists)
+}
+
+fn on_edge(doubt: &Doubt) -> bool {
+    matches!(doubt, Doubt::OnEdge { .. })
+}
+
+/// What the lists of the windows outside one tell.
+fn judged(window: Window, beyond: Beyond, lists: impl Iterator<Item = ModeList>) -> Outside {
     let (low, high) = window.growth;
     let lowest = window.frequency.0;
-    let from = high.max(start);
-    let clear = tail::clear_beyond(tape, from, TAU * window.frequency.1, LIMIT);
-    let mut reason = clear.err().map(in_words);
-    let strip = high + REACH * (high - low);
-    let searched_to = match clear {
-        Ok(growth) => growth,
-        Err(Some(Unbounded::Spread(turn))) => turn.min(FAR).max(strip),
-        Err(_) => strip,
-    };
+    let mut reason = beyond.reason;
     let mut seen = Vec::new();
     let mut met = Vec::new();
     let mut complete = true;
-    let mut look = |growth: (f64, f64), frequency: (f64, f64)| {
-        if growth.1 <= growth.0 || frequency.1 <= frequency.0 {
-            return;
-        }
-        let part = Window { frequency, growth };
-        let list = find_from(acoustics, part, Scan::UntilCounted, starts);
+    for list in lists {
         // A mode on an edge is listed, and judged by its own growth rate.
-        let mut doubts = list.doubts.iter();
-        if let Some(doubt) = doubts.find(|d| !matches!(d, Doubt::OnEdge { .. })) {
+        if let Some(doubt) = list.doubts.iter().find(|d| !on_edge(d)) {
             complete = false;
             reason.get_or_insert(doubt_in_words(doubt).0);
         }
         seen.extend(list.modes);
         met.extend(list.met);
-    };
-    look((high, searched_to), (0.0, window.frequency.1));
-    look((0.0, high), (0.0, lowest));
-    look((0.0, low), window.frequency);
+    }
     let (faster, others): (Vec<Mode>, Vec<Mode>) = seen
         .into_iter()
         .partition(|m| m.growth() > high && m.frequency() >= lowest);
@@ -132,9 +207,9 @@ pub fn outside_from(
         faster,
         slower,
         milder,
-        searched_to,
+        searched_to: beyond.searched_to,
         complete,
-        proved: clear.is_ok(),
+        proved: beyond.proved,
         reason,
         met,
     }

@@ -56,7 +56,7 @@ pub enum Doubt {
 }
 
 /// Zeros in a window and what is known about them.
-#[derive(Clone, Debug, PartialEq)]
+#[derive(Clone, Debug, Default, PartialEq)]
 pub struct Search {
     /// The zeros inside, by increasing imaginary part; for a symmetric function those with
     /// nonnegative imaginary part.
@@ -106,14 +106,28 @@ pub fn search_from<F: Analytic + ?Sized>(
     scan: Scan,
     starts: &[Complex64],
 ) -> Search {
+    let mut found = search_parts(f, window, &[*window], scan, starts).into_iter();
+    found.next().unwrap_or_default()
+}
+
+/// The zeros of several windows from one search of a rectangle that holds them all, which is padded as the first of
+/// them would be. Only zeros within their errors of an edge set the verdicts apart: what is missing may lie in any.
+pub fn search_parts<F: Analytic + ?Sized>(
+    f: &F,
+    whole: &Rectangle,
+    parts: &[Rectangle],
+    scan: Scan,
+    starts: &[Complex64],
+) -> Vec<Search> {
     let symmetric = f.is_symmetric();
     let mut walker = Walker::new(f);
     let mut counted = Err(CountError::Overflow {
         at: Complex64::new(0.0, 0.0),
     });
-    let mut padded = *window;
+    let mut padded = *whole;
+    let first = parts.first().unwrap_or(whole);
     for (attempt, pad) in PADS.into_iter().enumerate() {
-        padded = pad_by(window, pad, symmetric);
+        padded = pad_by(whole, first, pad, symmetric);
         walker.effort.retries = attempt;
         counted = count(&mut walker, &padded, symmetric);
         let again = matches!(
@@ -130,13 +144,12 @@ pub fn search_from<F: Analytic + ?Sized>(
     let count = match counted {
         Ok(n) => n,
         Err(e) => {
-            return Search {
-                zeros: Vec::new(),
-                expected: None,
-                met: Vec::new(),
+            let none = Search {
                 doubts: vec![Doubt::NotCounted(e)],
                 effort: walker.effort,
+                ..Search::default()
             };
+            return vec![none; parts.len()];
         }
     };
     Hunt {
@@ -150,14 +163,13 @@ pub fn search_from<F: Analytic + ?Sized>(
     }
     .run(&mut ledger, &mut walker);
     walker.effort.evaluations += ledger.evaluations;
-    certify(&ledger, window, &padded, count, walker.effort)
+    let verdict = |part| certify(&ledger, part, &padded, count, walker.effort);
+    parts.iter().map(verdict).collect()
 }
 
-fn pad_by(window: &Rectangle, pad: f64, symmetric: bool) -> Rectangle {
-    let (dg, dw) = (
-        window.growth.1 - window.growth.0,
-        window.omega.1 - window.omega.0,
-    );
+/// A rectangle padded by a share of the width and height of another.
+fn pad_by(window: &Rectangle, of: &Rectangle, pad: f64, symmetric: bool) -> Rectangle {
+    let (dg, dw) = (of.growth.1 - of.growth.0, of.omega.1 - of.omega.0);
     let bottom = if symmetric {
         0.0
     } else {

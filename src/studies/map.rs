@@ -9,14 +9,14 @@ use std::ops::ControlFlow;
 use num_complex::Complex64;
 use rayon::prelude::*;
 
-use crate::acoustics;
+use crate::acoustics::{self, Acoustics};
 use crate::elements::Kind;
 use crate::elements::duct::Entropy;
 use crate::elements::ends::{ExitEnd, FeedEnd};
 use crate::flame::ResponseLaw;
 use crate::knobs::KnobId;
 use crate::meanflow::MeanFlow;
-use crate::modes::{self, Mode, Scan, Tendency, Window};
+use crate::modes::{self, Mode, Tendency, Window};
 use crate::network::Network;
 use crate::problems::{Problem, Problems};
 
@@ -303,11 +303,36 @@ pub fn map(
     })
 }
 
+/// A zero farther from all of the point before, over its modulus, is taken for a new one.
+const FARTHEST_STEP: f64 = 0.1;
+
 /// What was met at the point before.
 #[derive(Default)]
 struct Known {
+    acoustics: Option<Acoustics<f64>>,
     zeros: Vec<Complex64>,
+    /// Those of the point before that.
+    earlier: Vec<Complex64>,
     clear_beyond: f64,
+}
+
+impl Known {
+    /// Where zeros are to be expected next: each as far on as it has come from its nearest at the point before.
+    fn expected(&self) -> Vec<Complex64> {
+        let on = |&z: &Complex64| {
+            let apart = |a: &&Complex64| (**a - z).norm_sqr();
+            let nearest = |a: &&Complex64, b: &&Complex64| apart(a).total_cmp(&apart(b));
+            let before = self.earlier.iter().min_by(nearest);
+            before
+                .filter(|a| (*a - z).norm() < FARTHEST_STEP * z.norm())
+                .map_or(z, |a| z + (z - a))
+        };
+        self.zeros.iter().map(on).collect()
+    }
+
+    fn take(&mut self, met: Vec<Complex64>) {
+        self.earlier = std::mem::replace(&mut self.zeros, met);
+    }
 }
 
 /// One point. `known` is of the point before and is left with what is met here.
@@ -317,9 +342,10 @@ fn point(
     window: Window,
     known: &mut Known,
 ) -> Solution {
-    let acoustics = match held {
-        None => modes::solve(network).map(|solved| solved.acoustics),
-        Some(mean) => acoustics::assemble(network, mean),
+    let acoustics = match (held, known.acoustics.take()) {
+        (None, _) => modes::solve(network).map(|solved| solved.acoustics),
+        (Some(mean), None) => acoustics::assemble(network, mean),
+        (Some(mean), Some(before)) => acoustics::assemble_like(before, network, mean),
     };
     let acoustics = match acoustics {
         Ok(acoustics) => acoustics,
@@ -329,11 +355,18 @@ fn point(
             return (Point::Failed(Box::new(first)), Vec::new());
         }
     };
-    // The characteristic function is analytic by construction.
-    let list = modes::find_from(&acoustics, window, Scan::UntilCounted, &known.zeros);
-    let outside = modes::outside_from(&acoustics, window, known.clear_beyond, &known.zeros);
-    known.zeros.clear();
-    known.zeros.extend(list.met.iter().chain(&outside.met));
+    let expected = known.expected();
+    // The characteristic function is analytic by construction: a search may end at the count.
+    let (mut list, outside) =
+        modes::find_all_from(&acoustics, window, known.clear_beyond, &expected);
+    let mut met = std::mem::take(&mut list.met);
+    for z in &outside.met {
+        if !met.contains(z) {
+            met.push(*z);
+        }
+    }
+    known.take(met);
+    known.acoustics = Some(acoustics);
     known.clear_beyond = outside.searched_to;
     let grows = outside
         .fastest()

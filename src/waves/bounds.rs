@@ -12,7 +12,7 @@ use super::complex::Cx;
 use super::front;
 use super::law::{Delayed, Law, delay_majorant, real_product};
 use super::primitive::{Chain, End, Joint, Start, Step, Term, Travel};
-use super::tape::{Arithmetic, Tape, Writer};
+use super::tape::{Arithmetic, Entry, Tape, Writer};
 use crate::numerics::analytic::{Analytic, Region, TAYLOR};
 
 /// Something that has a bound of its own.
@@ -306,10 +306,11 @@ fn positive() -> impl Strategy<Value = Tape<f64>> {
             writer.map(first, Vec::new());
             for (constant, lawful, delays) in layers {
                 writer.scale(&delays);
-                writer.map(constant, lawful);
+                let entries = lawful.into_iter().map(|(law, m)| Entry::of(law, m));
+                writer.map(constant, entries.collect());
             }
             writer.map(last, Vec::new());
-            writer.finish().unwrap()
+            writer.finish().unwrap().0
         })
 }
 

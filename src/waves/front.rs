@@ -22,8 +22,8 @@ use num_complex::Complex64;
 
 use super::exterior::{self, Dense};
 use super::law::Law;
-use super::primitive::{Block, Chain, Joint, Plane, Row, Step, Travel};
-use super::tape::{Tape, Writer};
+use super::primitive::{Block, Chain, Joint, Place, Plane, Row, Step, Travel};
+use super::tape::{Entry, Origin, Tape, Writer};
 use crate::numerics::dual::Real;
 use crate::numerics::fine::Fine;
 
@@ -32,7 +32,7 @@ use crate::numerics::fine::Fine;
 pub struct Characteristic<T> {
     /// `D(s)`.
     pub tape: Tape<T>,
-    /// `prod det(down)` over the joints.
+    /// `prod det(down)` over the joints, over the scale of the tape's value.
     pub joints: T,
     /// `sum_k t_k` (s).
     pub closed_late: T,
@@ -120,10 +120,10 @@ fn walk<T: Real>(chain: &Chain<T>) -> Result<Characteristic<T>, EliminationError
     }
     front.arrive(chain.steps.len());
     front.end();
-    let tape = front.writer.finish().ok_or(EliminationError::TooMany)?;
+    let (tape, scale) = front.writer.finish().ok_or(EliminationError::TooMany)?;
     Ok(Characteristic {
         tape,
-        joints: front.joints,
+        joints: front.joints * scale,
         closed_late: front.closed_late,
     })
 }
@@ -145,11 +145,12 @@ impl<T: Real> Front<'_, T> {
             let v = cross(row, &start.rows[1]);
             v.iter().take(keep).map(|&x| vec![x]).collect()
         };
-        let lawful = start
-            .term
-            .iter()
-            .map(|(f, sense)| (f.clone(), column(sense)))
-            .collect();
+        let entry = |(law, sense): &(Law<T>, Row<T>)| Entry {
+            law: law.clone(),
+            matrix: column(sense),
+            origin: origin(Place::Start, T::from(0.0)),
+        };
+        let lawful = start.term.iter().map(entry).collect();
         let constant = column(&start.rows[0]);
         self.set_waves(keep, Vec::new());
         self.writer.map(constant, lawful);
@@ -250,8 +251,8 @@ impl<T: Real> Front<'_, T> {
                 let condition: Vec<T> = self.on_waves(&sense).into_iter().map(|x| -x).collect();
                 let constant = exterior::close(&condition, self.grade, q);
                 let lawful = exterior::close(&self.unit(q), self.grade, q);
-                self.writer
-                    .map(constant, vec![(Law::pure_delay(self.held[q]), lawful)]);
+                let entry = Entry::of(Law::pure_delay(self.held[q]), lawful);
+                self.writer.map(constant, vec![entry]);
                 self.closed_late += self.held[q];
                 self.coordinates.remove(q);
                 self.held.remove(q);
@@ -270,8 +271,11 @@ impl<T: Real> Front<'_, T> {
             if let Some(law) = entropy {
                 let one = self.unit(2);
                 rows[2] = vec![T::from(0.0); d];
-                let part = exterior::rank_one_compound(&rows, &one, &one, self.grade);
-                lawful.push((law.delayed(t.upstream), part));
+                lawful.push(Entry {
+                    law: law.delayed(t.upstream),
+                    matrix: exterior::rank_one_compound(&rows, &one, &one, self.grade),
+                    origin: origin(Place::Entropy(next - 1), t.upstream),
+                });
             } else {
                 rows.remove(2);
             }
@@ -348,10 +352,11 @@ impl<T: Real> Front<'_, T> {
             }
         }
         let constant = exterior::compound(&rows, d, self.grade);
-        let mut lawful: Vec<(Law<T>, Dense<T>)> = Vec::new();
+        let mut lawful = Vec::new();
         let mut own_outlet: Option<Row<T>> = None;
         for (k, t) in joint.terms.iter().enumerate() {
             let signal = Coordinate::Signal { step: j, term: k };
+            let place = Place::Term { step: j, term: k };
             if t.at == j + 1 {
                 // (1 - kappa F) x_2 = (1 - kappa F) T x_1 + o F h.T x_1 + ..., kappa = h.o: the
                 // denominator is cleared once, whatever the grade.
@@ -372,14 +377,21 @@ impl<T: Real> Front<'_, T> {
                         *x -= kappa * c;
                     }
                 }
-                lawful.push((t.law.clone(), part));
+                lawful.push(Entry {
+                    law: t.law.clone(),
+                    matrix: part,
+                    origin: origin(place, T::from(0.0)),
+                });
             } else {
-                let (law, sense) = match self.index(signal) {
-                    Some(i) => (t.law.delayed(self.held[i]), self.unit(i)),
-                    None => (t.law.clone(), self.on_waves(&t.sense)),
+                let (later, sense) = match self.index(signal) {
+                    Some(i) => (self.held[i], self.unit(i)),
+                    None => (T::from(0.0), self.on_waves(&t.sense)),
                 };
-                let part = exterior::rank_one_compound(&rows, &out, &sense, self.grade);
-                lawful.push((law, part));
+                lawful.push(Entry {
+                    law: t.law.delayed(later),
+                    matrix: exterior::rank_one_compound(&rows, &out, &sense, self.grade),
+                    origin: origin(place, later),
+                });
             }
         }
         self.set_waves(keep, kept);
@@ -390,13 +402,18 @@ impl<T: Real> Front<'_, T> {
     fn end(&mut self) {
         let end = &self.chain.end;
         let constant = vec![self.on_waves(&end.row)];
-        let lawful = end
-            .term
-            .iter()
-            .map(|(f, sense)| (f.clone(), vec![self.on_waves(sense)]))
-            .collect();
+        let entry = |(law, sense): &(Law<T>, Row<T>)| Entry {
+            law: law.clone(),
+            matrix: vec![self.on_waves(sense)],
+            origin: origin(Place::End, T::from(0.0)),
+        };
+        let lawful = end.term.iter().map(entry).collect();
         self.writer.map(constant, lawful);
     }
+}
+
+fn origin<T>(place: Place, later: T) -> Option<Origin<T>> {
+    Some(Origin { place, later })
 }
 
 fn dot<T: Real>(a: &Row<T>, b: &Row<T>) -> T {

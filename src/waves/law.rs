@@ -124,6 +124,26 @@ impl<T: Real> Law<T> {
         }
     }
 
+    /// Takes the numbers of `other`, times `exp(-s extra)`; `None` where that is of another form.
+    pub fn renew(&mut self, other: &Law<T>, extra: T) -> Option<()> {
+        if let (Law::Delays(mine), Law::Delays(theirs)) = (&mut *self, other) {
+            if mine.len() != theirs.len() {
+                return None;
+            }
+            for (mine, theirs) in mine.iter_mut().zip(theirs) {
+                *mine = Delayed {
+                    delay: theirs.delay + extra,
+                    ..*theirs
+                };
+            }
+        } else if std::mem::discriminant(self) == std::mem::discriminant(other) {
+            *self = other.delayed(extra);
+        } else {
+            return None;
+        }
+        Some(())
+    }
+
     /// Whether `F(conj s) = conj F(s)` holds for the analytic function itself.
     pub fn is_symmetric(&self) -> bool {
         !matches!(self, Law::Complex { .. })

@@ -136,10 +136,75 @@ impl<T: Copy> Chain<T> {
     }
 }
 
+/// Where a law of a chain stands.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Place {
+    /// In the conditions at plane 0.
+    Start,
+    /// The entropy of the distance that step is.
+    Entropy(usize),
+    /// A term of the joint that step is.
+    Term {
+        /// The step.
+        step: usize,
+        /// Which of its terms.
+        term: usize,
+    },
+    /// In the condition at the last plane.
+    End,
+}
+
 impl<T> Chain<T> {
+    /// The law at a place.
+    pub fn law(&self, place: Place) -> Option<&Law<T>> {
+        let step = |step: usize| self.steps.get(step);
+        match place {
+            Place::Start => self.start.term.as_ref().map(|(law, _)| law),
+            Place::End => self.end.term.as_ref().map(|(law, _)| law),
+            Place::Entropy(j) => match step(j)? {
+                Step::Travel(travel) => travel.entropy.as_ref(),
+                Step::Joint(_) => None,
+            },
+            Place::Term { step: j, term } => match step(j)? {
+                Step::Joint(joint) => joint.terms.get(term).map(|t| &t.law),
+                Step::Travel(_) => None,
+            },
+        }
+    }
+
     /// Number of planes.
     pub fn planes(&self) -> usize {
         self.steps.len() + 1
+    }
+}
+
+impl<T: PartialEq> Chain<T> {
+    /// Whether both are the same in all but their laws.
+    pub fn same_but_for_laws(&self, other: &Self) -> bool {
+        let signals = |a: &Option<(Law<T>, Row<T>)>, b: &Option<(Law<T>, Row<T>)>| match (a, b) {
+            (Some((_, a)), Some((_, b))) => a == b,
+            (a, b) => a.is_none() && b.is_none(),
+        };
+        let terms = |(a, b): (&Term<T>, &Term<T>)| a.at == b.at && a.sense == b.sense;
+        let steps = |(a, b): (&Step<T>, &Step<T>)| match (a, b) {
+            (Step::Travel(a), Step::Travel(b)) => {
+                a.downstream == b.downstream
+                    && a.upstream == b.upstream
+                    && a.entropy.is_some() == b.entropy.is_some()
+            }
+            (Step::Joint(a), Step::Joint(b)) => {
+                (&a.up, &a.down, &a.row) == (&b.up, &b.down, &b.row)
+                    && a.terms.len() == b.terms.len()
+                    && a.terms.iter().zip(&b.terms).all(terms)
+            }
+            _ => false,
+        };
+        self.start.rows == other.start.rows
+            && signals(&self.start.term, &other.start.term)
+            && self.end.row == other.end.row
+            && signals(&self.end.term, &other.end.term)
+            && self.steps.len() == other.steps.len()
+            && self.steps.iter().zip(&other.steps).all(steps)
     }
 }
 

@@ -49,25 +49,26 @@ pub enum Unbounded {
     Vanishes,
 }
 
-/// Polynomials in `s`: the part without delays, the moduli of its products, and a bound of the rest.
+/// Polynomials in `s`: the part without delays, the moduli of its products, and a bound of the rest,
+/// of fewer than `N` powers.
 #[derive(Clone, Copy)]
-struct Parts {
-    prompt: [Complex64; MOST + 1],
-    moduli: [f64; MOST + 1],
-    late: [f64; MOST + 1],
+struct Parts<const N: usize> {
+    prompt: [Complex64; N],
+    moduli: [f64; N],
+    late: [f64; N],
     degree: usize,
 }
 
-struct Split {
+struct Split<const N: usize> {
     growth: f64,
 }
 
-impl Split {
-    fn constant(value: Complex64, late: f64) -> Parts {
+impl<const N: usize> Split<N> {
+    fn constant(value: Complex64, late: f64) -> Parts<N> {
         let mut parts = Parts {
-            prompt: [Complex64::ZERO; MOST + 1],
-            moduli: [0.0; MOST + 1],
-            late: [0.0; MOST + 1],
+            prompt: [Complex64::ZERO; N],
+            moduli: [0.0; N],
+            late: [0.0; N],
             degree: 0,
         };
         parts.prompt[0] = value;
@@ -81,26 +82,26 @@ impl Split {
     }
 }
 
-impl Arithmetic<f64> for Split {
-    type Element = Parts;
+impl<const N: usize> Arithmetic<f64> for Split<N> {
+    type Element = Parts<N>;
 
-    fn zero(&self) -> Parts {
+    fn zero(&self) -> Parts<N> {
         Self::constant(Complex64::ZERO, 0.0)
     }
 
-    fn one(&self) -> Parts {
+    fn one(&self) -> Parts<N> {
         Self::constant(Complex64::ONE, 0.0)
     }
 
-    fn add(&self, a: Parts, b: Parts) -> Parts {
+    fn add(&self, a: Parts<N>, b: Parts<N>) -> Parts<N> {
         self.add_scaled(a, 1.0, b)
     }
 
-    fn scaled(&self, k: f64, x: Parts) -> Parts {
+    fn scaled(&self, k: f64, x: Parts<N>) -> Parts<N> {
         self.add_scaled(self.zero(), k, x)
     }
 
-    fn add_scaled(&self, mut sum: Parts, k: f64, x: Parts) -> Parts {
+    fn add_scaled(&self, mut sum: Parts<N>, k: f64, x: Parts<N>) -> Parts<N> {
         sum.degree = sum.degree.max(x.degree);
         for i in 0..=x.degree {
             sum.prompt[i] += x.prompt[i] * k;
@@ -110,13 +111,14 @@ impl Arithmetic<f64> for Split {
         sum
     }
 
-    fn product(&self, a: Parts, b: Parts) -> Parts {
+    fn product(&self, a: Parts<N>, b: Parts<N>) -> Parts<N> {
         let mut sum = self.zero();
-        // Beyond MOST the powers pile up in the last place; the caller refuses such a tape beforehand.
-        sum.degree = (a.degree + b.degree).min(MOST);
+        // More powers would pile up in the last place; the caller allows for all.
+        let last = N - 1;
+        sum.degree = (a.degree + b.degree).min(last);
         for i in 0..=a.degree {
             for j in 0..=b.degree {
-                let k = (i + j).min(MOST);
+                let k = (i + j).min(last);
                 sum.prompt[k] += a.prompt[i] * b.prompt[j];
                 sum.moduli[k] += a.moduli[i] * b.moduli[j];
                 sum.late[k] += a.moduli[i] * b.late[j] + a.late[i] * (b.moduli[j] + b.late[j]);
@@ -125,20 +127,20 @@ impl Arithmetic<f64> for Split {
         sum
     }
 
-    type Delay = Parts;
+    type Delay = Parts<N>;
 
-    fn delayed(&self, e: Parts, _: f64, x: Parts) -> Parts {
+    fn delayed(&self, e: Parts<N>, _: f64, x: Parts<N>) -> Parts<N> {
         self.product(e, x)
     }
 
-    fn delay(&self, t: f64) -> Parts {
+    fn delay(&self, t: f64) -> Parts<N> {
         match t == 0.0 {
             true => self.one(),
             false => Self::constant(Complex64::ZERO, self.decayed(t)),
         }
     }
 
-    fn law(&self, law: &Law<f64>) -> Parts {
+    fn law(&self, law: &Law<f64>) -> Parts<N> {
         match law {
             Law::Delays(delays) => delays.iter().fold(self.zero(), |sum, d| {
                 self.add_scaled(sum, d.weight, self.delay(d.delay))
@@ -148,8 +150,8 @@ impl Arithmetic<f64> for Split {
                 delay,
             } => {
                 let mut p = self.zero();
-                p.degree = 2;
-                for (k, &c) in coefficients.iter().enumerate() {
+                p.degree = power(coefficients).min(N - 1);
+                for (k, &c) in coefficients.iter().enumerate().take(N) {
                     p.prompt[k] = c.into();
                     p.moduli[k] = c.abs();
                 }
@@ -163,8 +165,14 @@ impl Arithmetic<f64> for Split {
     }
 }
 
-/// What stands in the way of a proof, read off the laws and delays.
-fn obstacle(tape: &Tape<f64>) -> Result<f64, Unbounded> {
+/// The highest power of a polynomial.
+fn power(coefficients: &[f64; 3]) -> usize {
+    coefficients.iter().rposition(|&c| c != 0.0).unwrap_or(0)
+}
+
+/// What stands in the way of a proof, read off the laws and delays; else the shortest delay and the highest
+/// power of `s`.
+fn obstacle(tape: &Tape<f64>) -> Result<(f64, usize), Unbounded> {
     let mut shortest = f64::INFINITY;
     let mut turning: Option<f64> = None;
     let mut powers = 0;
@@ -198,8 +206,7 @@ fn obstacle(tape: &Tape<f64>) -> Result<f64, Unbounded> {
                     coefficients,
                     delay,
                 } => {
-                    let power = coefficients.iter().rposition(|&c| c != 0.0);
-                    highest = highest.max(power.unwrap_or(0));
+                    highest = highest.max(power(coefficients));
                     seen(*delay)?;
                 }
                 Law::Complex { delay, .. } => seen(*delay)?,
@@ -210,10 +217,7 @@ fn obstacle(tape: &Tape<f64>) -> Result<f64, Unbounded> {
     if let Some(turn) = turning {
         return Err(Unbounded::Spread(turn));
     }
-    if powers > MOST {
-        return Err(Unbounded::Degree);
-    }
-    Ok(shortest)
+    Ok((shortest, powers))
 }
 
 /// A growth rate (1/s), at least `from`, to the right of which `tape` has no zero with `|Im s| <= omega`.
@@ -226,10 +230,25 @@ pub fn clear_beyond(
     omega: f64,
     limit: f64,
 ) -> Result<f64, Option<Unbounded>> {
-    let shortest = obstacle(tape).map_err(Some)?;
+    let (shortest, powers) = obstacle(tape).map_err(Some)?;
+    match powers {
+        0 => clear_with::<1>(tape, shortest, from, omega, limit),
+        1..=4 => clear_with::<5>(tape, shortest, from, omega, limit),
+        5..=MOST => clear_with::<{ MOST + 1 }>(tape, shortest, from, omega, limit),
+        _ => Err(Some(Unbounded::Degree)),
+    }
+}
+
+fn clear_with<const N: usize>(
+    tape: &Tape<f64>,
+    shortest: f64,
+    from: f64,
+    omega: f64,
+    limit: f64,
+) -> Result<f64, Option<Unbounded>> {
     let mut growth = from.max(1.0);
     while growth <= limit {
-        let parts = tape.run(&Split { growth });
+        let parts = tape.run(&Split::<N> { growth });
         if clear(&parts, growth, omega, shortest).map_err(Some)? {
             return Ok(growth);
         }
@@ -238,7 +257,12 @@ pub fn clear_beyond(
     Err(None)
 }
 
-fn clear(parts: &Parts, g: f64, omega: f64, shortest: f64) -> Result<bool, Unbounded> {
+fn clear<const N: usize>(
+    parts: &Parts<N>,
+    g: f64,
+    omega: f64,
+    shortest: f64,
+) -> Result<bool, Unbounded> {
     let kept = |k: &usize| parts.prompt[*k].norm() > CANCELLED * parts.moduli[*k];
     let Some(m) = (0..=parts.degree).rev().find(kept) else {
         return Err(Unbounded::Vanishes);
@@ -304,7 +328,7 @@ mod tests {
     use super::*;
     use crate::numerics::count::{Rectangle, Walker};
     use crate::waves::law::Delayed;
-    use crate::waves::tape::Writer;
+    use crate::waves::tape::{Entry, Writer};
     use proptest::prelude::*;
 
     /// `sum_k F_k(s)`.
@@ -312,11 +336,9 @@ mod tests {
         let mut writer = Writer::default();
         let entry = || vec![vec![1.0]];
         let constant = vec![vec![0.0]];
-        writer.map(
-            constant,
-            laws.into_iter().map(|law| (law, entry())).collect(),
-        );
-        writer.finish().unwrap()
+        let entries = laws.into_iter().map(|law| Entry::of(law, entry()));
+        writer.map(constant, entries.collect());
+        writer.finish().unwrap().0
     }
 
     fn delayed(weight: f64, delay: f64, spread: f64) -> Law<f64> {

@@ -18,23 +18,29 @@ use num_complex::Complex64;
 use super::complex::Cx;
 use super::exterior::Dense;
 use super::law::Law;
+use super::primitive::{Chain, Place};
 use crate::numerics::analytic::Rounding;
 use crate::numerics::dual::Real;
 use arithmetic::Taylor;
 
 pub(super) use arithmetic::Arithmetic;
-pub use writer::Writer;
+pub use writer::{Entry, Writer};
 
 /// Most slots the vector may have.
 pub const MOST_SLOTS: usize = 64;
 
+/// A row of a constant matrix: `v[lead]`, with the coefficient one, and the entries up to `end`.
+#[derive(Clone, Copy, Debug, PartialEq)]
+struct Line {
+    lead: Option<u8>,
+    end: usize,
+}
+
 /// A constant real matrix without its zeros, row by row in one list.
 #[derive(Clone, Debug, PartialEq)]
 struct Sparse<T> {
-    /// Where each row ends in the list.
-    ends: Vec<usize>,
-    /// Column and coefficient.
-    entries: Vec<(u8, T)>,
+    lines: Vec<Line>,
+    entries: Entries<T>,
 }
 
 /// Slots and their coefficients, without zeros.
@@ -51,6 +57,22 @@ enum Part<T> {
     },
 }
 
+/// A law of a chain: which one, and the delay folded into it on the way.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Origin<T> {
+    /// Where it stands.
+    pub place: Place,
+    /// Added to its delays (s).
+    pub later: T,
+}
+
+#[derive(Clone, Debug, PartialEq)]
+struct Lawful<T> {
+    law: Law<T>,
+    part: Part<T>,
+    origin: Option<Origin<T>>,
+}
+
 #[derive(Clone, Debug, PartialEq)]
 enum Op<T> {
     Scale {
@@ -59,7 +81,7 @@ enum Op<T> {
     },
     Map {
         constant: Sparse<T>,
-        lawful: Vec<(Law<T>, Part<T>)>,
+        lawful: Vec<Lawful<T>>,
     },
 }
 
@@ -75,13 +97,19 @@ pub struct Tape<T> {
 impl<T: Real> Sparse<T> {
     fn of(m: &Dense<T>) -> Self {
         let mut sparse = Sparse {
-            ends: Vec::with_capacity(m.len()),
+            lines: Vec::with_capacity(m.len()),
             entries: Vec::new(),
         };
+        let one = T::from(1.0);
         for row in m {
+            let lead = row.iter().position(|&x| (x - one).is_exactly_zero());
             let used = row.iter().enumerate().filter(|(_, x)| !x.is_exactly_zero());
-            sparse.entries.extend(used.map(|(j, &x)| (j as u8, x)));
-            sparse.ends.push(sparse.entries.len());
+            let others = used.filter(|(j, _)| Some(*j) != lead);
+            sparse.entries.extend(others.map(|(j, &x)| (j as u8, x)));
+            sparse.lines.push(Line {
+                lead: lead.map(|j| j as u8),
+                end: sparse.entries.len(),
+            });
         }
         sparse
     }
@@ -89,12 +117,21 @@ impl<T: Real> Sparse<T> {
 
 /// `row . v`. The sum is held apart from the vectors, so that it can stay in registers.
 #[inline(always)]
-fn dot<T: Real, A: Arithmetic<T>>(arithmetic: &A, row: &[(u8, T)], v: &[A::Element]) -> A::Element {
-    let Some((&(j, k), rest)) = row.split_first() else {
-        return arithmetic.zero();
+fn dot<T: Real, A: Arithmetic<T>>(
+    arithmetic: &A,
+    lead: Option<u8>,
+    mut row: &[(u8, T)],
+    v: &[A::Element],
+) -> A::Element {
+    let mut sum = match (lead, row) {
+        (Some(j), _) => v[usize::from(j)],
+        (None, &[(j, k), ref rest @ ..]) => {
+            row = rest;
+            arithmetic.scaled(k, v[usize::from(j)])
+        }
+        (None, []) => return arithmetic.zero(),
     };
-    let mut sum = arithmetic.scaled(k, v[usize::from(j)]);
-    for &(j, k) in rest {
+    for &(j, k) in row {
         sum = arithmetic.add_scaled(sum, k, v[usize::from(j)]);
     }
     sum
@@ -103,7 +140,7 @@ fn dot<T: Real, A: Arithmetic<T>>(arithmetic: &A, row: &[(u8, T)], v: &[A::Eleme
 impl<T: Copy> Sparse<T> {
     fn map<U>(&self, f: impl Fn(T) -> U) -> Sparse<U> {
         Sparse {
-            ends: self.ends.clone(),
+            lines: self.lines.clone(),
             entries: self.entries.iter().map(|&(j, x)| (j, f(x))).collect(),
         }
     }
@@ -161,6 +198,19 @@ fn outer<T: Real>(m: &Dense<T>) -> Option<(Entries<T>, Entries<T>)> {
     Some((column, used.map(|(j, &x)| (j as u8, x)).collect()))
 }
 
+impl<T: Copy> Lawful<T> {
+    fn map<U>(&self, f: impl Fn(T) -> U + Copy) -> Lawful<U> {
+        Lawful {
+            law: self.law.map(|x| f(*x)),
+            part: self.part.map(f),
+            origin: self.origin.as_ref().map(|o| Origin {
+                place: o.place,
+                later: f(o.later),
+            }),
+        }
+    }
+}
+
 impl<T: Copy> Tape<T> {
     /// The same program with each number replaced by `f` of it.
     pub fn map<U>(&self, f: impl Fn(T) -> U + Copy) -> Tape<U> {
@@ -171,10 +221,7 @@ impl<T: Copy> Tape<T> {
             },
             Op::Map { constant, lawful } => Op::Map {
                 constant: constant.map(f),
-                lawful: lawful
-                    .iter()
-                    .map(|(law, part)| (law.map(|x| f(*x)), part.map(f)))
-                    .collect(),
+                lawful: lawful.iter().map(|l| l.map(f)).collect(),
             },
         };
         Tape {
@@ -213,14 +260,14 @@ impl<T: Real> Tape<T> {
                 }
                 Op::Map { constant, lawful } => {
                     let mut from = 0;
-                    for (n, &end) in next.iter_mut().zip(&constant.ends) {
-                        *n = dot(arithmetic, &constant.entries[from..end], v);
+                    for (n, &Line { lead, end }) in next.iter_mut().zip(&constant.lines) {
+                        *n = dot(arithmetic, lead, &constant.entries[from..end], v);
                         from = end;
                     }
-                    for (law, part) in lawful {
+                    for Lawful { law, part, .. } in lawful {
                         match part {
                             Part::Outer { column, row } => {
-                                let heard = dot(arithmetic, row, v);
+                                let heard = dot(arithmetic, None, row, v);
                                 let answer = arithmetic.answer(law, heard);
                                 for &(i, k) in column {
                                     let n = &mut next[usize::from(i)];
@@ -230,9 +277,10 @@ impl<T: Real> Tape<T> {
                             Part::Matrix(part) => {
                                 let f = arithmetic.law(law);
                                 let mut from = 0;
-                                for (n, &end) in next.iter_mut().zip(&part.ends) {
-                                    if end > from {
-                                        let x = dot(arithmetic, &part.entries[from..end], v);
+                                for (n, &Line { lead, end }) in next.iter_mut().zip(&part.lines) {
+                                    if lead.is_some() || end > from {
+                                        let row = &part.entries[from..end];
+                                        let x = dot(arithmetic, lead, row, v);
                                         *n = arithmetic.add(*n, arithmetic.product(f, x));
                                     }
                                     from = end;
@@ -259,8 +307,23 @@ impl<T: Real> Tape<T> {
     pub(super) fn laws(&self) -> impl Iterator<Item = impl Iterator<Item = &Law<T>>> {
         self.ops.iter().filter_map(|op| match op {
             Op::Scale { .. } => None,
-            Op::Map { lawful, .. } => Some(lawful.iter().map(|(law, _)| law)),
+            Op::Map { lawful, .. } => Some(lawful.iter().map(|l| &l.law)),
         })
+    }
+
+    /// The program with the laws of a chain like its own in all but the numbers of its laws; `None` where a law has
+    /// no counterpart there of the same form.
+    #[must_use]
+    pub fn with_laws_of(mut self, chain: &Chain<T>) -> Option<Self> {
+        for op in &mut self.ops {
+            let Op::Map { lawful, .. } = op else { continue };
+            for Lawful { law, origin, .. } in lawful {
+                if let Some(Origin { place, later }) = origin {
+                    law.renew(chain.law(*place)?, *later)?;
+                }
+            }
+        }
+        Some(self)
     }
 
     /// Taylor coefficients `D^(k)/k!` at `s`, orders 0 to `N - 1`.

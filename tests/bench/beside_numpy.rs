@@ -6,13 +6,15 @@
 //!
 //! makes a virtual environment in the target folder from `tests/yardstick/requirements.txt`, runs
 //! `chains_numpy.py` there on the chains of six and twenty elements and the crate on the networks these
-//! were exported from, and prints a table in Markdown. Before it prints a ratio it checks that both
+//! were exported from, and writes a table into docs/performance.md. Before it prints a ratio it checks that both
 //! find the same modes to `1e-8 |s|`, and as large a part of the map growing.
 //!
 //! NumPy runs on one core; its map is told twice, searched at each point and followed along the delay.
 //! Neither proves anything: its steps along the window's edge are short, not bounded.
 
 mod machine;
+mod page;
+mod python;
 mod rigs;
 
 use std::hint::black_box;
@@ -20,8 +22,10 @@ use std::path::PathBuf;
 use std::process::Command;
 use std::time::Instant;
 
-use machine::{Outcome, environment, file, load, processor, run};
+use machine::{Outcome, file, load, processor};
 use num_complex::Complex64;
+use page::{time, today, write_between};
+use python::{environment, run};
 use rigs::{POINTS, Rig};
 use serde::Deserialize;
 use stillflame::modes::{self, Mode, ModeList, Scan};
@@ -69,21 +73,26 @@ fn main() -> Outcome<()> {
     }
     let python = environment()?;
     let cores = std::thread::available_parallelism()?.get();
-    println!("{}, {cores} cores, {}\n", processor(), load());
-    println!("| network | work | here | NumPy | NumPy / here |");
-    println!("| --- | --- | --- | --- | --- |");
+    let mut page = format!(
+        "Measured {} on {}, {cores} cores, {} before.\n\n| network | work | here | NumPy | NumPy / here |\n\
+         | --- | --- | --- | --- | --- |\n",
+        today(),
+        processor(),
+        load()
+    );
     let mut version = String::new();
     for (name, chain) in CHAINS {
         let rig = Rig::read(name, &format!("tests/yardstick/chains/{chain}.toml"))?;
         let numpy = numpy(&python, chain)?;
-        compare(&rig, &numpy, cores)?;
+        page += &compare(&rig, &numpy, cores)?;
         version = numpy.numpy;
     }
-    println!(
-        "\nNumPy {version}, one core. Best of several runs each. At the end {}.",
+    page += &format!(
+        "\nNumPy {version}, one core. Best of several runs each. At the end {}.\n",
         load()
     );
-    Ok(())
+    println!("{page}");
+    write_between("docs/performance.md", "NumPy", &page)
 }
 
 fn numpy(python: &PathBuf, chain: &str) -> Outcome<Numpy> {
@@ -94,8 +103,8 @@ fn numpy(python: &PathBuf, chain: &str) -> Outcome<Numpy> {
     Ok(serde_json::from_slice(&told)?)
 }
 
-fn compare(rig: &Rig, numpy: &Numpy, cores: usize) -> Outcome<()> {
-    let find = || modes::find(&rig.solved, rig.window, Scan::Whole);
+fn compare(rig: &Rig, numpy: &Numpy, cores: usize) -> Outcome<String> {
+    let find = || modes::find(&rig.solved, rig.window, Scan::UntilCounted);
     same_modes(rig.name, &find(), &numpy.modes)?;
     let map = rig.map(rig.axes(POINTS));
     let tally = map.tally();
@@ -113,16 +122,18 @@ fn compare(rig: &Rig, numpy: &Numpy, cores: usize) -> Outcome<()> {
 
     let tape = &rig.solved.acoustics.characteristic.tape;
     let points = rig.points(1 << 14);
-    let values = best(50, || -> Complex64 {
-        points.iter().map(|&s| tape.value_and_slope(s).1).sum()
+    let mut found = Vec::with_capacity(points.len());
+    let values = best(50, || {
+        found.clear();
+        tape.values_and_slopes(&points, &mut found);
     });
-    row(
+    let mut rows = row(
         rig.name,
         "`D` and `D'` at a point",
         values / points.len() as f64,
         1e-9 * numpy.ns_per_point,
     );
-    row(
+    rows += &row(
         rig.name,
         "mode list",
         best(200, find),
@@ -136,20 +147,20 @@ fn compare(rig: &Rig, numpy: &Numpy, cores: usize) -> Outcome<()> {
         let here = best(5, || pool.install(|| rig.map(rig.axes(POINTS))));
         let work = |how| format!("map, {POINTS} x {POINTS}, {words}; {how}");
         let searched = numpy.s_per_map_solved_at_each_point;
-        row(
+        rows += &row(
             rig.name,
             &work("NumPy searching each point"),
             here,
             searched,
         );
-        row(
+        rows += &row(
             rig.name,
             &work("NumPy following"),
             here,
             numpy.s_per_map_followed,
         );
     }
-    Ok(())
+    Ok(rows)
 }
 
 /// Both lists hold the same modes.
@@ -170,17 +181,11 @@ fn same_modes(name: &str, here: &ModeList, there: &[NumpyMode]) -> Outcome<()> {
     Ok(())
 }
 
-fn row(name: &str, work: &str, here: f64, there: f64) {
-    let time = |t: f64| match t {
-        t if t < 1e-6 => format!("{:.0} ns", t * 1e9),
-        t if t < 1e-3 => format!("{:.0} us", t * 1e6),
-        t if t < 1.0 => format!("{:.2} ms", t * 1e3),
-        t => format!("{t:.2} s"),
-    };
+fn row(name: &str, work: &str, here: f64, there: f64) -> String {
     let ratio = there / here;
-    println!(
-        "| {name} | {work} | {} | {} | {ratio:.2} |",
+    format!(
+        "| {name} | {work} | {} | {} | {ratio:.2} |\n",
         time(here),
         time(there)
-    );
+    )
 }

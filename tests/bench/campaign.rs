@@ -20,16 +20,20 @@
 #[path = "../common/mod.rs"]
 mod common;
 mod machine;
+mod page;
+mod python;
 
 use std::collections::BTreeMap;
 use std::process::Command;
-use std::time::{Instant, SystemTime, UNIX_EPOCH};
+use std::time::Instant;
 
 use common::agreement::{Tally, WINDOW, campaign};
 use common::random::{Drawn, Wish, draw};
 use common::rig::End;
 use common::{brute, subdivision};
-use machine::{Outcome, environment, file, load, processor, run};
+use machine::{Outcome, file, load, processor};
+use page::{time, today, write_between};
+use python::{environment, run};
 use rayon::prelude::*;
 use serde::Deserialize;
 use stillflame::modes::{self, Scan, Window};
@@ -253,7 +257,7 @@ fn main() -> Outcome<()> {
     }
     let faults = faults(&tally, [&halved, &brute, &witness], networks);
     if networks == WHOLE && faults.is_empty() {
-        write(&page)?;
+        write_between("docs/validation.md", "campaign", &page)?;
     }
     if faults.is_empty() {
         return Ok(());
@@ -278,25 +282,6 @@ fn faults(tally: &Tally, ways: [&Way; 3], networks: u64) -> Vec<String> {
     faults
 }
 
-/// Days since the epoch as a date (H. Hinnant, days from civil, from memory).
-fn today() -> String {
-    let now = SystemTime::now().duration_since(UNIX_EPOCH);
-    let days = now.map_or(0, |d| d.as_secs() / 86_400) as i64 + 719_468;
-    let era = days / 146_097;
-    let of_era = days % 146_097;
-    let year = (of_era - of_era / 1460 + of_era / 36_524 - of_era / 146_096) / 365;
-    let of_year = of_era - (365 * year + year / 4 - year / 100);
-    let shifted = (5 * of_year + 2) / 153;
-    let day = of_year - (153 * shifted + 2) / 5 + 1;
-    let month = if shifted < 10 {
-        shifted + 3
-    } else {
-        shifted - 9
-    };
-    let year = era * 400 + year + i64::from(month <= 2);
-    format!("{year}-{month:02}-{day:02}")
-}
-
 fn page(tally: &Tally, seconds: f64, [halved, brute, witness]: [&Way; 3]) -> String {
     let cores = std::thread::available_parallelism().map_or(1, usize::from);
     let mut text = format!(
@@ -309,13 +294,13 @@ fn page(tally: &Tally, seconds: f64, [halved, brute, witness]: [&Way; 3]) -> Str
     );
     let mut row = |name: &str, w: &Way| {
         text += &format!(
-            "| {name} | {} | {} | {} | {} | {} | {:.0} s |\n",
+            "| {name} | {} | {} | {} | {} | {} | {} |\n",
             w.networks,
             w.modes,
             w.wrong.len(),
             w.untold.len(),
             w.missed,
-            w.seconds
+            time(w.seconds)
         );
     };
     let all = Way {
@@ -344,16 +329,4 @@ fn page(tally: &Tally, seconds: f64, [halved, brute, witness]: [&Way; 3]) -> Str
         tally.census.lacks().len()
     );
     text
-}
-
-/// Puts the figures between the marks of the page.
-fn write(figures: &str) -> Outcome<()> {
-    let path = file("docs/validation.md");
-    let text = std::fs::read_to_string(&path)?;
-    let (before, rest) = text.split_once("<!-- campaign -->").ok_or("no mark")?;
-    let (_, after) = rest
-        .split_once("<!-- end of campaign -->")
-        .ok_or("no mark")?;
-    let new = format!("{before}<!-- campaign -->\n\n{figures}\n<!-- end of campaign -->{after}");
-    Ok(std::fs::write(path, new)?)
 }

@@ -1,7 +1,6 @@
-//! The machine a figure was measured on, and the Python beside it.
+//! The machine a figure was measured on.
 
 use std::path::PathBuf;
-use std::process::Command;
 
 /// What may end a measurement.
 pub type Outcome<T> = Result<T, Box<dyn std::error::Error>>;
@@ -9,28 +8,6 @@ pub type Outcome<T> = Result<T, Box<dyn std::error::Error>>;
 /// A file of the repository.
 pub fn file(path: &str) -> PathBuf {
     std::path::Path::new(env!("CARGO_MANIFEST_DIR")).join(path)
-}
-
-/// The Python of a virtual environment with what the script needs.
-pub fn environment() -> Outcome<PathBuf> {
-    let target = std::env::var_os("CARGO_TARGET_DIR").map_or_else(|| file("target"), PathBuf::from);
-    let folder = target.join("yardstick-venv");
-    run(Command::new("python3").args(["-m", "venv"]).arg(&folder))?;
-    let requirements = file("tests/yardstick/requirements.txt");
-    run(Command::new(folder.join("bin/pip"))
-        .args(["install", "--quiet", "--disable-pip-version-check", "-r"])
-        .arg(requirements))?;
-    Ok(folder.join("bin/python"))
-}
-
-/// What a command prints.
-pub fn run(command: &mut Command) -> Outcome<Vec<u8>> {
-    let output = command.output().map_err(|e| format!("{command:?}: {e}"))?;
-    if !output.status.success() {
-        let said = String::from_utf8_lossy(&output.stderr);
-        return Err(format!("{command:?} ended with {}:\n{said}", output.status).into());
-    }
-    Ok(output.stdout)
 }
 
 /// What the machine calls its processor.

@@ -56,17 +56,21 @@ impl Rig {
             .collect()
     }
 
-    /// The delay, 0 to 10 ms, and the gain, 0 to 2, of the main flame.
-    pub fn axes(&self, points: usize) -> (Axis, Axis) {
-        let axis = |key: &str, low, high| Axis {
+    /// An axis over a knob.
+    pub fn axis(&self, key: &str, low: f64, high: f64, points: usize) -> Axis {
+        Axis {
             knob: self.network.layout.knob(key).expect("a knob of the rig"),
             low,
             high,
             points,
-        };
+        }
+    }
+
+    /// The delay, 0 to 10 ms, and the gain, 0 to 2, of the main flame.
+    pub fn axes(&self, points: usize) -> (Axis, Axis) {
         (
-            axis("main_flame.delay", 0.0, 0.01),
-            axis("main_flame.interaction_index", 0.0, 2.0),
+            self.axis("main_flame.delay", 0.0, 0.01, points),
+            self.axis("main_flame.interaction_index", 0.0, 2.0, points),
         )
     }
 

@@ -3,7 +3,7 @@
 use num_complex::Complex64;
 use stillflame::numerics::analytic::{Analytic, Region, Rounding, TAYLOR};
 use stillflame::waves::law::{Delayed, Law};
-use stillflame::waves::tape::{Tape, Writer};
+use stillflame::waves::tape::{Entry, Tape, Writer};
 
 /// Length unit of the plane of `s` in which the polynomials below have coefficients of order one.
 pub const UNIT: f64 = 1000.0;
@@ -112,6 +112,7 @@ pub fn intrinsic(epsilon: f64, n: f64, tau: f64) -> Tape<f64> {
         delay: tau,
         spread: 0.0,
     }]);
-    writer.map(vec![vec![1.0 + epsilon]], vec![(law, vec![vec![1.0]])]);
-    writer.finish().expect("one slot")
+    let entry = Entry::of(law, vec![vec![1.0]]);
+    writer.map(vec![vec![1.0 + epsilon]], vec![entry]);
+    writer.finish().expect("one slot").0
 }

@@ -1,6 +1,6 @@
 //! From the steps of an elimination to a tape.
 
-use super::{MOST_SLOTS, Op, Part, Sparse, Tape};
+use super::{Lawful, MOST_SLOTS, Op, Origin, Part, Sparse, Tape};
 use crate::numerics::analytic::Rounding;
 use crate::numerics::dual::Real;
 use crate::waves::exterior::Dense;
@@ -16,8 +16,29 @@ enum Pending<T> {
     Scale(Vec<(T, Vec<usize>)>),
     Map {
         constant: Dense<T>,
-        lawful: Vec<(Law<T>, Dense<T>)>,
+        lawful: Vec<Entry<T>>,
     },
+}
+
+/// A law and what it is multiplied by.
+pub struct Entry<T> {
+    /// The law.
+    pub law: Law<T>,
+    /// The matrix.
+    pub matrix: Dense<T>,
+    /// Where in the chain the law stands; `None` where the elimination made it.
+    pub origin: Option<Origin<T>>,
+}
+
+impl<T> Entry<T> {
+    /// A law that stands in no chain.
+    pub fn of(law: Law<T>, matrix: Dense<T>) -> Self {
+        Entry {
+            law,
+            matrix,
+            origin: None,
+        }
+    }
 }
 
 impl<T: Real> Default for Writer<T> {
@@ -58,7 +79,7 @@ impl<T: Real> Writer<T> {
     }
 
     /// `v -> (C + sum F_k B_k) v`.
-    pub fn map(&mut self, constant: Dense<T>, lawful: Vec<(Law<T>, Dense<T>)>) {
+    pub fn map(&mut self, constant: Dense<T>, lawful: Vec<Entry<T>>) {
         self.too_wide |= constant.len() > MOST_SLOTS;
         if let Some(Pending::Map {
             constant: c,
@@ -69,15 +90,18 @@ impl<T: Real> Writer<T> {
                 let before = std::mem::take(c);
                 *l = lawful
                     .into_iter()
-                    .map(|(f, b)| (f, matrix_product(&b, &before)))
+                    .map(|entry| Entry {
+                        matrix: matrix_product(&entry.matrix, &before),
+                        ..entry
+                    })
                     .collect();
                 *c = matrix_product(&constant, &before);
                 return;
             }
             if lawful.is_empty() {
                 *c = matrix_product(&constant, c);
-                for (_, b) in l.iter_mut() {
-                    *b = matrix_product(&constant, b);
+                for entry in l.iter_mut() {
+                    entry.matrix = matrix_product(&constant, &entry.matrix);
                 }
                 return;
             }
@@ -85,11 +109,13 @@ impl<T: Real> Writer<T> {
         self.ops.push(Pending::Map { constant, lawful });
     }
 
-    /// The program; `None` where the vector would be longer than [`MOST_SLOTS`].
-    pub fn finish(self) -> Option<Tape<T>> {
+    /// The program, and what its value is to be multiplied by; `None` where the vector would be longer than
+    /// [`MOST_SLOTS`].
+    pub fn finish(mut self) -> Option<(Tape<T>, T)> {
         if self.too_wide {
             return None;
         }
+        let factor = balance(&mut self.ops);
         let mut tape = Tape {
             ops: Vec::with_capacity(self.ops.len()),
             width: 1,
@@ -124,22 +150,74 @@ impl<T: Real> Writer<T> {
                     // times a row is right to two roundings, and is multiplied once more.
                     let of_laws = lawful
                         .iter()
-                        .map(|(f, b)| f.operations() + terms(b) + 3.0)
+                        .map(|e| e.law.operations() + terms(&e.matrix) + 3.0)
                         .fold(0.0, f64::max);
                     tape.rounding.values +=
                         (2.0 + terms(&constant)).max(of_laws) + 1.0 + lawful.len() as f64;
-                    tape.symmetric &= lawful.iter().all(|(f, _)| f.is_symmetric());
+                    tape.symmetric &= lawful.iter().all(|e| e.law.is_symmetric());
                     tape.ops.push(Op::Map {
                         constant: Sparse::of(&constant),
-                        lawful: lawful.into_iter().map(|(f, b)| (f, Part::of(&b))).collect(),
+                        lawful: lawful
+                            .into_iter()
+                            .map(|e| Lawful {
+                                part: Part::of(&e.matrix),
+                                law: e.law,
+                                origin: e.origin,
+                            })
+                            .collect(),
                     });
                 }
             }
         }
         // First-order error analysis: a margin for the terms of second order.
         tape.rounding.values *= 1.1;
-        Some(tape)
+        Some((tape, factor))
     }
+}
+
+/// A constant coefficient below this share of what laws put into its row does not set the row's scale.
+const FAINT: f64 = 1e-8;
+
+/// Gives each slot the scale in which the largest constant coefficient of its row is one: a product less for each row,
+/// and a vector that stays of order one. What the value is then to be multiplied by.
+fn balance<T: Real>(ops: &mut [Pending<T>]) -> T {
+    let one = T::from(1.0);
+    let mut scales = vec![one];
+    for op in ops {
+        let Pending::Map { constant, lawful } = op else {
+            continue;
+        };
+        let matrices = lawful.iter_mut().map(|e| &mut e.matrix);
+        for row in std::iter::once(&mut *constant).chain(matrices).flatten() {
+            for (x, &scale) in row.iter_mut().zip(&scales) {
+                *x = *x * scale;
+            }
+        }
+        let size = |x: &T| x.value().abs();
+        let largest = |row: &Vec<T>| {
+            let by_size = |a: &(usize, &T), b: &(usize, &T)| size(a.1).total_cmp(&size(b.1));
+            row.iter().enumerate().max_by(by_size).map(|(j, &x)| (j, x))
+        };
+        scales.clear();
+        for (i, row) in constant.iter_mut().enumerate() {
+            let by_laws = lawful.iter().filter_map(|e| e.matrix.get(i));
+            let most = by_laws.flatten().map(size).fold(0.0, f64::max);
+            let lead = largest(row).filter(|(_, x)| size(x) > FAINT * most && size(x) > 0.0);
+            let Some((lead, scale)) = lead else {
+                scales.push(one);
+                continue;
+            };
+            let by_laws = lawful.iter_mut().filter_map(|e| e.matrix.get_mut(i));
+            for x in row.iter_mut().chain(by_laws.flatten()) {
+                *x = *x / scale;
+            }
+            if let Some(x) = row.get_mut(lead) {
+                *x = one;
+            }
+            scales.push(scale);
+        }
+    }
+    scales.first().copied().unwrap_or(one)
 }
 
 fn matrix_product<T: Real>(a: &Dense<T>, b: &Dense<T>) -> Dense<T> {
