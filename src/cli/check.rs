@@ -14,8 +14,6 @@ use crate::report::check::Check;
 /// the window in which its modes are searched.
 #[derive(Clone, Debug, Args)]
 #[command(
-    // It writes no files; the option is taken all the same, as of every verb.
-    mut_arg("out", |out| out.hide(true)),
     after_help = "Example:\n  stillflame check networks/swirl_rig.toml --set \"chamber.length = 0.9 m\""
 )]
 pub(super) struct Arguments {

@@ -152,10 +152,10 @@ mod tests {
     fn waves(turns: f64) -> Vec<Vec<Point>> {
         let curve = |k: usize| {
             let at = |i: u32| {
-                let x = f64::from(i) * 0.05;
+                let x = f64::from(i) * 0.3;
                 (x, 100.0 + k as f64 + 90.0 * (turns * x).sin())
             };
-            (0..12_000).map(at).collect()
+            (0..2000).map(at).collect()
         };
         (0..40).map(curve).collect()
     }

@@ -77,7 +77,7 @@ fn modes_too_fast_to_follow_are_told() {
     };
     let found = sweep(
         &rig,
-        &path(&rig, &[("main_flame.delay", 0.0, 0.4)], 2),
+        &path(&rig, &[("main_flame.delay", 0.0, 0.3)], 2),
         window,
     );
     check(&found);
