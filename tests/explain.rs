@@ -333,7 +333,7 @@ fn the_share_of_heat_has_the_sign_of_the_rayleigh_integral() {
         assert_eq!(t.without_flow > 0, stream == Stream::Still);
         assert_eq!(t.turned > 0, stream == Stream::Flowing);
     }
-    figures::count("heat flames", flames);
+    figures::about("heat flames", flames);
     figures::worst("heat", worst);
 }
 

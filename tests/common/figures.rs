@@ -14,6 +14,21 @@ static PAGE: Mutex<()> = Mutex::new(());
 
 /// Holds a count, which is the same everywhere.
 pub fn count(name: &str, value: usize) {
+    let text = grouped(value);
+    hold(name, &text, |told| told == text);
+}
+
+/// Holds a count that rounding moves, to a tenth or five.
+pub fn about(name: &str, value: usize) {
+    let near = |told: &str| {
+        let told = told.replace(',', "").parse::<usize>();
+        told.is_ok_and(|told| told.abs_diff(value) <= 5.max(told / 10))
+    };
+    hold(name, &grouped(value), near);
+}
+
+/// `21,490`.
+fn grouped(value: usize) -> String {
     let digits = value.to_string();
     let mut text = String::new();
     for (i, digit) in digits.chars().enumerate() {
@@ -22,7 +37,7 @@ pub fn count(name: &str, value: usize) {
         }
         text.push(digit);
     }
-    hold(name, &text, |told| told == text);
+    text
 }
 
 /// Holds the largest difference met, told in one digit.

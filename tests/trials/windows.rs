@@ -186,11 +186,11 @@ impl Trial {
             faults.join("\n\n")
         );
         figures::count(&format!("trial {}", self.name), self.networks as usize);
-        figures::count(
+        figures::about(
             &format!("trial {} not proved", self.name),
             self.networks as usize - all.complete,
         );
-        figures::count(&format!("trial {} untold", self.name), all.blind);
+        figures::about(&format!("trial {} untold", self.name), all.blind);
         all
     }
 }
