@@ -19,6 +19,7 @@ mod common;
 use std::time::Instant;
 
 use common::agreement::campaign;
+use common::figures;
 
 fn number(variable: &str, otherwise: u64) -> u64 {
     match std::env::var(variable) {
@@ -51,6 +52,14 @@ fn every_list_agrees_with_the_determinant_of_the_global_matrix() {
         "{} untold by the witness\n{faults}",
         tally.blind.len()
     );
+    if (first, networks) == (0, 2000) {
+        figures::count("campaign networks", tally.networks);
+        figures::count("campaign modes", tally.modes);
+        figures::count("campaign wrong", tally.wrong.len());
+        figures::about("campaign not proved", tally.unproven.len());
+        figures::about("campaign more than the grid", tally.effort.fallbacks);
+        figures::worst("campaign error bound", tally.largest_error);
+    }
     let allowed = (2 * networks as usize).div_ceil(2000);
     assert!(
         tally.unproven.len() <= allowed,

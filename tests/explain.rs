@@ -17,6 +17,7 @@ use stillflame::modes::shapes::Sample;
 use stillflame::modes::{self, Mode, Scan, Solved, Window};
 use stillflame::network::{ElementId, Network};
 
+use common::figures;
 use common::random::{Drawn, Stream, Wish, draw};
 
 fn networks() -> Vec<PathBuf> {
@@ -107,6 +108,8 @@ fn budgets_of_random_networks_add_up() {
     let modes: usize = worst.iter().map(|w| w.0).sum();
     let most = worst.iter().map(|w| w.1).fold(0.0, f64::max);
     println!("{modes} modes, worst {most:.1e} of what is allowed");
+    figures::count("budget modes", modes);
+    figures::worst("budget", most * 1e-8);
     assert!(modes > 3000);
 }
 
@@ -315,8 +318,11 @@ fn the_share_of_heat_has_the_sign_of_the_rayleigh_integral() {
             worst: a.worst.max(b.worst),
         })
     };
+    let (mut flames, mut worst) = (0, 0.0f64);
     for (stream, first) in [(Stream::Flowing, 8_100_000), (Stream::Still, 8_200_000)] {
         let t = tally(stream, first);
+        flames += t.told;
+        worst = worst.max(t.worst);
         println!(
             "{stream:?}: {} flames in modes, {} skipped, {} where p' alone has the other sign, off by {:.1e} at most",
             t.told, t.skipped, t.turned, t.worst
@@ -327,6 +333,8 @@ fn the_share_of_heat_has_the_sign_of_the_rayleigh_integral() {
         assert_eq!(t.without_flow > 0, stream == Stream::Still);
         assert_eq!(t.turned > 0, stream == Stream::Flowing);
     }
+    figures::about("heat flames", flames);
+    figures::worst("heat", worst);
 }
 
 #[test]

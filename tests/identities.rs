@@ -16,6 +16,7 @@ use stillflame::numerics::analytic::{Analytic, Region};
 use stillflame::numerics::isolate;
 
 use common::census::Census;
+use common::figures;
 use common::random::{Drawn, Ends, Stream, Wish, draw};
 
 const WINDOW: Window = Window {
@@ -33,8 +34,9 @@ fn any() -> Wish {
 }
 
 /// Tries an identity on the networks of `count` seeds. It gives a figure that stays below its tolerance;
-/// the largest is told.
+/// the largest is told, and held against the page of figures by name.
 fn on_networks(
+    name: &str,
     count: u64,
     wish: &Wish,
     identity: impl Fn(&Drawn) -> Result<f64, String> + Sync,
@@ -55,6 +57,8 @@ fn on_networks(
     );
     let worst = outcome.into_iter().flatten().fold(0.0, f64::max);
     println!("{count} networks, worst {worst:.1e}");
+    figures::count(&format!("{name} over"), count as usize);
+    figures::worst(name, worst);
     worst
 }
 
@@ -104,7 +108,7 @@ fn networks_are_those_of_their_seeds() {
 /// A cut through a duct is no element: it moves no mode.
 #[test]
 fn a_split_duct_changes_no_mode() {
-    on_networks(250, &any(), |drawn| {
+    on_networks("split", 250, &any(), |drawn| {
         let mut rng = fastrand::Rng::with_seed(drawn.seed);
         let ducts = drawn.rig.ducts();
         let at = ducts[rng.usize(0..ducts.len())];
@@ -132,7 +136,7 @@ fn without_complex_coefficients_conjugates_are_conjugate() {
         ends: Ends::Real,
         ..any()
     };
-    on_networks(400, &wish, |drawn| {
+    on_networks("conjugates", 400, &wish, |drawn| {
         let tape = &drawn.solved.acoustics.characteristic.tape;
         if !tape.is_symmetric() {
             return Err("not symmetric".to_owned());
@@ -159,7 +163,7 @@ fn random_s(rng: &mut fastrand::Rng) -> Complex64 {
 /// `det A / D` is the factor the elimination declares, at any `s`: no zero is lost, none is added.
 #[test]
 fn the_determinant_of_the_global_matrix_is_the_declared_multiple() {
-    on_networks(600, &any(), |drawn| {
+    on_networks("determinant", 600, &any(), |drawn| {
         let acoustics = &drawn.solved.acoustics;
         let c = &acoustics.characteristic;
         let mut rng = fastrand::Rng::with_seed(drawn.seed);
@@ -187,7 +191,7 @@ fn the_mean_flow_conserves_mass_and_enthalpy() {
         stream: Stream::Flowing,
         ..any()
     };
-    on_networks(600, &wish, |drawn| {
+    on_networks("conserved", 600, &wish, |drawn| {
         let mean = &drawn.solved.mean;
         let first = &mean.states[0];
         let flow = |s: &State<f64>| {
@@ -239,7 +243,7 @@ fn a_passive_network_at_rest_never_grows() {
         ends: Ends::Passive,
         ..any()
     };
-    let grown = on_networks(400, &wish, |drawn| {
+    let grown = on_networks("passive", 400, &wish, |drawn| {
         let list = list(&drawn.solved)?;
         let growth = |m: &Mode| m.growth() / size(m.s);
         let fastest = list.modes.iter().map(growth).fold(0.0, f64::max);
@@ -258,7 +262,7 @@ fn modes_go_linearly_to_those_of_still_gas() {
         carried: false,
         ..any()
     };
-    on_networks(250, &wish, |drawn| {
+    on_networks("still", 250, &wish, |drawn| {
         let Kind::Feed(feed) = &drawn.network.layout.elements[0].kind else {
             return Err("no feed".to_owned());
         };
@@ -301,7 +305,7 @@ fn modes_go_linearly_to_those_of_still_gas() {
 /// ```
 #[test]
 fn acoustic_power_balances_in_every_duct() {
-    on_networks(250, &any(), |drawn| {
+    on_networks("power", 250, &any(), |drawn| {
         let network = &drawn.network;
         let mut worst = 0.0f64;
         for mode in list(&drawn.solved)?.modes {

@@ -5,6 +5,8 @@
 //! - `tests/data/witness_modes.json`: invented random networks solved by the independent global-matrix
 //!   solver in `tests/yardstick/` with mpmath.
 
+mod common;
+
 use std::path::{Path, PathBuf};
 
 use num_complex::Complex64;
@@ -12,6 +14,8 @@ use serde_json::Value;
 use stillflame::gas::State;
 use stillflame::modes::{self, ModeList, Scan, Window};
 use stillflame::{input, meanflow};
+
+use common::figures;
 
 /// Demanded of every eigenvalue, relative to its modulus.
 const TOLERANCE: f64 = 1e-8;
@@ -196,5 +200,7 @@ fn the_mean_flow_of_fifty_networks() {
         }
     }
     println!("{stations} stations, largest difference {worst:.1e}");
+    figures::count("stations over", stations);
+    figures::worst("stations", worst);
     assert!(stations > 500);
 }

@@ -11,7 +11,7 @@ use crate::modes::{self, Mode, ModeList, Scan, validity};
 use crate::network::Network;
 use crate::problems::Problem;
 use crate::report::map::{Followed, MapReport};
-use crate::studies::{branch, cautions, map};
+use crate::studies::{beyond, branch, cautions, map, regions};
 
 /// Draw a stability map over two numbers of the network
 ///
@@ -109,10 +109,17 @@ pub(super) fn answer(arguments: &Arguments, mut case: Case) -> Result<Answer, Fa
     let mut warnings = known;
     warnings.extend(case.placed(more));
 
+    let regions = regions::regions(network, &solved.mean, &map);
+    let beyond = match followed {
+        None => beyond::beyond(network, &solved.mean, &map),
+        Some(_) => Vec::new(),
+    };
     let report = MapReport {
         heading: case.heading(),
         network,
         map: &map,
+        regions: &regions,
+        beyond: &beyond,
         design: &design,
         design_outside: &design_outside,
         followed,

@@ -45,7 +45,19 @@ impl Curves {
                 .map(|line| simplify(&sheet.place_all(line), 0.07))
                 .collect::<Vec<_>>()
         };
-        let neutral = trace(field, 0.0, &|_, _| false);
+        let whole: Vec<Vec<Option<f64>>> = map
+            .values
+            .iter()
+            .enumerate()
+            .map(|(j, row)| {
+                let beyond = map.beyond.get(j);
+                let beyond = |i: usize| beyond.and_then(|b| b.get(i)).copied().flatten();
+                let values = row.iter().enumerate();
+                values.map(|(i, v)| v.or_else(|| beyond(i))).collect()
+            })
+            .collect();
+        let whole = Field::new(&whole).cut(&map.cuts.seams);
+        let neutral = trace(&whole, 0.0, &|_, _| false);
         let mut thin = Vec::new();
         for level in limit.levels().into_iter().filter(|&l| l != 0.0 && !steps) {
             let lines = trace(field, level, &|_, _| false);

@@ -35,8 +35,7 @@ impl<'a> Field<'a> {
 
     /// Whether each sample stands for its half of the axis, along rows and along columns.
     pub fn halves(&self) -> (bool, bool) {
-        let whole = self.seams.is_empty();
-        (whole && self.columns == 2, whole && self.height() == 2)
+        (self.columns == 2, self.height() == 2)
     }
 
     /// The same field cut along seams: beside one a value comes from its own side alone.
@@ -95,9 +94,12 @@ impl<'a> Field<'a> {
     pub fn at(&self, u: f64, v: f64) -> Option<f64> {
         let own = |x: f64, half| if half { x.round() } else { x };
         let halves = self.halves();
-        let (u, v) = (own(u, halves.0), own(v, halves.1));
+        // Beside a seam a value is of its own side, wherever between the columns the seam lies.
+        let cell = split(v, self.height()).0;
+        let beside = self.seams(0, cell).any(|seam| seam.at(v).is_some());
+        let u = own(u, halves.0 && !beside);
         let (column, s) = split(u, self.columns);
-        let (row, t) = split(v, self.height());
+        let (row, t) = split(own(v, halves.1), self.height());
         if self.columns < 2 || self.height() < 2 {
             return self.along_line(column, s, row, t);
         }
@@ -105,7 +107,7 @@ impl<'a> Field<'a> {
             return self.beside_hole(column, s, row, t);
         }
         if self.seams(column, row).next().is_some() {
-            return self.beside_seam(column, s, row, v);
+            return self.beside_seam((column, s), (row, t), v);
         }
         let line = |r: usize| -> [f64; 4] {
             let p1 = self.sample(column, r);
@@ -146,8 +148,12 @@ impl<'a> Field<'a> {
 
     /// In a cell that a seam touches, whose corners are known: along each column the field goes on; where the seam
     /// passes, it is continued straight from the columns on the same side.
-    fn beside_seam(&self, column: usize, s: f64, row: usize, v: f64) -> Option<f64> {
-        let t = v - row as f64;
+    fn beside_seam(
+        &self,
+        (column, s): (usize, f64),
+        (row, t): (usize, f64),
+        v: f64,
+    ) -> Option<f64> {
         let along = |c: usize| {
             let below = row.checked_sub(1).and_then(|r| self.sample(c, r));
             let above = self.sample(c, row + 2);
@@ -225,4 +231,41 @@ fn cubic([p0, p1, p2, p3]: [f64; 4], t: f64) -> f64 {
     let value = p1 + t * (m1 + t * (3.0 * rise - 2.0 * m1 - m2 + t * (m1 + m2 - 2.0 * rise)));
     // Monotone up to rounding.
     value.clamp(p1.min(p2), p1.max(p2))
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// Two samples say nothing of what lies between them, cut apart or not.
+    #[test]
+    fn two_by_two_samples_with_a_cut_have_no_values_but_their_own() {
+        let rows = [vec![Some(1.0), Some(20.0)], vec![Some(300.0), Some(4000.0)]];
+        let seam = |from: (f64, f64), to: (f64, f64)| Seam {
+            column: 0,
+            from,
+            to,
+        };
+        for seams in [
+            vec![seam((0.3, 0.0), (0.3, 1.0))],
+            vec![seam((0.3, 0.0), (0.7, 0.4))],
+            vec![seam((0.8, 0.6), (0.8, 1.0))],
+            vec![],
+        ] {
+            let field = Field::new(&rows).cut(&seams);
+            for k in 0..=40 {
+                for l in 0..=40 {
+                    let (u, v) = (f64::from(k) / 40.0, f64::from(l) / 40.0);
+                    let value = field.at(u, v).unwrap();
+                    let row = &rows[v.round() as usize];
+                    let border = seams.iter().find_map(|s| s.at(v)).unwrap_or(0.5);
+                    assert_eq!(
+                        Some(value),
+                        row[usize::from(u >= border)],
+                        "at {u}, {v}: {seams:?}"
+                    );
+                }
+            }
+        }
+    }
 }

@@ -85,18 +85,22 @@ pub(super) fn y_axis(svg: &mut Svg, plot: Rect, axis: &Axis, ticks: &[Tick]) {
         let at = (plot.left - TICK - 4.0, t.at + 0.36 * TICK_SIZE);
         svg.text(&Text::new(at, &t.label, TICK_SIZE).anchor(Anchor::End));
     }
-    let caption = fit(
-        &axis.caption(),
-        Weight::Regular,
-        CAPTION_SIZE,
-        plot.height() + 30.0,
-    );
+    let room = plot.height() + 30.0;
+    let (caption, size) = shrunk(&axis.caption(), room);
     let at = (MARGIN + CAPTION_SIZE - 1.0, (plot.top + plot.bottom) / 2.0);
     svg.text(
-        &Text::new(at, &caption, CAPTION_SIZE)
+        &Text::new(at, &caption, size)
             .anchor(Anchor::Middle)
             .turn(-90.0),
     );
+}
+
+/// A caption set smaller where it is too long, and cut only where that does not do; with its size.
+fn shrunk(caption: &str, room: f64) -> (String, f64) {
+    const LEAST: f64 = 6.5;
+    let full = width(caption, Weight::Regular, CAPTION_SIZE);
+    let size = (CAPTION_SIZE * room / full).clamp(LEAST, CAPTION_SIZE);
+    (fit(caption, Weight::Regular, 0.999 * size, room), size)
 }
 
 /// Ticks, labels and caption of the x axis, below the plot; gives the y below all of them.
@@ -111,14 +115,9 @@ pub(super) fn x_axis(svg: &mut Svg, plot: Rect, axis: &Axis, ticks: &[Tick]) -> 
         svg.text(&Text::new((t.at, base), &t.label, TICK_SIZE).anchor(Anchor::Middle));
     }
     let y = base + 8.0 + CAPTION_SIZE;
-    let caption = fit(
-        &axis.caption(),
-        Weight::Regular,
-        CAPTION_SIZE,
-        plot.width() + 60.0,
-    );
+    let (caption, size) = shrunk(&axis.caption(), plot.width() + 60.0);
     let at = ((plot.left + plot.right) / 2.0, y);
-    svg.text(&Text::new(at, &caption, CAPTION_SIZE).anchor(Anchor::Middle));
+    svg.text(&Text::new(at, &caption, size).anchor(Anchor::Middle));
     y + 6.0
 }
 
@@ -137,6 +136,8 @@ pub(super) enum Swatch {
     Line(Vec<String>),
     /// Attributes of rectangles drawn over each other.
     Patch(Vec<String>),
+    /// Attributes of three dots.
+    Dots(String),
     /// A mark.
     Mark(Mark),
 }
@@ -166,6 +167,10 @@ pub(super) fn legend(svg: &mut Svg, entries: &[Entry], left: f64, top: f64, room
                 for style in styles {
                     svg.line((x, middle), (x + SWATCH, middle), style);
                 }
+            }
+            Swatch::Dots(style) => {
+                let data = [6.0, 12.0, 18.0].map(|d| format!("M{} {}h0", px(x + d), px(middle)));
+                svg.path(&data.concat(), style);
             }
             Swatch::Mark(mark) => mark.draw(svg, (x + SWATCH / 2.0, middle), INK),
             Swatch::Patch(styles) => {

@@ -3,12 +3,12 @@
 use super::DrawError;
 use super::axis::{Axis, Span, check_samples};
 use super::colour::{diverging, hex};
-use super::contour::simplify;
 use super::frame::{self, Entry, MARGIN, Swatch, WIDTH};
+use super::light;
 use super::mark::{Mark, Spot};
 use super::sheet::ends;
-use super::style::{CROWD, crowd, curve_colour, curve_style, hatch_style, patterns};
-use super::svg::{Anchor, GREY, INK, Point, Rect, Svg, Text, open_path, px};
+use super::style::{CROWD, DOTS, TOPS, crowd, curve_colour, curve_style, hatch_style, patterns};
+use super::svg::{Anchor, GREY, INK, Point, Rect, Svg, Text, px};
 use super::tags::{self, Tagged};
 use super::text::{Weight, fit, tidy};
 
@@ -47,6 +47,10 @@ pub struct Panel {
     pub shade: Option<Shade>,
     /// Curves without a name of their own, below the others.
     pub crowd: Vec<Vec<(f64, f64)>>,
+    /// Single points, not joined to others.
+    pub dots: Vec<(f64, f64)>,
+    /// Those of them that lead, drawn over the others.
+    pub tops: Vec<(f64, f64)>,
     /// Marks on it.
     pub spots: Vec<Spot>,
 }
@@ -76,9 +80,17 @@ pub struct LineFigure {
     pub marks: Vec<(Mark, String)>,
     /// Legend text of curves without a name of their own.
     pub crowd: String,
+    /// Legend texts of single points, and of those that lead.
+    pub dots: (String, String),
 }
 
 const GAP: f64 = 14.0;
+/// Bytes of all curves and single points, the share of curves that have a name, and of points that lead; and
+/// marks. With its fonts and words the figure stays below 100 kB.
+const BYTES: usize = 44_000;
+const NAMED: f64 = 0.4;
+const LEADING: f64 = 0.1;
+const MOST_MARKS: usize = 100;
 /// Space right of the plot, for the words beside tinted half-planes.
 pub(super) const RIGHT: f64 = 20.0;
 const MARK: &str = "fill=\"none\" stroke=\"#1b1e23\" stroke-dasharray=\"1.5 2\"";
@@ -137,9 +149,37 @@ pub fn render(figure: &LineFigure) -> Result<String, DrawError> {
         }
         let place = |&(u, v): &(f64, f64)| (x.at(u), y.at(v));
         let unnamed = panel.crowd.iter();
-        crowd(&mut svg, unnamed.map(|c| c.iter().map(place).collect()));
-        for series in &panel.series {
-            curve(&mut svg, series, figure, &x, &y);
+        let bytes = BYTES / figure.panels.len();
+        let share = |s: f64| (s * bytes as f64) as usize;
+        let most = share(NAMED) / panel.series.len().max(1);
+        let drawn: Vec<[String; 2]> = panel
+            .series
+            .iter()
+            .map(|s| curve(s, figure, (&x, &y), most))
+            .collect();
+        // What those leave is for the rest: half of it, where there is both.
+        let named: usize = drawn.iter().flatten().map(String::len).sum();
+        let parts = if panel.dots.is_empty() { 1 } else { 2 };
+        let rest = bytes.saturating_sub(named + share(LEADING)) / parts;
+        let lines: Vec<Vec<Point>> = unnamed.map(|c| c.iter().map(place).collect()).collect();
+        crowd(&mut svg, &lines, rest);
+        let most = [
+            (&panel.dots, DOTS, rest),
+            (&panel.tops, TOPS, share(LEADING)),
+        ];
+        for (points, look, most) in most {
+            let places: Vec<Point> = points.iter().map(place).collect();
+            light::dots(&mut svg, &places, look, most);
+        }
+        for ([lines, dots], series) in drawn.iter().zip(&panel.series) {
+            let style = curve_style(series.style);
+            svg.path(lines, &style);
+            let solid = style.split(" stroke-dasharray").next().unwrap_or_default();
+            let dot = solid.replace(
+                "stroke-width=\"1.9\"",
+                "stroke-width=\"4\" stroke-linecap=\"round\"",
+            );
+            svg.path(dots, &dot);
         }
         names_and_marks(&mut svg, panel, figure, r, (&x, &y));
         frame::y_axis(&mut svg, r, &panel.y, &y_ticks);
@@ -171,7 +211,8 @@ fn check(figure: &LineFigure) -> Result<(), DrawError> {
         fits("certified".into(), figure.certified.len())?;
     }
     for (row, panel) in figure.panels.iter().enumerate() {
-        for (column, &(u, v)) in panel.crowd.iter().flatten().enumerate() {
+        let single = panel.dots.iter().chain(&panel.tops);
+        for (column, &(u, v)) in panel.crowd.iter().flatten().chain(single).enumerate() {
             if let Some(value) = [u, v].into_iter().find(|x| !x.is_finite()) {
                 return Err(DrawError::NotFinite {
                     what: "a curve",
@@ -211,7 +252,8 @@ fn y_range(panel: &Panel) -> (f64, f64) {
         .series
         .iter()
         .flat_map(|s| s.values.iter().flatten().copied())
-        .chain(panel.crowd.iter().flatten().map(|p| p.1));
+        .chain(panel.crowd.iter().flatten().map(|p| p.1))
+        .chain(panel.dots.iter().chain(&panel.tops).map(|p| p.1));
     let logarithmic = panel.y.scale == super::Scale::Logarithmic;
     let edge = panel
         .shade
@@ -312,11 +354,10 @@ fn runs(series: &Series, figure: &LineFigure, x: &Span, y: &Span) -> Vec<Vec<Poi
 fn names_and_marks(svg: &mut Svg, panel: &Panel, figure: &LineFigure, r: Rect, at: (&Span, &Span)) {
     let (x, y) = at;
     let mut taken = Vec::new();
-    for spot in panel
-        .spots
-        .iter()
-        .filter(|s| x.covers(s.x) && y.covers(s.y))
-    {
+    let seen = panel.spots.iter();
+    let seen = seen.filter(|s| x.covers(s.x) && y.covers(s.y));
+    let most = MOST_MARKS / figure.panels.len();
+    for spot in light::spots(seen, most, |s| (x.at(s.x), y.at(s.y))) {
         let place = (x.at(spot.x), y.at(spot.y));
         let colour = spot.style.map_or(INK.to_owned(), curve_colour);
         spot.mark.draw(svg, place, &colour);
@@ -343,24 +384,13 @@ fn names_and_marks(svg: &mut Svg, panel: &Panel, figure: &LineFigure, r: Rect, a
     tags::write(svg, r, &tagged, &mut taken);
 }
 
-/// Draws the stretches of a curve between its gaps; a stretch of one sample is a dot.
-fn curve(svg: &mut Svg, series: &Series, figure: &LineFigure, x: &Span, y: &Span) {
-    let style = curve_style(series.style);
-    let (mut data, mut dots) = (String::new(), String::new());
-    for run in runs(series, figure, x, y) {
-        match run.as_slice() {
-            [] => {}
-            [(u, v)] => dots += &format!("M{} {}h.1", px(*u), px(*v)),
-            many => data += &open_path(&simplify(many, 0.05)),
-        }
-    }
-    svg.path(&data, &style);
-    let solid = style.split(" stroke-dasharray").next().unwrap_or_default();
-    let dot = solid.replace(
-        "stroke-width=\"1.9\"",
-        "stroke-width=\"4\" stroke-linecap=\"round\"",
-    );
-    svg.path(&dots, &dot);
+/// Path data of the stretches of a curve between its gaps, of no more than `most` bytes, and of stretches of one sample.
+fn curve(series: &Series, figure: &LineFigure, at: (&Span, &Span), most: usize) -> [String; 2] {
+    let runs = runs(series, figure, at.0, at.1);
+    let (single, long): (Vec<_>, Vec<_>) = runs.into_iter().partition(|run| run.len() == 1);
+    let dot = |(u, v): &Point| format!("M{} {}h.1", px(*u), px(*v));
+    let dots = single.iter().flatten().map(dot).collect();
+    [light::curves(&long, 0.05, most), dots]
 }
 
 fn legend_entries(figure: &LineFigure, mark: Option<&(f64, String)>) -> Vec<Entry> {
@@ -382,6 +412,19 @@ fn legend_entries(figure: &LineFigure, mark: Option<&(f64, String)>) -> Vec<Entr
             swatch: Swatch::Line(vec![CROWD.into()]),
             label: figure.crowd.clone(),
         });
+    }
+    let panels = || figure.panels.iter();
+    let (dots, tops) = &figure.dots;
+    for (any, (colour, width), label) in [
+        (panels().any(|p| !p.tops.is_empty()), TOPS, tops),
+        (panels().any(|p| !p.dots.is_empty()), DOTS, dots),
+    ] {
+        if any {
+            entries.push(Entry {
+                swatch: Swatch::Dots(light::dot_style(colour, width)),
+                label: label.clone(),
+            });
+        }
     }
     for (mark, label) in &figure.marks {
         let drawn = figure.panels.iter().flat_map(|p| &p.spots);

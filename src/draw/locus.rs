@@ -5,10 +5,11 @@ use super::axis::{Axis, Span};
 use super::contour::simplify;
 use super::frame::{self, Entry, MARGIN, Swatch, WIDTH};
 use super::label::{Measured, beside};
+use super::light;
 use super::lines::{RIGHT, Shade, tint, with_room};
 use super::mark::{Mark, Spot};
-use super::style::{CROWD, crowd, curve_colour, curve_style};
-use super::svg::{GREY, INK, Point, Rect, Svg, Text, closed_path, open_path};
+use super::style::{CROWD, DOTS, crowd, curve_colour, curve_style};
+use super::svg::{GREY, INK, Point, Rect, Svg, Text, closed_path};
 use super::tags::{self, Tagged};
 use super::text::{CAP_HEIGHT, Weight, tidy, width};
 
@@ -46,6 +47,8 @@ pub struct Locus {
     pub trails: Vec<Trail>,
     /// Trails without a name of their own, (x, y), and the legend text for all of them.
     pub crowd: (Vec<Vec<(f64, f64)>>, String),
+    /// Single points, not joined to others, (x, y), and the legend text for all of them.
+    pub dots: (Vec<(f64, f64)>, String),
     /// Marks, with text beside them where they have a label.
     pub spots: Vec<Spot>,
     /// Legend text of the marks.
@@ -53,8 +56,12 @@ pub struct Locus {
 }
 
 const HEIGHT: f64 = 430.0;
-/// Distance between arrows, px.
+/// Distance between arrows, px; more where there would be more than so many.
 const BETWEEN_ARROWS: f64 = 90.0;
+const MOST_ARROWS: f64 = 110.0;
+/// Bytes of the trails, of those without a name, and of single points; and marks. With its fonts and words the figure stays
+/// below 100 kB.
+const SHARES: (usize, usize, usize, usize) = (15_000, 12_000, 8000, 60);
 const LABEL_SIZE: f64 = 9.5;
 
 /// Draws the figure.
@@ -69,6 +76,7 @@ pub fn render(figure: &Locus) -> Result<String, DrawError> {
     let named = trails.flat_map(|t| t.runs.iter().flatten().map(|p| (p.1, p.2)));
     let points: Vec<(f64, f64)> = named
         .chain(figure.crowd.0.iter().flatten().copied())
+        .chain(figure.dots.0.iter().copied())
         .collect();
     let (x0, x1) = range(points.iter().map(|p| p.0));
     let edge = figure.shade.as_ref().map(|s| s.from);
@@ -91,7 +99,10 @@ pub fn render(figure: &Locus) -> Result<String, DrawError> {
     frame::grid(&mut svg, plot, &x_ticks, &y_ticks, 0.11);
     let unnamed = figure.crowd.0.iter();
     let on = |&(u, v): &(f64, f64)| (x.at(u), y.at(v));
-    crowd(&mut svg, unnamed.map(|c| c.iter().map(on).collect()));
+    let unnamed: Vec<Vec<Point>> = unnamed.map(|c| c.iter().map(on).collect()).collect();
+    crowd(&mut svg, &unnamed, SHARES.1);
+    let single: Vec<Point> = figure.dots.0.iter().map(on).collect();
+    light::dots(&mut svg, &single, DOTS, SHARES.2);
     let place = |&(_, u, v): &(f64, f64, f64)| (x.at(u), y.at(v));
     let tagged: Vec<Tagged> = figure
         .trails
@@ -107,7 +118,7 @@ pub fn render(figure: &Locus) -> Result<String, DrawError> {
         })
         .collect();
     for (trail, drawn) in figure.trails.iter().zip(&tagged) {
-        let data: String = drawn.runs.iter().map(|run| open_path(run)).collect();
+        let data = light::curves(&drawn.runs, 0.05, SHARES.0 / tagged.len());
         svg.path(&data, &curve_style(trail.style));
     }
     let mut taken: Vec<Rect> = Vec::new();
@@ -115,8 +126,11 @@ pub fn render(figure: &Locus) -> Result<String, DrawError> {
     let ticks = Span::new(*low, *high, parameter.scale, *low, *high);
     let steps = Span::new(*low, *high, parameter.scale, 0.0, 640.0).ticks(80.0);
     let at_ticks: Vec<f64> = steps.iter().map(|t| t.at / 640.0).collect();
+    let runs = tagged.iter().flat_map(|t| &t.runs);
+    let length: f64 = runs.map(|run| Measured::new(run).total()).sum();
+    let between = BETWEEN_ARROWS.max(length / MOST_ARROWS);
     for (trail, drawn) in figure.trails.iter().zip(&tagged) {
-        arrows(&mut svg, drawn, &mut taken);
+        arrows(&mut svg, drawn, between, &mut taken);
         let fraction = |p: f64| (ticks.at(p) - low) / (high - low);
         for run in &trail.runs {
             for tick in &at_ticks {
@@ -128,14 +142,23 @@ pub fn render(figure: &Locus) -> Result<String, DrawError> {
             }
         }
     }
-    for spot in &figure.spots {
-        let at = (x.at(spot.x), y.at(spot.y));
+    let on = |s: &Spot| (x.at(s.x), y.at(s.y));
+    let spots = light::spots(figure.spots.iter(), SHARES.3, on);
+    for spot in &spots {
+        let at = on(spot);
         let colour = spot.style.map_or(INK.to_owned(), curve_colour);
         spot.mark.draw(&mut svg, at, &colour);
         taken.push(around(at, 5.0));
     }
     tags::write(&mut svg, plot, &tagged, &mut taken);
-    labels(&mut svg, figure, (&x, &y), plot, &tagged, &mut taken);
+    labels(
+        &mut svg,
+        &spots,
+        (&x, &y),
+        (plot, edge),
+        &tagged,
+        &mut taken,
+    );
     frame::y_axis(&mut svg, plot, &figure.y, &y_ticks);
     let below = frame::x_axis(&mut svg, plot, &figure.x, &x_ticks);
     let labels: Vec<String> = steps.into_iter().map(|t| t.label).collect();
@@ -146,7 +169,8 @@ pub fn render(figure: &Locus) -> Result<String, DrawError> {
 }
 
 fn check(figure: &Locus) -> Result<(), DrawError> {
-    let unnamed = figure.crowd.0.iter().flatten().enumerate();
+    let unnamed = figure.crowd.0.iter().flatten().chain(&figure.dots.0);
+    let unnamed = unnamed.enumerate();
     for (column, &(u, v)) in unnamed {
         if let Some(value) = [u, v].into_iter().find(|x| !x.is_finite()) {
             return Err(DrawError::NotFinite {
@@ -212,7 +236,7 @@ fn on_run(run: &[(f64, f64, f64)], f: impl Fn(f64) -> f64) -> Option<(f64, f64)>
 }
 
 /// Arrow heads along the trail, the way the parameter grows.
-fn arrows(svg: &mut Svg, trail: &Tagged, taken: &mut Vec<Rect>) {
+fn arrows(svg: &mut Svg, trail: &Tagged, between: f64, taken: &mut Vec<Rect>) {
     let mut data = String::new();
     for run in &trail.runs {
         let line = Measured::new(run);
@@ -220,7 +244,7 @@ fn arrows(svg: &mut Svg, trail: &Tagged, taken: &mut Vec<Rect>) {
         if total < 24.0 {
             continue;
         }
-        let count = (total / BETWEEN_ARROWS).round().max(1.0);
+        let count = (total / between).round().max(1.0);
         for k in 0..count as usize {
             let s = total * (k as f64 + 0.5) / count;
             let (a, b) = (line.at(s - 4.0), line.at(s + 4.0));
@@ -247,13 +271,13 @@ fn arrows(svg: &mut Svg, trail: &Tagged, taken: &mut Vec<Rect>) {
 /// The labels of marks, beside them where the least lies under.
 fn labels(
     svg: &mut Svg,
-    figure: &Locus,
+    spots: &[&Spot],
     (x, y): (&Span, &Span),
-    plot: Rect,
+    (plot, edge): (Rect, Option<f64>),
     trails: &[Tagged],
     taken: &mut Vec<Rect>,
 ) {
-    let edge = figure.shade.as_ref().map(|s| y.at(s.from));
+    let edge = edge.map(|at| y.at(at));
     let crowd: Vec<Point> = trails
         .iter()
         .flat_map(|t| &t.runs)
@@ -263,7 +287,7 @@ fn labels(
             (0..=n).map(|k| line.at(k as f64 * 3.0)).collect::<Vec<_>>()
         })
         .collect();
-    for spot in figure.spots.iter().filter(|s| !s.label.is_empty()) {
+    for spot in spots.iter().filter(|s| !s.label.is_empty()) {
         let label = tidy(&spot.label);
         let size = (width(&label, Weight::Regular, LABEL_SIZE), LABEL_SIZE);
         let struck = |r: Rect| edge.is_some_and(|at| r.top < at && at < r.bottom);
@@ -302,6 +326,13 @@ fn legend_entries(figure: &Locus, ticks: &[String]) -> Vec<Entry> {
         entries.push(Entry {
             swatch: Swatch::Line(vec![CROWD.into()]),
             label: figure.crowd.1.clone(),
+        });
+    }
+    if !figure.dots.0.is_empty() {
+        let (colour, width) = DOTS;
+        entries.push(Entry {
+            swatch: Swatch::Dots(light::dot_style(colour, width)),
+            label: figure.dots.1.clone(),
         });
     }
     let axis = &figure.parameter.0;

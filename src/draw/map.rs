@@ -99,6 +99,8 @@ pub struct StabilityMap {
     pub quantity: Quantity,
     /// One row for each of `y_values`, one entry for each of `x_values`.
     pub values: Vec<Vec<Option<f64>>>,
+    /// Values where nothing is coloured, for the zero curve alone; same shape as `values`, or empty.
+    pub beyond: Vec<Vec<Option<f64>>>,
     /// Whether the answer at a point is trusted; same shape as `values`.
     pub certified: Vec<Vec<bool>>,
     /// Whether a value was sought at a point; same shape as `values`, or empty where it was at all.
@@ -255,6 +257,7 @@ fn spread_single(map: &StabilityMap) -> StabilityMap {
     doubled(&mut map.values, column, row);
     doubled(&mut map.certified, column, row);
     doubled(&mut map.reached, column, row);
+    doubled(&mut map.beyond, column, row);
     if let Some(second) = &mut map.frequency {
         doubled(&mut second.values, column, row);
     }
@@ -270,6 +273,10 @@ fn check(map: &StabilityMap) -> Result<(), DrawError> {
     check_shape("certified", &map.certified, nx, ny)?;
     if !map.reached.is_empty() {
         check_shape("reached", &map.reached, nx, ny)?;
+    }
+    if !map.beyond.is_empty() {
+        check_shape("beyond", &map.beyond, nx, ny)?;
+        check_finite("beyond", &map.beyond)?;
     }
     check_finite("values", &map.values)?;
     if let Some(frequency) = &map.frequency {

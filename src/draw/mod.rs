@@ -10,6 +10,7 @@
 //!   raster, contour     a sampled field as an embedded image, its level lines
 //!   region, label       outlines of marked cells, places for labels
 //!   mark, tags          marks and names on curves
+//!   light               what is too fine for its figure, coarser
 //!   chain, names        passages drawn to scale, names with leaders
 //!   contributions       bars of the parts of a sum
 //!   field               interpolation that adds no extrema
@@ -29,6 +30,7 @@ pub mod cut;
 pub mod field;
 mod frame;
 mod label;
+mod light;
 pub mod lines;
 pub mod locus;
 pub mod map;

@@ -1,8 +1,8 @@
 //! How lines and fills look, on the plot, on a map's colour bar and in the legend.
 
 use super::colour::{hex, oklch};
-use super::contour::simplify;
-use super::svg::{INK, Point, Svg, open_path, px};
+use super::light;
+use super::svg::{INK, Point, Svg};
 use super::text::tick_labels;
 
 pub(super) const NEUTRAL_HALO: &str = "fill=\"none\" stroke=\"#fff\" stroke-width=\"4.6\" stroke-opacity=\".85\" stroke-linejoin=\"round\"";
@@ -114,18 +114,16 @@ fn look(style: usize) -> (f64, f64, &'static str) {
 /// How curves without a name of their own are drawn.
 pub(super) const CROWD: &str = "fill=\"none\" stroke=\"#8b9098\" stroke-width=\".9\" stroke-linecap=\"round\" stroke-linejoin=\"round\"";
 
-/// One path of many curves without a name of their own; coarser than those that have one.
-pub(super) fn crowd(svg: &mut Svg, curves: impl Iterator<Item = Vec<Point>>) {
-    let mut data = String::new();
-    for curve in curves {
-        match simplify(&curve, 0.2).as_slice() {
-            [] => {}
-            [(x, y)] => data += &format!("M{} {}h.1", px(*x), px(*y)),
-            many => data += &open_path(many),
-        }
-    }
-    svg.path(&data, CROWD);
+/// One path of many curves without a name of their own, of no more than `most` bytes; coarser than those that have one.
+pub(super) fn crowd(svg: &mut Svg, curves: &[Vec<Point>], most: usize) {
+    svg.path(&light::curves(curves, 0.2, most), CROWD);
 }
+
+/// Colour and width of modes at single points.
+pub(super) const DOTS: (&str, f64) = ("#a4a8b0", 1.4);
+
+/// Colour and width of the fastest of these at each point.
+pub(super) const TOPS: (&str, f64) = (INK, 2.6);
 
 /// The colour of a style.
 pub(super) fn curve_colour(style: usize) -> String {

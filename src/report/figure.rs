@@ -10,7 +10,7 @@ use crate::draw::{
 use crate::modes::{Mode, Tendency};
 use crate::studies::branch::Cut;
 use crate::studies::map::{Axis as Values, Point};
-use crate::studies::regions::{Region, regions};
+use crate::studies::regions::Region;
 use crate::units::{self, Dimension, write_decimals, write_rounded};
 
 /// The unit an engineer writes a quantity of that size in, and its size in SI.
@@ -69,7 +69,7 @@ impl MapReport<'_> {
 
     /// Which mode leads where.
     fn patches(&self) -> Patches {
-        let regions = regions(self.map);
+        let regions = self.regions;
         let columns = self.map.across.points.max(1);
         let name = |r: &Region| {
             let (low, high) = r.frequency;
@@ -156,6 +156,7 @@ impl MapReport<'_> {
     pub fn svg(&self) -> Result<String, DrawError> {
         let (x, y) = (self.scaled(self.map.across), self.scaled(self.map.up));
         let tally = self.map.tally();
+        let columns = self.map.across.points.max(1);
         let certified = match (tally.doubtful, tally.failed) {
             (0, 0) => "every list proved complete".to_owned(),
             (n, 0) => format!("{n} not certified"),
@@ -168,9 +169,15 @@ impl MapReport<'_> {
         );
         let footnote = match &self.followed {
             None => format!(
-                "Largest growth rate of the modes in {}. {} {CAUTION}",
+                "Largest growth rate of the modes in {}. {} {}{CAUTION}",
                 window_text(&self.map.window),
-                self.growth_outside()
+                self.growth_outside(),
+                match self.beyond.iter().any(Option::is_some) {
+                    true =>
+                        "Beside ground without a mode in the window the neutral curve is placed by the mode that grows, \
+                         followed out of the window. ",
+                    false => "",
+                }
             ),
             Some(one) => format!(
                 "Growth rate of mode {} of the design point, followed first along the horizontal axis, then along the vertical \
@@ -207,6 +214,7 @@ impl MapReport<'_> {
                 below: "decays".into(),
             },
             values: self.rows(|p| p.fastest().map(|m| drawn(&m))),
+            beyond: self.beyond.chunks(columns).map(<[_]>::to_vec).collect(),
             certified: self.rows(Point::complete),
             reached: self.reached().unwrap_or_default(),
             frequency: self.followed.map(|_| IsoLines {

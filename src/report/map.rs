@@ -11,7 +11,7 @@ use crate::problems::Problem;
 use crate::studies::branch;
 use crate::studies::cautions::{place, setting};
 use crate::studies::map::{Axis, Map, Point};
-use crate::studies::regions::{Region, regions};
+use crate::studies::regions::{Region, Regions};
 use crate::units::{Dimension, write_decimals, write_rounded};
 
 /// A map to report.
@@ -23,6 +23,10 @@ pub struct MapReport<'a> {
     pub network: &'a Network,
     /// The answers.
     pub map: &'a Map,
+    /// Which mode leads where.
+    pub regions: &'a Regions,
+    /// Growth rates (1/s) beyond the window beside ground that grows, for the neutral curve.
+    pub beyond: &'a [Option<f64>],
     /// The modes as the file states the network: at the design point.
     pub design: &'a ModeList,
     /// What grows outside the window there.
@@ -117,6 +121,7 @@ struct Body<'a> {
     design_point: Design,
     window: WindowFields,
     growth_excluded_beyond: bool,
+    growth_not_excluded_because: Option<String>,
     growth_outside: String,
 }
 
@@ -206,8 +211,9 @@ impl<'a> MapReport<'a> {
         let (x, y) = self.design_values();
         let ((across_knob, across), (up_knob, up)) = (self.axis(map.across), self.axis(map.up));
         let leading = self.design.leading();
-        let regions = regions(map);
+        let regions = self.regions;
         let columns = map.across.points.max(1);
+        let excluded = self.followed.is_none() && tally.outside == 0 && tally.open == 0;
         let body = Body {
             finding: self.finding(),
             followed_mode: self.followed.map(|one| one.number),
@@ -245,9 +251,8 @@ impl<'a> MapReport<'a> {
                 growth_outside_window_per_s: self.design_outside.fastest().map(|m| m.growth()),
             },
             window: (&map.window).into(),
-            growth_excluded_beyond: self.followed.is_none()
-                && tally.outside == 0
-                && tally.open == 0,
+            growth_excluded_beyond: excluded,
+            growth_not_excluded_because: (!excluded).then(|| self.growth_outside()),
             growth_outside: self.growth_outside(),
         };
         Document::new("stillflame/map", &self.heading, body, self.warnings).to_json()
@@ -441,7 +446,12 @@ pub(super) fn growth_outside(
 
 /// `41 %`; what is neither nothing nor all is never said to be.
 pub(super) fn percent(part: usize, whole: usize) -> String {
-    let exact = 100.0 * part as f64 / whole.max(1) as f64;
+    percent_of(part as f64 / whole.max(1) as f64)
+}
+
+/// The same of a share.
+pub(super) fn percent_of(share: f64) -> String {
+    let exact = 100.0 * share;
     match exact {
         p if p > 0.0 && p < 1.0 => "less than 1 %".to_owned(),
         p if p > 99.0 && p < 100.0 => "more than 99 %".to_owned(),

@@ -111,7 +111,10 @@ struct Body<'a> {
     counts: Counts,
     evaluations: usize,
     window: WindowFields,
+    not_followed: Vec<(f64, f64)>,
+    taken_for_unstable: Vec<(f64, f64)>,
     growth_excluded_beyond: bool,
+    growth_not_excluded_because: Option<String>,
     growth_outside: String,
 }
 
@@ -139,6 +142,9 @@ fn edge(edge: Edge) -> &'static str {
         Edge::HighestGrowth => "highest_growth",
     }
 }
+
+/// Where a text or an object tells of growth outside the window; a picture stands alone.
+const IN_WORDS: &str = "is told in the warnings";
 
 impl<'a> SweepReport<'a> {
     /// What varies, and its dimension.
@@ -187,12 +193,8 @@ impl<'a> SweepReport<'a> {
     }
 
     /// What the sweep says of growth outside its window, in a sentence or two.
-    fn growth_outside(&self) -> String {
-        let said = growth_outside(
-            &self.sweep.window,
-            self.outside(),
-            "is told in the warnings",
-        );
+    fn growth_outside(&self, seen: &str) -> String {
+        let said = growth_outside(&self.sweep.window, self.outside(), seen);
         match self.sweep.grows_through_an_edge() {
             0 => said,
             n => format!(
@@ -223,6 +225,12 @@ impl<'a> SweepReport<'a> {
         let (complete, not_certified, failed) = sweep.tally();
         let leading = self.design.leading();
         let (outside, open, _) = self.outside();
+        let excluded = outside == 0 && open == 0 && sweep.grows_through_an_edge() == 0;
+        let told = || self.growth_outside(IN_WORDS);
+        let stretches = |all: &[(f64, f64)]| {
+            let values = all.iter().map(|(a, b)| (self.value(*a), self.value(*b)));
+            values.collect()
+        };
         let body = Body {
             finding: self.finding(),
             parameter,
@@ -243,11 +251,9 @@ impl<'a> SweepReport<'a> {
             points: self.points(),
             events: self.events(),
             branches: self.branches(),
-            unstable: sweep
-                .unstable
-                .iter()
-                .map(|(a, b)| (self.value(*a), self.value(*b)))
-                .collect(),
+            unstable: stretches(&sweep.unstable),
+            not_followed: stretches(&sweep.unresolved),
+            taken_for_unstable: stretches(&sweep.taken_for_unstable),
             growth_outside_window_per_s: sweep
                 .points
                 .iter()
@@ -269,8 +275,9 @@ impl<'a> SweepReport<'a> {
             },
             evaluations: sweep.effort.evaluations,
             window: (&sweep.window).into(),
-            growth_excluded_beyond: outside == 0 && open == 0 && sweep.grows_through_an_edge() == 0,
-            growth_outside: self.growth_outside(),
+            growth_excluded_beyond: excluded,
+            growth_not_excluded_because: (!excluded).then(&told),
+            growth_outside: told(),
         };
         Document::new("stillflame/sweep", &self.heading, body, self.warnings).to_json()
     }

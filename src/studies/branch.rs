@@ -15,6 +15,7 @@
 //! Cuts are looked for where the mode lies within the window's own width of it, and exceptional points are kept
 //! where it lies within a quarter of that: farther out nothing of either is to be seen on the map.
 
+pub mod beside;
 mod ground;
 
 use std::f64::consts::TAU;

@@ -1,11 +1,13 @@
 //! What is wrong with a map before it is computed, and what qualifies it; what a sweep shares with it.
 
+use num_complex::Complex64;
+
 use super::map::{Axis, Map, Point, moves_mean_flow};
 use crate::elements::Kind;
 use crate::elements::ends::{Exit, ExitEnd};
 use crate::knobs::KnobId;
 use crate::meanflow::{self, MeanFlow};
-use crate::modes::{Mode, Window, validity};
+use crate::modes::{Window, validity};
 use crate::network::{Network, areas, values};
 use crate::problems::Problem;
 use crate::units::{Dimension, write_decimals, write_rounded, write_signed};
@@ -107,11 +109,16 @@ pub fn warnings(
     };
     assumptions(&mut found, known, &map.window, looked);
     let place = |(x, y): (f64, f64)| place(network, (across.knob, x), (up.knob, y));
-    let grows = map
-        .placed()
-        .filter_map(|(x, y, p)| Some(((x, y), p.outside()?)));
+    let grows = || {
+        map.placed()
+            .filter_map(|(x, y, p)| Some(((x, y), p.outside()?)))
+    };
     let hint = "the figure shows those growth rates; the lists and largest_growth_per_s keep to the window";
-    found.extend(outside(grows, (map.points.len(), &map.window), place, hint));
+    let fastest = grows().max_by(|a, b| a.1.growth().total_cmp(&b.1.growth()));
+    found.extend(fastest.map(|(at, mode)| {
+        let counts = (grows().count(), map.points.len());
+        outside(counts, (mode.s, place(at)), &map.window, hint)
+    }));
     let points = map.placed().map(|(x, y, point)| {
         let answer = match point {
             Point::Certified(_) => Answer::Certified,
@@ -242,38 +249,25 @@ pub(super) fn moving(
     found
 }
 
-/// Points, of so many, where a mode grows outside the window.
-pub(super) fn outside<P>(
-    grows: impl Iterator<Item = (P, Mode)>,
-    (total, window): (usize, &Window),
-    place: impl Fn(P) -> String,
+/// Points, of so many, where a mode grows outside the window, the fastest of all, and where.
+pub(super) fn outside(
+    (count, total): (usize, usize),
+    (fastest, place): (Complex64, String),
+    window: &Window,
     hint: &str,
-) -> Option<Problem> {
-    let mut count = 0;
-    let mut fastest: Option<(P, Mode)> = None;
-    for (at, mode) in grows {
-        count += 1;
-        if fastest
-            .as_ref()
-            .is_none_or(|(_, m)| m.growth() < mode.growth())
-        {
-            fastest = Some((at, mode));
-        }
-    }
-    let (at, fastest) = fastest?;
+) -> Problem {
     let what = format!(
-        "at {count} of {total} points a mode grows outside the window; the fastest, at {}: {} 1/s at {} Hz",
-        place(at),
-        write_signed(fastest.growth(), 0),
-        write_decimals(fastest.frequency(), 1)
+        "at {count} of {total} points a mode grows outside the window; the fastest, at {place}: {} 1/s at {} Hz",
+        write_signed(fastest.re, 0),
+        write_decimals(fastest.im / std::f64::consts::TAU, 1)
     );
     let (low, high) = window.growth;
-    let subject = if (low..=high).contains(&fastest.growth()) {
+    let subject = if (low..=high).contains(&fastest.re) {
         "search.frequency"
     } else {
         "search.growth"
     };
-    Some(Problem::warning(subject, what).hint(hint))
+    Problem::warning(subject, what).hint(hint)
 }
 
 /// What is known of a point.

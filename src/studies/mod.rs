@@ -1,5 +1,6 @@
 //! Many questions of one network.
 
+pub mod beyond;
 pub mod branch;
 pub mod cautions;
 pub mod map;

@@ -2,14 +2,20 @@
 //!
 //! The largest growth rate is continuous over a plane; the frequency of the mode that has it jumps where
 //! another mode takes the lead. Two neighbours belong to one region where their frequencies differ by little, or by
-//! no more than several times as much as on either side of them along the same line.
+//! no more than several times as much as on either side of them along the same line; where these do not say it, as
+//! on a coarse map whose frequency moves fast, where the mode that leads at one, carried to the other
+//! ([`Carrier`]), is the one that leads there. So regions do not depend on the number of points.
 //!
-//! Ties of modes from point to point (see [`branch`](super::branch)) would not give regions: around a meeting of two
-//! modes they lead from one to the other, so all points led by either would be one region. What is wanted
-//! here is where the frequency that is heard jumps, and that can be seen from the leading modes alone.
+//! Such ties alone would not give regions: around a meeting of two modes they lead from one to the other, so all points
+//! led by either would be one region. What is wanted here is where the frequency that is heard jumps.
 
+use rayon::prelude::*;
+
+use super::branch::beside::Carrier;
 use super::map::Map;
+use crate::meanflow::MeanFlow;
 use crate::modes::Mode;
+use crate::network::Network;
 
 /// Points led by one mode.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -37,13 +43,20 @@ const STEPS: f64 = 4.0;
 const SAME: f64 = 4e-3;
 const OTHER: f64 = 0.08;
 
-/// Finds the regions.
-pub fn regions(map: &Map) -> Regions {
+/// Finds the regions of a map of a network with the mean flow given.
+pub fn regions(network: &Network, mean: &MeanFlow<f64>, map: &Map) -> Regions {
+    let carrier = Carrier::new(network, mean, map);
+    tied(map, |a, b| carrier.tied(a, b))
+}
+
+/// Finds the regions, given whether modes of two points are one.
+fn tied(map: &Map, one: impl Fn((&Mode, usize), (&Mode, usize)) -> bool + Sync) -> Regions {
     let columns = map.across.points.max(1);
     let leading: Vec<Option<Mode>> = map.points.iter().map(|p| p.fastest()).collect();
     let mode = |k: usize| leading.get(k).copied().flatten();
     let rows = leading.len() / columns;
     let mut group: Vec<usize> = (0..leading.len()).collect();
+    let mut doubtful: Vec<(usize, usize)> = Vec::new();
     let mut line = |points: &[usize]| {
         for (i, pair) in points.windows(2).enumerate() {
             let &[k, l] = pair else { continue };
@@ -59,10 +72,9 @@ pub fn regions(map: &Map) -> Regions {
             let beside = if beside.is_finite() { beside } else { 0.0 };
             let f = a.frequency().max(b.frequency());
             if here <= (STEPS * beside).clamp(SAME * f, OTHER * f) {
-                let (a, b) = (root(&mut group, k), root(&mut group, l));
-                if let Some(parent) = group.get_mut(a.max(b)) {
-                    *parent = a.min(b);
-                }
+                join(&mut group, k, l);
+            } else {
+                doubtful.push((k, l));
             }
         }
     };
@@ -72,7 +84,23 @@ pub fn regions(map: &Map) -> Regions {
     for i in 0..columns {
         line(&(0..rows).map(|j| j * columns + i).collect::<Vec<_>>());
     }
+    doubtful.retain(|&(k, l)| root(&mut group, k) != root(&mut group, l));
+    let one = |&(k, l): &(usize, usize)| {
+        let modes = mode(k).zip(mode(l));
+        modes.is_some_and(|(a, b)| one((&a, k), (&b, l)))
+    };
+    let same: Vec<bool> = doubtful.par_iter().map(one).collect();
+    for (&(k, l), _) in doubtful.iter().zip(same).filter(|(_, same)| *same) {
+        join(&mut group, k, l);
+    }
     numbered(&leading, &mut group)
+}
+
+fn join(group: &mut [usize], k: usize, l: usize) {
+    let (a, b) = (root(group, k), root(group, l));
+    if let Some(parent) = group.get_mut(a.max(b)) {
+        *parent = a.min(b);
+    }
 }
 
 /// The first point of a group, paths halved on the way.
@@ -174,7 +202,9 @@ mod tests {
     #[test]
     fn a_jump_of_frequency_parts_regions() {
         let rows = [100.0, 100.3, 300.0, 300.2, 100.1, 300.1, 300.3, 300.4].map(Some);
-        let regions = regions(&map(&rows, 4));
+        let regions = tied(&map(&rows, 4), |_, _| false);
+        let all = tied(&map(&[Some(100.0), Some(300.0)], 2), |_, _| true);
+        assert_eq!(all.of, [Some(0); 2]);
         assert_eq!(regions.list.len(), 2);
         assert_eq!(regions.list[0].points, 5);
         assert_eq!(regions.list[0].frequency, (300.0, 300.4));
@@ -185,8 +215,8 @@ mod tests {
 
     #[test]
     fn points_without_a_mode_belong_nowhere() {
-        let regions = regions(&map(&[Some(100.0), None, Some(100.0)], 3));
+        let regions = tied(&map(&[Some(100.0), None, Some(100.0)], 3), |_, _| true);
         assert_eq!(regions.of, [Some(0), None, Some(1)]);
-        assert!(super::regions(&map(&[None, None], 2)).list.is_empty());
+        assert!(tied(&map(&[None, None], 2), |_, _| true).list.is_empty());
     }
 }

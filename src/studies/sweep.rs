@@ -14,6 +14,7 @@ mod reading;
 mod sample;
 mod ties;
 mod weave;
+mod woven;
 
 use std::ops::ControlFlow;
 
@@ -29,7 +30,7 @@ use crate::studies::map::moves_mean_flow;
 use crate::studies::path::Path;
 pub use follow::Edge;
 use sample::{Ground, Sample, Verdict};
-use weave::Weaver;
+use woven::{Woven, add, weave};
 
 /// Modes closer than this share of the largest `|s|` in the window count as met. Two that close are known to
 /// about the square root of the unit roundoff, 1e-8.
@@ -187,16 +188,25 @@ pub struct Sweep {
     pub events: Vec<Event>,
     /// Certified points put in between.
     pub between: usize,
-    /// Stretches over which modes move too fast to be followed with as many points as may be put in between, in
-    /// order and apart: what was not clear there ends and begins anew.
+    /// Stretches over which modes move too fast to be followed with the work that points in between may take, in
+    /// order and apart: branches end and begin there.
     pub unresolved: Vec<(f64, f64)>,
+    /// The modes known within these that are on no branch, and those of [`growing_outside`](Self::growing_outside)
+    /// that could not be followed, at reported points and points put in between.
+    pub unfollowed: Vec<Place>,
     /// Stretches over which some mode grows, in the window or outside up to its highest frequency, in order
     /// and apart.
     pub unstable: Vec<(f64, f64)>,
+    /// Of [`unstable`](Self::unstable), stretches over which modes move too fast to be followed and at an end of which
+    /// some mode grows: they are taken for unstable.
+    pub taken_for_unstable: Vec<(f64, f64)>,
     /// Modes that grow outside the window up to its highest frequency, over the stretches where they do.
     pub growing_outside: Vec<Branch>,
-    /// The mode of largest growth rate found, in the window or outside up to its highest frequency.
+    /// The mode of largest growth rate found, in the window or outside up to its highest frequency, between points as
+    /// well where it was followed.
     pub fastest: Option<Fastest>,
+    /// The fastest of the modes that grow outside.
+    pub fastest_outside: Option<Fastest>,
     /// Work done on the lists of all points, those in between among them.
     pub effort: Effort,
 }
@@ -226,12 +236,13 @@ pub fn sweep(
     let samples: Option<Vec<Sample>> = (0..path.points)
         .into_par_iter()
         .map(|i| {
-            let sample = ground.sample(path.position(i), true);
+            let sample = ground.sample(path.position(i), true, &[]);
             watch().is_continue().then_some(sample)
         })
         .collect();
     let samples = samples?;
     let woven = weave(&ground, &samples);
+    let usable: Vec<bool> = samples.iter().map(Sample::usable).collect();
 
     let mut effort = woven.effort;
     for sample in &samples {
@@ -249,131 +260,17 @@ pub fn sweep(
         branches: woven.branches,
         events: woven.events,
         between: woven.between,
-        unresolved: growth::joined(woven.unresolved),
+        unresolved: woven.unresolved,
+        unfollowed: woven.loose,
         unstable: Vec::new(),
+        taken_for_unstable: Vec::new(),
         growing_outside: Vec::new(),
         fastest: None,
+        fastest_outside: None,
         effort,
     };
-    growth::judge(&ground, &mut sweep);
+    growth::judge(&ground, &mut sweep, &usable);
     Some(sweep)
-}
-
-/// Samples with their modes followed from one to the next.
-#[derive(Default)]
-struct Woven {
-    branches: Vec<Branch>,
-    events: Vec<Event>,
-    /// The branches on each node of each sample.
-    on: Vec<Vec<Vec<usize>>>,
-    between: usize,
-    unresolved: Vec<(f64, f64)>,
-    /// Work done on samples put in between.
-    effort: Effort,
-}
-
-fn weave(ground: &Ground<'_>, samples: &[Sample]) -> Woven {
-    let usable: Vec<usize> = (0..samples.len())
-        .filter(|i| samples[*i].usable())
-        .collect();
-    let pairs: Vec<(usize, usize)> = usable.windows(2).map(|w| (w[0], w[1])).collect();
-    let stretches: Vec<follow::Stretch> = pairs
-        .par_iter()
-        .map(|&(i, j)| follow::follow(ground, &samples[i], &samples[j]))
-        .collect();
-
-    let mut woven = Woven {
-        on: vec![Vec::new(); samples.len()],
-        ..Woven::default()
-    };
-    if let Some(&first) = usable.first() {
-        let mut weaver = Weaver::new(ground, &samples[first], first);
-        woven.on[first] = weaver.on().to_vec();
-        for (&(i, j), stretch) in pairs.iter().zip(&stretches) {
-            weaver.advance(&samples[i], stretch, &samples[j], j);
-            woven.on[j] = weaver.on().to_vec();
-        }
-        weaver.finish();
-        (woven.branches, woven.events) = (weaver.branches, weaver.events);
-    }
-    for branch in &mut woven.branches {
-        mark_gaps(&mut branch.trace, samples);
-    }
-    let neutral: Vec<Vec<Event>> = woven
-        .branches
-        .par_iter()
-        .enumerate()
-        .map(|(i, b)| neutral(ground, i, b))
-        .collect();
-    woven.events.extend(neutral.into_iter().flatten());
-    woven
-        .events
-        .sort_by(|a, b| a.u.total_cmp(&b.u).then(a.branches.cmp(&b.branches)));
-    tell_meetings_once(&mut woven.events);
-    for stretch in stretches {
-        woven.between += stretch.between.len();
-        woven.unresolved.extend(stretch.unresolved);
-        for sample in &stretch.between {
-            add(&mut woven.effort, &sample.effort);
-        }
-    }
-    woven
-}
-
-/// Next to a meeting the shortest steps may be in doubt as well: within [`SAME`] of a meeting of the same
-/// branches nothing is told again, and that they become real or oscillating goes before.
-fn tell_meetings_once(events: &mut Vec<Event>) {
-    const SAME: f64 = 1e-9;
-    let rank = |k: Kind| match k {
-        Kind::BecomesReal | Kind::BecomesOscillating => Some(0),
-        Kind::ExceptionalPoint | Kind::Crossing => Some(1),
-        _ => None,
-    };
-    let set = |e: &Event| {
-        let mut branches = e.branches.clone();
-        branches.sort_unstable();
-        branches
-    };
-    let mut kept: Vec<Event> = Vec::with_capacity(events.len());
-    for event in events.drain(..) {
-        let Some(this) = rank(event.kind) else {
-            kept.push(event);
-            continue;
-        };
-        let same = kept
-            .iter_mut()
-            .rev()
-            .find(|e| rank(e.kind).is_some() && event.u - e.u <= SAME && set(e) == set(&event));
-        match same {
-            Some(told) if rank(told.kind) > Some(this) => *told = event,
-            Some(_) => {}
-            None => kept.push(event),
-        }
-    }
-    *events = kept;
-}
-
-fn add(sum: &mut Effort, more: &Effort) {
-    sum.evaluations += more.evaluations;
-    sum.bounds += more.bounds;
-    sum.refinements += more.refinements;
-    sum.retries += more.retries;
-    sum.fallbacks += more.fallbacks;
-}
-
-/// Marks places that come after a point without a usable list.
-fn mark_gaps(trace: &mut [Place], samples: &[Sample]) {
-    let mut before: Option<f64> = None;
-    for place in trace {
-        place.gap_before = before.is_some_and(|before| {
-            let first = samples.partition_point(|s| s.u <= before);
-            let until = samples.partition_point(|s| s.u < place.u);
-            samples
-                .get(first..until)
-                .is_some_and(|skipped| skipped.iter().any(|s| !s.usable()))
-        });
-        before = Some(place.u);
-    }
 }
 
 /// A sample as a reported point. Where its list was not followed, a mode is told to be of the branch
@@ -419,46 +316,4 @@ fn point(sample: Sample, on: &[Vec<usize>], branches: &[Branch]) -> Point {
         outside: sample.outside,
         effort: sample.effort,
     }
-}
-
-/// Where the growth rate of a branch changes its sign.
-fn neutral(ground: &Ground<'_>, index: usize, branch: &Branch) -> Vec<Event> {
-    let mut events = Vec::new();
-    let growth = |s: Complex64| s.re;
-    let mut cross = |a: Place, b: Place| {
-        let place = crossing::change_of_sign(ground, (a, b), growth)
-            .unwrap_or_else(|| crossing::interpolated(&a, &b, growth));
-        events.push(Event {
-            u: place.u,
-            kind: if b.s.re > a.s.re {
-                Kind::BecomesUnstable
-            } else {
-                Kind::BecomesStable
-            },
-            branches: vec![index],
-            s: place.s,
-            edge: None,
-        });
-    };
-    // A growth rate within its error bound is on neither side.
-    let mut decided: Option<Place> = None;
-    for place in branch
-        .trace
-        .iter()
-        .filter(|p| p.tendency() != Tendency::Neutral)
-    {
-        if let Some(before) = decided {
-            if before.tendency() != place.tendency() {
-                cross(before, *place);
-            } else if let Some(u) = crossing::dip(&before, place)
-                && let Some(dip) = crossing::place(ground, &before, place, u)
-                && dip.tendency() != place.tendency()
-            {
-                cross(before, dip);
-                cross(dip, *place);
-            }
-        }
-        decided = Some(*place);
-    }
-    events
 }

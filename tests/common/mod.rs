@@ -6,6 +6,7 @@ pub mod brute;
 pub mod census;
 pub mod counting;
 pub mod exact;
+pub mod figures;
 pub mod heater;
 pub mod random;
 pub mod rig;

@@ -276,6 +276,7 @@ pub fn sweep() -> LineFigure {
                     style: None,
                     label: String::new(),
                 }],
+                ..Default::default()
             },
             Panel {
                 y: Axis::new("Growth rate", "1/s"),
@@ -293,6 +294,7 @@ pub fn sweep() -> LineFigure {
                     style: Some(0),
                     label: String::new(),
                 }],
+                ..Default::default()
             },
         ],
         marks: vec![
@@ -300,6 +302,7 @@ pub fn sweep() -> LineFigure {
             (Mark::Diamond, "two modes meet".into()),
         ],
         crowd: "2 other modes".into(),
+        ..Default::default()
     }
 }
 
@@ -397,6 +400,7 @@ pub fn root_locus() -> Locus {
             (Mark::Circle, "neutral".into()),
             (Mark::Diamond, "modes meet".into()),
         ],
+        ..Default::default()
     }
 }
 

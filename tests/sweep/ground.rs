@@ -46,7 +46,7 @@ pub fn sweep(network: &Network, path: &Path, window: Window) -> Sweep {
     sweep::sweep(network, &mean, path, window, || ControlFlow::Continue(())).unwrap()
 }
 
-/// Every point has a list that was counted, and each of its modes a branch of its own.
+/// Every point has a list that was counted, and each of its modes a branch of its own, where modes could be followed.
 pub fn check(sweep: &Sweep) {
     for point in &sweep.points {
         if matches!(point.state, State::Failed(_)) {
@@ -55,10 +55,17 @@ pub fn check(sweep: &Sweep) {
         }
         assert!(point.effort.evaluations > 0 && point.effort.bounds > 0);
         if point.state == State::Certified {
-            let mut branches: Vec<usize> = point.modes.iter().map(|(b, _)| b.unwrap()).collect();
+            let mut branches: Vec<usize> = point.modes.iter().filter_map(|(b, _)| *b).collect();
+            let on_branches = branches.len();
             branches.sort_unstable();
             branches.dedup();
-            assert_eq!(branches.len(), point.modes.len(), "at {}", point.u);
+            assert_eq!(branches.len(), on_branches, "at {}", point.u);
+            let followed = !sweep.is_unresolved(point.u);
+            assert!(
+                !followed || on_branches == point.modes.len(),
+                "at {}",
+                point.u
+            );
         }
     }
     for branch in &sweep.branches {

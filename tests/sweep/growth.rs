@@ -3,7 +3,7 @@
 use std::f64::consts::TAU;
 
 use stillflame::meanflow;
-use stillflame::modes::Window;
+use stillflame::modes::{self, Window};
 use stillflame::studies::sweep::{Branch, Edge, cautions};
 
 use crate::ground::{check, network, path, sweep};
@@ -77,7 +77,7 @@ fn modes_too_fast_to_follow_are_told() {
     };
     let found = sweep(
         &rig,
-        &path(&rig, &[("main_flame.delay", 0.0, 0.2)], 2),
+        &path(&rig, &[("main_flame.delay", 0.0, 0.3)], 2),
         window,
     );
     check(&found);
@@ -92,11 +92,60 @@ fn modes_too_fast_to_follow_are_told() {
         };
         assert!(off.abs() < within, "{event:?}");
     }
-    let pieces = found.branches.iter().filter(|b| found.is_piece(b)).count();
-    assert!(pieces > 0 && pieces < found.branches.len());
+    // What is on no branch lies where nothing is followed, and no branch lies there all along.
+    let inside = |u: f64| found.is_unresolved(u);
+    assert!(!found.unfollowed.is_empty() && !found.branches.is_empty());
+    assert!(found.unfollowed.iter().all(|p| inside(p.u)));
+    let whole = |b: &Branch| {
+        let (first, last) = (b.trace[0].u, b.trace[b.trace.len() - 1].u);
+        let holds = |(from, to): &(f64, f64)| *from <= first && last <= *to;
+        found.unresolved.iter().any(holds)
+    };
+    assert!(!found.branches.iter().any(whole));
     let warnings = cautions::warnings(&rig, &meanflow::solve(&rig).unwrap(), &found, &[]);
     assert!(
         warnings.iter().any(|w| w.what.contains("too fast")),
         "{warnings:?}"
     );
+}
+
+/// The largest growth rate is a summit between points, and the same however many there are.
+#[test]
+fn the_fastest_mode_is_a_summit_of_its_branch() {
+    let rig = network("networks/swirl_rig.toml", &[]);
+    for growth in [(-300.0, 300.0), (-60.0, 20.0)] {
+        let window = Window {
+            frequency: (200.0, 350.0),
+            growth,
+        };
+        let fastest = |points: usize| {
+            let along = path(&rig, &[("main_flame.delay", 0.8e-3, 2e-3)], points);
+            let found = sweep(&rig, &along, window);
+            let of_the_warning = found.fastest_outside;
+            let fastest = found.fastest.unwrap();
+            assert_eq!(fastest.branch.is_none(), growth.1 < 100.0);
+            if fastest.branch.is_none() {
+                assert_eq!(of_the_warning, Some(fastest));
+            }
+            let value = along.value(fastest.u);
+            let at = |value: f64| {
+                let settings = [format!("main_flame.delay = {value} s")];
+                let solved = modes::solve(&network("networks/swirl_rig.toml", &settings)).unwrap();
+                let wide = Window {
+                    growth: (-300.0, 300.0),
+                    ..window
+                };
+                modes::find(&solved, wide, modes::Scan::Whole)
+                    .leading()
+                    .unwrap()
+                    .growth()
+            };
+            let here = at(value);
+            assert!((here - fastest.s.re).abs() < 1e-7);
+            assert!(here > at(value - 1e-6) && here > at(value + 1e-6));
+            fastest.s
+        };
+        let (few, many) = (fastest(3), fastest(24));
+        assert!((few - many).norm() < 1e-3, "{few}, {many}");
+    }
 }

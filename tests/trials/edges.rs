@@ -7,6 +7,7 @@ use stillflame::numerics::count::Rectangle;
 use stillflame::numerics::isolate::Zero;
 use stillflame::numerics::zeros::{self, Doubt, Scan, Search};
 
+use crate::common::figures;
 use crate::common::random::{Wish, draw};
 
 const CASES: usize = 1500;
@@ -141,6 +142,8 @@ fn a_root_beside_the_edge_is_listed_rightly_or_named() {
         faults.len(),
         faults.join("\n\n")
     );
+    figures::count("trial edges", cases.len());
+    figures::about("trial edges named", flagged);
     // One in eight lies on the edge exactly.
     assert!((CASES / 10..CASES / 2).contains(&flagged));
 }

@@ -6,6 +6,7 @@ use stillflame::modes::{self, ModeList};
 use stillflame::numerics::zeros::{self, Scan};
 
 use crate::common::counting::Counting;
+use crate::common::figures;
 use crate::common::heater::{self, WINDOW};
 
 /// By how much rounding in the gas, the geometry and the delays of a network moves its parameters.
@@ -89,7 +90,8 @@ fn lists_beside_exceptional_points_are_complete_and_right() {
         faults.len(),
         faults.join("\n")
     );
-    assert_eq!(cases, 477);
+    figures::count("trial exceptional", cases);
+    figures::about("trial exceptional not proved", cases - told);
     assert!(most <= MOST_VALUES, "{most}");
     assert!(doubles >= points.len(), "{doubles}");
 }

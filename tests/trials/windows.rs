@@ -10,6 +10,7 @@ use stillflame::numerics::count::CountError;
 use stillflame::numerics::zeros::Doubt;
 
 use crate::common::agreement::try_one;
+use crate::common::figures;
 use crate::common::random::{Drawn, Wish, draw};
 
 #[derive(Default)]
@@ -132,6 +133,8 @@ fn one(seed: u64, trial: &Trial) -> Figures {
 
 /// What is tried.
 struct Trial {
+    /// In the page of figures.
+    name: &'static str,
     /// 1/s, either way.
     growth: f64,
     /// Hz.
@@ -143,8 +146,9 @@ struct Trial {
 }
 
 impl Trial {
-    fn within(growth: f64, highest: f64, held: u64) -> Trial {
+    fn within(name: &'static str, growth: f64, highest: f64, held: u64) -> Trial {
         Trial {
+            name,
             growth,
             highest,
             networks: 500,
@@ -181,23 +185,29 @@ impl Trial {
             faults.len(),
             faults.join("\n\n")
         );
+        figures::count(&format!("trial {}", self.name), self.networks as usize);
+        figures::about(
+            &format!("trial {} not proved", self.name),
+            self.networks as usize - all.complete,
+        );
+        figures::about(&format!("trial {} untold", self.name), all.blind);
         all
     }
 }
 
 #[test]
 fn lists_of_narrow_windows_are_right() {
-    assert_eq!(Trial::within(200.0, 1000.0, 10).run().complete, 500);
+    assert_eq!(Trial::within("200", 200.0, 1000.0, 10).run().complete, 500);
 }
 
 #[test]
 fn lists_of_wide_windows_are_right() {
-    assert!(Trial::within(2000.0, 3000.0, 25).run().complete >= 490);
+    assert!(Trial::within("2000", 2000.0, 3000.0, 25).run().complete >= 490);
 }
 
 #[test]
 fn lists_of_very_wide_windows_are_right_or_refused() {
-    assert!(Trial::within(5000.0, 1000.0, 25).run().complete >= 440);
+    assert!(Trial::within("5000", 5000.0, 1000.0, 25).run().complete >= 440);
 }
 
 /// Entropy that takes half a second along a duct is multiplied by `exp(2500)` at -5000 1/s.
@@ -209,7 +219,7 @@ fn entropy_carried_slowly_is_refused_where_it_overflows() {
             longest_carried: 3.0,
             ..Wish::default()
         },
-        ..Trial::within(5000.0, 200.0, 25)
+        ..Trial::within("carried", 5000.0, 200.0, 25)
     };
     let all = trial.run();
     assert!(all.overflow >= 1 && all.complete >= 50);

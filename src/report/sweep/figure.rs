@@ -9,6 +9,7 @@ use crate::draw::{
     locus,
 };
 use crate::report::figure::{engineers_unit, label};
+use crate::report::map::percent_of;
 use crate::report::{CAUTION, counted, rate, window_text};
 use crate::studies::path::{Parameter, Spacing};
 use crate::studies::sweep::{Branch, Kind, Place, State, Sweep};
@@ -21,9 +22,6 @@ const FINE: u32 = 3;
 /// growth rate.
 const MOST_NAMED: usize = 14;
 
-/// Most pieces of modes that move too fast to be followed.
-const MOST_PIECES: usize = 1200;
-
 /// What a figure shows of the branches.
 struct Cast {
     /// Branches with a name of their own, by number; each with its look's.
@@ -32,14 +30,21 @@ struct Cast {
     crowd: Vec<Vec<Place>>,
     /// Legend text of those.
     crowd_name: String,
+    /// Where modes could not be followed, the fastest mode known at each position.
+    tops: Vec<Place>,
+}
+
+/// The fastest mode on no branch at each position that has some.
+fn tops(sweep: &Sweep) -> Vec<Place> {
+    let mut all: Vec<Place> = sweep.unfollowed.clone();
+    all.sort_by(|a, b| a.u.total_cmp(&b.u).then(b.s.re.total_cmp(&a.s.re)));
+    all.dedup_by(|b, a| b.u == a.u);
+    all
 }
 
 impl Cast {
     fn of(sweep: &Sweep) -> Cast {
-        let all = sweep.branches.iter().enumerate();
-        let (pieces, mut named): (Vec<usize>, Vec<usize>) = all
-            .map(|(i, _)| i)
-            .partition(|i| sweep.branches.get(*i).is_some_and(|b| sweep.is_piece(b)));
+        let mut named: Vec<usize> = (0..sweep.branches.len()).collect();
         let growth = |i: &usize| {
             let branch = sweep.branches.get(*i);
             branch
@@ -52,7 +57,6 @@ impl Cast {
             others = named.split_off(MOST_NAMED);
             named.sort_unstable();
         }
-        let fast = "modes too fast to be followed";
         let mut names = Vec::new();
         if !others.is_empty() {
             names.push(format!(
@@ -60,24 +64,19 @@ impl Cast {
                 counted(others.len(), "other mode")
             ));
         }
-        if !pieces.is_empty() {
-            names.push(fast.to_owned());
-        }
-        let outside = sweep.growing_outside.iter().take(MOST_PIECES);
         if !sweep.growing_outside.is_empty() {
             names.push("growth outside the window".to_owned());
         }
         let crowd_name = names.join("; ");
-        let every = pieces.len().div_ceil(MOST_PIECES).max(1);
         let branch = |i: &usize| sweep.branches.get(*i);
-        let thinned = pieces.iter().step_by(every).filter_map(branch);
-        let crowd = others.iter().filter_map(branch).flat_map(smooth);
-        let crowd = crowd.chain(outside.flat_map(smooth));
-        let crowd = crowd.chain(thinned.map(|b| b.trace.clone())).collect();
+        let crowd = others.iter().filter_map(branch);
+        let crowd = crowd.chain(&sweep.growing_outside);
+        let crowd = crowd.flat_map(smooth).collect();
         Cast {
             named,
             crowd,
             crowd_name,
+            tops: tops(sweep),
         }
     }
 
@@ -121,20 +120,44 @@ impl SweepReport<'_> {
     fn subtitle(&self) -> String {
         let (complete, not_certified, failed) = self.sweep.tally();
         let certified = match (not_certified, failed) {
-            (0, 0) => "every list proved complete".to_owned(),
-            (n, 0) => format!("{n} not certified"),
+            (0, 0) => "the list of each proved complete".to_owned(),
+            (n, 0) => format!("the lists of {n} not certified"),
             (0, f) => format!("{f} without an answer"),
-            (n, f) => format!("{n} not certified, {f} without an answer"),
+            (n, f) => format!("the lists of {n} not certified, {f} without an answer"),
         };
         let total = complete + not_certified + failed;
-        format!("{}; {total} networks, {certified}", self.heading.title)
+        let followed = match self.sweep.unresolved.is_empty() {
+            true => "modes followed from one to the next",
+            false => "modes followed from one to the next where lines are drawn",
+        };
+        format!(
+            "{}; {} reported, {certified}; {followed}",
+            self.heading.title,
+            counted(total, "point")
+        )
+    }
+
+    /// Where modes are not followed: `from 20 ms on`.
+    pub(super) fn unfollowed(&self) -> Option<String> {
+        let all = &self.sweep.unresolved;
+        let length: f64 = all.iter().map(|(a, b)| b - a).sum();
+        let (first, last) = (all.first()?, all.last()?);
+        let hull = self.stretch((first.0, last.1));
+        Some(if all.len() == 1 {
+            hull
+        } else {
+            format!(
+                "over {} of the way {hull}",
+                percent_of(length / (last.1 - first.0))
+            )
+        })
     }
 
     fn footnote(&self) -> String {
         format!(
             "Modes in {}. {} {CAUTION}",
             window_text(&self.sweep.window),
-            self.growth_outside()
+            self.growth_outside("is shown as well")
         )
     }
 
@@ -165,7 +188,8 @@ impl SweepReport<'_> {
             let Some(style) = looks.reduce(Option::or).filter(Option::is_some) else {
                 continue;
             };
-            if self.is_of_pieces(event) {
+            let ends = matches!(event.kind, Kind::Found | Kind::Lost);
+            if ends && self.sweep.is_unresolved(event.u) {
                 continue;
             }
             let mark = match event.kind {
@@ -226,8 +250,12 @@ impl SweepReport<'_> {
         at.dedup_by(|b, a| scaled(*b) <= scaled(*a));
         let uncertain = |u: f64| {
             let point = sweep.points.iter().find(|p| p.u == u);
-            point.is_some_and(|p| p.state != State::Certified) || sweep.is_unresolved(u)
+            point.is_some_and(|p| p.state != State::Certified)
         };
+        let dots = |of: &dyn Fn(&Place) -> (f64, f64)| sweep.unfollowed.iter().map(of).collect();
+        let tops = |of: &dyn Fn(&Place) -> (f64, f64)| cast.tops.iter().map(of).collect();
+        let over_frequency = |p: &Place| (scaled(p.u), p.s.im / TAU);
+        let over_growth = |p: &Place| (scaled(p.u), p.s.re);
         let series = |of: fn(&Place) -> f64| -> Vec<Series> {
             named()
                 .enumerate()
@@ -256,19 +284,27 @@ impl SweepReport<'_> {
                     y: Axis::new("Frequency", "Hz"),
                     series: series(|p| p.s.im / TAU),
                     shade: None,
-                    crowd: cast.crowd(|p| (scaled(p.u), p.s.im / TAU)),
+                    crowd: cast.crowd(over_frequency),
+                    dots: dots(&over_frequency),
+                    tops: tops(&over_frequency),
                     spots: self.spots(&cast, |u, s| (scaled(u), s.im / TAU), false),
                 },
                 Panel {
                     y: Axis::new("Growth rate", "1/s"),
                     series: series(|p| p.s.re),
                     shade: Some(grows()),
-                    crowd: cast.crowd(|p| (scaled(p.u), p.s.re)),
+                    crowd: cast.crowd(over_growth),
+                    dots: dots(&over_growth),
+                    tops: tops(&over_growth),
                     spots: self.spots(&cast, |u, s| (scaled(u), s.re), false),
                 },
             ],
             marks: Self::marks(),
             crowd: cast.crowd_name.clone(),
+            dots: (
+                "modes at points computed, not followed between".into(),
+                "the fastest of these at each".into(),
+            ),
         };
         lines::render(&figure)
     }
@@ -279,7 +315,6 @@ impl SweepReport<'_> {
         let parts = [
             (not_certified > 0, "not certified"),
             (failed > 0, "without an answer"),
-            (!self.sweep.unresolved.is_empty(), "too fast to be followed"),
         ];
         let words: Vec<&str> = parts.iter().filter(|p| p.0).map(|p| p.1).collect();
         words.join(", or ")
@@ -361,6 +396,14 @@ impl SweepReport<'_> {
             shade: Some(grows()),
             trails,
             crowd: (cast.crowd(|p| (p.s.im / TAU, p.s.re)), cast.crowd_name),
+            dots: (
+                sweep
+                    .unfollowed
+                    .iter()
+                    .map(|p| (p.s.im / TAU, p.s.re))
+                    .collect(),
+                "modes at points computed, not followed between".into(),
+            ),
             spots,
             marks,
         })

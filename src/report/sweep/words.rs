@@ -1,6 +1,6 @@
 //! A sweep in words: its finding, its branches and its events.
 
-use super::{SweepReport, edge};
+use super::{IN_WORDS, SweepReport, edge};
 use crate::modes::Tendency;
 use crate::report::map::percent;
 use crate::report::table::{Lean, Table};
@@ -51,6 +51,9 @@ impl SweepReport<'_> {
         let band = band(&sweep.window);
         let mut text = match stretches.as_slice() {
             _ if complete == 0 => "No point of the sweep is certified".to_owned(),
+            [] if complete == sweep.points.len() && !sweep.unresolved.is_empty() => {
+                format!("No mode in {band} grows at the points of the sweep")
+            }
             [] if complete == sweep.points.len() => {
                 format!("No mode in {band} grows on the sweep")
             }
@@ -73,13 +76,22 @@ impl SweepReport<'_> {
             ),
         };
         if let Some(fastest) = sweep.fastest.filter(|_| !stretches.is_empty()) {
+            let frequency = fastest.s.im / std::f64::consts::TAU;
+            // The band told is the window's; growth below it counts as well.
+            let below = match frequency < sweep.window.frequency.0 {
+                true => ", below that,",
+                false => "",
+            };
             text.push_str(&format!(
-                "; fastest {} 1/s and {} Hz at {}{}",
+                "; fastest {} 1/s and {} Hz{below} at {}{}",
                 rate(fastest.s.re),
-                write_decimals(fastest.s.im / std::f64::consts::TAU, 0),
+                write_decimals(frequency, 0),
                 self.of_what(),
                 self.told(fastest.u, 3)
             ));
+        }
+        if let Some(part) = self.unfollowed() {
+            text.push_str(&format!("; modes not followed {part}"));
         }
         let unknown = not_certified + failed;
         if unknown > 0 && complete > 0 {
@@ -105,8 +117,9 @@ impl SweepReport<'_> {
     }
 
     /// `from 2.31 ms to 4 ms`, `up to 4 ms`, `from 2.31 ms on`.
-    fn stretch(&self, (a, b): (f64, f64)) -> String {
+    pub(super) fn stretch(&self, (a, b): (f64, f64)) -> String {
         match (a <= 0.0, b >= 1.0) {
+            _ if a == b => format!("at {}", self.told(a, 3)),
             (true, _) => format!("up to {}", self.told(b, 3)),
             (_, true) => format!("from {} on", self.told(a, 3)),
             _ => format!("from {} to {}", self.told(a, 3), self.told(b, 3)),
@@ -160,7 +173,7 @@ impl SweepReport<'_> {
         text.push_str(&format!(
             "\n{}{}\n",
             self.design_words(),
-            self.growth_outside()
+            self.growth_outside(IN_WORDS)
         ));
         text.push_str(&closing(self.warnings));
         text
@@ -191,12 +204,7 @@ impl SweepReport<'_> {
             "there, Hz",
             "from",
         ]);
-        let mut pieces = 0;
         for (i, branch) in self.sweep.branches.iter().enumerate() {
-            if self.sweep.is_piece(branch) {
-                pieces += 1;
-                continue;
-            }
             let (Some(first), Some(last), Some(greatest)) =
                 (branch.trace.first(), branch.trace.last(), branch.greatest())
             else {
@@ -222,14 +230,7 @@ impl SweepReport<'_> {
                 unstable,
             ]);
         }
-        let mut text = table.text();
-        if pieces > 0 {
-            text.push_str(&format!(
-                "and {} where modes move too fast to be followed\n",
-                counted(pieces, "piece")
-            ));
-        }
-        text
+        table.text()
     }
 
     fn event_table(&self) -> String {
@@ -237,12 +238,7 @@ impl SweepReport<'_> {
         let mut table = Table::new(&[Right, Right, Right, Right, Left]);
         table.heading(&["at", "branch", "frequency", "growth rate", "what happens"]);
         table.heading(&["", "", "Hz", "1/s", ""]);
-        let mut of_pieces = 0;
         for event in &self.sweep.events {
-            if self.is_of_pieces(event) {
-                of_pieces += 1;
-                continue;
-            }
             let branch = event.branches.first().map_or(0, |b| b + 1);
             table.row(vec![
                 self.told(event.u, 6),
@@ -252,23 +248,7 @@ impl SweepReport<'_> {
                 happens(event),
             ]);
         }
-        let mut text = table.text();
-        if of_pieces > 0 {
-            text.push_str(&format!(
-                "and {} where modes move too fast to be followed\n",
-                counted(of_pieces, "event")
-            ));
-        }
-        text
-    }
-
-    /// Whether an event only says that modes move too fast to be followed, or is of pieces of such modes.
-    pub(super) fn is_of_pieces(&self, event: &Event) -> bool {
-        let sweep = self.sweep;
-        let piece = |b: &usize| sweep.branches.get(*b).is_some_and(|b| sweep.is_piece(b));
-        let ends = matches!(event.kind, Kind::Lost | Kind::Found);
-        (ends && sweep.is_unresolved(event.u))
-            || (!event.branches.is_empty() && event.branches.iter().all(piece))
+        table.text()
     }
 
     fn design_words(&self) -> String {

@@ -51,25 +51,38 @@ pub fn warnings(
     let looked = places(network, path, 25);
     assumptions(&mut found, known, &sweep.window, looked);
     let grows = sweep.points.iter();
-    let grows = grows.filter_map(|p| Some((p.u, p.outside.fastest?)));
-    let hint = "branches end at the window's edge; search a larger window to follow it";
+    let grows = grows.filter(|p| p.outside.fastest.is_some()).count();
     let place = |u| place(network, path, u);
-    found.extend(outside(
-        grows,
-        (sweep.points.len(), &sweep.window),
-        place,
-        hint,
-    ));
+    if let Some(fastest) = sweep.fastest_outside {
+        found.push(outside(
+            (grows, sweep.points.len()),
+            (fastest.s, place(fastest.u)),
+            &sweep.window,
+            "branches end at the window's edge; search a larger window to follow it",
+        ));
+    }
     if let (Some((from, _)), Some((_, to))) = (sweep.unresolved.first(), sweep.unresolved.last()) {
         let what = format!(
-            "between {} and {} modes move too fast for {} points to tell which is which: branches end and begin there",
+            "between {} and {} modes move too fast for {} points, and {} put in between, to tell which is which: \
+             branches end and begin there",
             place(*from),
             place(*to),
-            sweep.points.len()
+            sweep.points.len(),
+            sweep.between
         );
         found.push(
             Problem::warning("sweep", what).hint("sweep a shorter span or more points (--points)"),
         );
+    }
+    let taken = &sweep.taken_for_unstable;
+    if let (Some((from, _)), Some((_, to))) = (taken.first(), taken.last()) {
+        let what = format!(
+            "between {} and {} modes that grow move too fast to be followed: steps with growth at an end are \
+             taken for unstable all along",
+            place(*from),
+            place(*to)
+        );
+        found.push(Problem::warning("sweep", what));
     }
     let points = sweep.points.iter().map(|point| {
         let answer = match &point.state {

@@ -92,6 +92,33 @@ pub(super) fn place(ground: &Ground<'_>, a: &Place, b: &Place, u: f64) -> Option
     })
 }
 
+/// Where the growth rate of a branch is largest between two places, given that it rises at the first and falls at the
+/// second; by bisection of its rate. `None` where it does not, or an iterate has no mode.
+pub(super) fn summit(ground: &Ground<'_>, mut a: Place, mut b: Place) -> Option<Place> {
+    if a.velocity.re <= 0.0 || b.velocity.re >= 0.0 {
+        return None;
+    }
+    let mut best = if a.s.re > b.s.re { a } else { b };
+    for _ in 0..MOST {
+        // By a straight line through the rates, held off the ends.
+        let t = (a.velocity.re / (a.velocity.re - b.velocity.re)).clamp(0.1, 0.9);
+        let here = place(ground, &a, &b, a.u + t * (b.u - a.u))?;
+        let gained = (here.s.re - best.s.re).abs();
+        if here.s.re > best.s.re {
+            best = here;
+        }
+        if gained <= here.error.max(1e-12 * here.s.norm()) || b.u - a.u <= 1e-12 {
+            break;
+        }
+        if here.velocity.re > 0.0 {
+            a = here;
+        } else {
+            b = here;
+        }
+    }
+    Some(best)
+}
+
 /// A position strictly between two places of equal sign at which the cubic growth rate has the other
 /// sign, if there is one.
 pub(super) fn dip(a: &Place, b: &Place) -> Option<f64> {

@@ -3,8 +3,9 @@
 //!
 //! A step that is not clear is halved, the longest first. What a list gains or loses at a clear step has
 //! gone through the window's edge: it is followed outside by Newton from its prediction, proved there, and
-//! tied like any other. Halving ends at [`LEAST`], where two modes that still cannot be told apart meet,
-//! and after [`MOST_BETWEEN`] points; then only what is clear by itself is kept.
+//! tied like any other. Halving ends at [`LEAST`], where two modes that still cannot be told apart meet;
+//! then only what is clear by itself is kept. It ends as well where the work of the whole sweep is spent
+//! ([`MOST_WORK`]): over a step that is not clear by then nothing is followed.
 
 use num_complex::Complex64;
 use rayon::prelude::*;
@@ -15,8 +16,16 @@ use super::ties::{Step, Tie, Ties, between};
 /// Shortest step in `u`: below it neighbours differ by rounding alone.
 pub(super) const LEAST: f64 = 1.0 / (1u64 << 40) as f64;
 
-/// Most points put between two reported ones.
-const MOST_BETWEEN: usize = 400;
+/// Work that points put in between may take over a whole sweep, as evaluations of the characteristic function: a few
+/// seconds. A sweep over a delay of a few periods takes a tenth of it.
+const MOST_WORK: usize = 5_000_000;
+
+/// Points put between two reported ones, in turn: what few points make clear is never left for what many do not.
+const ALLOWANCES: [usize; 4] = [16, 64, 256, 4096];
+
+/// Steps halved at once, and pairs of reported points looked at together. Fixed, so that what is spent does not depend
+/// on the number of threads.
+const AT_ONCE: usize = 32;
 
 /// An edge of the window.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -86,52 +95,136 @@ impl Known {
     }
 }
 
-/// Follows every node from one usable sample to another.
-pub(super) fn follow(ground: &Ground<'_>, left: &Sample, right: &Sample) -> Stretch {
-    let mut samples = vec![left.clone(), right.clone()];
-    let mut steps = vec![Known::of(ground, left, right)];
-    let mut budget = MOST_BETWEEN;
-    loop {
-        let is_open = |i: &usize| matches!(steps[*i], Known::Open);
-        let open: Vec<usize> = (0..steps.len()).filter(is_open).take(budget).collect();
-        if open.is_empty() {
-            break;
+/// Two reported points with what was put in between so far.
+struct Track {
+    samples: Vec<Sample>,
+    steps: Vec<Known>,
+}
+
+impl Track {
+    fn new(ground: &Ground<'_>, left: &Sample, right: &Sample) -> Self {
+        Track {
+            samples: vec![left.clone(), right.clone()],
+            steps: vec![Known::of(ground, left, right)],
         }
-        budget -= open.len();
-        let halves: Vec<Option<(Sample, [Known; 2])>> = open
-            .par_iter()
-            .map(|&i| halves(ground, &samples[i], &samples[i + 1]))
+    }
+
+    /// Steps to be halved, with their lengths; no more than the allowance still permits, the longest first.
+    fn open(&self, allowance: usize) -> Vec<(f64, usize)> {
+        let steps = self.samples.windows(2).zip(&self.steps).enumerate();
+        let mut open: Vec<(f64, usize)> = steps
+            .filter(|(_, (_, known))| matches!(known, Known::Open))
+            .filter_map(|(i, (ends, _))| Some((ends.last()?.u - ends.first()?.u, i)))
             .collect();
-        for (i, halves) in open.into_iter().zip(halves).rev() {
+        open.sort_by(|a, b| b.0.total_cmp(&a.0).then(a.1.cmp(&b.1)));
+        open.truncate((allowance + 2).saturating_sub(self.samples.len()));
+        open
+    }
+
+    /// Puts halves in their places; the steps in any order. Tells the work they took.
+    fn put(&mut self, mut halves: Vec<(usize, Halves)>) -> usize {
+        halves.sort_by_key(|(i, _)| std::cmp::Reverse(*i));
+        let mut work = 0;
+        for (i, halves) in halves {
             match halves {
                 Some((middle, both)) => {
-                    samples.insert(i + 1, middle);
-                    steps.splice(i..=i, both);
+                    work += middle.effort.evaluations;
+                    self.samples.insert(i + 1, middle);
+                    self.steps.splice(i..=i, both);
                 }
-                None => steps[i] = Known::Stuck,
+                None => {
+                    if let Some(step) = self.steps.get_mut(i) {
+                        *step = Known::Stuck;
+                    }
+                }
+            }
+        }
+        work
+    }
+
+    fn stretch(mut self, ground: &Ground<'_>) -> Stretch {
+        let mut stretch = Stretch::default();
+        for (ends, known) in self.samples.windows(2).zip(self.steps) {
+            let [a, b] = ends else { continue };
+            stretch.links.push(match known {
+                Known::Clear(link) => link,
+                Known::Stuck => Attempt::new(ground, a, b).whatever_holds(),
+                Known::Open => {
+                    stretch.unresolved.push((a.u, b.u));
+                    Link {
+                        lost: (0..a.nodes.len()).collect(),
+                        found: (0..b.nodes.len()).collect(),
+                        ..Link::default()
+                    }
+                }
+            });
+        }
+        self.samples.pop();
+        self.samples.drain(..1);
+        stretch.between = self.samples;
+        stretch
+    }
+}
+
+type Halves = Option<(Sample, [Known; 2])>;
+
+/// Follows every node of each sample to the next.
+pub(super) fn follow(ground: &Ground<'_>, pairs: &[(&Sample, &Sample)]) -> Vec<Stretch> {
+    let mut tracks: Vec<Track> = pairs
+        .par_iter()
+        .map(|(left, right)| Track::new(ground, left, right))
+        .collect();
+    let mut spent = 0;
+    'all: for allowance in ALLOWANCES {
+        for some in tracks.chunks_mut(AT_ONCE) {
+            loop {
+                if spent >= MOST_WORK {
+                    break 'all;
+                }
+                let tracks = some.iter().enumerate();
+                let mut open: Vec<(f64, usize, usize)> = tracks
+                    .flat_map(|(k, t)| t.open(allowance).into_iter().map(move |(h, i)| (h, k, i)))
+                    .collect();
+                if open.is_empty() {
+                    break;
+                }
+                open.sort_by(|a, b| b.0.total_cmp(&a.0).then((a.1, a.2).cmp(&(b.1, b.2))));
+                open.truncate(AT_ONCE);
+                let halves: Vec<(usize, (usize, Halves))> = open
+                    .par_iter()
+                    .filter_map(|&(_, k, i)| {
+                        let samples = &some.get(k)?.samples;
+                        let halves = halves(ground, samples.get(i)?, samples.get(i + 1)?);
+                        Some((k, (i, halves)))
+                    })
+                    .collect();
+                let mut of: Vec<Vec<(usize, Halves)>> = some.iter().map(|_| Vec::new()).collect();
+                for (k, one) in halves {
+                    of[k].push(one);
+                }
+                for (track, halves) in some.iter_mut().zip(of) {
+                    spent += track.put(halves);
+                }
             }
         }
     }
-    let mut stretch = Stretch::default();
-    for (ends, known) in samples.windows(2).zip(steps) {
-        let (a, b) = (&ends[0], &ends[1]);
-        if matches!(known, Known::Open) {
-            stretch.unresolved.push((a.u, b.u));
-        }
-        stretch.links.push(match known {
-            Known::Clear(link) => link,
-            Known::Open | Known::Stuck => Attempt::new(ground, a, b).whatever_holds(),
-        });
-    }
-    samples.pop();
-    samples.remove(0);
-    stretch.between = samples;
-    stretch
+    tracks.into_par_iter().map(|t| t.stretch(ground)).collect()
 }
 
 /// A step in two, where the list in its middle can be followed.
-fn halves(ground: &Ground<'_>, left: &Sample, right: &Sample) -> Option<(Sample, [Known; 2])> {
-    let middle = ground.sample(0.5 * (left.u + right.u), false);
+///
+/// Both ends say where its modes are to be expected.
+fn halves(ground: &Ground<'_>, left: &Sample, right: &Sample) -> Halves {
+    let h = 0.5 * (right.u - left.u);
+    let mut starts: Vec<Complex64> = left.nodes.iter().map(|n| n.predicted(h)).collect();
+    for node in &right.nodes {
+        let at = node.predicted(-h);
+        let known = |s: &Complex64| (s - at).norm() < 0.1 * node.radius;
+        if !starts.iter().any(known) {
+            starts.push(at);
+        }
+    }
+    let middle = ground.sample(0.5 * (left.u + right.u), false, &starts);
     middle.usable().then(|| {
         let both = [
             Known::of(ground, left, &middle),

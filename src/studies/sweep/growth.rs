@@ -5,10 +5,11 @@
 
 use super::follow::Edge;
 use super::reading::neutral;
-use super::sample::{Ground, Sample};
-use super::{Branch, Event, Fastest, Place, Sweep, Woven, add, weave};
+use super::sample::{Ground, Sample, Verdict};
+use super::{Branch, Event, Fastest, Place, Point, Sweep, Woven, add, crossing, weave};
 use crate::modes::{Tendency, Window};
 
+use num_complex::Complex64;
 use rayon::prelude::*;
 
 /// How far the window of growth reaches below zero and beyond the growth rate searched at the points, over
@@ -19,18 +20,28 @@ const ROOM: f64 = 0.25;
 /// in it, however flat the window asked for.
 const LEAST_ROOM: f64 = 0.05;
 
-/// Finds the unstable stretches of a sweep and its fastest mode.
-pub(super) fn judge(ground: &Ground<'_>, sweep: &mut Sweep) {
-    let (stretches, fastest) = of(&sweep.branches, &sweep.events, |_| true, |_| true);
-    let mut all = stretches;
-    sweep.fastest = fastest;
+/// Finds the unstable stretches of a sweep and its fastest mode, given whether modes can be followed from each point.
+pub(super) fn judge(ground: &Ground<'_>, sweep: &mut Sweep, usable: &[bool]) {
+    let all = |_: &Place| true;
+    let (mut unstable, inside) = of(&sweep.branches, &sweep.events, all, all);
+    let loose = greatest(sweep.unfollowed.iter());
+    sweep.fastest = inside
+        .map(|at| at.refined(ground, &sweep.branches))
+        .into_iter()
+        .chain(loose)
+        .max_by(|a, b| a.s.re.total_cmp(&b.s.re));
     let window = window_of_growth(sweep);
     let wide = Ground { window, ..*ground };
-    let samples: Vec<Sample> = sweep
-        .points
-        .par_iter()
-        .map(|p| wide.sample(p.u, false))
-        .collect();
+    let sample = |(p, usable): (&Point, &bool)| {
+        // Where modes may be missing in the window they may be in the larger one; to see that again takes long.
+        if !usable {
+            return Sample::unknown(p.u, Verdict::Doubtful("see the window asked for".into()));
+        }
+        let known = p.modes.iter().map(|(_, m)| m.s);
+        let starts: Vec<Complex64> = known.chain(p.outside.fastest.map(|m| m.s)).collect();
+        wide.sample(p.u, false, &starts)
+    };
+    let samples: Vec<Sample> = sweep.points.par_iter().zip(usable).map(sample).collect();
     let woven: Woven = weave(&wide, &samples);
     let asked = ground.window.rectangle();
     // What lies beyond the growth rate searched at the points about it is no more known of than at those.
@@ -48,8 +59,10 @@ pub(super) fn judge(ground: &Ground<'_>, sweep: &mut Sweep) {
     let runs = woven.branches.iter().flat_map(|b| runs(b, grows_outside));
     sweep.growing_outside = runs.collect();
     let (stretches, fastest) = of(&woven.branches, &woven.events, known, outside);
-    all.extend(stretches);
-    let outside = fastest.map(|f| Fastest { branch: None, ..f });
+    unstable.extend(stretches);
+    let followed = fastest.map(|f| f.refined(&wide, &woven.branches));
+    let loose = woven.loose.iter().copied();
+    let loose: Vec<Place> = loose.filter(grows_outside).collect();
     let at_points = sweep.points.iter().filter_map(|p| {
         p.outside.fastest.map(|m| Fastest {
             u: p.u,
@@ -57,17 +70,23 @@ pub(super) fn judge(ground: &Ground<'_>, sweep: &mut Sweep) {
             branch: None,
         })
     });
-    let found = sweep.fastest.into_iter().chain(outside).chain(at_points);
-    sweep.fastest = found.max_by(|a, b| a.s.re.total_cmp(&b.s.re));
+    let found = followed.map(|f| Fastest { branch: None, ..f }).into_iter();
+    let found = found.chain(greatest(loose.iter())).chain(at_points);
+    let by_growth = |a: &Fastest, b: &Fastest| a.s.re.total_cmp(&b.s.re);
+    sweep.fastest_outside = found.filter(|f| f.s.re > 0.0).max_by(by_growth);
+    let both = sweep.fastest.into_iter().chain(sweep.fastest_outside);
+    sweep.fastest = both.max_by(by_growth);
+    sweep.unfollowed.extend(loose);
     // Where that window has no list to go by, growth is known from point to point.
     for (i, (point, sample)) in sweep.points.iter().zip(&samples).enumerate() {
         if point.outside.fastest.is_some() && !sample.usable() {
             let u = |i: usize| sweep.points.get(i).map_or(point.u, |p| p.u);
-            all.push((u(i.saturating_sub(1)), u(i + 1)));
+            unstable.push((u(i.saturating_sub(1)), u(i + 1)));
         }
     }
-    all.extend(in_doubt(&woven, known));
-    sweep.unstable = joined(all);
+    sweep.taken_for_unstable = joined(in_doubt(&woven, known), 0.0);
+    unstable.extend(&sweep.taken_for_unstable);
+    sweep.unstable = joined(unstable, 0.0);
     for sample in &samples {
         add(&mut sweep.effort, &sample.effort);
     }
@@ -99,7 +118,8 @@ fn runs(branch: &Branch, holds: impl Fn(&Place) -> bool) -> Vec<Branch> {
 /// Steps over which modes move too fast to be followed and at an end of which some mode grows: nothing says that it does
 /// not all along.
 fn in_doubt(woven: &Woven, known: impl Fn(&Place) -> bool) -> Vec<(f64, f64)> {
-    let places = woven.branches.iter().flat_map(|b| &b.trace);
+    let followed = woven.branches.iter().flat_map(|b| &b.trace);
+    let places = followed.chain(&woven.loose);
     let grows = places.filter(|p| p.tendency() == Tendency::Grows && known(p));
     let mut at: Vec<f64> = grows.map(|p| p.u).collect();
     at.sort_by(f64::total_cmp);
@@ -118,13 +138,19 @@ fn of(
     known: impl Fn(&Place) -> bool,
     count: impl Fn(&Place) -> bool,
 ) -> (Vec<(f64, f64)>, Option<Fastest>) {
+    let mut changes: Vec<Vec<&Event>> = branches.iter().map(|_| Vec::new()).collect();
+    for event in neutral(events, None) {
+        for b in &event.branches {
+            changes[*b].push(event);
+        }
+    }
     let mut stretches = Vec::new();
     let mut fastest: Option<Fastest> = None;
     for (i, branch) in branches.iter().enumerate() {
         if !branch.trace.iter().any(&known) {
             continue;
         }
-        stretches.extend(branch.growing(neutral(events, Some(i))));
+        stretches.extend(branch.growing(changes[i].iter().copied()));
         for place in branch.trace.iter().filter(|p| known(p) && count(p)) {
             if fastest.is_none_or(|f| f.s.re < place.s.re) {
                 fastest = Some(Fastest {
@@ -138,6 +164,42 @@ fn of(
     (stretches, fastest)
 }
 
+/// The fastest of places that are on no branch.
+fn greatest<'p>(places: impl Iterator<Item = &'p Place>) -> Option<Fastest> {
+    let by_growth = |a: &&Place, b: &&Place| a.s.re.total_cmp(&b.s.re);
+    places.max_by(by_growth).map(|p| Fastest {
+        u: p.u,
+        s: p.s,
+        branch: None,
+    })
+}
+
+impl Fastest {
+    /// The summit of the branch beside the place of it that is highest.
+    fn refined(self, ground: &Ground<'_>, branches: &[Branch]) -> Fastest {
+        let trace = self.branch.and_then(|b| branches.get(b)).map(|b| &b.trace);
+        let ends = trace.and_then(|trace| {
+            let i = trace.iter().position(|p| p.u == self.u && p.s == self.s)?;
+            let here = trace.get(i)?;
+            if here.velocity.re > 0.0 {
+                Some((*here, *trace.get(i + 1).filter(|p| !p.gap_before)?))
+            } else {
+                let before = i.checked_sub(1).filter(|_| !here.gap_before);
+                Some((*trace.get(before?)?, *here))
+            }
+        });
+        let summit = ends.and_then(|(a, b)| crossing::summit(ground, a, b));
+        match summit.filter(|p| p.s.re > self.s.re) {
+            Some(p) => Fastest {
+                u: p.u,
+                s: p.s,
+                ..self
+            },
+            None => self,
+        }
+    }
+}
+
 fn window_of_growth(sweep: &Sweep) -> Window {
     let (low, high) = sweep.window.growth;
     let least = LEAST_ROOM * sweep.window.rectangle().omega.1;
@@ -149,13 +211,13 @@ fn window_of_growth(sweep: &Sweep) -> Window {
     }
 }
 
-/// Stretches in order, those that touch as one.
-pub(super) fn joined(mut all: Vec<(f64, f64)>) -> Vec<(f64, f64)> {
+/// Stretches in order, those no farther from each other than `gap` as one.
+pub(super) fn joined(mut all: Vec<(f64, f64)>, gap: f64) -> Vec<(f64, f64)> {
     all.sort_by(|a, b| a.0.total_cmp(&b.0));
     let mut joined: Vec<(f64, f64)> = Vec::new();
     for (from, to) in all {
         match joined.last_mut() {
-            Some(last) if from <= last.1 => last.1 = last.1.max(to),
+            Some(last) if from <= last.1 + gap => last.1 = last.1.max(to),
             _ => joined.push((from, to)),
         }
     }

@@ -72,11 +72,6 @@ impl Sweep {
         self.unresolved.get(i).is_some_and(|(from, _)| *from <= u)
     }
 
-    /// Whether a branch is a piece of modes that move too fast to be followed: all of it lies where they do.
-    pub fn is_piece(&self, branch: &Branch) -> bool {
-        !self.unresolved.is_empty() && branch.trace.iter().all(|p| self.is_unresolved(p.u))
-    }
-
     /// How many points are certified, not certified, and without an answer.
     pub fn tally(&self) -> (usize, usize, usize) {
         let mut tally = (0, 0, 0);

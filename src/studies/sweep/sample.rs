@@ -76,6 +76,18 @@ pub(super) struct Sample {
 }
 
 impl Sample {
+    /// A position whose modes are not known.
+    pub fn unknown(u: f64, verdict: Verdict) -> Self {
+        Sample {
+            u,
+            verdict,
+            nodes: Vec::new(),
+            symmetric: false,
+            effort: Effort::default(),
+            outside: Outside::default(),
+        }
+    }
+
     /// Whether modes can be followed from here.
     pub fn usable(&self) -> bool {
         matches!(self.verdict, Verdict::Complete | Verdict::Followable(_))
@@ -206,26 +218,17 @@ impl Ground<'_> {
         })
     }
 
-    /// The certified list at a position; a reported point is also searched for growth beyond the window.
-    pub fn sample(&self, u: f64, reported: bool) -> Sample {
+    /// The certified list at a position, with places near which modes are to be expected; a reported point is also
+    /// searched for growth beyond the window.
+    pub fn sample(&self, u: f64, reported: bool, starts: &[Complex64]) -> Sample {
         let live = match self.live(u) {
             Ok(live) => live,
             Err(problem) => {
-                return Sample {
-                    u,
-                    verdict: Verdict::Failed(problem),
-                    nodes: Vec::new(),
-                    symmetric: false,
-                    effort: Effort::default(),
-                    outside: Outside::default(),
-                };
+                return Sample::unknown(u, Verdict::Failed(problem));
             }
         };
-        let found = zeros::search(
-            live.function(),
-            &self.window.rectangle(),
-            Scan::UntilCounted,
-        );
+        let window = self.window.rectangle();
+        let found = zeros::search_from(live.function(), &window, Scan::UntilCounted, starts);
         let none_missing = |d: &Doubt| matches!(d, Doubt::OnEdge { .. } | Doubt::Coarse { .. });
         let verdict = match found.doubts.first() {
             None => Verdict::Complete,

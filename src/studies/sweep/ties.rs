@@ -226,6 +226,8 @@ const PLACES: usize = 8;
 struct Bent {
     places: [Complex64; PLACES + 1],
     bend: f64,
+    /// No place of it lies farther from the first.
+    reach: f64,
     on_axis: bool,
 }
 
@@ -243,9 +245,12 @@ impl Bent {
                 k as f64 / PLACES as f64,
             )
         };
+        let places: [Complex64; PLACES + 1] = std::array::from_fn(place);
+        let away = places.iter().map(|z| (z - places[0]).norm());
         Bent {
-            places: std::array::from_fn(place),
+            places,
             bend: turn + miss,
+            reach: away.fold(0.0, f64::max),
             on_axis: a.on_axis && b.on_axis,
         }
     }
@@ -258,6 +263,12 @@ impl Bent {
     }
 
     fn keeps_from(&self, other: &Bent) -> bool {
+        // Most pairs are so far from each other that a look at one place says it.
+        let first = (self.places[0] - other.places[0]).norm();
+        let reach = self.reach + other.reach;
+        if reach <= 0.5 * first && first - reach > 2.0 * (self.bend + other.bend) {
+            return true;
+        }
         let apart: [Complex64; PLACES + 1] =
             std::array::from_fn(|k| self.places[k] - other.places[k]);
         let least = apart
