@@ -1,5 +1,6 @@
 //! From a window to a certified list of modes.
 
+mod blur;
 pub mod budget;
 pub mod explain;
 pub mod margins;
@@ -27,7 +28,8 @@ pub use window::{Window, cut_on};
 pub struct Mode {
     /// `s = growth + 2 pi i frequency` (1/s).
     pub s: Complex64,
-    /// The exact eigenvalue of the model lies no farther from `s` than this (1/s).
+    /// The exact eigenvalue lies no farther from `s` than this (1/s): proved for the model's coefficients as they are
+    /// computed; [`find`] adds what their rounding was seen to move it.
     pub error_bound: f64,
     /// Number of modes that coincide within `error_bound`.
     pub multiplicity: u8,
@@ -132,12 +134,14 @@ pub fn solve(network: &Network) -> Result<Solved, Problems> {
     Ok(Solved { mean, acoustics })
 }
 
-/// Finds every mode in a window.
+/// Finds every mode in a window. Errors of the modes hold what rounding of the coefficients leaves open.
 pub fn find(solved: &Solved, window: Window, scan: Scan) -> ModeList {
-    find_from(&solved.acoustics, window, scan, &[])
+    let mut list = find_from(&solved.acoustics, window, scan, &[]);
+    blur::widen(&solved.acoustics.chain, &mut list.modes);
+    list
 }
 
-/// The same, trying first where zeros are to be expected: those met in a network much like this one.
+/// The same with errors for the coefficients as they are, trying first where zeros are to be expected: those met in a network much like this one.
 pub fn find_from(
     acoustics: &Acoustics<f64>,
     window: Window,
