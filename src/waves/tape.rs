@@ -5,7 +5,7 @@
 //! Map     v -> (C + sum_k F_k(s) B_k) v   constant real matrices C, B_k; laws F_k
 //! ```
 //!
-//! The vector starts as `(1)` and ends as `(D)`. Each arithmetic runs the same program: Taylor series
+//! The vector starts with ones and zeros and ends as `(D)`. Each arithmetic runs the same program: Taylor series
 //! in `s` over numbers or duals, and the *majorant*, in which every coefficient is replaced by its
 //! modulus and every law by a bound of its derivatives, so that the result bounds `|D^(k)|/k!`.
 
@@ -88,6 +88,8 @@ enum Op<T> {
 /// A compiled characteristic function `D(s)`.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Tape<T> {
+    /// Which slots are one at the start; the others are zero.
+    start: Vec<bool>,
     ops: Vec<Op<T>>,
     width: usize,
     rounding: Rounding,
@@ -225,6 +227,7 @@ impl<T: Copy> Tape<T> {
             },
         };
         Tape {
+            start: self.start.clone(),
             ops: self.ops.iter().map(op).collect(),
             width: self.width,
             rounding: self.rounding,
@@ -248,7 +251,9 @@ impl<T: Real> Tape<T> {
     fn run_in<A: Arithmetic<T>, const W: usize>(&self, arithmetic: &A) -> A::Element {
         let (mut one, mut other) = ([arithmetic.zero(); W], [arithmetic.zero(); W]);
         let (mut v, mut next) = (&mut one, &mut other);
-        v[0] = arithmetic.one();
+        for (v, _) in v.iter_mut().zip(&self.start).filter(|(_, one)| **one) {
+            *v = arithmetic.one();
+        }
         for op in &self.ops {
             match op {
                 Op::Scale { delay, slots } => {

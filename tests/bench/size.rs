@@ -54,7 +54,9 @@ exit = { end = "reflection", coefficient = -0.95 }
     for i in 0..elements {
         text += &if i % 2 == 0 {
             let diameter = if wide { 100 } else { 60 };
-            format!("[[element]]\nname = \"duct_{i}\"\nkind = \"duct\"\nlength = \"{length} m\"\ndiameter = \"{diameter} mm\"\n")
+            format!(
+                "[[element]]\nname = \"duct_{i}\"\nkind = \"duct\"\nlength = \"{length} m\"\ndiameter = \"{diameter} mm\"\n"
+            )
         } else if i == (elements / 2) | 1 {
             FLAME.to_owned()
         } else {
@@ -92,7 +94,9 @@ fn elements() -> Outcome<String> {
             tape.values_and_slopes(&points, &mut found);
         }) / points.len() as f64;
         let r = rig.window.rectangle();
-        let count = median(500, || Walker::new(tape).symmetric(r.growth, r.omega.1).ok());
+        let count = median(500, || {
+            Walker::new(tape).symmetric(r.growth, r.omega.1).ok()
+        });
         let list = || modes::find_from(&rig.solved.acoustics, rig.window, Scan::UntilCounted, &[]);
         let assembly = median(500, || acoustics::assemble(&rig.network, &rig.solved.mean));
         text += &format!(
@@ -119,7 +123,9 @@ fn windows() -> Outcome<String> {
             ..rig.window
         };
         let r = window.rectangle();
-        let count = median(500, || Walker::new(tape).symmetric(r.growth, r.omega.1).ok());
+        let count = median(500, || {
+            Walker::new(tape).symmetric(r.growth, r.omega.1).ok()
+        });
         let list = || modes::find_from(&rig.solved.acoustics, window, Scan::UntilCounted, &[]);
         text += &format!(
             "| to {top} Hz | {} | {} | {} |\n",

@@ -97,15 +97,13 @@ fn place<L: Lanes>(at: &[Complex64; LANES]) -> Cx<L> {
 
 #[inline(always)]
 fn append<L: Lanes>(d: Cx<L>, slope: Cx<L>, number: usize, to: &mut Vec<(Complex64, Complex64)>) {
-    let zero = Complex64::new(0.0, 0.0);
-    let mut eight = [(zero, zero); LANES];
     let (re, im) = (scattered(d.re), scattered(d.im));
     let (slope_re, slope_im) = (scattered(slope.re), scattered(slope.im));
-    for i in 0..LANES {
-        eight[i].0 = Complex64::new(re[i], im[i]);
-        eight[i].1 = Complex64::new(slope_re[i], slope_im[i]);
-    }
-    to.extend_from_slice(&eight[..number.min(LANES)]);
+    let pair = |i: usize| {
+        let d = Complex64::new(re[i], im[i]);
+        (d, Complex64::new(slope_re[i], slope_im[i]))
+    };
+    to.extend((0..number.min(LANES)).map(pair));
 }
 
 impl<const W: usize> Job for Slopes<'_, W> {

@@ -116,9 +116,11 @@ impl<T: Real> Writer<T> {
             return None;
         }
         let factor = balance(&mut self.ops);
+        let start = self.start();
         let mut tape = Tape {
             ops: Vec::with_capacity(self.ops.len()),
-            width: 1,
+            width: start.len(),
+            start,
             rounding: Rounding {
                 values: 0.0,
                 arguments: 2.0,
@@ -172,6 +174,32 @@ impl<T: Real> Writer<T> {
         // First-order error analysis: a margin for the terms of second order.
         tape.rounding.values *= 1.1;
         Some((tape, factor))
+    }
+}
+
+impl<T: Real> Writer<T> {
+    /// The vector the program starts from, ones and zeros: that of its first map, which then is left out, where it is
+    /// constant. Balanced, a row of one coefficient is one.
+    fn start(&mut self) -> Vec<bool> {
+        let ones = match self.ops.first() {
+            Some(Pending::Map { constant, lawful }) if lawful.is_empty() => {
+                let one = |x: &T| (*x - 1.0).is_exactly_zero();
+                let column = |row: &Vec<T>| match row.as_slice() {
+                    [x] if one(x) => Some(true),
+                    [x] if x.is_exactly_zero() => Some(false),
+                    _ => None,
+                };
+                constant.iter().map(column).collect::<Option<Vec<bool>>>()
+            }
+            _ => None,
+        };
+        match ones {
+            Some(ones) => {
+                self.ops.remove(0);
+                ones
+            }
+            None => vec![true],
+        }
     }
 }
 
