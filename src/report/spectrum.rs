@@ -214,7 +214,13 @@ impl SpectrumReport<'_> {
                     true => with_interval(i),
                     false => format!("below {}", significant(i.high, 2)),
                 };
-                let told = evidence.as_ref().map_or("not weighed".to_owned(), |e| {
+                let refused = match channel.clipped {
+                    0 => "not weighed".to_owned(),
+                    n => format!(
+                        "not weighed: {n} samples are clipped, and a clipped envelope is steady"
+                    ),
+                };
+                let told = evidence.as_ref().map_or(refused, |e| {
                     format!(
                         "{}: {} from {} independent, log-likelihood gain {}",
                         verdict(e.verdict),
