@@ -147,7 +147,7 @@ fn a_record_is_told_in_words_files_and_json() {
 
 /// A tone without any noise of its own, as of a siren, has no width: either its amplitude is right, or that it is not is said.
 #[test]
-fn a_pure_tone_is_told_right_or_warned_of() {
+fn a_pure_tone_has_its_amplitude() {
     let folder = tempfile::tempdir().unwrap();
     let path = record_of(folder.path(), 40.0, 0.0);
     let (value, code) = json(&[path.to_str().unwrap(), "--frequency", "50 to 600 Hz"]);
