@@ -147,19 +147,15 @@ fn a_record_is_told_in_words_files_and_json() {
 
 /// A tone without any noise of its own, as of a siren, has no width: either its amplitude is right, or that it is not is said.
 #[test]
-fn a_pure_tone_is_told_right_or_warned_of() {
+fn a_pure_tone_has_its_amplitude() {
     let folder = tempfile::tempdir().unwrap();
     let path = record_of(folder.path(), 40.0, 0.0);
     let (value, code) = json(&[path.to_str().unwrap(), "--frequency", "50 to 600 Hz"]);
     assert_eq!(code, Some(0));
     let peaks = value["channels"][0]["peaks"].as_array().unwrap();
     let rms = peaks[1]["rms"]["value"].as_f64().unwrap() * 2f64.sqrt() / 100.0;
-    let warned = value["warnings"]
-        .as_array()
-        .unwrap()
-        .iter()
-        .any(|w| w["subject"] == "p1" && w["message"].as_str().unwrap().contains("70.7"));
-    assert!((rms - 1.0).abs() < 0.05 || warned, "{rms} {value:#}");
+    // Amplitude by the bins about it: the fit of a noisy line is not asked.
+    assert!((rms - 1.0).abs() < 0.005, "{rms} {value:#}");
 }
 
 /// Noise clipped hard has a steady envelope and must not pass for a cycle.
@@ -189,6 +185,106 @@ fn a_clipped_channel_is_not_weighed() {
         told.contains("is clipped") && told.contains("upper limit 40"),
         "{told}"
     );
+}
+
+/// Noise alone, clipped anywhere from where it hardly matters to where little is left: no level makes a cycle of it, and where no verdict is given the
+/// reason is.
+#[test]
+fn noise_clipped_at_any_level_is_no_cycle() {
+    let folder = tempfile::tempdir().unwrap();
+    let (nu, f) = (20.0_f64, 180.0);
+    let a = (-nu / RATE).exp();
+    let (c, s) = ((TAU * f / RATE).cos() * a, (TAU * f / RATE).sin() * a);
+    let kick = (1.0 - a * a).sqrt();
+    for (i, level) in [0.1, 0.3, 0.6, 1.0, 1.5, 2.0, 2.5, 3.0, 3.5, 4.5]
+        .into_iter()
+        .enumerate()
+    {
+        let mut rng = fastrand::Rng::with_seed(70 + i as u64);
+        let (mut x, mut y) = (0.0, 0.0);
+        let mut text = String::from("time [s],p1 [Pa]\n");
+        for i in 0..(30.0 * RATE) as usize {
+            (x, y) = (
+                c * x - s * y + kick * deviate(&mut rng),
+                s * x + c * y + kick * deviate(&mut rng),
+            );
+            let p: f64 = x + 0.02 * deviate(&mut rng);
+            text += &format!("{:.8},{:.5}\n", i as f64 / RATE, p.clamp(-level, level));
+        }
+        let path = folder.path().join("run.csv");
+        std::fs::write(&path, text).unwrap();
+        let (value, code) = json(&[path.to_str().unwrap(), "--frequency", "50 to 600 Hz"]);
+        assert_eq!(code, Some(0));
+        let peaks = value["channels"][0]["peaks"].as_array().unwrap();
+        assert!(!peaks.is_empty(), "{level}");
+        for peak in peaks {
+            let verdict = &peak["evidence"]["verdict"];
+            assert_ne!(verdict, "self-sustained cycle", "{level} {peak}");
+        }
+        if peaks.iter().any(|p| p["evidence"].is_null()) {
+            assert!(
+                value["warnings"].to_string().contains("is clipped"),
+                "{level}"
+            );
+            let told = text_of(&path);
+            assert!(
+                told.contains("not weighed: ") && told.contains("clipped"),
+                "{told}"
+            );
+        }
+    }
+}
+
+fn text_of(path: &Path) -> String {
+    text(&stillflame(&[path.to_str().unwrap(), "--frequency", "50 to 600 Hz"]).stdout)
+}
+
+/// What comes by a pipe is read as from a file, whatever its format.
+#[test]
+fn a_record_may_come_by_a_pipe() {
+    let folder = tempfile::tempdir().unwrap();
+    let csv = record(folder.path(), 6.0);
+    let wav = Path::new(env!("CARGO_MANIFEST_DIR")).join("examples/records/swirl_rig.wav");
+    let names = [
+        "--names",
+        "p1, p2",
+        "--calibration",
+        "p1 = 1 kPa",
+        "--calibration",
+        "p2 = 1 kPa",
+    ];
+    for (path, more) in [(csv.as_path(), &names[..0]), (wav.as_path(), &names[..])] {
+        let ask = |name: &str, input: Option<&Path>| {
+            let mut command = Command::new(env!("CARGO_BIN_EXE_stillflame"));
+            command.args(["spectrum", name, "--json"]).args(more);
+            let mut child = command
+                .stdin(std::process::Stdio::piped())
+                .stdout(std::process::Stdio::piped())
+                .spawn()
+                .unwrap();
+            let mut pipe = child.stdin.take().unwrap();
+            let bytes = input.map(|p| std::fs::read(p).unwrap());
+            let writer = std::thread::spawn(move || {
+                use std::io::Write;
+                if let Some(bytes) = bytes {
+                    pipe.write_all(&bytes).unwrap();
+                }
+            });
+            let output = child.wait_with_output().unwrap();
+            writer.join().unwrap();
+            assert!(output.status.success(), "{name}");
+            serde_json::from_slice::<Value>(&output.stdout).unwrap()
+        };
+        let want = ask(path.to_str().unwrap(), None);
+        for (name, told) in [("-", "standard input"), ("/dev/stdin", "/dev/stdin")] {
+            let mut got = ask(name, Some(path));
+            assert_eq!(got["record"]["file"], told);
+            got["record"]["file"] = want["record"]["file"].clone();
+            assert_eq!(got, want, "{name}");
+        }
+    }
+    let empty = stillflame(&["-"]);
+    assert!(!empty.status.success());
 }
 
 /// A recess as in a closed quarter-wave line: the amplitudes of the wall are lower than those of the sensor.

@@ -87,6 +87,9 @@ fn pressure(shape: &Shape, x: f64) -> Complex64 {
     }
 }
 
+/// First stream of the sensors' own noise; those before are the modes'.
+const SENSORS: u64 = 1000;
+
 /// Normal deviates (Box & Muller 1958).
 pub struct Noise(fastrand::Rng);
 
@@ -94,6 +97,19 @@ impl Noise {
     /// From a seed.
     pub fn new(seed: u64) -> Noise {
         Noise(fastrand::Rng::with_seed(seed))
+    }
+
+    /// One of many independent streams of a seed. Neighbouring seeds of the generator give related numbers, so the seed is scattered first
+    /// (the finaliser of SplitMix64, Steele, Lea & Flood 2014).
+    pub fn stream(seed: u64, stream: u64) -> Noise {
+        const GOLDEN: u64 = 0x9e37_79b9_7f4a_7c15;
+        let scatter = |x: u64| {
+            let x = (x ^ (x >> 30)).wrapping_mul(0xbf58_476d_1ce4_e5b9);
+            let x = (x ^ (x >> 27)).wrapping_mul(0x94d0_49bb_1331_11eb);
+            x ^ (x >> 31)
+        };
+        let own = scatter(seed.wrapping_add(1).wrapping_mul(GOLDEN));
+        Noise::new(scatter(own ^ stream.wrapping_add(1).wrapping_mul(GOLDEN)))
     }
 
     /// The next.
@@ -187,7 +203,7 @@ pub fn play(parts: &[Part], names: &[String], sound: &Sound) -> Record {
     let growing = parts.iter().filter(|p| p.s.re >= 0.0).count().max(1) as f64;
     let mut samples = vec![vec![0.0; count]; names.len()];
     for (k, part) in parts.iter().enumerate() {
-        let mut noise = Noise::new(sound.seed.wrapping_mul(1009).wrapping_add(k as u64));
+        let mut noise = Noise::stream(sound.seed, k as u64);
         let mut add = |i: usize, a: Complex64| {
             for (channel, at) in samples.iter_mut().zip(&part.at) {
                 channel[i] += (at * a).re;
@@ -217,7 +233,7 @@ pub fn play(parts: &[Part], names: &[String], sound: &Sound) -> Record {
         }
     }
     for (i, channel) in samples.iter_mut().enumerate() {
-        let mut noise = Noise::new(sound.seed.wrapping_mul(1009).wrapping_add(500 + i as u64));
+        let mut noise = Noise::stream(sound.seed, SENSORS + i as u64);
         for x in channel.iter_mut() {
             *x += sound.sensor_noise * noise.next();
         }

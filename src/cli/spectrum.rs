@@ -29,7 +29,7 @@ use crate::units::{self, Dimension};
     after_help = "Example:\n  stillflame spectrum examples/records/swirl_rig.wav --network networks/swirl_rig.toml \\\n    --names \"p1, p2\" --calibration \"p1 = 1 kPa\" --calibration \"p2 = 1 kPa\" --out results"
 )]
 pub(super) struct Arguments {
-    /// The record (CSV, WAV or universal file)
+    /// The record (CSV, WAV or universal file); - for standard input
     #[arg(value_name = "RECORD")]
     pub record: PathBuf,
 
@@ -371,9 +371,10 @@ fn of_lines(arguments: &Arguments, spectrum: &MeasuredSpectrum) -> Result<Answer
 
 /// `run_12_peaks.csv`.
 fn file(record: &Path, what: &str) -> String {
-    let stem = record
-        .file_stem()
-        .map_or("record".into(), |s| s.to_string_lossy());
+    let stem = match record.file_stem() {
+        Some(stem) if stem != "-" => stem.to_string_lossy(),
+        _ => "record".into(),
+    };
     format!("{stem}_{what}")
 }
 

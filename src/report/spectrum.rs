@@ -100,6 +100,7 @@ impl SpectrumReport<'_> {
         text.push_str(&format!("\n{}\n\n", self.how()));
         text.push_str(&self.levels());
         text.push_str(&self.peaks());
+        text.push_str(&self.together());
         if !survey.pairs.is_empty() {
             text.push_str(&self.relations());
         }
@@ -213,7 +214,13 @@ impl SpectrumReport<'_> {
                     true => with_interval(i),
                     false => format!("below {}", significant(i.high, 2)),
                 };
-                let told = evidence.as_ref().map_or("not weighed".to_owned(), |e| {
+                let refused = match channel.clipped {
+                    0 => "not weighed".to_owned(),
+                    n => format!(
+                        "not weighed: {n} samples are clipped, and a clipped envelope is steady"
+                    ),
+                };
+                let told = evidence.as_ref().map_or(refused, |e| {
                     format!(
                         "{}: {} from {} independent, log-likelihood gain {}",
                         verdict(e.verdict),
@@ -243,6 +250,54 @@ impl SpectrumReport<'_> {
             false => "",
         };
         format!("{title}\n\n{}{corrected}", table.text())
+    }
+
+    /// Peaks that the channels of pressure share.
+    fn together(&self) -> String {
+        use Lean::{Left, Right};
+        let Some((channels, found)) = &self.survey.together else {
+            return String::new();
+        };
+        let mut table = Table::new(&[Right, Right, Right, Left]);
+        table.heading(&[
+            "frequency",
+            "full width at",
+            "decay rate",
+            "loudest, rms there",
+        ]);
+        table.heading(&["Hz", "half power, Hz", "1/s", ""]);
+        for peak in &found.peaks {
+            let Some(loudest) = channels
+                .get(peak.loudest)
+                .and_then(|i| self.survey.channels.get(*i))
+            else {
+                continue;
+            };
+            let bounded = |i: &Interval| match peak.resolved {
+                true => with_interval(i),
+                false => format!("below {}", significant(i.high, 2)),
+            };
+            table.row(vec![
+                with_interval(&peak.frequency),
+                bounded(&peak.width),
+                bounded(&peak.decay),
+                format!(
+                    "{}, {} {}",
+                    super::problems::visible(&loudest.signal.name),
+                    with_interval(&Self::corrected(loudest, peak)),
+                    loudest.signal.quantity.unit()
+                ),
+            ]);
+        }
+        if found.peaks.is_empty() {
+            return String::new();
+        }
+        format!(
+            "\nModes that the {} share, fitted to all of them together, with 95 % intervals: one that a neighbour hides\n\
+             at one place its shape may tell; rely on these frequencies and decay rates rather than on those of one channel\n\n{}",
+            format_args!("{} channels of pressure", channels.len()),
+            table.text()
+        )
     }
 
     /// Coherence and phase of every pair at the peaks of its first channel.

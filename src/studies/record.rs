@@ -11,7 +11,9 @@ use rayon::prelude::*;
 use crate::measured::nature::{self, Evidence};
 use crate::measured::peaks::{self, Peaks, Search};
 use crate::measured::reading::{Format, Recording, Signal};
-use crate::measured::{Detrend, Envelopes, Level, Plan, Row, Spectra, Spectrogram, Welch, Window};
+use crate::measured::{
+    Detrend, Envelopes, Level, Plan, Quantity, Row, Spectra, Spectrogram, Welch, Window,
+};
 use crate::problems::{Problem, Problems};
 
 /// How a record is analysed, where something else is asked for.
@@ -61,6 +63,9 @@ const BANKS: [f64; 4] = [1.0 / 16.0, 1.0 / 8.0, 1.0 / 4.0, 1.0 / 2.0];
 const ROWS: u64 = 120;
 const VALUES: usize = 4_000_000;
 
+/// How many channels of pressure are fitted together: more tell little more, and cost with the square of their number.
+const TOGETHER: std::ops::RangeInclusive<usize> = 2..=4;
+
 /// Most channels between which every pair is looked at; of more, each with the first.
 const ALL_PAIRS: usize = 6;
 
@@ -96,6 +101,8 @@ pub struct Survey {
     pub samples: u64,
     /// The channels.
     pub channels: Vec<Studied>,
+    /// Channels of pressure fitted together, and the peaks they share; `None` where there are fewer than two or more than four.
+    pub together: Option<(Vec<usize>, Peaks)>,
     /// Pairs of channels with a cross-spectrum.
     pub pairs: Vec<(usize, usize)>,
     /// Power densities and cross-spectra as measured.
@@ -222,6 +229,17 @@ pub fn survey(
             (found, evidence)
         })
         .collect();
+    let shared: Vec<usize> = (signals.iter().enumerate())
+        .filter(|(i, s)| {
+            s.quantity == Quantity::Pressure && !cut_off(*i) && constant.get(*i) == Some(&false)
+        })
+        .map(|(i, _)| i)
+        .collect();
+    let together = match TOGETHER.contains(&shared.len()) {
+        true => peaks::find_together(&spectra, &shared, search).ok(),
+        false => None,
+    };
+    let together = together.map(|found| (shared, found));
     let mut channels = Vec::with_capacity(count);
     let parts = signals
         .into_iter()
@@ -257,6 +275,7 @@ pub fn survey(
         start,
         samples,
         channels,
+        together,
         pairs,
         spectra,
         row_plan: row_plan.unwrap_or((plan, 1)),
@@ -425,16 +444,17 @@ const MISJUDGED: f64 = 1.33;
 /// Bins on either side of a peak that its power is summed over, at least.
 const ABOUT: f64 = 3.0;
 
-/// Peaks about which the fit has another power than the estimate: a tone far purer than a noisy record's lines, most often.
+/// Peaks wider than a bin about which the fit has another power than the estimate.
 fn misjudged(spectra: &Spectra, channel: usize, studied: &Studied, peaks: &Peaks) -> Vec<Problem> {
     let width = spectra.plan().bin_width();
     let density = spectra.density(channel);
     let mut found = Vec::new();
-    for peak in &peaks.peaks {
+    // The amplitude of a line is read off the spectrum itself.
+    for peak in peaks.peaks.iter().filter(|p| p.width.value > width) {
         let f = peak.frequency.value;
         let reach = (ABOUT * width).max(2.0 * peak.width.value);
         let (mut measured, mut fitted) = (0.0, 0.0);
-        for (at, fit) in peaks.frequency.iter().zip(&peaks.fitted) {
+        for (at, fit) in peaks.frequency.iter().zip(peaks.fitted.iter().flatten()) {
             if (at - f).abs() <= reach {
                 fitted += fit;
                 measured += density
@@ -450,10 +470,9 @@ fn misjudged(spectra: &Spectra, channel: usize, studied: &Studied, peaks: &Peaks
                 (measured * width).sqrt(),
                 studied.signal.quantity.unit()
             );
-            found.push(
-                Problem::warning(studied.signal.name.as_str(), what)
-                    .hint("a tone without noise has no width to fit; read its amplitude off a flat-top window"),
-            );
+            found.push(Problem::warning(studied.signal.name.as_str(), what).hint(
+                "look at the spectrogram: the record may drift, or the peak be none of a resonance",
+            ));
         }
     }
     found

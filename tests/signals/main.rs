@@ -4,6 +4,7 @@
 mod play;
 
 mod ground;
+mod heard;
 mod nature;
 mod peaks;
 mod response;

@@ -3,7 +3,7 @@
     python records.py TARGET/release/stillflame
 
 WAV by scipy.io.wavfile (whole numbers of 16 and 32 bits, floats of 32 and 64), dataset 58 by pyuff (text in
-single and double, binary in double), CSV by numpy. Levels and power densities must agree with what scipy.signal.welch gives for
+single and double, binary in double, and in single as pyuff reads it back), CSV by numpy. Levels and power densities must agree with what scipy.signal.welch gives for
 the samples as the file holds them: to 1e-10 of the largest, or to the digits that a text dataset keeps.
 """
 
@@ -61,6 +61,26 @@ def compare(name, told, channels, allowed):
     return worst <= allowed
 
 
+def singles(source, path):
+    """A binary file of doubles as one of singles: the number of bytes in the first line of a dataset, the type in its seventh, the values."""
+    rest, out = source.read_bytes(), b""
+    while rest:
+        lines = rest.split(b"\n", 13)
+        head, rest = lines[:13], lines[13]
+        # -1, 58b ... bytes, five titles, the identification, type and abscissa, four axes.
+        count = int(head[1].split()[4])
+        head[1] = head[1].replace(b"%12d" % count, b"%12d" % (count // 2), 1)
+        fields = head[8].split()
+        assert fields[0] == b"4", head[8]
+        head[8] = head[8].replace(b"4", b"2", 1)
+        values = np.frombuffer(rest[:count], "<f8").astype("<f4").tobytes()
+        rest = rest[count:]
+        end = rest.index(b"-1\n") + 3
+        out += b"\n".join(head) + b"\n" + values + rest[:end]
+        rest = rest[end:]
+    path.write_bytes(out)
+
+
 def main(tool):
     x = samples()
     sound = []
@@ -74,7 +94,7 @@ def main(tool):
             wavfile.write(path, RATE, stored.T)
             held = stored.astype(float) / (scale or 1.0)
             sound.append(compare(f"WAV {kind}", ask(tool, path, *full), held, 1e-10))
-        # pyuff writes binary values as doubles whatever their head says, and only adds them right.
+        # pyuff writes binary values as doubles whatever their head says, and only adds them right; singles are below.
         for binary, double in [(0, False), (0, True), (1, True)]:
             path = folder / f"b{binary}d{int(double)}.uff"
             for i, row in enumerate(x):
@@ -90,11 +110,17 @@ def main(tool):
             held = np.array([s["data"] for s in pyuff.UFF(str(path)).read_sets()], dtype=float)
             word = "binary" if binary else "text"
             sound.append(compare(f"58 {word}, double {double}", ask(tool, path), held, 1e-10))
+        path = folder / "b1d0.uff"
+        singles(folder / "b1d1.uff", path)
+        held = np.array([s["data"] for s in pyuff.UFF(str(path)).read_sets()], dtype=float)
+        # pyuff and the tool must both see the doubles rounded to singles.
+        assert np.array_equal(held, x.astype(np.float32).astype(float))
+        sound.append(compare("58 binary, single", ask(tool, path), held, 1e-10))
         path = folder / "record.csv"
         t = np.arange(x.shape[1]) / RATE
         np.savetxt(path, np.column_stack([t, *x]), delimiter=",", fmt="%.17g", header="time [s],p1 [Pa],p2 [Pa]", comments="")
         sound.append(compare("CSV", ask(tool, path), x, 1e-10))
-    return all(sound) and len(sound) == 8
+    return all(sound) and len(sound) == 9
 
 
 if __name__ == "__main__":

@@ -1,184 +1,49 @@
-//! Fit of several resonances on a floor to an averaged spectrum, by likelihood.
+//! Fit of several resonances on a floor to averaged spectra, by likelihood.
 //!
-//! An estimate `P_j` of mean `M_j` averaged over `n_d` records has a gamma density of shape `n_d`, so that minus its logarithm is
-//! `n_d (P_j/M_j + ln M_j)` and a constant. The parameters are those of the least
+//! The estimates `P_j` of a spectral matrix of mean `S_j` (`model`), averaged over `n_d` records, are distributed as Wishart matrices, of one sensor
+//! as gamma variates of shape `n_d`: minus the logarithm of their density is `n_d (tr S_j^-1 P_j + ln det S_j)` and a constant. The parameters are those of the least
 //!
 //! ```text
-//! Q = sum_j (P_j/M_j + ln M_j) + (K/2) sum_k (Im C_k/(0.5 Re C_k))^2,   M_j = floor + sum_k Re[C_k L_j(s_k)]
+//! Q = sum_j (tr S_j^-1 P_j + ln det S_j) + (K/2) sum_k |e_k|^2
 //! ```
 //!
-//! (Whittle 1953; with `M_j` the exact mean of the estimate: Sykulski et al. 2019, Biometrika 106, 251). Neighbouring bins are
+//! (Whittle 1953; with `S_j` the exact mean of the estimate: Sykulski et al. 2019, Biometrika 106, 251). Neighbouring bins are
 //! correlated by `kappa_{|i-j|}`, relative to their means; a sum over bins has the information of as many independent
-//! ones over `K = sum kappa`. The second term of `Q` is what is known of the asymmetries beforehand (`ASYMMETRY`).
+//! ones over `K = sum kappa`. The second term of `Q` is what is known of the drives beforehand (`model`).
 //!
-//! With `u_j = dM_j/M_j` and `B` the second derivative of the second term, the covariance of the parameters is
+//! With `G_j S_j G_j^H = 1`, `u_j` the real numbers in `G_j dS_j G_j^H` and `B` the second derivative of the second term, the covariance of the parameters is
 //!
 //! ```text
 //! (F + B)^-1 (sum_ij kappa_{|i-j|} u_i u_j^T + K B) (F + B)^-1,   F = sum_j u_j u_j^T
 //! ```
 
-use std::f64::consts::{PI, TAU};
+use std::f64::consts::PI;
 
 use nalgebra::linalg::Cholesky;
 use nalgebra::{DMatrix, DVector, Dyn};
 use num_complex::Complex64;
 
-use super::line::{Bins, Line};
+use super::fitted::{Fitted, flatten, sandwich};
+use super::line::Line;
+use super::model::{Data, Resonance, known_turns};
 
-/// One resonance.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub(super) struct Resonance {
-    /// Growth rate and angular frequency (1/s).
-    pub(super) s: Complex64,
-    /// Autocovariance `Re[C exp(s t)]` (unit squared).
-    pub(super) c: Complex64,
-}
-
-impl Resonance {
-    pub(super) fn decay(&self) -> f64 {
-        -self.s.re
-    }
-
-    pub(super) fn frequency(&self) -> f64 {
-        self.s.im / TAU
-    }
-}
-
-/// Resonances on a floor that is the same at all frequencies.
-#[derive(Clone, Debug, PartialEq)]
-pub(super) struct Model {
-    pub(super) resonances: Vec<Resonance>,
-    pub(super) floor: f64,
-}
-
-/// Spread of `Im C/Re C` known beforehand: it is `-nu/(2 pi f)` of a displacement driven by white noise, the opposite of a
-/// velocity, and larger only where modes that overlap are driven by the same noise.
-const ASYMMETRY: f64 = 0.5;
-
-/// `Im C/Re C` in units of its spread.
-fn asymmetry(c: Complex64) -> f64 {
-    c.im / (ASYMMETRY * c.re)
-}
-
-/// Its derivatives with respect to the real and the imaginary part.
-fn asymmetry_turns(c: Complex64) -> [f64; 2] {
-    [-asymmetry(c) / c.re, 1.0 / (ASYMMETRY * c.re)]
-}
-
-/// Parameters of each resonance: ln decay, frequency, real and imaginary part of `C`.
-pub(super) const EACH: usize = 4;
-
-/// An averaged spectrum as it is fitted.
-pub(super) struct Data<'a> {
-    pub(super) bins: &'a Bins,
-    pub(super) power: &'a [f64],
-    /// Covariance of estimates so many bins apart, relative to their means.
-    pub(super) kappa: &'a [f64],
-}
-
-impl Data<'_> {
-    /// `kappa` summed over all neighbours: what one unit of `Q` counts for.
-    pub(super) fn inflation(&self) -> f64 {
-        let [own, others @ ..] = self.kappa else {
-            return 1.0;
-        };
-        own + 2.0 * others.iter().sum::<f64>()
-    }
-
-    /// Least decay rate a fit may reach: far below what the segments resolve.
-    fn least_decay(&self) -> f64 {
-        0.02 * self.bins.width()
-    }
-
-    fn most_decay(&self) -> f64 {
-        TAU * self.bins.width() * self.bins.count() as f64
-    }
-}
-
-/// A model with what it gives.
-#[derive(Clone, Debug)]
-pub(super) struct Fitted {
-    pub(super) model: Model,
-    /// Mean at every bin.
-    pub(super) mean: Vec<f64>,
-    lines: Vec<Line>,
-    pub(super) q: f64,
-}
-
-impl Fitted {
-    /// `None` where the mean is not positive everywhere.
-    pub(super) fn of(data: &Data, model: Model) -> Option<Fitted> {
-        let lines: Vec<Line> = model
-            .resonances
-            .iter()
-            .map(|r| data.bins.line(r.s))
-            .collect();
-        Fitted::with(data, model, lines)
-    }
-
-    fn with(data: &Data, model: Model, lines: Vec<Line>) -> Option<Fitted> {
-        if model.resonances.iter().any(|r| r.c.re <= 0.0) {
-            return None;
+/// Adds what is known beforehand to `F` and to the slope of `-Q`.
+fn add_known(
+    data: &Data,
+    fitted: &Fitted,
+    information: &mut DMatrix<f64>,
+    mut slope: Option<&mut DVector<f64>>,
+) {
+    let (each, inflation) = (data.each(), data.inflation());
+    for (k, r) in fitted.model.resonances.iter().enumerate() {
+        let (values, turns) = known_turns(data, r);
+        let mut part = information.view_mut((each * k, each * k), (each, each));
+        part += turns.tr_mul(&turns) * inflation;
+        if let Some(slope) = slope.as_deref_mut() {
+            let pull = turns.tr_mul(&DVector::from_vec(values)) * inflation;
+            let mut part = slope.rows_mut(each * k, each);
+            part -= pull;
         }
-        let mut mean = vec![model.floor; data.bins.count()];
-        for (r, line) in model.resonances.iter().zip(&lines) {
-            for (m, v) in mean.iter_mut().zip(&line.value) {
-                *m += r.c.re * v.re - r.c.im * v.im;
-            }
-        }
-        let asymmetries = model.resonances.iter().map(|r| asymmetry(r.c).powi(2));
-        let mut q = 0.5 * data.inflation() * asymmetries.sum::<f64>();
-        for (m, p) in mean.iter().zip(data.power) {
-            if *m <= 0.0 {
-                return None;
-            }
-            q += p / m + m.ln();
-        }
-        q.is_finite().then_some(Fitted {
-            model,
-            mean,
-            lines,
-            q,
-        })
-    }
-
-    /// `u_j`: derivatives of the mean over the mean, one column for each parameter.
-    fn derivatives(&self) -> DMatrix<f64> {
-        let (n, k) = (self.mean.len(), self.lines.len());
-        let mut u = DMatrix::zeros(n, EACH * k + 1);
-        for (i, (r, line)) in self.model.resonances.iter().zip(&self.lines).enumerate() {
-            let (nu, c) = (r.decay(), r.c);
-            for (j, (v, d)) in line.value.iter().zip(&line.slope).enumerate() {
-                let m = self.mean[j];
-                let moved = c * d;
-                u[(j, EACH * i)] = -nu * moved.re / m;
-                u[(j, EACH * i + 1)] = -TAU * moved.im / m;
-                u[(j, EACH * i + 2)] = v.re / m;
-                u[(j, EACH * i + 3)] = -v.im / m;
-            }
-        }
-        for (j, m) in self.mean.iter().enumerate() {
-            u[(j, EACH * k)] = 1.0 / m;
-        }
-        u
-    }
-
-    /// The model a step of the parameters away; steps in decay and frequency are held within reach.
-    fn moved(&self, data: &Data, step: &DVector<f64>) -> Model {
-        let mut model = self.model.clone();
-        for (i, r) in model.resonances.iter_mut().enumerate() {
-            let at = EACH * i;
-            let nu = r.decay();
-            let most = (nu / TAU).max(data.bins.width());
-            let decay =
-                (nu * step[at].clamp(-0.7, 0.7).exp()).clamp(data.least_decay(), data.most_decay());
-            let frequency =
-                (r.frequency() + step[at + 1].clamp(-most, most)).max(0.25 * data.bins.width());
-            r.s = Complex64::new(-decay, TAU * frequency);
-            r.c += Complex64::new(step[at + 2], step[at + 3]);
-        }
-        model.floor += step[EACH * self.lines.len()];
-        model
     }
 }
 
@@ -188,24 +53,10 @@ pub(super) fn minimise(data: &Data, start: Fitted, most: usize, tolerance: f64) 
     let mut best = start;
     let mut damping = 1e-3;
     for _ in 0..most {
-        let u = best.derivatives();
-        let mut information = u.tr_mul(&u);
-        let misfit = DVector::from_iterator(
-            best.mean.len(),
-            best.mean.iter().zip(data.power).map(|(m, p)| p / m - 1.0),
-        );
-        let mut slope = u.tr_mul(&misfit);
-        let inflation = data.inflation();
-        for (k, r) in best.model.resonances.iter().enumerate() {
-            let at = EACH * k + 2;
-            let (rho, turns) = (asymmetry(r.c), asymmetry_turns(r.c));
-            for (i, a) in turns.iter().enumerate() {
-                slope[at + i] -= inflation * rho * a;
-                for (j, b) in turns.iter().enumerate() {
-                    information[(at + i, at + j)] += inflation * a * b;
-                }
-            }
-        }
+        let u = best.derivatives(data);
+        let mut information = &u * u.transpose();
+        let mut slope = &u * DVector::from_vec(best.misfit(data));
+        add_known(data, &best, &mut information, Some(&mut slope));
         // Unit diagonal: parameters differ in size by many orders.
         let size: Vec<f64> = (0..slope.len())
             .map(|i| information[(i, i)].sqrt().max(f64::MIN_POSITIVE))
@@ -228,7 +79,7 @@ pub(super) fn minimise(data: &Data, start: Fitted, most: usize, tolerance: f64) 
                 for (x, s) in step.iter_mut().zip(&size) {
                     *x /= s;
                 }
-                Fitted::of(data, best.moved(data, &step))
+                Fitted::of(data, best.moved(data, step.as_slice()))
             });
             match tried {
                 Some(next) if next.q < best.q => {
@@ -247,45 +98,63 @@ pub(super) fn minimise(data: &Data, start: Fitted, most: usize, tolerance: f64) 
     best
 }
 
-/// Covariance of the parameters; `None` where the information is singular.
-pub(super) fn covariance(data: &Data, fitted: &Fitted) -> Option<DMatrix<f64>> {
-    let mut u = fitted.derivatives();
-    let size: Vec<f64> = u.column_iter().map(|c| c.norm()).collect();
-    for (mut column, s) in u.column_iter_mut().zip(&size) {
-        column /= s.max(f64::MIN_POSITIVE);
+/// Covariance of the parameters.
+pub(super) fn covariance(data: &Data, fitted: &Fitted) -> DMatrix<f64> {
+    let mut u = fitted.derivatives(data);
+    let mut known = DMatrix::zeros(u.nrows(), u.nrows());
+    add_known(data, fitted, &mut known, None);
+    let size: Vec<f64> = (u.row_iter().zip(known.diagonal().iter()))
+        .map(|(row, k)| (row.norm_squared() + k).sqrt().max(f64::MIN_POSITIVE))
+        .collect();
+    for (mut row, s) in u.row_iter_mut().zip(&size) {
+        row /= *s;
     }
-    let inflation = data.inflation();
-    let mut information = u.tr_mul(&u);
-    let mut known = DMatrix::zeros(u.ncols(), u.ncols());
-    for (k, r) in fitted.model.resonances.iter().enumerate() {
-        let at = EACH * k + 2;
-        let turns = asymmetry_turns(r.c);
-        for i in 0..2 {
-            for j in 0..2 {
-                let part = turns[i] * turns[j] / (size[at + i] * size[at + j]);
-                information[(at + i, at + j)] += inflation * part;
-                known[(at + i, at + j)] += inflation * inflation * part;
-            }
+    for i in 0..size.len() {
+        for j in 0..size.len() {
+            known[(i, j)] /= size[i] * size[j];
         }
     }
-    let inverse = information.cholesky()?.inverse();
-    let n = u.nrows();
-    let mut middle = known;
-    for (apart, kappa) in data.kappa.iter().enumerate().take(n) {
-        let products = u.rows(0, n - apart).tr_mul(&u.rows(apart, n - apart));
+    let (cells, all) = (data.cells(), u.ncols());
+    let mut middle = &known * data.inflation();
+    let mut information = known;
+    for (apart, kappa) in data.kappa.iter().enumerate() {
+        let some = all.saturating_sub(apart * cells);
+        let products = u.columns(0, some) * u.columns(apart * cells, some).transpose();
         if apart == 0 {
+            information += &products;
             middle += products * *kappa;
         } else {
             middle += (&products + products.transpose()) * *kappa;
         }
     }
+    let inverse = inverse(information);
     let mut covariance = &inverse * middle * &inverse;
     for i in 0..size.len() {
         for j in 0..size.len() {
             covariance[(i, j)] /= size[i] * size[j];
         }
     }
-    Some(covariance)
+    covariance
+}
+
+/// Least eigenvalue of an information of unit diagonal that is more than rounding.
+const ROUNDING: f64 = 1e-13;
+
+/// Inverse of an information of unit diagonal. What the record says nothing of, two lines in one place or a width far below a bin, gets a variance so large
+/// that nobody takes it for known, and leaves the rest alone.
+fn inverse(information: DMatrix<f64>) -> DMatrix<f64> {
+    if let Some(root) = information.clone().cholesky() {
+        return root.inverse();
+    }
+    let eigen = information.symmetric_eigen();
+    let inverted = eigen.eigenvalues.map(|e| e.max(ROUNDING).recip());
+    &eigen.eigenvectors * DMatrix::from_diagonal(&inverted) * eigen.eigenvectors.transpose()
+}
+
+/// Where the variance of the mean square of a resonance stands in the covariance.
+pub(super) fn place_of_square(data: &Data, k: usize, r: &Resonance) -> usize {
+    // Drives and shapes of the sensors before, each a complex number.
+    data.each() * k + 2 + 4 * r.loudest
 }
 
 /// What a resonance more would gain, to second order, with all other parameters free to follow (the score test, Rao
@@ -294,40 +163,136 @@ pub(super) struct Score {
     u: DMatrix<f64>,
     information: Cholesky<f64, Dyn>,
     misfit: DVector<f64>,
+    /// `G^H [G (P - S) G^H] G` at every bin.
+    pull: Vec<Complex64>,
     inflation: f64,
 }
 
 impl Score {
     pub(super) fn new(data: &Data, fitted: &Fitted) -> Option<Score> {
-        let mut u = fitted.derivatives();
-        for mut column in u.column_iter_mut() {
-            let size = column.norm().max(f64::MIN_POSITIVE);
-            column /= size;
+        let mut u = fitted.derivatives(data);
+        for mut row in u.row_iter_mut() {
+            let size = row.norm().max(f64::MIN_POSITIVE);
+            row /= size;
         }
-        let mut information = u.tr_mul(&u);
-        for i in 0..u.ncols() {
+        let mut information = &u * u.transpose();
+        for i in 0..u.nrows() {
             information[(i, i)] += 1e-9;
         }
-        let misfit = fitted.mean.iter().zip(data.power).map(|(m, p)| p / m - 1.0);
+        let (n, cells) = (data.sensors, data.cells());
+        let mut pull = Vec::with_capacity(data.power.len());
+        let mut white = vec![Complex64::ZERO; cells];
+        for (j, g) in fitted.whitener.chunks_exact(cells).enumerate() {
+            sandwich(g, data.at(j), n, &mut white);
+            for i in 0..n {
+                white[i * n + i].re -= 1.0;
+            }
+            let weight = data.weight(j);
+            for a in 0..n {
+                for b in 0..n {
+                    let mut sum = Complex64::ZERO;
+                    for i in a..n {
+                        for l in b..n {
+                            sum += g[i * n + a].conj() * white[i * n + l] * g[l * n + b] * weight;
+                        }
+                    }
+                    pull.push(sum);
+                }
+            }
+        }
         Some(Score {
             information: information.cholesky()?,
-            misfit: DVector::from_iterator(u.nrows(), misfit),
+            misfit: DVector::from_vec(fitted.misfit(data)),
             inflation: data.inflation(),
+            pull,
             u,
         })
     }
 
-    /// Gain in twice the log-likelihood, and the mean square that brings it, of a resonance at `s`.
-    pub(super) fn of(&self, data: &Data, fitted: &Fitted, s: Complex64) -> Option<(f64, f64)> {
+    /// Gain in twice the log-likelihood of a resonance at `s` that noise of its own drives, and the resonance.
+    pub(super) fn of(
+        &self,
+        data: &Data,
+        fitted: &Fitted,
+        s: Complex64,
+    ) -> Option<(f64, Resonance)> {
         let line = data.bins.line(s);
-        let terms = line.value.iter().zip(&fitted.mean).map(|(v, m)| v.re / m);
-        let more = DVector::from_iterator(self.u.nrows(), terms);
-        let shared = self.u.tr_mul(&more);
+        let (n, cells) = (data.sensors, data.cells());
+        // The shape it is most likely to have.
+        let mut slope = DMatrix::zeros(n, n);
+        for ((near, far), pull) in line
+            .near
+            .iter()
+            .zip(&line.far)
+            .zip(self.pull.chunks_exact(cells))
+        {
+            for a in 0..n {
+                for b in 0..n {
+                    slope[(a, b)] += pull[a * n + b] * near.re + pull[b * n + a] * far.re;
+                }
+            }
+        }
+        self.with_line(data, fitted, s, &line, &top(slope).1)
+    }
+
+    /// The same in a shape given.
+    pub(super) fn with(
+        &self,
+        data: &Data,
+        fitted: &Fitted,
+        s: Complex64,
+        shape: &[Complex64],
+    ) -> Option<(f64, Resonance)> {
+        self.with_line(data, fitted, s, &data.bins.line(s), shape)
+    }
+
+    fn with_line(
+        &self,
+        data: &Data,
+        fitted: &Fitted,
+        s: Complex64,
+        line: &Line,
+        shape: &[Complex64],
+    ) -> Option<(f64, Resonance)> {
+        let (n, cells) = (data.sensors, data.cells());
+        let mut more = Vec::with_capacity(self.misfit.len());
+        let mut part = vec![Complex64::ZERO; cells];
+        let mut white = vec![Complex64::ZERO; cells];
+        for (j, g) in fitted.whitener.chunks_exact(cells).enumerate() {
+            for a in 0..n {
+                for b in 0..n {
+                    let c = shape[a] * shape[b].conj();
+                    part[a * n + b] = c * line.near[j].re + c.conj() * line.far[j].re;
+                }
+            }
+            sandwich(g, &part, n, &mut white);
+            let root = data.weight(j).sqrt();
+            white.iter_mut().for_each(|w| *w *= root);
+            flatten(&white, n, &mut more);
+        }
+        let more = DVector::from_vec(more);
+        let shared = &self.u * &more;
         let own = more.norm_squared() - shared.dot(&self.information.solve(&shared));
         let slope = more.dot(&self.misfit);
         // No resonance has a negative mean square.
-        (own > 0.0 && slope > 0.0).then(|| (slope * slope / (own * self.inflation), slope / own))
+        (own > 0.0 && slope > 0.0).then(|| {
+            let gain = slope * slope / (own * self.inflation);
+            (gain, Resonance::alone(s, shape.to_vec(), slope / own))
+        })
     }
+}
+
+/// Largest eigenvalue of a Hermitian matrix and its vector.
+pub(super) fn top(m: DMatrix<Complex64>) -> (f64, Vec<Complex64>) {
+    if m.nrows() == 1 {
+        return (m[(0, 0)].re, vec![Complex64::ONE]);
+    }
+    let eigen = m.symmetric_eigen();
+    let at = eigen.eigenvalues.imax();
+    (
+        eigen.eigenvalues[at],
+        eigen.eigenvectors.column(at).iter().copied().collect(),
+    )
 }
 
 /// Another fit that describes the spectrum, for what it says of resonances both have, in the order of the fit chosen.
@@ -338,7 +303,7 @@ pub(super) struct Other {
 }
 
 fn criterion(data: &Data, fit: &Fitted) -> f64 {
-    2.0 * fit.q / data.inflation() + 2.0 * (EACH * fit.model.resonances.len()) as f64
+    2.0 * fit.q / data.inflation() + 2.0 * (data.each() * fit.model.resonances.len()) as f64
 }
 
 impl Other {
@@ -357,6 +322,27 @@ impl Other {
     }
 }
 
+/// What of a resonance is asked.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub(super) enum Asked {
+    /// ln decay rate.
+    Decay,
+    /// Frequency (Hz).
+    Frequency,
+    /// Mean square where it is loudest.
+    Square,
+}
+
+impl Asked {
+    pub(super) fn of(self, r: &Resonance) -> f64 {
+        match self {
+            Asked::Decay => r.decay().ln(),
+            Asked::Frequency => r.frequency(),
+            Asked::Square => r.square(),
+        }
+    }
+}
+
 /// Spread of a parameter between fits that describe the spectrum about as well, as a mean square about the fit chosen: each
 /// weighs `exp(-AIC/2)` against it (Burnham & Anderson 2002, Model Selection and Multimodel Inference). Where a resonance has
 /// become another one in a fit, that fit does not speak of it.
@@ -365,14 +351,8 @@ pub(super) fn between(
     chosen: &Fitted,
     others: &[Other],
     k: usize,
-    parameter: usize,
+    asked: Asked,
 ) -> f64 {
-    let value = |r: &Resonance| match parameter {
-        0 => r.decay().ln(),
-        1 => r.frequency(),
-        2 => r.c.re,
-        _ => r.c.im,
-    };
     let Some(own) = chosen.model.resonances.get(k) else {
         return 0.0;
     };
@@ -386,7 +366,7 @@ pub(super) fn between(
             && (r.decay() / own.decay()).ln().abs() < 0.7;
         if same {
             let weight = (0.5 * (best - other.criterion)).min(0.0).exp();
-            sum += weight * (value(r) - value(own)).powi(2);
+            sum += weight * (asked.of(r) - asked.of(own)).powi(2);
             weights += weight;
         }
     }

@@ -34,14 +34,18 @@ pub(super) struct Bins {
     /// `exp(i a j)` from one bin before the first to one after the last.
     turns: Vec<Complex64>,
     edge: f64,
+    /// Bins that stand together for their mean, of each group.
+    groups: Vec<usize>,
 }
 
-/// Values of a unit line and its derivative at every bin: `E P_j = Re[C value_j]`.
+/// Values of a unit line at every bin, from its own side of the spectrum and from the other: `E P_j = Re[C (near_j + far_j)]`; and their
+/// derivatives with respect to `s` (times seconds).
 #[derive(Clone, Debug)]
 pub(super) struct Line {
-    pub(super) value: Vec<Complex64>,
-    /// With respect to `s` (times seconds).
-    pub(super) slope: Vec<Complex64>,
+    pub(super) near: Vec<Complex64>,
+    pub(super) far: Vec<Complex64>,
+    pub(super) near_slope: Vec<Complex64>,
+    pub(super) far_slope: Vec<Complex64>,
 }
 
 impl Bins {
@@ -55,7 +59,21 @@ impl Bins {
             count,
             turns: (first - 1..=first + count).map(turn).collect(),
             edge: 0.25 / (a / 2.0).tan() - 0.125 / a.tan(),
+            groups: vec![1; count],
         }
+    }
+
+    /// The same bins in groups.
+    pub(super) fn grouped(&self, groups: Vec<usize>) -> Bins {
+        Bins {
+            groups,
+            ..self.clone()
+        }
+    }
+
+    /// Number of bins in each group.
+    pub(super) fn groups(&self) -> &[usize] {
+        &self.groups
     }
 
     pub(super) fn frequency(&self, i: usize) -> f64 {
@@ -70,6 +88,19 @@ impl Bins {
         self.count
     }
 
+    fn means(&self, values: Vec<Complex64>) -> Vec<Complex64> {
+        if self.groups.len() == values.len() {
+            return values;
+        }
+        let mut rest = values.as_slice();
+        let mut mean = |count: &usize| {
+            let (own, others) = rest.split_at(*count);
+            rest = others;
+            own.iter().sum::<Complex64>() / *count as f64
+        };
+        self.groups.iter().map(&mut mean).collect()
+    }
+
     /// The mean estimate of a line with `s = (growth, 2 pi f)` and `C = 1`, as a factor of `C`.
     pub(super) fn line(&self, s: Complex64) -> Line {
         let n = self.segment as f64;
@@ -77,9 +108,9 @@ impl Bins {
         let whole = (s * n / self.rate).exp();
         let zero = 0.375 * n;
         let scale = 2.0 / (self.rate * zero);
-        let mut value = vec![Complex64::new(-scale * zero, 0.0); self.count];
-        let mut slope = vec![Complex64::ZERO; self.count];
-        for conjugate in [false, true] {
+        let side = |conjugate: bool| {
+            let mut value = vec![Complex64::new(-0.5 * scale * zero, 0.0); self.count];
+            let mut slope = vec![Complex64::ZERO; self.count];
             // Terms at every bin and its neighbours, three in hand at a time.
             let at = |turn: &Complex64| {
                 let turn = if conjugate { turn.conj() } else { *turn };
@@ -87,7 +118,7 @@ impl Bins {
             };
             let mut terms = self.turns.iter().map(at);
             let (Some(mut before), Some(mut here)) = (terms.next(), terms.next()) else {
-                break;
+                return (value, slope);
             };
             for ((after, v), d) in terms.zip(&mut value).zip(&mut slope) {
                 let sine = if conjugate { -self.edge } else { self.edge };
@@ -102,8 +133,15 @@ impl Bins {
                     * (scale / self.rate);
                 (before, here) = (here, after);
             }
+            (self.means(value), self.means(slope))
+        };
+        let ((near, near_slope), (far, far_slope)) = (side(true), side(false));
+        Line {
+            near,
+            far,
+            near_slope,
+            far_slope,
         }
-        Line { value, slope }
     }
 }
 
@@ -158,7 +196,7 @@ mod tests {
                 let line = bins.line(s);
                 for i in 0..bins.count() {
                     let want = by_hand(rate, n, i + 3, s);
-                    let off = (line.value[i] - want).norm();
+                    let off = (line.near[i] + line.far[i] - want).norm();
                     assert!(
                         off < 1e-9 * want.norm().max(1e-3 / rate),
                         "{n} {s} {i}: {off:.1e}"
@@ -166,7 +204,7 @@ mod tests {
                     let h = 1e-4 * growth.abs();
                     let slope = (by_hand(rate, n, i + 3, s + h) - by_hand(rate, n, i + 3, s - h))
                         / (2.0 * h);
-                    let off = (line.slope[i] - slope).norm();
+                    let off = (line.near_slope[i] + line.far_slope[i] - slope).norm();
                     assert!(
                         off < 1e-5 * want.norm().max(1e-3 / rate),
                         "{n} {s} {i}: {off:.1e}"
@@ -184,7 +222,9 @@ mod tests {
         let width = rate / n as f64;
         let first = (700.0 / width) as usize;
         let bins = Bins::new(rate, n, first, 6400);
-        let values = bins.line(Complex64::new(-40.0, TAU * 800.0)).value;
+        let line = bins.line(Complex64::new(-40.0, TAU * 800.0));
+        let both = line.near.iter().zip(&line.far);
+        let values: Vec<Complex64> = both.map(|(a, b)| a + b).collect();
         let top = values.iter().map(|v| v.re).fold(0.0, f64::max);
         let ends: Vec<f64> = values
             .windows(2)

@@ -78,6 +78,8 @@ pub struct Recording {
     read: u64,
     problems: Vec<Problem>,
     done: bool,
+    /// Copy of a pipe, which lasts as long as it is read.
+    _spooled: Option<tempfile::NamedTempFile>,
 }
 
 impl Recording {

@@ -4,6 +4,8 @@ use std::fs::File;
 use std::io::{ErrorKind, Read};
 use std::path::Path;
 
+use tempfile::NamedTempFile;
+
 use super::columns::{self, Raw};
 use super::samples::Samples;
 use super::spectrum::MeasuredSpectrum;
@@ -83,7 +85,13 @@ const SAME_RATE: f64 = 1e-6;
 /// # Errors
 /// Every problem of its head, each with its place where it has one.
 pub fn open(path: &Path, asked: &Asked) -> Result<Opened, Problems> {
-    let name = path.display().to_string();
+    let given = path;
+    let name = match given.as_os_str() == STANDARD_INPUT {
+        true => "standard input".to_owned(),
+        false => given.display().to_string(),
+    };
+    let spooled = spool(given).map_err(|e| unreadable(given, &name, &e))?;
+    let path = spooled.as_ref().map_or(given, |file| file.path());
     let first = first_bytes(path).map_err(|e| unreadable(path, &name, &e))?;
     let trimmed = first.trim_ascii_start();
     let head = if first.is_empty() {
@@ -112,7 +120,31 @@ pub fn open(path: &Path, asked: &Asked) -> Result<Opened, Problems> {
         }
         csv::head(path, table, &name, asked)?
     };
-    recording(head, name, asked).map(Opened::Record)
+    let record = recording(head, name, asked)?;
+    Ok(Opened::Record(Recording {
+        _spooled: spooled,
+        ..record
+    }))
+}
+
+/// What stands for standard input in place of a file.
+const STANDARD_INPUT: &str = "-";
+
+/// A copy on disk of what can be read only once, a pipe for instance: a format is told by its first bytes, and some are read from several places. It
+/// is gone when the copy is dropped. `None` of a file.
+fn spool(path: &Path) -> std::io::Result<Option<NamedTempFile>> {
+    let mut source: Box<dyn Read> = if path.as_os_str() == STANDARD_INPUT {
+        Box::new(std::io::stdin().lock())
+    } else {
+        let kind = std::fs::metadata(path)?;
+        if kind.is_file() || kind.is_dir() {
+            return Ok(None);
+        }
+        Box::new(File::open(path)?)
+    };
+    let mut copy = NamedTempFile::new()?;
+    std::io::copy(&mut source, &mut copy)?;
+    Ok(Some(copy))
 }
 
 fn first_bytes(path: &Path) -> std::io::Result<Vec<u8>> {
@@ -186,6 +218,7 @@ fn recording(head: Head, file: String, asked: &Asked) -> Result<Recording, Probl
         read: 0,
         problems,
         done: false,
+        _spooled: None,
     };
     if read.failed() {
         return Err(Problems(read.problems));

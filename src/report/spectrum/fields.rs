@@ -166,8 +166,24 @@ struct Body<'a> {
     record: RecordFields<'a>,
     analysis: AnalysisFields,
     channels: Vec<ChannelFields<'a>>,
+    together: Option<TogetherFields<'a>>,
     frequency_hz: Vec<f64>,
     pairs: Vec<PairFields<'a>>,
+}
+
+/// What channels of pressure share.
+#[derive(Clone, Debug, Serialize)]
+struct TogetherFields<'a> {
+    channels: Vec<&'a str>,
+    fit_misfit: Option<f64>,
+    peaks: Vec<SharedPeak<'a>>,
+}
+
+#[derive(Clone, Debug, Serialize)]
+struct SharedPeak<'a> {
+    loudest: &'a str,
+    #[serde(flatten)]
+    peak: PeakFields,
 }
 
 impl SpectrumReport<'_> {
@@ -205,12 +221,34 @@ impl SpectrumReport<'_> {
             channels: (0..survey.channels.len())
                 .filter_map(|i| self.channel(i))
                 .collect(),
+            together: self.shared(),
             frequency_hz: survey.bins().map(|j| spectra.frequency(j)).collect(),
             pairs: (0..survey.pairs.len())
                 .filter_map(|i| self.pair(i))
                 .collect(),
         };
         Document::new("stillflame/spectrum", &self.heading(), body, self.warnings).to_json()
+    }
+
+    fn shared(&self) -> Option<TogetherFields<'_>> {
+        let (channels, found) = self.survey.together.as_ref()?;
+        let at = |i: &usize| self.survey.channels.get(*i);
+        let peak = |peak: &Peak| {
+            let loudest = channels.get(peak.loudest).and_then(at)?;
+            Some(SharedPeak {
+                loudest: &loudest.signal.name,
+                peak: PeakFields::new(loudest, peak, None),
+            })
+        };
+        Some(TogetherFields {
+            channels: channels
+                .iter()
+                .filter_map(at)
+                .map(|c| c.signal.name.as_str())
+                .collect(),
+            fit_misfit: finite(found.misfit),
+            peaks: found.peaks.iter().filter_map(peak).collect(),
+        })
     }
 
     fn channel(&self, i: usize) -> Option<ChannelFields<'_>> {

@@ -178,7 +178,7 @@ impl SpectrumReport<'_> {
         let fit = |j: &usize| {
             let peaks = peaks?;
             let from = (peaks.frequency.first()? / width).round() as usize;
-            let fitted = peaks.fitted.get(j.checked_sub(from)?)?;
+            let fitted = peaks.fitted.first()?.get(j.checked_sub(from)?)?;
             let gain = channel?
                 .correction
                 .at(survey.spectra.frequency(*j))
