@@ -109,10 +109,19 @@ impl ModeList {
 
     /// The mode that grows fastest, or decays slowest.
     pub fn leading(&self) -> Option<&Mode> {
-        self.modes
-            .iter()
-            .max_by(|a, b| a.growth().total_cmp(&b.growth()))
+        fastest(self.modes.iter())
     }
+}
+
+/// The mode that grows fastest, or decays slowest; of those that their errors do not tell from it, the one of lowest
+/// frequency, so that rounding does not choose.
+pub fn fastest<'a>(modes: impl Iterator<Item = &'a Mode> + Clone) -> Option<&'a Mode> {
+    let by_growth = |a: &&Mode, b: &&Mode| a.growth().total_cmp(&b.growth());
+    let first = modes.clone().max_by(by_growth)?;
+    let alike = |m: &&Mode| first.growth() - m.growth() <= first.error_bound + m.error_bound;
+    modes
+        .filter(alike)
+        .min_by(|a, b| a.frequency().total_cmp(&b.frequency()))
 }
 
 /// A network with its mean flow and acoustics.

@@ -52,14 +52,13 @@ impl Outside {
     }
 
     /// Every mode that grows outside the window, and those right of it that do not.
-    pub fn modes(&self) -> impl Iterator<Item = &Mode> {
+    pub fn modes(&self) -> impl Iterator<Item = &Mode> + Clone {
         self.slower.iter().chain(&self.milder).chain(&self.faster)
     }
 
     /// The fastest of all.
     pub fn fastest(&self) -> Option<&Mode> {
-        self.modes()
-            .max_by(|a, b| a.growth().total_cmp(&b.growth()))
+        super::fastest(self.modes())
     }
 }
 

@@ -130,8 +130,8 @@ impl Point {
 
     /// The fastest mode known, in the window or outside.
     pub fn fastest(&self) -> Option<Mode> {
-        let both = [self.outside(), self.leading()].into_iter().flatten();
-        both.max_by(|a, b| a.growth().total_cmp(&b.growth()))
+        let both = [self.outside(), self.leading()];
+        modes::fastest(both.iter().flatten()).copied()
     }
 
     /// Whether growth beside the modes known is excluded, up to the window's highest frequency.

@@ -104,7 +104,8 @@ fn numpy(python: &PathBuf, chain: &str) -> Outcome<Numpy> {
 }
 
 fn compare(rig: &Rig, numpy: &Numpy, cores: usize) -> Outcome<String> {
-    let find = || modes::find(&rig.solved, rig.window, Scan::UntilCounted);
+    let acoustics = &rig.solved.acoustics;
+    let find = || modes::find_from(acoustics, rig.window, Scan::UntilCounted, &[]);
     same_modes(rig.name, &find(), &numpy.modes)?;
     let map = rig.map(rig.axes(POINTS));
     let tally = map.tally();

@@ -13,7 +13,7 @@ use std::time::Instant;
 
 use machine::{Outcome, load, processor};
 use page::{time, today, write_between};
-use rigs::Rig;
+use rigs::{POINTS, Rig};
 use stillflame::modes::{self, Scan, Window};
 use stillflame::numerics::analytic::Analytic;
 use stillflame::numerics::count::Walker;
@@ -147,12 +147,13 @@ fn most_memory() -> Outcome<f64> {
 }
 
 fn maps() -> Outcome<String> {
-    let mut text = "| points of a map, six elements, two threads | time | a point | most memory of the process |\n\
-                    | --- | --- | --- | --- |\n"
-        .to_owned();
     let rig = Rig::read("6 elements", "tests/yardstick/chains/six.toml")?;
+    let mut text = format!(
+        "| points of a map, {}, two threads | time | a point | most memory of the process |\n| --- | --- | --- | --- |\n",
+        rig.name
+    );
     let two = rigs::threads(2);
-    for points in [50, 100, 200, 400, 1000] {
+    for points in [POINTS / 4, POINTS / 2, POINTS, 2 * POINTS, 5 * POINTS] {
         let runs = if points < 400 { 3 } else { 1 };
         let took = median(runs, || two.install(|| rig.map(rig.axes(points)).tally()));
         text += &format!(
