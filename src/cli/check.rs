@@ -1,7 +1,5 @@
 //! `stillflame check NETWORK`.
 
-use std::path::PathBuf;
-
 use clap::Args;
 
 use super::options::{Case, Common};
@@ -16,17 +14,11 @@ use crate::report::check::Check;
 /// the window in which its modes are searched.
 #[derive(Clone, Debug, Args)]
 #[command(
-    mut_arg("out", |out| out.hide(true).value_parser(writes_nothing)),
     after_help = "Example:\n  stillflame check networks/swirl_rig.toml --set \"chamber.length = 0.9 m\""
 )]
 pub(super) struct Arguments {
     #[command(flatten)]
     pub common: Common,
-}
-
-/// What all verbs have in common holds `--out`.
-fn writes_nothing(_: &str) -> Result<PathBuf, &'static str> {
-    Err("`check` writes no files")
 }
 
 pub(super) fn answer(arguments: &Arguments, case: Case) -> Result<Answer, Failure> {
