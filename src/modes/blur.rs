@@ -3,7 +3,7 @@
 //! A mode is proved for the chain as it was lowered, and its coefficients are rounded. Where waves grow along the network,
 //! as slow entropy does in a mode that decays fast, `exp(-s t)` magnifies what little they are off: a plate that loses
 //! nothing makes no entropy but for rounding, and that may be ten orders of magnitude larger where it arrives. So the
-//! coefficients are moved by a few roundings, to one side or the other at random, and the modes with them: by the shorter
+//! coefficients are moved by a rounding, to one side or the other at random, and the modes with them: by the shorter
 //! of `|c_0/c_1|` and `|c_0/c_2|^(1/2)`, with `c_k` the Taylor coefficients of the moved function at the mode. This is
 //! a measurement, not a bound.
 
@@ -15,8 +15,8 @@ use crate::waves::primitive::{Chain, Joint, Row, Step};
 /// Times the coefficients are moved.
 const TIMES: u64 = 3;
 
-/// How far, in units of `f64::EPSILON` and of the largest coefficient of the condition.
-const FAR: f64 = 2.0;
+/// How far: one rounding of the largest coefficient of the condition.
+const FAR: f64 = 0.5 * f64::EPSILON;
 
 /// The modes' shifts are multiplied by this: a coefficient has come by several roundings, and chance is not the worst.
 const MARGIN: f64 = 8.0;
@@ -62,7 +62,7 @@ impl Chance {
         let largest = numbers.iter().map(|x| x.abs()).fold(0.0, f64::max);
         for x in &mut numbers {
             if **x != 0.0 {
-                **x += FAR * f64::EPSILON * largest * self.sign();
+                **x += FAR * largest * self.sign();
             }
         }
     }

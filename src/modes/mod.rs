@@ -143,10 +143,24 @@ pub fn solve(network: &Network) -> Result<Solved, Problems> {
     Ok(Solved { mean, acoustics })
 }
 
-/// Finds every mode in a window. Errors of the modes hold what rounding of the coefficients leaves open.
+/// Error of a mode, relative to its modulus, beyond which a list that holds it is in doubt.
+const BLURRED: f64 = 1e-4;
+
+/// Finds every mode in a window. Errors of the modes hold what rounding of the coefficients leaves open; where that is
+/// much, the list is in doubt ([`Doubt::Coarse`]).
 pub fn find(solved: &Solved, window: Window, scan: Scan) -> ModeList {
     let mut list = find_from(&solved.acoustics, window, scan, &[]);
+    let coarse = |m: &Mode| m.error_bound > BLURRED * m.s.norm().max(1.0);
+    let known = list.modes.iter().map(coarse).collect::<Vec<_>>();
     blur::widen(&solved.acoustics.chain, &mut list.modes);
+    for (mode, known) in list.modes.iter().zip(known) {
+        if coarse(mode) && !known {
+            list.doubts.push(Doubt::Coarse {
+                at: mode.s,
+                error: mode.error_bound,
+            });
+        }
+    }
     list
 }
 
