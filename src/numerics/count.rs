@@ -100,12 +100,11 @@ struct Sample {
     moduli: [f64; 3],
 }
 
-/// A piece of the contour: its ends, its bounds by index, and how often it was halved.
+/// A piece of the contour: its ends and its bounds by index, and how often it was halved.
 #[derive(Clone, Copy)]
 struct Segment {
-    a: Sample,
-    b: Sample,
-    bound: usize,
+    ends: [u32; 2],
+    bound: u32,
     depth: u32,
 }
 
@@ -122,6 +121,9 @@ const DEEPEST: u32 = 60;
 
 /// Most segments halved together: rounding, not zeros, keeps so many open.
 const MOST_OPEN: usize = 200_000;
+
+/// Most places on one contour, for the same reason.
+const MOST_SAMPLES: usize = 2_000_000;
 
 /// Distance from a zero within which a point of the contour is on it, over the modulus, where rounding
 /// stops the walk.
@@ -144,10 +146,33 @@ pub struct Walker<'f, F: ?Sized> {
 struct Work {
     places: Vec<Complex64>,
     values: Vec<(Complex64, Complex64)>,
+    samples: Vec<Sample>,
     regions: Vec<Region>,
     bounds: Vec<[f64; TAYLOR]>,
     segments: Vec<Segment>,
     open: Vec<Segment>,
+}
+
+impl Work {
+    /// Appends a sample for each place with its value.
+    fn sample(&mut self) {
+        let both = self.places.iter().zip(&self.values);
+        self.samples
+            .extend(both.map(|(&s, &value)| Sample::of(s, value)));
+    }
+}
+
+impl Segment {
+    /// Its ends and its bounds.
+    fn of<'w>(
+        &self,
+        samples: &'w [Sample],
+        bounds: &'w [[f64; TAYLOR]],
+    ) -> (&'w Sample, &'w Sample, &'w [f64; TAYLOR]) {
+        let [a, b] = self.ends;
+        let end = |i: u32| &samples[i as usize];
+        (end(a), end(b), &bounds[self.bound as usize])
+    }
 }
 
 impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
@@ -209,61 +234,66 @@ impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
     ) -> Result<(Complex64, Complex64, i64), CountError> {
         self.place(work, corners)?;
         self.evaluate(work)?;
-        let sample = |i: usize| Sample::of(work.places[i], work.values[i]);
-        let last = work.places.len() - 1;
-        let (first, end) = (sample(0), sample(last));
+        work.samples.clear();
+        work.sample();
         work.regions.clear();
         work.segments.clear();
-        let mut a = first;
-        for i in 1..=last {
-            let b = sample(i);
-            let region = widened(&a, &b);
+        for (i, pair) in work.samples.windows(2).enumerate() {
+            let [a, b] = pair else { continue };
+            let region = widened(a, b);
             if work.regions.last() != Some(&region) {
                 work.regions.push(region);
             }
-            let bound = work.regions.len() - 1;
             work.segments.push(Segment {
-                a,
-                b,
-                bound,
+                ends: [i as u32, i as u32 + 1],
+                bound: work.regions.len() as u32 - 1,
                 depth: 0,
             });
-            a = b;
         }
+        let ends = |work: &Work| Some((work.samples.first()?.value, work.samples.last()?.value));
+        let zero = Complex64::new(0.0, 0.0);
+        let (first, last) = ends(work).unwrap_or((zero, zero));
         self.bounds(work)?;
         let mut crossings = 0;
         while !work.segments.is_empty() {
             work.open.clear();
             work.places.clear();
             for segment in &work.segments {
-                match self.judge(segment, &work.bounds[segment.bound])? {
+                let (a, b, bounds) = segment.of(&work.samples, &work.bounds);
+                match self.judge(a, b, segment.depth, bounds)? {
                     Told::Clear(n) => crossings += n,
                     Told::Open => {
                         work.open.push(*segment);
-                        work.places.push((segment.a.s + segment.b.s) * 0.5);
+                        work.places.push((a.s + b.s) * 0.5);
                     }
                 }
             }
-            if let (Some(open), true) = (work.open.first(), work.open.len() > MOST_OPEN) {
-                return Err(CountError::Drowned { near: open.a.s });
+            let many = work.open.len() > MOST_OPEN || work.samples.len() > MOST_SAMPLES;
+            if let (Some(open), true) = (work.open.first(), many) {
+                let near = open.of(&work.samples, &work.bounds).0.s;
+                return Err(CountError::Drowned { near });
             }
             work.segments.clear();
             self.effort.refinements += work.open.len();
             self.evaluate(work)?;
+            let known = work.samples.len();
+            work.sample();
             for (i, segment) in work.open.iter().enumerate() {
-                let middle = Sample::of(work.places[i], work.values[i]);
-                self.held(segment, &middle, &work.bounds[segment.bound])?;
-                for (a, b) in [(segment.a, middle), (middle, segment.b)] {
+                let middle = known + i;
+                let (a, b, bounds) = segment.of(&work.samples, &work.bounds);
+                self.held(a, b, &work.samples[middle], bounds)?;
+                let [from, to] = segment.ends;
+                let middle = middle as u32;
+                for ends in [[from, middle], [middle, to]] {
                     work.segments.push(Segment {
-                        a,
-                        b,
+                        ends,
                         depth: segment.depth + 1,
                         ..*segment
                     });
                 }
             }
         }
-        Ok((first.value, end.value, crossings))
+        Ok((first, last, crossings))
     }
 
     /// The points of a polygon, its edges cut by the scale on which the function may vary along them.
@@ -318,10 +348,15 @@ impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
         Ok(())
     }
 
-    fn judge(&self, segment: &Segment, bounds: &[f64; TAYLOR]) -> Result<Told, CountError> {
-        let Segment { a, b, depth, .. } = segment;
-        let h = modulus(b.s - a.s);
-        let along = (b.s - a.s) / h;
+    fn judge(
+        &self,
+        a: &Sample,
+        b: &Sample,
+        depth: u32,
+        bounds: &[f64; TAYLOR],
+    ) -> Result<Told, CountError> {
+        let chord = b.s - a.s;
+        let h = modulus(chord);
         let ([sa, va, _], [sb, vb, _]) = (a.moduli, b.moduli);
         let modulus = sa.max(sb);
         let floor = self.rounding.floor(bounds, modulus, 0);
@@ -336,13 +371,13 @@ impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
         let remainder = bounds[4] * (h2 * h2) / 16.0;
         let noise = floor + slope_floor * h / 3.0;
         if va > floor && vb > floor {
-            let (from, to) = (a.value / va, b.value / vb);
+            let (from, to, length) = directions(a, b);
             let bisector = from + to;
             let size = bisector.norm_sqr().sqrt();
-            let third = along * (h / 3.0);
+            let third = chord / 3.0;
             let needed = (remainder + noise) * size;
             let clear = |p: Complex64| p.re * bisector.re + p.im * bisector.im > needed;
-            if size > 1e-9
+            if size > 1e-9 * length
                 && clear(a.value)
                 && clear(b.value)
                 && clear(a.value + a.slope * third)
@@ -353,7 +388,7 @@ impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
         }
         // A value within rounding of zero stays the end of a segment however often that is halved.
         let lost = va <= floor || vb <= floor;
-        if lost || *depth >= DEEPEST || h <= 4.0 * f64::EPSILON * modulus {
+        if lost || depth >= DEEPEST || h <= 4.0 * f64::EPSILON * modulus {
             let p = if va < vb { a } else { b };
             return Err(stopped(p, floor, slope_floor, modulus));
         }
@@ -364,11 +399,11 @@ impl<'f, F: Analytic + ?Sized> Walker<'f, F> {
     /// contradicted is a bound that is wrong.
     fn held(
         &self,
-        segment: &Segment,
+        a: &Sample,
+        b: &Sample,
         middle: &Sample,
         bounds: &[f64; TAYLOR],
     ) -> Result<(), CountError> {
-        let Segment { a, b, .. } = segment;
         let h = modulus(b.s - a.s);
         let along = (b.s - a.s) / h;
         let farthest = a.moduli[0].max(b.moduli[0]);
@@ -410,16 +445,35 @@ impl Sample {
     }
 }
 
+/// The directions of the values at both ends, of one length, and that length: each value times the modulus of the other,
+/// which needs no division, or of modulus one where products might leave the range.
+fn directions(a: &Sample, b: &Sample) -> (Complex64, Complex64, f64) {
+    let ([_, va, _], [_, vb, _]) = (a.moduli, b.moduli);
+    let near = |v: f64| v > 1e-70 && v < 1e70;
+    if near(va) && near(vb) {
+        (a.value * vb, b.value * va, va * vb)
+    } else {
+        (a.value / va, b.value / vb, 1.0)
+    }
+}
+
 /// The region of a segment, widened to numbers of few digits so that neighbours share an evaluation of
 /// the bounds.
 fn widened(a: &Sample, b: &Sample) -> Region {
-    let mut region = Region::segment(a.s, b.s);
-    region.modulus = rounded(region.modulus.max(1.0), true);
-    region.omega = match region.omega {
-        below if below < 1.0 => 0.0,
-        omega => rounded(omega, false),
+    let omega = if a.s.im * b.s.im > 0.0 {
+        a.s.im.abs().min(b.s.im.abs())
+    } else {
+        0.0
     };
-    region
+    Region {
+        growth: (a.s.re.min(b.s.re), a.s.re.max(b.s.re)),
+        modulus: rounded(a.moduli[0].max(b.moduli[0]).max(1.0), true),
+        omega: if omega < 1.0 {
+            0.0
+        } else {
+            rounded(omega, false)
+        },
+    }
 }
 
 /// The next number of the form `2^k` or `1.5 2^k`, at least or at most `x >= 1`.
@@ -431,8 +485,7 @@ fn rounded(x: f64, up: bool) -> f64 {
 }
 
 /// Crossing of the negative real axis between two directions less than half a turn apart:
-/// counterclockwise +1, clockwise -1. The axis itself counts to the upper half-plane. Directions of
-/// modulus one, since the product of two values may overflow where they do not.
+/// counterclockwise +1, clockwise -1. The axis itself counts to the upper half-plane.
 fn crossing(a: Complex64, b: Complex64) -> i64 {
     let turn = (a.conj() * b).im;
     match (a.im >= 0.0, b.im >= 0.0) {

@@ -236,23 +236,42 @@ impl<T: Copy> Tape<T> {
     }
 }
 
+/// The vectors a program of at most `W` slots goes back and forth between. What a run leaves in them the next never reads, so
+/// that they are cleared once.
+struct Work<E, const W: usize>([E; W], [E; W]);
+
+impl<E: Copy, const W: usize> Work<E, W> {
+    #[inline(always)]
+    fn of<T: Real>(arithmetic: &impl Arithmetic<T, Element = E>) -> Self {
+        Work([arithmetic.zero(); W], [arithmetic.zero(); W])
+    }
+}
+
 impl<T: Real> Tape<T> {
     #[inline(always)]
     pub(super) fn run<A: Arithmetic<T>>(&self, arithmetic: &A) -> A::Element {
         match self.width {
-            0..=2 => self.run_in::<A, 2>(arithmetic),
-            3..=4 => self.run_in::<A, 4>(arithmetic),
-            5..=16 => self.run_in::<A, 16>(arithmetic),
-            _ => self.run_in::<A, MOST_SLOTS>(arithmetic),
+            0..=2 => self.run_in(arithmetic, &mut Work::<_, 2>::of(arithmetic)),
+            3..=4 => self.run_in(arithmetic, &mut Work::<_, 4>::of(arithmetic)),
+            5..=16 => self.run_in(arithmetic, &mut Work::<_, 16>::of(arithmetic)),
+            _ => self.run_in(arithmetic, &mut Work::<_, MOST_SLOTS>::of(arithmetic)),
         }
     }
 
     #[inline(always)]
-    fn run_in<A: Arithmetic<T>, const W: usize>(&self, arithmetic: &A) -> A::Element {
-        let (mut one, mut other) = ([arithmetic.zero(); W], [arithmetic.zero(); W]);
-        let (mut v, mut next) = (&mut one, &mut other);
-        for (v, _) in v.iter_mut().zip(&self.start).filter(|(_, one)| **one) {
-            *v = arithmetic.one();
+    fn run_in<A: Arithmetic<T>, const W: usize>(
+        &self,
+        arithmetic: &A,
+        work: &mut Work<A::Element, W>,
+    ) -> A::Element {
+        let Work(one, other) = work;
+        let (mut v, mut next) = (one, other);
+        for (v, &one) in v.iter_mut().zip(&self.start) {
+            *v = if one {
+                arithmetic.one()
+            } else {
+                arithmetic.zero()
+            };
         }
         for op in &self.ops {
             match op {

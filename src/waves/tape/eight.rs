@@ -3,7 +3,7 @@
 use num_complex::Complex64;
 
 use super::arithmetic::{Majorant, Taylor};
-use super::{MOST_SLOTS, Tape};
+use super::{MOST_SLOTS, Tape, Work};
 use crate::numerics::analytic::{Analytic, Region, Rounding, TAYLOR};
 use crate::numerics::lanes::{Both, Job, LANES, Lanes, on_lanes};
 use crate::waves::complex::Cx;
@@ -111,24 +111,33 @@ impl<const W: usize> Job for Slopes<'_, W> {
     #[inline(always)]
     fn run<L: Lanes>(self) {
         self.to.reserve(self.at.len());
-        let mut sixteens = self.at.chunks_exact(2 * LANES);
-        for sixteen in &mut sixteens {
-            let (a, b) = sixteen.split_at(LANES);
-            let (Some(a), Some(b)) = (filled(a), filled(b)) else {
-                continue;
-            };
-            let (a, b) = (place::<L>(&a), place::<L>(&b));
-            let s = Cx::new(Both(a.re, b.re), Both(a.im, b.im));
-            let [d, slope] = self.tape.run_in::<_, W>(&Taylor::<Both<L>, 2>(s));
-            let part = |x: Cx<Both<L>>| (Cx::new(x.re.0, x.im.0), Cx::new(x.re.1, x.im.1));
-            let (d, slope) = (part(d), part(slope));
-            append(d.0, slope.0, LANES, self.to);
-            append(d.1, slope.1, LANES, self.to);
+        let sixteens = self.at.chunks_exact(2 * LANES);
+        let rest = sixteens.remainder();
+        if sixteens.len() > 0 {
+            let zero = Both(L::from(0.0), L::from(0.0));
+            let mut work = Work::<_, W>::of(&Taylor::<_, 2>(Cx::new(zero, zero)));
+            for sixteen in sixteens {
+                let (a, b) = sixteen.split_at(LANES);
+                let (Some(a), Some(b)) = (filled(a), filled(b)) else {
+                    continue;
+                };
+                let (a, b) = (place::<L>(&a), place::<L>(&b));
+                let s = Cx::new(Both(a.re, b.re), Both(a.im, b.im));
+                let [d, slope] = self.tape.run_in(&Taylor::<_, 2>(s), &mut work);
+                let part = |x: Cx<Both<L>>| (Cx::new(x.re.0, x.im.0), Cx::new(x.re.1, x.im.1));
+                let (d, slope) = (part(d), part(slope));
+                append(d.0, slope.0, LANES, self.to);
+                append(d.1, slope.1, LANES, self.to);
+            }
         }
-        for eight in sixteens.remainder().chunks(LANES) {
-            if let Some(at) = filled(eight) {
-                let [d, slope] = self.tape.run_in::<_, W>(&Taylor::<L, 2>(place(&at)));
-                append(d, slope, eight.len(), self.to);
+        if !rest.is_empty() {
+            let zero = L::from(0.0);
+            let mut work = Work::<_, W>::of(&Taylor::<_, 2>(Cx::new(zero, zero)));
+            for eight in rest.chunks(LANES) {
+                if let Some(at) = filled(eight) {
+                    let [d, slope] = self.tape.run_in(&Taylor::<_, 2>(place(&at)), &mut work);
+                    append(d, slope, eight.len(), self.to);
+                }
             }
         }
     }
@@ -145,6 +154,7 @@ impl<const W: usize> Job for Bounds<'_, W> {
     type Output = ();
     #[inline(always)]
     fn run<L: Lanes>(self) {
+        let mut work = Work::<_, W>([[L::from(0.0); TAYLOR]; W], [[L::from(0.0); TAYLOR]; W]);
         for over in self.over.chunks(LANES) {
             let Some(eight) = filled(over) else { continue };
             let region = Region {
@@ -155,7 +165,7 @@ impl<const W: usize> Job for Bounds<'_, W> {
                 modulus: gathered(&eight, |r| r.modulus),
                 omega: gathered(&eight, |r| r.omega),
             };
-            let found = self.tape.run_in::<_, W>(&Majorant(&region));
+            let found = self.tape.run_in(&Majorant(&region), &mut work);
             let mut bounds = [[0.0; TAYLOR]; LANES];
             for (k, orders) in found.into_iter().enumerate() {
                 for (bound, x) in bounds.iter_mut().zip(scattered(orders)) {
