@@ -301,3 +301,42 @@ fn a_picture_does_not_speak_of_warnings_it_does_not_show() {
         assert!(!svg.contains("warnings") && svg.contains("growth outside the window"));
     }
 }
+
+/// Wherever a reported point has a mode that grows, in the window or outside, the point lies in an unstable stretch.
+#[test]
+fn what_grows_at_a_point_lies_in_an_unstable_stretch() {
+    let mut growing = 0;
+    for (span, points, more) in [
+        ("200 ms to 300 ms", "3", [""; 0].as_slice()),
+        ("200 ms to 230 ms", "3", &[]),
+        ("200 ms to 290 ms", "8", &[]),
+        ("0 ms to 125 ms", "9", &[]),
+        ("3 ms to 60 ms", "20", &["--growth", "-50 to 20 1/s"]),
+        ("10 ms to 60 ms", "3", &["--frequency", "20 to 5000 Hz"]),
+        ("3 ms to 30 ms", "3", &["--frequency", "20 to 5000 Hz"]),
+    ] {
+        let vary = format!("main_flame.delay = {span}");
+        let mut all = vec!["--vary", vary.as_str(), "--points", points];
+        all.extend(more);
+        let (value, _) = json("sweep", &network("swirl_rig"), &all);
+        let number = |v: &Value| v.as_f64().unwrap();
+        let stretches = value["unstable"].as_array().unwrap();
+        for point in value["points"].as_array().unwrap() {
+            let modes = point["modes"].as_array().unwrap().iter();
+            let grows = |m: &Value| number(&m["growth_per_s"]) > 1e-6;
+            if !modes.clone().any(grows) {
+                continue;
+            }
+            growing += 1;
+            let at = number(&point["value"]);
+            let holds = |s: &Value| {
+                let slack = 1e-12 * at.abs();
+                number(&s[0]) - slack <= at && at <= number(&s[1]) + slack
+            };
+            assert!(stretches.iter().any(holds), "{span}, {points}: {at} grows");
+        }
+        let finding = value["finding"].as_str().unwrap();
+        assert!(finding.contains("Unstable"), "{span}: {finding}");
+    }
+    assert!(growing >= 30, "{growing}");
+}

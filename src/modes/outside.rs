@@ -221,9 +221,7 @@ fn found_in_words(faster: &[Mode], slower: &[Mode], milder: &[Mode]) -> Option<S
         (milder, "grows left of"),
     ];
     parts.into_iter().find_map(|(modes, does)| {
-        let m = modes
-            .iter()
-            .max_by(|a, b| a.growth().total_cmp(&b.growth()))?;
+        let m = super::fastest(modes.iter())?;
         Some(format!(
             "a mode {does} the window: {} 1/s at {} Hz",
             write_signed(m.growth(), 1),

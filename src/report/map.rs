@@ -5,7 +5,7 @@ use serde::Serialize;
 use super::document::WindowFields;
 use super::map_events::{EventFields, events};
 use super::{Document, Heading, closing, counted, rate, window_text};
-use crate::modes::{Mode, ModeList, Outside, Tendency, Window};
+use crate::modes::{self, Mode, ModeList, Outside, Tendency, Window};
 use crate::network::Network;
 use crate::problems::Problem;
 use crate::studies::branch;
@@ -151,8 +151,7 @@ impl<'a> MapReport<'a> {
             return Some(&one.mode);
         }
         let both = [self.design_outside.fastest(), self.design.leading()];
-        let known = both.into_iter().flatten();
-        known.max_by(|a, b| a.growth().total_cmp(&b.growth()))
+        modes::fastest(both.into_iter().flatten())
     }
 
     /// What the map says of growth outside its window, in a sentence.

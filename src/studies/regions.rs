@@ -4,7 +4,7 @@
 //! another mode takes the lead. Two neighbours belong to one region where their frequencies differ by little, or by
 //! no more than several times as much as on either side of them along the same line; where these do not say it, as
 //! on a coarse map whose frequency moves fast, where the mode that leads at one, carried to the other
-//! ([`Carrier`]), is the one that leads there. So regions do not depend on the number of points.
+//! ([`Carrier`]), is the one that leads there.
 //!
 //! Such ties alone would not give regions: around a meeting of two modes they lead from one to the other, so all points
 //! led by either would be one region. What is wanted here is where the frequency that is heard jumps.

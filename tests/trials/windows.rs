@@ -19,6 +19,7 @@ struct Figures {
     complete: usize,
     overflow: usize,
     drowned: usize,
+    blurred: usize,
     blind: usize,
     held: usize,
     unproven: Vec<String>,
@@ -31,6 +32,7 @@ impl Figures {
         self.complete += other.complete;
         self.overflow += other.overflow;
         self.drowned += other.drowned;
+        self.blurred += other.blurred;
         self.blind += other.blind;
         self.held += other.held;
         self.unproven.extend(other.unproven);
@@ -116,6 +118,12 @@ fn one(seed: u64, trial: &Trial) -> Figures {
         [Doubt::NotCounted(CountError::Drowned { .. })]
     ) {
         figures.drowned = 1;
+    } else if list
+        .doubts
+        .iter()
+        .all(|d| matches!(d, Doubt::Coarse { .. }))
+    {
+        figures.blurred = 1;
     } else {
         figures.unproven.push(told(format!("{:?}", list.doubts)));
         let broken = |d: &Doubt| {
@@ -157,14 +165,14 @@ impl Trial {
         }
     }
 
-    /// None wrong, and none unproven but those lost in rounding or in overflow.
+    /// None wrong, and none unproven but those lost in rounding or in overflow, or blurred by rounding of coefficients.
     fn run(&self) -> Figures {
         let all = (0..self.networks)
             .into_par_iter()
             .map(|seed| one(seed, self))
             .reduce(Figures::default, Figures::and);
         println!(
-            "+-{} 1/s, to {} Hz: {} networks, {} modes, {} complete, {} overflow, {} lost in rounding, {} unproven, \
+            "+-{} 1/s, to {} Hz: {} networks, {} modes, {} complete, {} overflow, {} lost in rounding, {} blurred by it, {} unproven, \
              {} wrong; {} held against the determinant, which told nothing of {}",
             self.growth,
             self.highest,
@@ -173,6 +181,7 @@ impl Trial {
             all.complete,
             all.overflow,
             all.drowned,
+            all.blurred,
             all.unproven.len(),
             all.wrong.len(),
             all.held,

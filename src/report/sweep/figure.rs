@@ -22,6 +22,9 @@ const FINE: u32 = 3;
 /// growth rate.
 const MOST_NAMED: usize = 14;
 
+/// Shortest branch that has a look of its own where there are many, as a part of the path.
+const LEAST_NAMED: f64 = 0.01;
+
 /// What a figure shows of the branches.
 struct Cast {
     /// Branches with a name of their own, by number; each with its look's.
@@ -51,16 +54,28 @@ impl Cast {
                 .and_then(Branch::greatest)
                 .map_or(f64::MIN, |p| p.s.re)
         };
+        let extent = |i: &usize| {
+            let trace = sweep.branches.get(*i).map(|b| b.trace.as_slice());
+            match trace {
+                Some([first, .., last]) => (last.u - first.u).abs(),
+                _ => 0.0,
+            }
+        };
         let mut others = Vec::new();
         if named.len() > MOST_NAMED {
             named.sort_by(|a, b| growth(b).total_cmp(&growth(a)));
-            others = named.split_off(MOST_NAMED);
+            // What is too short to be seen is not named, however fast.
+            let (long, short): (Vec<usize>, Vec<usize>) =
+                named.into_iter().partition(|i| extent(i) >= LEAST_NAMED);
+            named = long;
+            others = named.split_off(named.len().min(MOST_NAMED));
+            others.extend(short);
             named.sort_unstable();
         }
         let mut names = Vec::new();
         if !others.is_empty() {
             names.push(format!(
-                "{} of less growth",
+                "{} of less growth or extent",
                 counted(others.len(), "other mode")
             ));
         }

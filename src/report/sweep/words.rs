@@ -82,8 +82,12 @@ impl SweepReport<'_> {
                 true => ", below that,",
                 false => "",
             };
+            let known = match sweep.unresolved.is_empty() {
+                true => "",
+                false => " known",
+            };
             text.push_str(&format!(
-                "; fastest {} 1/s and {} Hz{below} at {}{}",
+                "; fastest{known} {} 1/s and {} Hz{below} at {}{}",
                 rate(fastest.s.re),
                 write_decimals(frequency, 0),
                 self.of_what(),

@@ -9,6 +9,8 @@ use super::sample::{Ground, Sample, Verdict};
 use super::{Branch, Event, Fastest, Place, Point, Sweep, Woven, add, crossing, weave};
 use crate::modes::{Tendency, Window};
 
+use std::cmp::Ordering;
+
 use num_complex::Complex64;
 use rayon::prelude::*;
 
@@ -20,16 +22,20 @@ const ROOM: f64 = 0.25;
 /// in it, however flat the window asked for.
 const LEAST_ROOM: f64 = 0.05;
 
+/// Difference of growth rates, over the modulus, that rounding makes.
+const ALIKE: f64 = 1e-11;
+
 /// Finds the unstable stretches of a sweep and its fastest mode, given whether modes can be followed from each point.
 pub(super) fn judge(ground: &Ground<'_>, sweep: &mut Sweep, usable: &[bool]) {
     let all = |_: &Place| true;
     let (mut unstable, inside) = of(&sweep.branches, &sweep.events, all, all);
+    let mut in_doubt = in_doubt(&sweep.unresolved, &sweep.branches, &sweep.unfollowed, all);
     let loose = greatest(sweep.unfollowed.iter());
     sweep.fastest = inside
         .map(|at| at.refined(ground, &sweep.branches))
         .into_iter()
         .chain(loose)
-        .max_by(|a, b| a.s.re.total_cmp(&b.s.re));
+        .max_by(by_growth);
     let window = window_of_growth(sweep);
     let wide = Ground { window, ..*ground };
     let sample = |(p, usable): (&Point, &bool)| {
@@ -72,7 +78,6 @@ pub(super) fn judge(ground: &Ground<'_>, sweep: &mut Sweep, usable: &[bool]) {
     });
     let found = followed.map(|f| Fastest { branch: None, ..f }).into_iter();
     let found = found.chain(greatest(loose.iter())).chain(at_points);
-    let by_growth = |a: &Fastest, b: &Fastest| a.s.re.total_cmp(&b.s.re);
     sweep.fastest_outside = found.filter(|f| f.s.re > 0.0).max_by(by_growth);
     let both = sweep.fastest.into_iter().chain(sweep.fastest_outside);
     sweep.fastest = both.max_by(by_growth);
@@ -84,8 +89,12 @@ pub(super) fn judge(ground: &Ground<'_>, sweep: &mut Sweep, usable: &[bool]) {
             unstable.push((u(i.saturating_sub(1)), u(i + 1)));
         }
     }
-    sweep.taken_for_unstable = joined(in_doubt(&woven, known), 0.0);
-    unstable.extend(&sweep.taken_for_unstable);
+    let also = self::in_doubt(&woven.unresolved, &woven.branches, &woven.loose, known);
+    in_doubt.extend(also);
+    let stretches = joined(unstable.iter().chain(&in_doubt).copied().collect(), 0.0);
+    in_doubt.extend(left_out(sweep, &stretches));
+    unstable.extend(&in_doubt);
+    sweep.taken_for_unstable = joined(in_doubt, 0.0);
     sweep.unstable = joined(unstable, 0.0);
     for sample in &samples {
         add(&mut sweep.effort, &sample.effort);
@@ -117,9 +126,13 @@ fn runs(branch: &Branch, holds: impl Fn(&Place) -> bool) -> Vec<Branch> {
 
 /// Steps over which modes move too fast to be followed and at an end of which some mode grows: nothing says that it does
 /// not all along.
-fn in_doubt(woven: &Woven, known: impl Fn(&Place) -> bool) -> Vec<(f64, f64)> {
-    let followed = woven.branches.iter().flat_map(|b| &b.trace);
-    let places = followed.chain(&woven.loose);
+fn in_doubt(
+    unresolved: &[(f64, f64)],
+    branches: &[Branch],
+    loose: &[Place],
+    known: impl Fn(&Place) -> bool,
+) -> Vec<(f64, f64)> {
+    let places = branches.iter().flat_map(|b| &b.trace).chain(loose);
     let grows = places.filter(|p| p.tendency() == Tendency::Grows && known(p));
     let mut at: Vec<f64> = grows.map(|p| p.u).collect();
     at.sort_by(f64::total_cmp);
@@ -127,7 +140,37 @@ fn in_doubt(woven: &Woven, known: impl Fn(&Place) -> bool) -> Vec<(f64, f64)> {
         let first = at.partition_point(|u| u < from);
         at.get(first).is_some_and(|u| u <= to)
     };
-    woven.unresolved.iter().filter(any).copied().collect()
+    unresolved.iter().filter(any).copied().collect()
+}
+
+/// The ways between reported points about whatever is known to grow and lies in no stretch yet: at reported points, and of
+/// modes that could not be followed.
+fn left_out(sweep: &Sweep, stretches: &[(f64, f64)]) -> Vec<(f64, f64)> {
+    let grows = |p: &&Point| {
+        let outside = p.outside.fastest.iter();
+        let modes = p.modes.iter().map(|(_, m)| m).chain(outside);
+        modes.into_iter().any(|m| m.tendency() == Tendency::Grows)
+    };
+    let points = sweep.points.iter().filter(grows).map(|p| p.u);
+    let loose = sweep.unfollowed.iter();
+    let loose = loose.filter(|p| p.tendency() == Tendency::Grows);
+    let covered = |u: &f64| stretches.iter().any(|(from, to)| (*from..=*to).contains(u));
+    let about = |u: f64| {
+        let before = sweep.points.iter().rev().find(|p| p.u < u);
+        let after = sweep.points.iter().find(|p| p.u > u);
+        (before.map_or(u, |p| p.u), after.map_or(u, |p| p.u))
+    };
+    let all = points.chain(loose.map(|p| p.u));
+    all.filter(|u| !covered(u)).map(about).collect()
+}
+
+/// By growth rate; of those that rounding does not tell apart the one of lower frequency is the greater.
+fn by_growth(a: &Fastest, b: &Fastest) -> Ordering {
+    if (a.s.re - b.s.re).abs() <= ALIKE * a.s.norm().max(b.s.norm()) {
+        b.s.im.total_cmp(&a.s.im)
+    } else {
+        a.s.re.total_cmp(&b.s.re)
+    }
 }
 
 /// The stretches over which branches grow that are anywhere `known`, and the fastest of the places of these that
@@ -152,12 +195,13 @@ fn of(
         }
         stretches.extend(branch.growing(changes[i].iter().copied()));
         for place in branch.trace.iter().filter(|p| known(p) && count(p)) {
-            if fastest.is_none_or(|f| f.s.re < place.s.re) {
-                fastest = Some(Fastest {
-                    u: place.u,
-                    s: place.s,
-                    branch: Some(i),
-                });
+            let here = Fastest {
+                u: place.u,
+                s: place.s,
+                branch: Some(i),
+            };
+            if fastest.is_none_or(|f| by_growth(&f, &here).is_lt()) {
+                fastest = Some(here);
             }
         }
     }
@@ -166,12 +210,12 @@ fn of(
 
 /// The fastest of places that are on no branch.
 fn greatest<'p>(places: impl Iterator<Item = &'p Place>) -> Option<Fastest> {
-    let by_growth = |a: &&Place, b: &&Place| a.s.re.total_cmp(&b.s.re);
-    places.max_by(by_growth).map(|p| Fastest {
+    let place = |p: &Place| Fastest {
         u: p.u,
         s: p.s,
         branch: None,
-    })
+    };
+    places.map(place).max_by(by_growth)
 }
 
 impl Fastest {
