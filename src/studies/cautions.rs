@@ -256,8 +256,12 @@ pub(super) fn outside(
     window: &Window,
     hint: &str,
 ) -> Problem {
+    let seen = match count {
+        0 => "between the points".to_owned(),
+        _ => format!("at {count} of {total} points"),
+    };
     let what = format!(
-        "at {count} of {total} points a mode grows outside the window; the fastest, at {place}: {} 1/s at {} Hz",
+        "{seen} a mode grows outside the window; the fastest known, at {place}: {} 1/s at {} Hz",
         write_signed(fastest.re, 0),
         write_decimals(fastest.im / std::f64::consts::TAU, 1)
     );

@@ -197,8 +197,8 @@ pub struct Sweep {
     /// Stretches over which some mode grows, in the window or outside up to its highest frequency, in order
     /// and apart.
     pub unstable: Vec<(f64, f64)>,
-    /// Of [`unstable`](Self::unstable), stretches over which modes move too fast to be followed and at an end of which
-    /// some mode grows: they are taken for unstable.
+    /// Of [`unstable`](Self::unstable), stretches over which modes move too fast to be followed or points have no answer, and
+    /// at an end of which some mode grows: they are taken for unstable.
     pub taken_for_unstable: Vec<(f64, f64)>,
     /// Modes that grow outside the window up to its highest frequency, over the stretches where they do.
     pub growing_outside: Vec<Branch>,

@@ -49,6 +49,10 @@ impl SweepReport<'_> {
         let stretches = &sweep.unstable;
         let length: f64 = stretches.iter().map(|(a, b)| b - a).sum();
         let band = band(&sweep.window);
+        let unstable = match sweep.taken_for_unstable.is_empty() {
+            true => "Unstable",
+            false => "Unstable or unknown",
+        };
         let mut text = match stretches.as_slice() {
             _ if complete == 0 => "No point of the sweep is certified".to_owned(),
             [] if complete == sweep.points.len() && !sweep.unresolved.is_empty() => {
@@ -59,7 +63,7 @@ impl SweepReport<'_> {
             }
             [] => format!("No mode in {band} grows where the sweep is certified"),
             [(a, b)] if *a <= 0.0 && *b >= 1.0 => {
-                format!("Unstable over the whole sweep in {band}")
+                format!("{unstable} over the whole sweep in {band}")
             }
             few if few.len() <= 3 => {
                 let parts: Vec<String> = few.iter().map(|s| self.stretch(*s)).collect();
@@ -67,10 +71,10 @@ impl SweepReport<'_> {
                     what if what.is_empty() => what,
                     what => format!("for {what}"),
                 };
-                format!("Unstable {of_what}{}, in {band}", joined(&parts))
+                format!("{unstable} {of_what}{}, in {band}", joined(&parts))
             }
             many => format!(
-                "Unstable over {:.0} % of the sweep, in {} stretches, in {band}",
+                "{unstable} over {:.0} % of the sweep, in {} stretches, in {band}",
                 100.0 * length,
                 many.len()
             ),
@@ -106,6 +110,10 @@ impl SweepReport<'_> {
                 _ => "not certified or without an answer",
             };
             text.push_str(&format!("; {share} of the points {what}"));
+        }
+        if let (_, 1.., Some(growth)) = self.outside() {
+            let growth = write_decimals(growth, 0);
+            text.push_str(&format!("; growth above {growth} 1/s not excluded"));
         }
         text
     }

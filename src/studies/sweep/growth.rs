@@ -91,6 +91,7 @@ pub(super) fn judge(ground: &Ground<'_>, sweep: &mut Sweep, usable: &[bool]) {
     }
     let also = self::in_doubt(&woven.unresolved, &woven.branches, &woven.loose, known);
     in_doubt.extend(also);
+    in_doubt.extend(gaps(sweep, usable));
     let stretches = joined(unstable.iter().chain(&in_doubt).copied().collect(), 0.0);
     in_doubt.extend(left_out(sweep, &stretches));
     unstable.extend(&in_doubt);
@@ -143,15 +144,31 @@ fn in_doubt(
     unresolved.iter().filter(any).copied().collect()
 }
 
+/// The ways over reported points without an answer, or whose list may miss modes, where some mode grows at a point beside:
+/// nothing says where that ends.
+fn gaps(sweep: &Sweep, usable: &[bool]) -> Vec<(f64, f64)> {
+    let answered: Vec<usize> = (0..sweep.points.len())
+        .filter(|i| usable.get(*i).is_some_and(|u| *u))
+        .collect();
+    let point = |i: usize| sweep.points.get(i);
+    let last = sweep.points.len().saturating_sub(1);
+    let before = answered.first().filter(|i| **i > 0).map(|i| (0, *i));
+    let behind = answered.last().filter(|i| **i < last).map(|i| (*i, last));
+    let between = answered.windows(2).filter_map(|pair| match pair {
+        &[a, b] if b > a + 1 => Some((a, b)),
+        _ => None,
+    });
+    let all = before.into_iter().chain(between).chain(behind);
+    all.filter_map(|(a, b)| Some((point(a)?, point(b)?)))
+        .filter(|(a, b)| a.grows() || b.grows())
+        .map(|(a, b)| (a.u, b.u))
+        .collect()
+}
+
 /// The ways between reported points about whatever is known to grow and lies in no stretch yet: at reported points, and of
 /// modes that could not be followed.
 fn left_out(sweep: &Sweep, stretches: &[(f64, f64)]) -> Vec<(f64, f64)> {
-    let grows = |p: &&Point| {
-        let outside = p.outside.fastest.iter();
-        let modes = p.modes.iter().map(|(_, m)| m).chain(outside);
-        modes.into_iter().any(|m| m.tendency() == Tendency::Grows)
-    };
-    let points = sweep.points.iter().filter(grows).map(|p| p.u);
+    let points = sweep.points.iter().filter(|p| p.grows()).map(|p| p.u);
     let loose = sweep.unfollowed.iter();
     let loose = loose.filter(|p| p.tendency() == Tendency::Grows);
     let covered = |u: &f64| stretches.iter().any(|(from, to)| (*from..=*to).contains(u));
@@ -266,6 +283,15 @@ pub(super) fn joined(mut all: Vec<(f64, f64)>, gap: f64) -> Vec<(f64, f64)> {
         }
     }
     joined
+}
+
+impl Point {
+    /// Whether some mode known there grows, in the window or outside.
+    pub fn grows(&self) -> bool {
+        let outside = self.outside.fastest.iter();
+        let mut modes = self.modes.iter().map(|(_, m)| m).chain(outside);
+        modes.any(|m| m.tendency() == Tendency::Grows)
+    }
 }
 
 impl Sweep {
