@@ -6,7 +6,7 @@ use crate::report::map::percent;
 use crate::report::table::{Lean, Table};
 use crate::report::{band, closing, counted, rate, window_text};
 use crate::studies::path::{Parameter, Spacing};
-use crate::studies::sweep::{Event, Kind};
+use crate::studies::sweep::{Event, Kind, State};
 use crate::units::{Dimension, write_decimals, write_rounded};
 
 /// What happens at an event, for people.
@@ -111,7 +111,11 @@ impl SweepReport<'_> {
             };
             text.push_str(&format!("; {share} of the points {what}"));
         }
-        if let (_, 1.., Some(growth)) = self.outside() {
+        // Points without an answer are told of already.
+        let answered = sweep.points.iter();
+        let answered = answered.filter(|p| !matches!(p.state, State::Failed(_)));
+        let open = answered.filter(|p| !p.outside.excluded);
+        if let Some(growth) = open.map(|p| p.outside.searched_to).reduce(f64::min) {
             let growth = write_decimals(growth, 0);
             text.push_str(&format!("; growth above {growth} 1/s not excluded"));
         }
