@@ -413,3 +413,13 @@ fn the_test_itself_sees_what_it_looks_for() {
     assert!(stands_in("see ../elsewhere/notes", "elsewhere/"));
     assert!(!stands_in("a todo list", "TO"));
 }
+
+/// Answers are written where the program is run: none is to be left in the tree.
+#[test]
+fn the_top_level_holds_no_answers() {
+    for entry in std::fs::read_dir(root()).unwrap() {
+        let name = entry.unwrap().file_name();
+        let name = name.to_string_lossy();
+        assert!(!name.ends_with(".svg") && !name.ends_with(".csv"), "{name}");
+    }
+}

@@ -7,8 +7,8 @@
 //!
 //! A slice of it is among the tests (`tests/signals/peaks.rs`, `nature.rs`).
 
-#[allow(dead_code, reason = "other benches call Python, which this does not")]
 mod machine;
+mod page;
 
 #[path = "../signals/heard.rs"]
 mod heard;
@@ -20,7 +20,8 @@ mod rigs;
 
 use std::time::Instant;
 
-use machine::{Outcome, file, load, processor};
+use machine::{Outcome, load, processor};
+use page::{time, today, write_between};
 use rayon::prelude::*;
 
 /// Seeds of the whole campaign.
@@ -30,6 +31,10 @@ const WHOLE: u64 = 100;
 const SHORT: f64 = 6.0;
 
 fn main() -> Outcome<()> {
+    // As `cargo test --benches` asks it: there is nothing to test.
+    if !std::env::args().any(|a| a == "--bench") {
+        return Ok(());
+    }
     let mut numbers = std::env::args()
         .skip(1)
         .filter_map(|a| a.parse::<u64>().ok());
@@ -74,28 +79,17 @@ fn main() -> Outcome<()> {
         eprintln!("{name}: {:.0} s", began.elapsed().as_secs_f64());
     }
     text += &format!(
-        "\n{seeds} seeds; {reached} of {modes} modes reach the target. Noise and cycle not told apart: {} of {} records. {:.0} s on {}, {}.\n",
+        "\n{seeds} seeds; {reached} of {modes} modes reach the target. Noise and cycle not told apart: {} of {} records. Measured {} in {} on {}, {}.\n",
         wrong.len(),
         2 * seeds as usize * rigs::NAMES.len(),
-        began.elapsed().as_secs_f64(),
+        today(),
+        time(began.elapsed().as_secs_f64()),
         processor(),
         load()
     );
     println!("{text}{}", wrong.join("\n"));
     if asked.is_none() {
-        write(&text)?;
+        write_between("docs/validation.md", "records", &text)?;
     }
     Ok(())
-}
-
-/// Puts the figures between the marks of the page.
-fn write(figures: &str) -> Outcome<()> {
-    let path = file("docs/validation.md");
-    let text = std::fs::read_to_string(&path)?;
-    let (before, rest) = text.split_once("<!-- records -->").ok_or("no mark")?;
-    let (_, after) = rest
-        .split_once("<!-- end of records -->")
-        .ok_or("no mark")?;
-    let new = format!("{before}<!-- records -->\n\n{figures}\n<!-- end of records -->{after}");
-    Ok(std::fs::write(path, new)?)
 }
