@@ -166,7 +166,7 @@ pub(super) fn answer(arguments: &Arguments) -> Result<Answer, Failure> {
     };
     let opened = reading::open(&arguments.record, &asked).map_err(of_record)?;
     match opened {
-        Opened::Record(record) => of_samples(arguments, record, loaded.as_ref()),
+        Opened::Record(record) => of_samples(arguments, *record, loaded.as_ref()),
         Opened::Spectrum(spectrum) => of_lines(arguments, &spectrum),
     }
 }

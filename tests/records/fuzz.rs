@@ -140,7 +140,7 @@ fn the_files_are_valid_to_begin_with() {
     for (i, (bytes, asked)) in valid().into_iter().enumerate() {
         let file = file(&bytes);
         match open(file.path(), &asked) {
-            Ok(Opened::Record(record)) => assert!(crate::whole(record).is_ok(), "{i}"),
+            Ok(Opened::Record(record)) => assert!(crate::whole(*record).is_ok(), "{i}"),
             Ok(Opened::Spectrum(s)) => assert_eq!(s.frequency.len(), 60),
             Err(e) => panic!("{i}: {e}"),
         }
@@ -164,7 +164,7 @@ proptest! {
             }
             Ok(Opened::Record(record)) => {
                 prop_assert!(record.rate_hz.is_finite() && record.rate_hz > 0.0);
-                match crate::whole(record) {
+                match crate::whole(*record) {
                     Err(told) => prop_assert!(told.any_error()),
                     Ok(read) => {
                         prop_assert!(read.samples.iter().all(|c| c.len() == read.samples[0].len() && !c.is_empty()));
@@ -185,7 +185,7 @@ proptest! {
         let file = file(&changed(bytes, &changes));
         if let Ok(Opened::Record(record)) = open(file.path(), &asked) {
             let none = vec![Correction::default(); record.signals.len()];
-            if let Err(told) = survey(record, none, &Settings::default()) {
+            if let Err(told) = survey(*record, none, &Settings::default()) {
                 prop_assert!(told.any_error());
             }
         }

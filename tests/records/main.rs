@@ -55,7 +55,7 @@ fn whole(mut record: Recording) -> Result<Whole, Problems> {
 fn read_as(bytes: &[u8], asked: &Asked) -> Result<Whole, Problems> {
     let file = file(bytes);
     match open(file.path(), asked)? {
-        Opened::Record(record) => whole(record),
+        Opened::Record(record) => whole(*record),
         Opened::Spectrum(_) => panic!("a spectrum"),
     }
 }

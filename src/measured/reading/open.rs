@@ -52,13 +52,9 @@ impl Format {
 }
 
 /// A file as opened.
-#[allow(
-    clippy::large_enum_variant,
-    reason = "one of it exists at a time, and is taken apart at once"
-)]
 pub enum Opened {
     /// Samples over time, still to be read.
-    Record(Recording),
+    Record(Box<Recording>),
     /// A spectrum, read.
     Spectrum(MeasuredSpectrum),
 }
@@ -121,10 +117,10 @@ pub fn open(path: &Path, asked: &Asked) -> Result<Opened, Problems> {
         csv::head(path, table, &name, asked)?
     };
     let record = recording(head, name, asked)?;
-    Ok(Opened::Record(Recording {
+    Ok(Opened::Record(Box::new(Recording {
         _spooled: spooled,
         ..record
-    }))
+    })))
 }
 
 /// What stands for standard input in place of a file.
